@@ -1,0 +1,98 @@
+# Skymend: make demo | make test | make | make install | make bench | make validate | make clean
+#
+# Variables: CC (gcc or clang), BUILD (folder of what is made), PREFIX (of install), SANITIZE=address,undefined
+
+VERSION := 0.1.0
+BUILD ?= build
+PREFIX ?= /usr/local
+CC := $(if $(filter default,$(origin CC)),gcc,$(CC))
+PYTHON ?= /usr/bin/python3
+
+# looked up when used, so that a target can install what is missing first
+PACKAGES := netcdf lapacke lapack libconfig
+PACKAGE_FLAGS = $(shell pkg-config --cflags $(PACKAGES))
+PACKAGE_LIBS = $(shell pkg-config --libs $(PACKAGES))
+
+SANITIZE_FLAGS := $(if $(SANITIZE),-fsanitize=$(SANITIZE) -fno-sanitize-recover=all -fno-omit-frame-pointer)
+CFLAGS ?= -O2 -g
+WARNINGS := -Wall -Wextra -Wpedantic $(if $(WERROR),-Werror)
+FLAGS = -std=c11 -D_POSIX_C_SOURCE=200809L $(CFLAGS) $(WARNINGS) $(SANITIZE_FLAGS) -fopenmp -MMD -MP \
+	-DSKYMEND_VERSION='"$(VERSION)"'
+LIBS = $(PACKAGE_LIBS) -lm
+
+FOLDERS := input transport chem model
+SOURCES := $(filter-out chem/rosenbrock_kernel.c,$(foreach folder,$(FOLDERS),$(wildcard $(folder)/*.c)))
+OBJECTS := $(SOURCES:%.c=$(BUILD)/obj/%.o)
+
+# The chemistry kernel is compiled once per vector instruction set and chosen at run time.
+KERNEL_FLAGS := -O3 -ffp-contract=fast -Wno-psabi
+ifeq ($(shell uname -m),x86_64)
+KERNEL_VARIANTS := baseline avx2 avx512
+KERNEL_FLAGS += -DSKYMEND_X86
+else
+KERNEL_VARIANTS := baseline
+endif
+MARCH_baseline :=
+MARCH_avx2 := -march=x86-64-v3
+MARCH_avx512 := -march=x86-64-v4 -mprefer-vector-width=512
+OBJECTS += $(KERNEL_VARIANTS:%=$(BUILD)/obj/chem/rosenbrock_kernel_%.o)
+LIBRARY_OBJECTS := $(filter-out $(BUILD)/obj/model/main.o,$(OBJECTS))
+
+TESTS := $(patsubst tests/%.c,$(BUILD)/tests/%,$(wildcard tests/test_*.c))
+TEST_LIBS = -lcmocka $(if $(shell grep -l 'libs: sundials' $(1)),-lsundials_cvode -lsundials_nvecserial \
+	-lsundials_sunmatrixdense -lsundials_sunlinsoldense)
+
+MAKEFLAGS += --no-builtin-rules
+.SUFFIXES:
+.PHONY: all program demo test check quick-test install clean bench validate format
+all: program
+program: $(BUILD)/skymend
+
+$(BUILD)/skymend: $(OBJECTS)
+	$(CC) $(FLAGS) -o $@ $^ $(LIBS)
+
+$(BUILD)/obj/%.o: %.c Makefile
+	@mkdir -p $(@D)
+	$(CC) $(FLAGS) $(PACKAGE_FLAGS) $(EXTRA) -c -o $@ $<
+
+$(BUILD)/obj/chem/rosenbrock.o: EXTRA := $(filter -D% -Wno%,$(KERNEL_FLAGS))
+# one operation order everywhere: sunlight does not depend on the machine
+$(BUILD)/obj/chem/radiation.o $(BUILD)/obj/chem/photolysis.o: EXTRA := -O3 -ffp-contract=off -Wno-psabi
+
+$(BUILD)/obj/chem/rosenbrock_kernel_%.o: chem/rosenbrock_kernel.c Makefile
+	@mkdir -p $(@D)
+	$(CC) $(FLAGS) $(KERNEL_FLAGS) $(MARCH_$*) -DSOLVER_SUFFIX=$* -c -o $@ $<
+
+$(BUILD)/tests/%: tests/%.c $(LIBRARY_OBJECTS) Makefile
+	@mkdir -p $(@D)
+	$(CC) $(FLAGS) $(PACKAGE_FLAGS) -o $@ $< $(LIBRARY_OBJECTS) $(call TEST_LIBS,$<) $(LIBS)
+
+# ---- what people call ----
+
+demo:
+	@scripts/install-packages.sh build plot
+	@$(MAKE) --no-print-directory program
+	$(BUILD)/skymend project -o $(BUILD)/baseline.nc --overwrite
+	$(PYTHON) scripts/plot_column.py $(BUILD)/baseline.nc -o $(BUILD)/baseline.png
+	@echo "field: $(BUILD)/baseline.nc"
+	@echo "plot:  $(BUILD)/baseline.png"
+
+test:
+	@scripts/install-packages.sh test
+	@$(MAKE) --no-print-directory check
+
+# everything a test needs is there
+check: program $(TESTS)
+	scripts/run-tests.sh $(BUILD)
+
+install: program
+	install -d $(DESTDIR)$(PREFIX)/bin $(DESTDIR)$(PREFIX)/share/skymend
+	install -m 755 $(BUILD)/skymend $(DESTDIR)$(PREFIX)/bin/skymend
+	install -m 755 scripts/plot_column.py $(DESTDIR)$(PREFIX)/bin/skymend-plot
+	cp -R input/data/. $(DESTDIR)$(PREFIX)/share/skymend/
+
+clean:
+	rm -rf $(BUILD)
+
+%.d: ;
+-include $(OBJECTS:.o=.d) $(TESTS:=.d)

@@ -1,0 +1,94 @@
+/* column: everything a run is made of.
+ *
+ * Model is what does not change: settings, grid, air, mechanism, spectra, schedule, operators. It is built once and
+ * shared. Column is what changes: mole fractions, rates, factors, and the ledger of what crossed the borders. A
+ * Column is a value of its own; many can run side by side on one Model.
+ */
+#ifndef SKYMEND_COLUMN_H
+#define SKYMEND_COLUMN_H
+
+#include <stddef.h>
+
+#include "../chem/kernel.h"
+#include "../chem/mechanism.h"
+#include "../chem/rosenbrock.h"
+#include "../chem/spectra.h"
+#include "../input/fault.h"
+#include "../input/schedule.h"
+#include "../input/settings.h"
+#include "../transport/air.h"
+#include "../transport/diffusion.h"
+#include "../transport/grid.h"
+
+/* The one place that knows the layout of fields over species (or reactions) and layers. */
+#define FIELD(padded, row, layer) ((size_t)(row) * (size_t)(padded) + (size_t)(layer))
+
+enum SurfaceKind { SURFACE_CLOSED, SURFACE_SCHEDULE, SURFACE_FIXED, SURFACE_DEPOSITION };
+
+typedef struct {
+    Settings settings;
+    Grid grid;
+    Air air;
+    double *eddy;            /* [layers + 1] eddy diffusion coefficient at edges, cm2 s-1 */
+    Mechanism *mechanism;
+    Kernel *kernel;
+    Spectra *spectra;
+    Schedule schedule;
+    Diffusion *diffusion;
+    double *aerosol_area;    /* [padded] cm2 cm-3 */
+    double *aerosol_radius;  /* [padded] cm */
+    double *washout_rate;    /* [padded] s-1 of a fully soluble gas */
+
+    /* ground condition by solved species */
+    int *surface_kind;       /* [solved] enum SurfaceKind */
+    int *surface_gas;        /* [solved] index in the schedule or -1 */
+    double *surface_value;   /* [solved] mole fraction or deposition velocity, cm s-1 */
+
+    /* held species: prescribed below the tropopause */
+#define MODEL_HELD_MOST 3 /* H2O, OH, NO */
+    int held;
+    int *held_species;       /* [held] */
+    double *held_free;       /* [held][padded] 1 free, 0 held */
+    double *held_fraction;   /* [held][padded] mole fraction where held, 0 where free */
+
+    char *sources;           /* citations of every table read, one a line */
+} Model;
+
+typedef struct {
+    double *x;               /* [solved][padded] mole fraction, mol mol-1 (daily mean under factors, midnight in explicit days) */
+    double time;             /* decimal years of 365.25 days; 1980.0 = start of 1980 */
+
+    /* ledger per solved species, molecules cm-2 since the start of the run */
+    double *received;        /* through the ground by transport, incl. what keeping the surface value supplied */
+    double *exchanged;       /* given by the reservoirs that hold prescribed species (negative: taken) */
+    double *washed;          /* removed by washout */
+    double *escaped;         /* [counters] atoms cm-2 of kernel->counter_element that left for fixed or inert species */
+    double start_atoms[MECHANISM_ELEMENTS]; /* atoms cm-2 in the solved species when the ledger was opened */
+
+    SolverCounts counts;
+    long photolysis_refreshes, factor_refreshes, outer_steps;
+    long days, unsettled;    /* explicit days carried by packs; packs whose day did not repeat within DAY_MOST */
+} Column;
+
+/* Build the model a case describes: reads every table. Owner: caller. */
+int model_make(Model **made, const Settings *settings, Fault *fault);
+void model_free(Model *model);
+
+/* A column at the initial profiles with the surface values of the run's first year. */
+int column_make(Column **made, const Model *model, Fault *fault);
+void column_free(Column *column);
+
+/* Empty the ledger and the counters: what happens from now on is accounted for. */
+void column_open_ledger(const Model *model, Column *column);
+
+/* Molecules cm-2 of solved species s; DU of ozone (above the ground, the part above the grid's top included for ozone_column). */
+double column_burden(const Model *model, const double *x, int solved);
+double column_ozone_du(const Model *model, const double *x);
+/* Atoms cm-2 of an element in all solved species, and atoms that entered by the ledger (received + exchanged - washed -
+ * escaped). */
+double column_atoms(const Model *model, const double *x, int element);
+double column_ledger_atoms(const Model *model, const Column *column, int element);
+/* (atoms now - atoms when the ledger was opened - ledger) / atoms now: 0 up to round-off. */
+double column_closure(const Model *model, const Column *column, int element);
+
+#endif

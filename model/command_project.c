@@ -1,0 +1,171 @@
+/* skymend project: run a case through its years. */
+#include <getopt.h>
+#include <omp.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "answers.h"
+#include "commands.h"
+#include "progress.h"
+
+static volatile sig_atomic_t stop_asked;
+
+static void ask_stop(int signal_number) {
+    (void)signal_number;
+    stop_asked = 1;
+}
+
+static void catch_signals(void) {
+    struct sigaction action = {.sa_handler = ask_stop};
+    sigemptyset(&action.sa_mask);
+    sigaction(SIGINT, &action, NULL);
+    sigaction(SIGTERM, &action, NULL);
+#ifdef SIGXFSZ
+    struct sigaction ignore = {.sa_handler = SIG_IGN}; /* a file at its size limit is a write error, not a death */
+    sigemptyset(&ignore.sa_mask);
+    sigaction(SIGXFSZ, &ignore, NULL);
+#endif
+}
+
+typedef struct {
+    const char *case_path, *output;
+    int overwrite, quiet, threads, help;
+    char command_line[2000];
+} Request;
+
+static void print_help(void) {
+    printf("usage: skymend project [CASE.cfg] -o FILE.nc [options]\n\n"
+           "Carries the column of a case through its years and writes a CF NetCDF file; then prints the\n"
+           "table of answers. Without a case: the built-in baseline, 1955 to 2100.\n\n"
+           "  -o, --output FILE.nc  where the field goes\n"
+           "      --overwrite       replace FILE.nc if it is there\n"
+           "      --threads N       threads to use (default: OMP_NUM_THREADS or all); results do not depend on it\n"
+           "      --quiet           no progress, no table\n"
+           "  -h, --help            this text\n\n"
+           "An interrupted run (Ctrl-C) leaves FILE.nc with every finished interval in it.\n");
+}
+
+static int read_request(Request *request, int argc, char **argv, Fault *fault) {
+    static const struct option options[] = {{"output", required_argument, NULL, 'o'}, {"overwrite", no_argument, NULL, 'w'},
+                                            {"quiet", no_argument, NULL, 'q'},        {"threads", required_argument, NULL, 't'},
+                                            {"help", no_argument, NULL, 'h'},         {NULL, 0, NULL, 0}};
+    static const char *const names[] = {"--output", "--overwrite", "--quiet", "--threads", "--help", NULL};
+    size_t used = (size_t)snprintf(request->command_line, sizeof request->command_line, "skymend");
+    for (int i = 0; i < argc && used < sizeof request->command_line; i++)
+        used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s", argv[i]);
+    int found, before = 1;
+    opterr = 0;
+    optind = 1;
+    while ((found = getopt_long(argc, argv, ":o:h", options, NULL)) != -1) {
+        double value;
+        switch (found) {
+        case 'o': request->output = optarg; break;
+        case 'w': request->overwrite = 1; break;
+        case 'q': request->quiet = 1; break;
+        case 'h': request->help = 1; break;
+        case 't':
+            if (option_number("--threads", optarg, 1, 1024, &value, fault)) return fault->code;
+            request->threads = (int)value;
+            if (request->threads != value)
+                return fault_set(fault, FAULT_INPUT, "--threads: %s is no whole number; give 1, 2, 3, ...", optarg);
+            break;
+        default: return option_fault("project", argv, optind > before ? optind - 1 : before, found, names, fault);
+        }
+        before = optind;
+    }
+    if (request->help) return 0;
+    int code = one_operand("project", argc, argv, optind, &request->case_path, fault);
+    if (!code && !request->output)
+        code = fault_set(fault, FAULT_INPUT, "project: no output file named; add -o FILE.nc");
+    return code;
+}
+
+typedef struct {
+    Archive *archive;
+    ProgressBar bar;
+} Outlets;
+
+static int write_record(void *context, const Record *record, Fault *fault) {
+    return archive_append(((Outlets *)context)->archive, record, fault);
+}
+
+static void show_progress(void *context, const Progress *progress) { progress_show(&((Outlets *)context)->bar, progress); }
+
+static void print_summary(const Model *model, const Column *column) {
+    const SolverCounts *counts = &column->counts;
+    printf("chemistry: %ld solver steps, %ld rejected; values below zero at step ends: %ld, the lowest %.2g cm-3 "
+           "(absolute tolerance %g)\n",
+           counts->steps, counts->rejections, counts->negatives, counts->most_negative,
+           model->settings.absolute_tolerance_cm3);
+    printf("photolysis rates made %ld times, diurnal factors %ld times (%ld packs of days unsettled)\n",
+           column->photolysis_refreshes, column->factor_refreshes, column->unsettled);
+    static const char *const elements[] = {"Cl", "Br", "N", "H"};
+    printf("atoms unaccounted for, relative:");
+    for (int i = 0; i < 4; i++) {
+        int element = mechanism_element(model->mechanism, elements[i]);
+        if (element >= 0) printf(" %s %.1e", elements[i], column_closure(model, column, element));
+    }
+    printf("\n");
+}
+
+static int print_answers(const char *path, Fault *fault) {
+    ColumnSeries series = {0};
+    Answers answers;
+    int code = series_read(&series, path, fault);
+    if (!code) code = answers_compute(&answers, &series, 1980, fault);
+    if (!code) answers_print(&answers, &series, stdout);
+    series_free(&series);
+    return code;
+}
+
+static int run(const Request *request, Fault *fault) {
+    Settings *settings = malloc(sizeof *settings);
+    Model *model = NULL;
+    Column *column = NULL;
+    Stepper *stepper = NULL;
+    Outlets outlets = {0};
+    if (!settings) return fault_memory(fault, "settings");
+    int code = load_case(settings, request->case_path, fault);
+    if (!code) code = model_make(&model, settings, fault);
+    if (!code) code = column_make(&column, model, fault);
+    if (!code && request->threads) omp_set_num_threads(request->threads);
+    if (!code) code = stepper_make(&stepper, model, request->threads, fault);
+    if (!code)
+        code = archive_create(&outlets.archive, model, request->output, request->overwrite, request->command_line, fault);
+    if (!code) {
+        Watcher watcher = {write_record, show_progress, &outlets, &stop_asked};
+        progress_open(&outlets.bar, request->quiet);
+        code = projection_run(model, stepper, column, &watcher, fault);
+        progress_close(&outlets.bar);
+        if (code)
+            archive_abandon(outlets.archive);
+        else
+            code = archive_close(outlets.archive, column, fault);
+    }
+    if (!code && !request->quiet) {
+        printf("%s\n\n", settings->title);
+        code = print_answers(request->output, fault);
+        printf("\n");
+        print_summary(model, column);
+        printf("written: %s\n", request->output);
+    }
+    stepper_free(stepper);
+    column_free(column);
+    model_free(model);
+    free(settings);
+    return code;
+}
+
+int command_project(int argc, char **argv) {
+    Request request = {0};
+    Fault fault = {0};
+    int code = read_request(&request, argc, argv, &fault);
+    if (!code && request.help) {
+        print_help();
+        return 0;
+    }
+    catch_signals();
+    if (!code) code = run(&request, &fault);
+    return code ? report_fault(&fault) : 0;
+}

@@ -1,0 +1,59 @@
+/* main: the command line. */
+#include <stdio.h>
+#include <string.h>
+
+#include "commands.h"
+
+#ifndef SKYMEND_VERSION
+#define SKYMEND_VERSION "unknown"
+#endif
+
+static const struct {
+    const char *name;
+    int (*run)(int argc, char **argv);
+    const char *help;
+} verbs[] = {
+    {"project", command_project, "run a case through its years; write the field and the answers"},
+    {"check", command_check, "read everything a case names, print the resolved settings, run nothing"},
+    {"sunlight", command_sunlight, "photolysis rates of a column by altitude, as CSV"},
+    {"answers", command_answers, "the table of answers from a finished file"},
+};
+enum { VERBS = sizeof verbs / sizeof verbs[0] };
+
+static void print_help(FILE *out) {
+    fprintf(out, "Skymend projects the recovery of the ozone layer from a schedule of ozone-depleting gases.\n\n"
+                 "usage: skymend VERB [FILE] [options]\n\n");
+    for (int v = 0; v < VERBS; v++) fprintf(out, "  %-10s %s\n", verbs[v].name, verbs[v].help);
+    fprintf(out, "\n  skymend VERB --help   options of a verb\n"
+                 "  skymend --version\n\n"
+                 "Exit codes: 0 done, 2 the request or an input is wrong, 3 the numerics failed,\n"
+                 "4 the output could not be written, 130 interrupted (what is finished is kept).\n\n"
+                 "A single near-global column has no polar winter, no ozone hole and no change of circulation.\n"
+                 "For decisions on health or regulation defer to the competent authority.\n");
+}
+
+int main(int argc, char **argv) {
+    if (argc < 2) {
+        fprintf(stderr, "skymend: no verb given; see skymend --help\n");
+        return FAULT_INPUT;
+    }
+    if (!strcmp(argv[1], "--help") || !strcmp(argv[1], "-h")) {
+        print_help(stdout);
+        return 0;
+    }
+    if (!strcmp(argv[1], "--version")) {
+        printf("skymend %s\n", SKYMEND_VERSION);
+        return 0;
+    }
+    const char *names[VERBS];
+    for (int v = 0; v < VERBS; v++) {
+        if (!strcmp(argv[1], verbs[v].name)) return verbs[v].run(argc - 1, argv + 1);
+        names[v] = verbs[v].name;
+    }
+    const char *near = fault_nearest(argv[1], names, VERBS);
+    if (near)
+        fprintf(stderr, "skymend: unknown verb %s; did you mean %s?\n", argv[1], near);
+    else
+        fprintf(stderr, "skymend: unknown verb %s; see skymend --help\n", argv[1]);
+    return FAULT_INPUT;
+}

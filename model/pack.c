@@ -1,0 +1,223 @@
+/* pack: loading, storing and the explicit day of one pack of layers. */
+#include "pack.h"
+
+#include <stdlib.h>
+#include <string.h>
+
+#include "../input/constants.h"
+
+int pack_make(PackWork **made, const Model *model, Fault *fault) {
+    *made = NULL;
+    PackWork *work = calloc(1, sizeof *work);
+    if (!work) return fault_memory(fault, "chemistry of a pack");
+    size_t species = (size_t)model->kernel->species, reactions = (size_t)model->kernel->reactions;
+    size_t tallies = (size_t)model->kernel->tallies;
+    struct {
+        double **array;
+        size_t rows;
+    } part[] = {{&work->y, species},         {&work->k, reactions},     {&work->slope, reactions},
+                {&work->sum_y, species},     {&work->sum_w, reactions}, {&work->tally, tallies},
+                {&work->held_free, species}, {&work->held_value, species},
+                {&work->loss, species}};
+    size_t rows = 0, parts = sizeof part / sizeof part[0];
+    for (size_t i = 0; i < parts; i++) rows += part[i].rows;
+    work->block = aligned_alloc(PACK * sizeof(double), rows * PACK * sizeof(double));
+    work->held_species = calloc(species, sizeof(int));
+    int code = work->block && work->held_species ? solver_work_make(&work->solver, model->kernel, fault)
+                                                 : fault_memory(fault, "chemistry of a pack");
+    if (code) {
+        pack_free(work);
+        return code;
+    }
+    memset(work->block, 0, rows * PACK * sizeof(double));
+    double *at = work->block;
+    for (size_t i = 0; i < parts; i++) {
+        *part[i].array = at;
+        at += part[i].rows * PACK;
+    }
+    *made = work;
+    return 0;
+}
+
+void pack_free(PackWork *work) {
+    if (!work) return;
+    solver_work_free(work->solver);
+    free(work->held_species);
+    free(work->block);
+    free(work);
+}
+
+static int kept_by_ground(const Model *model, int s) {
+    if (model->surface_kind[s] != SURFACE_SCHEDULE && model->surface_kind[s] != SURFACE_FIXED) return 0;
+    for (int h = 0; h < model->held; h++)
+        if (model->held_species[h] == s) return 0; /* already prescribed up to the tropopause */
+    return 1;
+}
+
+void pack_load(PackWork *work, const Model *model, int first, const double *x) {
+    int padded = model->grid.padded, solved = model->mechanism->solved;
+    const double *air = model->air.number_density + first;
+    for (int s = 0; s < solved; s++) {
+        const double *row = x + FIELD(padded, s, first);
+        for (int l = 0; l < PACK; l++) work->y[s * PACK + l] = row[l] * air[l];
+    }
+    memset(work->y + solved * PACK, 0, (size_t)(model->kernel->species - solved) * PACK * sizeof(double));
+    memset(work->tally, 0, (size_t)model->kernel->tallies * PACK * sizeof(double));
+    work->held = 0;
+    for (int h = 0; h < model->held; h++) {
+        const double *free_here = model->held_free + FIELD(padded, h, first);
+        const double *fraction = model->held_fraction + FIELD(padded, h, first);
+        int any = 0, row = work->held * PACK;
+        for (int l = 0; l < PACK; l++) {
+            any |= free_here[l] == 0.0;
+            work->held_free[row + l] = free_here[l];
+            work->held_value[row + l] = fraction[l] * air[l];
+        }
+        if (any) work->held_species[work->held++] = model->held_species[h];
+    }
+    for (int s = 0; first == 0 && s < solved; s++) {
+        if (!kept_by_ground(model, s)) continue;
+        double *free_here = work->held_free + work->held * PACK, *value = work->held_value + work->held * PACK;
+        for (int l = 0; l < PACK; l++) {
+            free_here[l] = l > 0;
+            value[l] = l > 0 ? 0.0 : work->y[s * PACK];
+        }
+        work->held_species[work->held++] = s;
+    }
+}
+
+void pack_rates(PackWork *work, const Model *model, int first, const double *coefficient, const double *mean_light,
+                const double *factor) {
+    const Mechanism *mechanism = model->mechanism;
+    int padded = model->grid.padded;
+    for (int r = 0; r < mechanism->reactions; r++) {
+        int lit = r >= mechanism->photolysis_first && r < mechanism->surface_first;
+        const double *row = lit ? mean_light + FIELD(padded, r - mechanism->photolysis_first, first)
+                                : coefficient + FIELD(padded, r, first);
+        double *k = work->k + r * PACK;
+        if (factor) {
+            const double *f = factor + FIELD(padded, r, first);
+            for (int l = 0; l < PACK; l++) k[l] = row[l] * f[l];
+        } else {
+            for (int l = 0; l < PACK; l++) k[l] = row[l];
+        }
+    }
+}
+
+void pack_store(const PackWork *work, const Model *model, int first, double *x, PackLedger *ledger) {
+    int padded = model->grid.padded, solved = model->mechanism->solved;
+    int lanes = model->grid.layers - first < PACK ? model->grid.layers - first : PACK;
+    const double *air = model->air.number_density + first, *depth = model->grid.depth + first;
+    for (int s = 0; s < solved; s++) {
+        double *row = x + FIELD(padded, s, first), kept = row[0];
+        for (int l = 0; l < PACK; l++) row[l] = work->y[s * PACK + l] / air[l];
+        if (first) continue;
+        ledger->received[s] = 0.0;
+        if (!kept_by_ground(model, s)) continue;
+        ledger->received[s] = (kept * air[0] - work->y[s * PACK]) * depth[0];
+        row[0] = kept;
+    }
+    for (int h = 0; h < model->held; h++) {
+        ledger->exchanged[h] = 0.0;
+        for (int l = 0; l < PACK; l++) {
+            size_t at = FIELD(padded, h, first + l);
+            if (model->held_free[at] != 0.0) continue;
+            int s = model->held_species[h];
+            if (l < lanes) {
+                double held = model->held_fraction[at] * air[l];
+                ledger->exchanged[h] += (held - work->y[s * PACK + l]) * depth[l];
+            }
+            x[FIELD(padded, s, first + l)] = model->held_fraction[at];
+        }
+    }
+    for (int t = 0; t < model->kernel->tallies; t++) {
+        ledger->washed[t] = 0.0;
+        for (int l = 0; l < lanes; l++) ledger->washed[t] += work->tally[t * PACK + l] * depth[l];
+    }
+    for (int c = 0; c < model->kernel->counters; c++) {
+        ledger->escaped[c] = 0.0;
+        for (int l = 0; l < lanes; l++) ledger->escaped[c] += work->y[(solved + c) * PACK + l] * depth[l];
+    }
+}
+
+PackProblem pack_problem(const PackWork *work, int sums, double step) {
+    return (PackProblem){
+        .y = work->y,
+        .k = work->k,
+        .held = work->held,
+        .held_species = work->held_species,
+        .held_free = work->held_free,
+        .held_value = work->held_value,
+        .tally = work->tally,
+        .sum_y = sums ? work->sum_y : NULL,
+        .sum_w = sums ? work->sum_w : NULL,
+        .step = step,
+    };
+}
+
+/* Photolysis rows of k at one knot. */
+static void lit_rates(PackWork *work, const Light *light, int first, int knot) {
+    int padded = light->model->grid.padded, start = light->model->mechanism->photolysis_first;
+    for (int j = 0; j < light->reactions; j++) {
+        const double *row = light->knot + FIELD(padded, knot * light->reactions + j, first);
+        memcpy(work->k + (start + j) * PACK, row, PACK * sizeof(double));
+    }
+}
+
+/* Slopes from k at this knot to the next knot. */
+static void lit_slopes(PackWork *work, const Light *light, int first, int next_knot, double length) {
+    int padded = light->model->grid.padded, start = light->model->mechanism->photolysis_first;
+    for (int j = 0; j < light->reactions; j++) {
+        const double *row = light->knot + FIELD(padded, next_knot * light->reactions + j, first);
+        double *slope = work->slope + (start + j) * PACK;
+        const double *k = work->k + (start + j) * PACK;
+        for (int l = 0; l < PACK; l++) slope[l] = (row[l] - k[l]) / length;
+    }
+}
+
+static void dark_rates(PackWork *work, const Light *light) {
+    memset(work->k + light->model->mechanism->photolysis_first * PACK, 0,
+           (size_t)light->reactions * PACK * sizeof(double));
+}
+
+/* One night half of a length in parts: radicals die within minutes of dusk, N2O5 forms over hours, and the time integrals
+ * want points where the state bends. */
+static int carry_night(PackWork *work, const Kernel *kernel, PackProblem *problem, double length, int from_dusk,
+                       const Tolerance *tolerance, SolverCounts *counts, int *where) {
+    enum { PARTS = 8 };
+    double done = 0.0;
+    problem->k_slope = NULL;
+    for (int i = 1; i <= PARTS && length > 0.0; i++) {
+        double share = (double)i / PARTS, end = length * (from_dusk ? share * share * share : share);
+        int code = solver_advance(kernel, work->solver, problem, end - done, tolerance, counts, where);
+        if (code) return code;
+        done = end;
+    }
+    return 0;
+}
+
+int pack_day(PackWork *work, const Light *light, int first, int sums, const Tolerance *tolerance, double *step,
+             SolverCounts *counts, int *where) {
+    const Kernel *kernel = light->model->kernel;
+    const Sun *sun = &light->sun;
+    PackProblem problem = pack_problem(work, sums, *step);
+    problem.slope_first = light->model->mechanism->photolysis_first;
+    problem.slope_last = light->model->mechanism->surface_first;
+    double rise = sun->nodes ? sun->time[0] : 0.5 * DAY_SECONDS;
+
+    dark_rates(work, light);
+    int code = carry_night(work, kernel, &problem, rise, 0, tolerance, counts, where);
+    problem.k_slope = work->slope;
+    for (int i = 0; !code && sun->nodes && i < 2 * (SUN_KNOTS - 1); i++) {
+        int morning = i < SUN_KNOTS - 1;
+        int here = morning ? i : 2 * (SUN_KNOTS - 1) - i, next = morning ? here + 1 : here - 1;
+        double length = morning ? sun->time[next] - sun->time[here] : sun->time[here] - sun->time[next];
+        lit_rates(work, light, first, here);
+        lit_slopes(work, light, first, next, length);
+        code = solver_advance(kernel, work->solver, &problem, length, tolerance, counts, where);
+    }
+    dark_rates(work, light);
+    if (!code) code = carry_night(work, kernel, &problem, rise, 1, tolerance, counts, where);
+    *step = problem.step;
+    return code;
+}

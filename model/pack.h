@@ -1,0 +1,53 @@
+/* pack: one pack of layers on its way through the chemistry: the bridge between fields and the solver.
+ *
+ * A PackWork belongs to one thread. Loading gathers PACK layers of every field into [row][PACK] blocks; storing puts
+ * them back and says what crossed the column's borders on the way.
+ */
+#ifndef SKYMEND_PACK_H
+#define SKYMEND_PACK_H
+
+#include "column.h"
+#include "light.h"
+
+typedef struct {
+    SolverWork *solver;
+    double *y;         /* [kernel species][PACK] cm-3 */
+    double *k;         /* [reactions][PACK] */
+    double *slope;     /* [reactions][PACK] per s; rows of photolysis only */
+    double *sum_y;     /* [kernel species][PACK] cm-3 s */
+    double *sum_w;     /* [reactions][PACK] cm-3 */
+    double *tally;     /* [tallies][PACK] cm-3 */
+    double *held_free, *held_value; /* [held][PACK] */
+    double *loss;      /* [kernel species][PACK] for day.c: mean loss rates */
+    int held, *held_species; /* prescribed somewhere in this pack: below the tropopause, or in the lowest layer by the ground */
+    void *block;
+} PackWork;
+
+/* What crossed the borders in one pack, per cm2 of ground. */
+typedef struct {
+    double *exchanged; /* [held species of the model] given by the reservoir that holds it */
+    double *received;  /* [solved] given by the ground to gases it keeps at a value; only the lowest pack has any */
+    double *washed;    /* [tallies] */
+    double escaped[MECHANISM_ELEMENTS]; /* [counters] atoms */
+} PackLedger;
+
+int pack_make(PackWork **made, const Model *model, Fault *fault);
+void pack_free(PackWork *work);
+
+/* y = x N, held lanes (for gases kept by the ground: at their x of the lowest layer) and empty counters and tallies of the pack that starts at layer first. */
+void pack_load(PackWork *work, const Model *model, int first, const double *x);
+/* k = coefficient, photolysis rows from mean light [photolysis][padded], times factor [reactions][padded] (NULL: 1). */
+void pack_rates(PackWork *work, const Model *model, int first, const double *coefficient, const double *mean_light,
+                const double *factor);
+/* x = y / N and the ledger of this pack; held lanes go back to their values, the difference counted. Values below zero are
+ * left as they are. */
+void pack_store(const PackWork *work, const Model *model, int first, double *x, PackLedger *ledger);
+/* The solver's problem over this pack; sums = 1 asks for time integrals. slope is not set. */
+PackProblem pack_problem(const PackWork *work, int sums, double step);
+
+/* Carry y from one midnight to the next under the light of the pack: k must hold everything but photolysis. Sums are added
+ * to when sums = 1. step in/out: the solver's step size. Returns enum SolverResult; *where as solver_advance. */
+int pack_day(PackWork *work, const Light *light, int first, int sums, const Tolerance *tolerance, double *step,
+             SolverCounts *counts, int *where);
+
+#endif

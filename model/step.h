@@ -1,0 +1,42 @@
+/* step: one outer step of the column: half the chemistry, the transport, half the chemistry (Strang 1968).
+ *
+ * The stiff part comes last (Sportisse 2000): a step leaves radicals in balance with each other instead of smeared by
+ * diffusion. With explicit days the chemistry is one whole day between two halves of the transport, whose smearing of a
+ * few hundred metres does not matter.
+ *
+ * Before the step, photolysis rates, uptake on aerosol and diurnal factors are made afresh where the state has
+ * moved enough. Packs of layers are independent within the chemistry and go through it in parallel; everything that is summed
+ * over them is summed in order afterwards, so that results do not depend on the number of threads.
+ */
+#ifndef SKYMEND_STEP_H
+#define SKYMEND_STEP_H
+
+#include "day.h"
+
+/* Time spent by part, s, for the bench. */
+typedef struct {
+    double transport, chemistry, light, factors;
+} StepClock;
+
+typedef struct Stepper Stepper;
+
+/* threads < 1: as many as OpenMP gives. The model must outlive the stepper. Owner: caller. */
+int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault);
+void stepper_free(Stepper *stepper);
+
+/* Advance column by step s (DAY_EXPLICIT: step must be one day). frozen = 1 keeps the schedule at column->time and the
+ * clock where it is (spin-up). On a fault the column holds a partly advanced state. */
+int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, Fault *fault);
+
+/* Mean mole fractions over the last step [solved][padded]: of its two ends, or of the explicit day. */
+const double *stepper_mean(const Stepper *stepper);
+const Light *stepper_light(const Stepper *stepper);
+const Day *stepper_day(const Stepper *stepper);
+StepClock stepper_clock(const Stepper *stepper);
+/* Rate coefficients of the last step without factors, [reactions][padded]; photolysis rows hold day means (Light.mean). */
+const double *stepper_coefficients(const Stepper *stepper);
+/* Carry one explicit day from midnight for every pack, leaving daily means in mean [solved][padded] and midnight values in x.
+ * No transport. */
+int stepper_explicit_day(Stepper *stepper, Column *column, double *mean, Fault *fault);
+
+#endif

@@ -1,0 +1,137 @@
+#!/bin/sh
+# Reads a Skymend file with the programs its users have: ncdump, cdo, nco (ncks) and xarray.
+# usage: tests/check_readback.sh FILE.nc      exit code 0: all agree; 1: one does not; 2: wrong use or a tool is missing
+# What one tool reads is compared with what another reads, not only looked for. PYTHON names the interpreter.
+set -u
+
+if [ $# -ne 1 ] || [ ! -r "$1" ]; then
+    echo "usage: $0 FILE.nc (a readable file)" >&2
+    exit 2
+fi
+file=$1
+python=${PYTHON:-/usr/bin/python3}
+for tool in ncdump cdo ncks "$python"; do
+    if ! command -v "$tool" >/dev/null 2>&1; then
+        echo "$0: $tool is not installed" >&2
+        exit 2
+    fi
+done
+work=$(mktemp -d) || exit 2
+trap 'rm -rf "$work"' EXIT
+failures=0
+
+ok() { echo "ok      $1"; }
+bad() {
+    failures=$((failures + 1))
+    echo "FAILED  $1"
+}
+
+# check NAME COMMAND...: the command succeeds and says nothing that sounds like trouble
+check() {
+    name=$1
+    shift
+    if ! "$@" >"$work/out" 2>"$work/err"; then
+        bad "$name"
+        sed 's/^/        /' "$work/err"
+    elif grep -qiE 'warning|error|unsupported|inconsistent' "$work/err"; then
+        bad "$name (complains)"
+        sed 's/^/        /' "$work/err"
+    else
+        ok "$name"
+    fi
+}
+
+# same NAME GOT WANT
+same() {
+    if [ -n "$2" ] && [ "$2" = "$3" ]; then
+        ok "$1: $2"
+    else
+        bad "$1: got '$2', wanted '$3'"
+    fi
+}
+
+# ---- ncdump: the shape of the file ----
+check "ncdump -h" ncdump -h "$file"
+cp "$work/out" "$work/header"
+for line in 'time = UNLIMITED' ':Conventions = "CF-1.10"' 'time:units = "days since 1950-01-01 00:00:00"' \
+    'time:calendar = "standard"' 'time:bounds = "time_bnds"' 'altitude:bounds = "altitude_bnds"' \
+    'altitude:positive = "up"' 'double O3(time, altitude)' 'O3:standard_name = "mole_fraction_of_ozone_in_air"' \
+    'ozone_column:units = "DU"' ':history = ' ':source = "Skymend' ':resolved_case = ' ':caution = '; do
+    if grep -qF "$line" "$work/header"; then ok "header has $line"; else bad "header has $line"; fi
+done
+records=$(sed -n 's/.*time = UNLIMITED ; \/\/ (\([0-9]*\) currently).*/\1/p' "$work/header")
+layers=$(sed -n 's/^[[:space:]]*altitude = \([0-9]*\) ;.*/\1/p' "$work/header")
+check "ncdump -t (dates)" ncdump -t -v time_bnds "$file"
+
+# ---- xarray: decodes it, and what CF asks of the values holds; writes the figures to compare ----
+cat >"$work/read.py" <<'PY'
+import sys
+import warnings
+
+import netCDF4  # first: what it warns of on being loaded is no fault of the file
+import numpy as np
+import xarray as xr
+
+assert netCDF4.__version__
+warnings.simplefilter("error")
+with xr.open_dataset(sys.argv[1]) as data:
+    time, bounds = data["time"], data["time_bnds"].values
+    assert time.dtype.kind == "M", f"time is not decoded: {time.dtype}"
+    assert (np.diff(time.values) > np.timedelta64(0)).all(), "time does not increase"
+    assert (bounds[:, 0] < time.values).all() and (time.values < bounds[:, 1]).all(), "time outside its bounds"
+    assert (bounds[1:, 0] == bounds[:-1, 1]).all(), "intervals do not follow each other"
+    altitude, layer = data["altitude"].values, data["altitude_bnds"].values
+    assert (np.diff(altitude) > 0).all() and altitude[-1] < 200.0, "altitude in km does not ascend"
+    assert (layer[:, 0] < altitude).all() and (altitude < layer[:, 1]).all(), "altitude outside its bounds"
+    assert (layer[1:, 0] == layer[:-1, 1]).all(), "layers do not follow each other"
+    fields = [v for v in data.data_vars.values() if v.dims == ("time", "altitude")]
+    assert fields, "no mole fractions"
+    for field in fields:
+        assert np.isfinite(field.values).all(), f"{field.name} has missing or non-finite values"
+        assert field.attrs["units"] == "mol mol-1" and field.attrs["long_name"], field.name
+    column = data["ozone_column"]
+    assert column.dims == ("time",) and np.isfinite(column.values).all(), "ozone_column"
+    assert ((column > 1.0) & (column < 2000.0)).all(), "ozone_column is not in DU"
+    print("records", time.size)
+    print("layers", altitude.size)
+    print("fields", len(fields))
+    print("first", time.dt.strftime("%Y-%m-%d").values[0])
+    print("last", time.dt.strftime("%Y-%m-%d").values[-1])
+    print("column", f"{float(column[-1]):.6f}")
+    print("mean", f"{float(column.mean()):.4f}")
+    print("ozone", f"{float(data['O3'][-1].max()):.6e}")
+PY
+check "xarray" "$python" "$work/read.py" "$file"
+cp "$work/out" "$work/figures"
+figure() { sed -n "s/^$1 //p" "$work/figures"; }
+same "records, ncdump and xarray" "$records" "$(figure records)"
+same "layers, ncdump and xarray" "$layers" "$(figure layers)"
+
+# ---- cdo: reads time, altitude and every field; computes with them ----
+check "cdo sinfon" cdo -s sinfon "$file"
+check "cdo ntime" cdo -s ntime "$file"
+same "records, cdo and xarray" "$(tr -d ' \n' <"$work/out")" "$(figure records)"
+check "cdo showdate" cdo -s showdate "$file"
+same "first date, cdo and xarray" "$(tr -s ' ' '\n' <"$work/out" | sed -n '/./{p;q;}')" "$(figure first)"
+same "last date, cdo and xarray" "$(tr -s ' ' '\n' <"$work/out" | sed -n '/./h;${x;p;}')" "$(figure last)"
+check "cdo selname" cdo -s -selname,O3 "$file" "$work/o3.nc"
+check "cdo showlevel" cdo -s showlevel "$work/o3.nc"
+same "levels, cdo and xarray" "$(wc -w <"$work/out" | tr -d ' ')" "$(figure layers)"
+check "cdo timmean" cdo -s timmean -selname,ozone_column "$file" "$work/mean.nc"
+check "cdo outputf" cdo -s outputf,%.4f "$work/mean.nc"
+same "mean column, cdo and xarray" "$(tr -d ' \n' <"$work/out")" "$(figure mean)"
+check "cdo vertmax" cdo -s outputf,%.6e -vertmax -seltimestep,-1 "$work/o3.nc"
+same "highest ozone, cdo and xarray" "$(tr -d ' \n' <"$work/out")" "$(figure ozone)"
+
+# ---- nco: cuts a record out, and the cut is still the same file ----
+check "ncks last record" ncks -O -d time,-1 "$file" "$work/last.nc"
+check "ncks values" ncks -H -C -s '%.6f\n' -v ozone_column "$work/last.nc"
+same "last column, nco and xarray" "$(sed -n '/[0-9]/{p;q;}' "$work/out" | tr -d ' ')" "$(figure column)"
+check "ncks metadata" ncks -m -v O3 "$file"
+check "xarray reads what ncks cut" "$python" "$work/read.py" "$work/last.nc"
+
+if [ "$failures" -ne 0 ]; then
+    echo "$failures checks failed on $file"
+    exit 1
+fi
+echo "all checks passed on $file"
