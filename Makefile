@@ -44,7 +44,7 @@ TEST_LIBS = -lcmocka $(if $(shell grep -l 'libs: sundials' $(1)),-lsundials_cvod
 
 MAKEFLAGS += --no-builtin-rules
 .SUFFIXES:
-.PHONY: all program demo test check quick-test install clean bench validate format
+.PHONY: all program demo test check install clean bench validate
 all: program
 program: $(BUILD)/skymend
 
@@ -67,6 +67,10 @@ $(BUILD)/tests/%: tests/%.c $(LIBRARY_OBJECTS) Makefile
 	@mkdir -p $(@D)
 	$(CC) $(FLAGS) $(PACKAGE_FLAGS) -o $@ $< $(LIBRARY_OBJECTS) $(call TEST_LIBS,$<) $(LIBS)
 
+$(BUILD)/tests/validate: $(wildcard tests/validate*.c) $(wildcard tests/validate*.h) $(LIBRARY_OBJECTS) Makefile
+	@mkdir -p $(@D)
+	$(CC) $(FLAGS) $(PACKAGE_FLAGS) -o $@ $(wildcard tests/validate*.c) $(LIBRARY_OBJECTS) $(LIBS)
+
 # ---- what people call ----
 
 demo:
@@ -84,6 +88,19 @@ test:
 # everything a test needs is there
 check: program $(TESTS)
 	scripts/run-tests.sh $(BUILD)
+
+# long studies: the whole column against published values, the numerics against tighter numerics
+validate:
+	@scripts/install-packages.sh test
+	@$(MAKE) --no-print-directory program $(BUILD)/tests/validate
+	$(BUILD)/tests/validate --csv $(BUILD)/validation.csv
+
+# speed, side by side with CVODE on the same layers at equal accuracy
+bench:
+	@scripts/install-packages.sh test
+	@$(MAKE) --no-print-directory program $(BUILD)/tests/bench $(BUILD)/tests/bench_chemistry
+	$(BUILD)/tests/bench --csv $(BUILD)/bench.csv
+	$(BUILD)/tests/bench_chemistry
 
 install: program
 	install -d $(DESTDIR)$(PREFIX)/bin $(DESTDIR)$(PREFIX)/share/skymend

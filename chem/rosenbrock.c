@@ -7,25 +7,28 @@
 
 #include "rosenbrock_kernel.h"
 
-int solver_work_make(SolverWork **made, const Kernel *kernel, Fault *fault) {
+int solver_work_make(SolverWork **made, const Kernel *kernel, Fault *fault)
+{
     *made = NULL;
     SolverWork *work = calloc(1, sizeof *work);
-    if (!work) return fault_memory(fault, "solver workspace");
+    if (!work)
+        return fault_memory(fault, "solver workspace");
     size_t species = (size_t)kernel->species, reactions = (size_t)kernel->reactions;
     size_t entries = (size_t)kernel->entries, derivatives = (size_t)kernel->derivatives;
     struct {
         double **array;
         size_t rows;
     } part[] = {
-        {&work->u, species + 1},   {&work->stage_u, species + 1}, {&work->w, reactions},
-        {&work->stage_w, reactions}, {&work->d, derivatives},     {&work->jacobian, entries},
-        {&work->lu, entries},      {&work->pivot, species},       {&work->f, species},
-        {&work->slope, species},   {&work->stage, 4 * species},   {&work->next, species},
-        {&work->k, reactions},     {&work->k_end, reactions},     {&work->free, species},
-        {&work->held, species},    {&work->rhs, species},
+        {&work->u, species + 1},    {&work->stage_u, species + 1}, {&work->w, reactions},
+        {&work->w3, reactions},     {&work->w4, reactions},        {&work->d, derivatives},
+        {&work->jacobian, entries}, {&work->lu, entries},          {&work->pivot, species},
+        {&work->f, species},        {&work->slope, species},       {&work->stage, 4 * species},
+        {&work->next, species},     {&work->k, reactions},         {&work->k_end, reactions},
+        {&work->free, species},     {&work->held, species},        {&work->rhs, species},
     };
     size_t total = 0, parts = sizeof part / sizeof part[0];
-    for (size_t i = 0; i < parts; i++) total += part[i].rows * PACK;
+    for (size_t i = 0; i < parts; i++)
+        total += part[i].rows * PACK;
     work->block = aligned_alloc(PACK * sizeof(double), total * sizeof(double));
     work->slope_from = malloc(species * sizeof *work->slope_from);
     work->slope_to = malloc(species * sizeof *work->slope_to);
@@ -41,12 +44,15 @@ int solver_work_make(SolverWork **made, const Kernel *kernel, Fault *fault) {
     }
     for (size_t lane = 0; lane < PACK; lane++)
         work->u[species * PACK + lane] = work->stage_u[species * PACK + lane] = 1.0;
+    work->slope_first = work->slope_last = -1; /* no range yet */
     *made = work;
     return 0;
 }
 
-void solver_work_free(SolverWork *work) {
-    if (!work) return;
+void solver_work_free(SolverWork *work)
+{
+    if (!work)
+        return;
     free(work->block);
     free(work->slope_from);
     free(work->slope_to);
@@ -62,31 +68,41 @@ static const SolverVariant every_variant[] = {
 #endif
 };
 
-static const SolverVariant *widest(void) {
+static const SolverVariant *widest(void)
+{
     int use = 0;
 #ifdef SKYMEND_X86
-    if (__builtin_cpu_supports("avx2") && __builtin_cpu_supports("fma") && __builtin_cpu_supports("bmi2")) use = 1;
+    if (__builtin_cpu_supports("avx2") && __builtin_cpu_supports("fma") && __builtin_cpu_supports("bmi2"))
+        use = 1;
     if (use && __builtin_cpu_supports("avx512f") && __builtin_cpu_supports("avx512dq") &&
-        __builtin_cpu_supports("avx512vl") && __builtin_cpu_supports("avx512bw") && __builtin_cpu_supports("avx512cd"))
+        __builtin_cpu_supports("avx512vl") && __builtin_cpu_supports("avx512bw") &&
+        __builtin_cpu_supports("avx512cd"))
         use = 2;
 #endif
     return &every_variant[use];
 }
 
-int solver_variants(SolverVariant variant[SOLVER_VARIANTS]) {
+int solver_variants(SolverVariant variant[SOLVER_VARIANTS])
+{
     int count = (int)(widest() - every_variant) + 1;
-    for (int i = 0; i < count; i++) variant[i] = every_variant[i];
+    for (int i = 0; i < count; i++)
+        variant[i] = every_variant[i];
     return count;
 }
 
-const char *solver_variant(void) { return widest()->name; }
+const char *solver_variant(void)
+{
+    return widest()->name;
+}
 
 int solver_advance(const Kernel *kernel, SolverWork *work, PackProblem *problem, double duration,
-                   const Tolerance *tolerance, SolverCounts *counts, int *where) {
+                   const Tolerance *tolerance, SolverCounts *counts, int *where)
+{
     return widest()->advance(kernel, work, problem, duration, tolerance, counts, where);
 }
 
 void solver_evaluate(const Kernel *kernel, SolverWork *work, const PackProblem *problem, double *f,
-                     double *jacobian) {
+                     double *jacobian)
+{
     widest()->evaluate(kernel, work, problem, f, jacobian);
 }

@@ -27,29 +27,35 @@
 #endif
 typedef double Native __attribute__((vector_size(WIDTH * sizeof(double))));
 typedef int64_t NativeMask __attribute__((vector_size(WIDTH * sizeof(int64_t))));
+enum { PARTS = PACK / WIDTH };
 typedef struct {
-    Native at[PACK / WIDTH];
+    Native at[PARTS];
 } Vec;
-#define EACH(p) for (int p = 0; p < PACK / WIDTH; p++)
+#define EACH(p) for (int p = 0; p < PARTS; p++) /* for one short statement */
 
 static const double GAMMA = 0.5;
 static const double SAFETY = 0.9, SHRINK = 0.2, GROW = 6.0;
 
-/* Sum of weight[e] * x[index[e]] for e in [first, last). Two running sums halve the wait of an addition for the one before. */
-static inline Vec weighted_sum(const double *weight, const int32_t *index, int first, int last, const Vec *x) {
+/* Sum of weight[e] * x[index[e]] for e in [first, last). Two running sums halve the wait of an addition for
+ * the one before. */
+static inline Vec weighted_sum(const double *weight, const int32_t *index, int first, int last, const Vec *x)
+{
     Vec even = {0}, odd = {0};
     int e = first;
     for (; e + 1 < last; e += 2) {
         EACH(p) even.at[p] += weight[e] * x[index[e]].at[p];
         EACH(p) odd.at[p] += weight[e + 1] * x[index[e + 1]].at[p];
     }
-    if (e < last) EACH(p) even.at[p] += weight[e] * x[index[e]].at[p];
+    if (e < last)
+        EACH(p) even.at[p] += weight[e] * x[index[e]].at[p];
     EACH(p) even.at[p] += odd.at[p];
     return even;
 }
 
 /* w[r] = k[r] * product of reactants; u is seen. */
-static void evaluate_rates(const Kernel *kernel, const Vec *restrict k, const Vec *restrict u, Vec *restrict w) {
+static void evaluate_rates(const Kernel *kernel, const Vec *restrict k, const Vec *restrict u,
+                           Vec *restrict w)
+{
     const int32_t *reactant = kernel->reactant;
     for (int r = 0; r < kernel->reactions; r++, reactant += 3)
         EACH(p) w[r].at[p] = k[r].at[p] * u[reactant[0]].at[p] * u[reactant[1]].at[p];
@@ -60,20 +66,25 @@ static void evaluate_rates(const Kernel *kernel, const Vec *restrict k, const Ve
 }
 
 /* f[s] = sum of weight * w. */
-static void gather_sources(const Kernel *kernel, const Vec *restrict w, Vec *restrict f) {
+static void gather_sources(const Kernel *kernel, const Vec *restrict w, Vec *restrict f)
+{
     const int32_t *first = kernel->source_first;
     for (int s = 0; s < kernel->species; s++)
         f[s] = weighted_sum(kernel->source_weight, kernel->source_reaction, first[s], first[s + 1], w);
 }
 
 /* Find the sources among the reactions of the problem's slope range; they stand in reaction order. */
-static void load_slope_range(const Kernel *kernel, SolverWork *work, int first_reaction, int last_reaction) {
-    if (work->slope_first == first_reaction && work->slope_last == last_reaction) return;
+static void load_slope_range(const Kernel *kernel, SolverWork *work, int first_reaction, int last_reaction)
+{
+    if (work->slope_first == first_reaction && work->slope_last == last_reaction)
+        return;
     for (int s = 0; s < kernel->species; s++) {
         int e = kernel->source_first[s], end = kernel->source_first[s + 1];
-        while (e < end && kernel->source_reaction[e] < first_reaction) e++;
+        while (e < end && kernel->source_reaction[e] < first_reaction)
+            e++;
         work->slope_from[s] = e;
-        while (e < end && kernel->source_reaction[e] < last_reaction) e++;
+        while (e < end && kernel->source_reaction[e] < last_reaction)
+            e++;
         work->slope_to[s] = e;
     }
     work->slope_first = first_reaction;
@@ -82,21 +93,25 @@ static void load_slope_range(const Kernel *kernel, SolverWork *work, int first_r
 
 /* slope = df/dt at fixed y. w is scratch. */
 static void gather_slope(const Kernel *kernel, const SolverWork *work, const Vec *restrict k_slope,
-                         const Vec *restrict u, Vec *restrict w, Vec *restrict slope) {
+                         const Vec *restrict u, Vec *restrict w, Vec *restrict slope)
+{
     for (int r = work->slope_first; r < work->slope_last; r++) {
         const int32_t *reactant = &kernel->reactant[3 * r];
-        EACH(p) w[r].at[p] =
-            k_slope[r].at[p] * u[reactant[0]].at[p] * u[reactant[1]].at[p] * u[reactant[2]].at[p];
+        for (int p = 0; p < PARTS; p++) {
+            w[r].at[p] =
+                k_slope[r].at[p] * u[reactant[0]].at[p] * u[reactant[1]].at[p] * u[reactant[2]].at[p];
+        }
     }
     for (int s = 0; s < kernel->species; s++)
         slope[s] = weighted_sum(kernel->source_weight, kernel->source_reaction, work->slope_from[s],
                                 work->slope_to[s], w);
 }
 
-/* Jacobian entries from u; columns of held lanes are zero because rates there see the held value. is_free may be
- * NULL: nothing held. */
+/* Jacobian entries from u; columns of held lanes are zero because rates there see the held value. is_free may
+ * be NULL: nothing held. */
 static void evaluate_jacobian(const Kernel *kernel, const Vec *restrict k, const Vec *restrict u,
-                              const Vec *restrict is_free, Vec *restrict d, Vec *restrict jacobian) {
+                              const Vec *restrict is_free, Vec *restrict d, Vec *restrict jacobian)
+{
     for (int e = 0; e < kernel->derivatives; e++)
         EACH(p) d[e].at[p] = k[kernel->derivative_reaction[e]].at[p] * u[kernel->derivative_p[e]].at[p];
     for (int i = 0; i < kernel->cubic_derivatives; i++) {
@@ -110,28 +125,42 @@ static void evaluate_jacobian(const Kernel *kernel, const Vec *restrict k, const
                                    kernel->term_first[e + 1], d);
 }
 
-/* lu = factors of (shift I - jacobian), unit lower and upper; pivot = reciprocal of the upper's diagonal. No pivoting
- * for size: the matrix is close to an M-matrix, and a bad step shows in the error estimate. */
+/* Entry e of the factors before scaling: start less the products listed for it. */
+static inline Vec less_products(const Kernel *kernel, int e, Vec start, const Vec *lu)
+{
+    for (int t = kernel->product_first[e]; t < kernel->product_first[e + 1]; t++)
+        EACH(p) start.at[p] -= lu[kernel->product_lower[t]].at[p] * lu[kernel->product_upper[t]].at[p];
+    return start;
+}
+
+/* lu = factors of (shift I - jacobian), unit lower and upper; pivot = reciprocal of the upper's diagonal. No
+ * pivoting for size: the matrix is close to an M-matrix, and a bad step shows in the error estimate. */
 static void factorise(const Kernel *kernel, double shift, const Vec *restrict jacobian, Vec *restrict lu,
-                      Vec *restrict pivot) {
-    const int32_t *lower = kernel->product_lower, *upper = kernel->product_upper;
-    for (int i = 0; i < kernel->species; i++)
-        for (int e = kernel->row_first[i]; e < kernel->row_first[i + 1]; e++) {
-            Vec sum;
-            int j = kernel->column[e];
-            double diagonal = j == i ? shift : 0.0;
-            EACH(p) sum.at[p] = diagonal - jacobian[e].at[p];
-            for (int t = kernel->product_first[e]; t < kernel->product_first[e + 1]; t++)
-                EACH(p) sum.at[p] -= lu[lower[t]].at[p] * lu[upper[t]].at[p];
-            if (j < i) EACH(p) sum.at[p] *= pivot[j].at[p];
-            if (j == i) EACH(p) pivot[i].at[p] = 1.0 / sum.at[p];
-            lu[e] = sum;
+                      Vec *restrict pivot)
+{
+    for (int i = 0; i < kernel->species; i++) {
+        int e = kernel->row_first[i], diagonal = kernel->diagonal[i];
+        for (; e < diagonal; e++) {
+            Vec value;
+            EACH(p) value.at[p] = -jacobian[e].at[p];
+            value = less_products(kernel, e, value, lu);
+            EACH(p) lu[e].at[p] = value.at[p] * pivot[kernel->column[e]].at[p];
         }
+        Vec value;
+        EACH(p) value.at[p] = shift - jacobian[e].at[p];
+        lu[e] = less_products(kernel, e, value, lu);
+        EACH(p) pivot[i].at[p] = 1.0 / lu[e].at[p];
+        for (e++; e < kernel->row_first[i + 1]; e++) {
+            EACH(p) value.at[p] = -jacobian[e].at[p];
+            lu[e] = less_products(kernel, e, value, lu);
+        }
+    }
 }
 
 /* Solve in place of x [species], which is by species; rhs is scratch by elimination position. */
 static void solve(const Kernel *kernel, const Vec *restrict lu, const Vec *restrict pivot, Vec *restrict rhs,
-                  Vec *restrict x) {
+                  Vec *restrict x)
+{
     int n = kernel->species;
     const int32_t *column = kernel->column;
     for (int i = 0; i < n; i++) {
@@ -149,19 +178,24 @@ static void solve(const Kernel *kernel, const Vec *restrict lu, const Vec *restr
     }
 }
 
-static inline Native magnitude(Native x) { return (Native)((NativeMask)x & INT64_MAX); }
+static inline Native magnitude(Native x)
+{
+    return (Native)((NativeMask)x & INT64_MAX);
+}
 
 /* A NaN in b comes through. */
-static inline Native larger(Native a, Native b) {
+static inline Native larger(Native a, Native b)
+{
     NativeMask first = a > b;
     return (Native)(((NativeMask)a & first) | ((NativeMask)b & ~first));
 }
 
-/* Weighted root-mean-square error, over the solved species, of the worst lane; *lane is that lane. NaN counts as
- * infinite. */
+/* Weighted root-mean-square error, over the solved species, of the worst lane; *lane is that lane. NaN counts
+ * as infinite. */
 static double error_norm(const Kernel *kernel, const Vec *restrict y, const Vec *restrict next,
                          const Vec *restrict error, const Vec *restrict is_free, const Tolerance *tolerance,
-                         int *lane) {
+                         int *lane)
+{
     union {
         Vec pack;
         double lane[PACK];
@@ -169,7 +203,7 @@ static double error_norm(const Kernel *kernel, const Vec *restrict y, const Vec 
     Vec total = {0};
     int solved = kernel->species - kernel->counters;
     for (int s = 0; s < solved; s++)
-        EACH(p) {
+        for (int p = 0; p < PARTS; p++) {
             Native size = larger(magnitude(y[s].at[p]), magnitude(next[s].at[p]));
             Native scaled =
                 is_free[s].at[p] * error[s].at[p] / (tolerance->absolute + tolerance->relative * size);
@@ -187,18 +221,21 @@ static double error_norm(const Kernel *kernel, const Vec *restrict y, const Vec 
     return sqrt(worst / solved);
 }
 
-/* What failed, as lane * species + s: of the lane's free species the first whose state or error is not finite, else
- * the one with the largest scaled error. */
+/* What failed, as lane * species + s: of the lane's free species the first whose state or error is not
+ * finite, else the one with the largest scaled error. */
 static int blame(const Kernel *kernel, const SolverWork *work, const double *y, const Tolerance *tolerance,
-                 int lane) {
+                 int lane)
+{
     const double *error = work->stage + 3 * PACK * (size_t)kernel->species;
     int worst = 0;
     double worst_value = -1.0;
     for (int s = 0; s < kernel->species - kernel->counters; s++) {
         size_t at = (size_t)s * PACK + (size_t)lane;
-        if (work->free[at] == 0.0) continue;
+        if (work->free[at] == 0.0)
+            continue;
         double value = fabs(error[at]) / (tolerance->absolute + tolerance->relative * fabs(y[at]));
-        if (!isfinite(value)) return lane * kernel->species + s;
+        if (!isfinite(value))
+            return lane * kernel->species + s;
         if (value > worst_value) {
             worst_value = value;
             worst = s;
@@ -208,7 +245,8 @@ static int blame(const Kernel *kernel, const SolverWork *work, const double *y, 
 }
 
 /* Let the rates see held values instead of u's. */
-static void see(const PackProblem *problem, const SolverWork *work, Vec *u) {
+static void see(const PackProblem *problem, const SolverWork *work, Vec *u)
+{
     const Vec *is_free = (const Vec *)work->free, *held = (const Vec *)work->held;
     for (int i = 0; i < problem->held; i++) {
         int s = problem->held_species[i];
@@ -216,9 +254,11 @@ static void see(const PackProblem *problem, const SolverWork *work, Vec *u) {
     }
 }
 
-static void load_held(const Kernel *kernel, SolverWork *work, const PackProblem *problem) {
+static void load_held(const Kernel *kernel, SolverWork *work, const PackProblem *problem)
+{
     size_t row = PACK * sizeof(double);
-    for (int i = 0; i < kernel->species * PACK; i++) work->free[i] = 1.0;
+    for (int i = 0; i < kernel->species * PACK; i++)
+        work->free[i] = 1.0;
     memset(work->held, 0, (size_t)kernel->species * row);
     for (int i = 0; i < problem->held; i++) {
         int s = problem->held_species[i];
@@ -228,8 +268,10 @@ static void load_held(const Kernel *kernel, SolverWork *work, const PackProblem 
 }
 
 /* What of the coefficients does not change in time. */
-static void load_coefficients(const Kernel *kernel, SolverWork *work, const PackProblem *problem) {
-    if (!problem->k_slope) return;
+static void load_coefficients(const Kernel *kernel, SolverWork *work, const PackProblem *problem)
+{
+    if (!problem->k_slope)
+        return;
     size_t size = (size_t)kernel->reactions * PACK * sizeof(double);
     memcpy(work->k, problem->k, size);
     memcpy(work->k_end, problem->k, size);
@@ -237,36 +279,72 @@ static void load_coefficients(const Kernel *kernel, SolverWork *work, const Pack
 }
 
 /* Coefficients after elapsed seconds: the problem's own, or set in `moving` (work->k or work->k_end). */
-static const Vec *coefficients_at(const PackProblem *problem, double elapsed, double *restrict moving) {
-    if (!problem->k_slope) return (const Vec *)problem->k;
+static const Vec *coefficients_at(const PackProblem *problem, double elapsed, double *restrict moving)
+{
+    if (!problem->k_slope)
+        return (const Vec *)problem->k;
     for (int i = problem->slope_first * PACK; i < problem->slope_last * PACK; i++)
         moving[i] = problem->k[i] + elapsed * problem->k_slope[i];
     return (const Vec *)moving;
 }
 
-/* Add weight times state and rates as seen at the start of the step. */
-static void add_sums(const Kernel *kernel, PackProblem *problem, const SolverWork *work, double weight) {
-    if (!problem->sum_y) return;
-    const double *restrict u = work->u, *restrict w = work->w;
-    double *restrict sum_y = problem->sum_y, *restrict sum_w = problem->sum_w;
-    for (int i = 0; i < kernel->species * PACK; i++) sum_y[i] += weight * u[i];
-    for (int i = 0; i < kernel->reactions * PACK; i++) sum_w[i] += weight * w[i];
+/* Time integrals of state and rates over an accepted step: rows q' = y and q' = w of the same method, which
+ * feed nothing back. With the weights b = (5/6, -1/6, -1/6, 1/2) of the method's plain form the increment of
+ * the latter is h (sum b_i w_i + dw/dy sum b_i K_i + h/6 dw/dt),   w_1 = w_2, so that integrals are of order
+ * 3 too, and state changes equal integrated rates to round-off. */
+static void add_sums(const Kernel *kernel, PackProblem *problem, const SolverWork *work, double h)
+{
+    if (!problem->sum_y)
+        return;
+    int size = kernel->species * PACK;
+    const double *restrict k1 = work->stage, *restrict k2 = k1 + size, *restrict k3 = k2 + size,
+                           *restrict k4 = k3 + size;
+    const double *restrict u = work->u, *restrict is_free = work->free;
+    double *restrict mix = work->rhs, *restrict sum_y = problem->sum_y;
+    for (int i = 0; i < size; i++) {
+        mix[i] = h * ((5.0 / 6.0) * k1[i] - (1.0 / 6.0) * (k2[i] + k3[i]) + 0.5 * k4[i]);
+        /* the same sum with u_3 = y + 2 K1 and u_4 = u_3 + K3 put in */
+        sum_y[i] +=
+            h * (u[i] + is_free[i] * (1.5 * k1[i] - (1.0 / 6.0) * k2[i] + (1.0 / 3.0) * k3[i] + 0.5 * k4[i]));
+    }
+    const double *restrict w = work->w, *restrict w3 = work->w3, *restrict w4 = work->w4;
+    double *restrict sum_w = problem->sum_w;
+    for (int i = 0; i < kernel->reactions * PACK; i++)
+        sum_w[i] += h * ((2.0 / 3.0) * w[i] - (1.0 / 6.0) * w3[i] + 0.5 * w4[i]);
+    Vec *sum = (Vec *)problem->sum_w;
+    const Vec *d = (const Vec *)work->d, *step = (const Vec *)work->rhs, *seen = (const Vec *)work->u;
+    for (int e = 0; e < kernel->derivatives; e++) {
+        int r = kernel->derivative_reaction[e];
+        double multiplicity = kernel->derivative_multiplicity[e];
+        EACH(p) sum[r].at[p] += multiplicity * d[e].at[p] * step[kernel->derivative_by[e]].at[p];
+    }
+    const Vec *k_slope = (const Vec *)problem->k_slope;
+    for (int r = problem->slope_first; k_slope && r < problem->slope_last; r++) {
+        const int32_t *reactant = &kernel->reactant[3 * r];
+        for (int p = 0; p < PARTS; p++) {
+            sum[r].at[p] += (h * h / 6.0) * k_slope[r].at[p] * seen[reactant[0]].at[p] *
+                            seen[reactant[1]].at[p] * seen[reactant[2]].at[p];
+        }
+    }
 }
 
 /* Events of the tallied first-order reactions over an accepted step, consistent with the stages: each obeys
- * q' = k u, one more row of the same linear systems, so that atoms in state plus tallies are kept exactly. The
- * step's increment is 2 Kq1 + Kq3 + Kq4, with (1/(gamma h)) Kqi = k (u_i + K_i) + sum_j c_ij/h Kqj and K_i zero
- * where held. Their coefficients do not change in time. */
-static void add_tallies(const Kernel *kernel, PackProblem *problem, const SolverWork *work, double h) {
-    if (!problem->tally) return;
+ * q' = k u, one more row of the same linear systems, so that atoms in state plus tallies are kept exactly.
+ * The step's increment is 2 Kq1 + Kq3 + Kq4, with (1/(gamma h)) Kqi = k (u_i + K_i) + sum_j c_ij/h Kqj and
+ * K_i zero where held. Their coefficients do not change in time. */
+static void add_tallies(const Kernel *kernel, PackProblem *problem, const SolverWork *work, double h)
+{
+    if (!problem->tally)
+        return;
     int n = kernel->species;
     Vec *tally = (Vec *)problem->tally;
-    const Vec *stage = (const Vec *)work->stage, *start = (const Vec *)work->u, *coefficient = (const Vec *)problem->k;
+    const Vec *stage = (const Vec *)work->stage, *start = (const Vec *)work->u,
+              *coefficient = (const Vec *)problem->k;
     const Vec *is_free = (const Vec *)work->free;
     double inverse = 1.0 / h, gamma_h = GAMMA * h;
     for (int t = 0; t < kernel->tallies; t++) {
         int r = kernel->tally_reaction[t], s = kernel->reactant[3 * r];
-        EACH(p) {
+        for (int p = 0; p < PARTS; p++) {
             Native k = coefficient[r].at[p], moves = is_free[s].at[p], u = start[s].at[p];
             Native k1 = moves * stage[s].at[p], k2 = moves * stage[n + s].at[p];
             Native k3 = moves * stage[2 * n + s].at[p], k4 = moves * stage[3 * n + s].at[p];
@@ -280,20 +358,23 @@ static void add_tallies(const Kernel *kernel, PackProblem *problem, const Solver
     }
 }
 
-/* stage = f of work->stage_u, which is made seen first, with coefficients k. */
+/* stage = f and w = rates of work->stage_u, which is made seen first, with coefficients k. */
 static void stage_tendency(const Kernel *kernel, SolverWork *work, const PackProblem *problem, const Vec *k,
-                           double *stage) {
+                           double *w, double *stage)
+{
     see(problem, work, (Vec *)work->stage_u);
-    evaluate_rates(kernel, k, (const Vec *)work->stage_u, (Vec *)work->stage_w);
-    gather_sources(kernel, (const Vec *)work->stage_w, (Vec *)stage);
+    evaluate_rates(kernel, k, (const Vec *)work->stage_u, (Vec *)w);
+    gather_sources(kernel, (const Vec *)w, (Vec *)stage);
 }
 
-/* One attempted step of length h from y, for which prepare_step was run. Leaves the candidate in work->next and the
- * error estimate in stage 4; what prepare_step made stays as it is. */
+/* One attempted step of length h from y, for which prepare_step was run. Leaves the candidate in work->next
+ * and the error estimate in stage 4; what prepare_step made stays as it is. */
 static void attempt_step(const Kernel *kernel, SolverWork *work, const PackProblem *problem,
-                         const double *restrict y, double elapsed, double h) {
+                         const double *restrict y, double elapsed, double h)
+{
     int n = kernel->species, size = n * PACK;
-    double *restrict k1 = work->stage, *restrict k2 = k1 + size, *restrict k3 = k2 + size, *restrict k4 = k3 + size;
+    double *restrict k1 = work->stage, *restrict k2 = k1 + size, *restrict k3 = k2 + size,
+                     *restrict k4 = k3 + size;
     double *restrict u = work->stage_u, *restrict next = work->next;
     const double *restrict f = work->f, *restrict slope = work->slope;
     const Vec *lu = (const Vec *)work->lu, *pivot = (const Vec *)work->pivot;
@@ -301,69 +382,76 @@ static void attempt_step(const Kernel *kernel, SolverWork *work, const PackProbl
     double inverse = 1.0 / h, slope1 = GAMMA * h, slope2 = 1.5 * h;
 
     factorise(kernel, inverse / GAMMA, (const Vec *)work->jacobian, (Vec *)work->lu, (Vec *)work->pivot);
-    for (int i = 0; i < size; i++) k1[i] = f[i] + slope1 * slope[i];
+    for (int i = 0; i < size; i++)
+        k1[i] = f[i] + slope1 * slope[i];
     solve(kernel, lu, pivot, rhs, (Vec *)k1);
-    for (int i = 0; i < size; i++) k2[i] = f[i] + 4.0 * inverse * k1[i] + slope2 * slope[i];
+    for (int i = 0; i < size; i++)
+        k2[i] = f[i] + 4.0 * inverse * k1[i] + slope2 * slope[i];
     solve(kernel, lu, pivot, rhs, (Vec *)k2);
 
     const Vec *k_end = coefficients_at(problem, elapsed + h, work->k_end);
-    for (int i = 0; i < size; i++) u[i] = y[i] + 2.0 * k1[i];
-    stage_tendency(kernel, work, problem, k_end, k3);
-    for (int i = 0; i < size; i++) k3[i] += inverse * (k1[i] - k2[i]);
+    for (int i = 0; i < size; i++)
+        u[i] = y[i] + 2.0 * k1[i];
+    stage_tendency(kernel, work, problem, k_end, work->w3, k3);
+    for (int i = 0; i < size; i++)
+        k3[i] += inverse * (k1[i] - k2[i]);
     solve(kernel, lu, pivot, rhs, (Vec *)k3);
 
-    for (int i = 0; i < size; i++) next[i] = u[i] = y[i] + 2.0 * k1[i] + k3[i];
-    stage_tendency(kernel, work, problem, k_end, k4);
-    for (int i = 0; i < size; i++) k4[i] += inverse * (k1[i] - k2[i] - (8.0 / 3.0) * k3[i]);
+    for (int i = 0; i < size; i++)
+        next[i] = u[i] = y[i] + 2.0 * k1[i] + k3[i];
+    stage_tendency(kernel, work, problem, k_end, work->w4, k4);
+    for (int i = 0; i < size; i++)
+        k4[i] += inverse * (k1[i] - k2[i] - (8.0 / 3.0) * k3[i]);
     solve(kernel, lu, pivot, rhs, (Vec *)k4);
-    for (int i = 0; i < size; i++) next[i] += k4[i];
-}
-
-/* State as seen and rates at y; returns the coefficients there. */
-static const Vec *rates_at(const Kernel *kernel, SolverWork *work, const PackProblem *problem, const double *y,
-                           double elapsed) {
-    const Vec *k = coefficients_at(problem, elapsed, work->k);
-    memcpy(work->u, y, (size_t)kernel->species * PACK * sizeof *y);
-    see(problem, work, (Vec *)work->u);
-    evaluate_rates(kernel, k, (const Vec *)work->u, (Vec *)work->w);
-    return k;
+    for (int i = 0; i < size; i++)
+        next[i] += k4[i];
 }
 
 /* Everything at y that does not depend on the step's length: rates, tendency, Jacobian and slope. */
 static void prepare_step(const Kernel *kernel, SolverWork *work, const PackProblem *problem, const double *y,
-                         double elapsed) {
-    const Vec *k = rates_at(kernel, work, problem, y, elapsed), *u = (const Vec *)work->u;
+                         double elapsed)
+{
+    const Vec *k = coefficients_at(problem, elapsed, work->k), *u = (const Vec *)work->u;
+    memcpy(work->u, y, (size_t)kernel->species * PACK * sizeof *y);
+    see(problem, work, (Vec *)work->u);
+    evaluate_rates(kernel, k, u, (Vec *)work->w);
     gather_sources(kernel, (const Vec *)work->w, (Vec *)work->f);
     evaluate_jacobian(kernel, k, u, problem->held ? (const Vec *)work->free : NULL, (Vec *)work->d,
                       (Vec *)work->jacobian);
     if (problem->k_slope)
-        gather_slope(kernel, work, (const Vec *)problem->k_slope, u, (Vec *)work->stage_w, (Vec *)work->slope);
+        gather_slope(kernel, work, (const Vec *)problem->k_slope, u, (Vec *)work->w3, (Vec *)work->slope);
     else
         memset(work->slope, 0, (size_t)kernel->species * PACK * sizeof *work->slope);
 }
 
-static void count_negatives(const Kernel *kernel, const double *y, const double *is_free, SolverCounts *counts) {
+static void count_negatives(const Kernel *kernel, const double *y, const double *is_free,
+                            SolverCounts *counts)
+{
     for (int i = 0; i < (kernel->species - kernel->counters) * PACK; i++)
         if (y[i] < 0.0 && is_free[i] != 0.0) {
             counts->negatives++;
-            if (y[i] < counts->most_negative) counts->most_negative = y[i];
+            if (y[i] < counts->most_negative)
+                counts->most_negative = y[i];
         }
 }
 
 int JOIN(solver_advance_, SOLVER_SUFFIX)(const Kernel *kernel, SolverWork *work, PackProblem *problem,
                                          double duration, const Tolerance *tolerance, SolverCounts *counts,
-                                         int *where) {
+                                         int *where)
+{
     double *y = problem->y;
     const double *error = work->stage + 3 * PACK * (size_t)kernel->species;
     double elapsed = 0.0, h = problem->step > 0.0 ? problem->step : 1e-3 * duration;
-    double next_step = h, half = 0.0; /* half the step that led here: its end's weight in the trapezoidal sums */
+    double next_step = h;
     int rejected = 0, lane = 0;
 
     counts->calls++;
+    problem->first = h;
     load_held(kernel, work, problem);
     load_coefficients(kernel, work, problem);
     for (int step = 0; elapsed < duration;) {
-        if (!rejected) prepare_step(kernel, work, problem, y, elapsed);
+        if (!rejected)
+            prepare_step(kernel, work, problem, y, elapsed);
         double left = duration - elapsed;
         int last = h >= left * (1.0 - 1e-12);
         double tried = last ? left : h;
@@ -387,22 +475,22 @@ int JOIN(solver_advance_, SOLVER_SUFFIX)(const Kernel *kernel, SolverWork *work,
         }
         counts->steps++;
         add_tallies(kernel, problem, work, tried);
-        add_sums(kernel, problem, work, half + 0.5 * tried);
-        half = 0.5 * tried;
+        add_sums(kernel, problem, work, tried);
         memcpy(y, work->next, (size_t)kernel->species * PACK * sizeof *y);
         double factor = norm > 0.0 ? SAFETY / cbrt(norm) : GROW;
-        if (factor > GROW) factor = GROW;
-        if (factor < SHRINK) factor = SHRINK;
-        if (rejected && factor > 1.0) factor = 1.0;
+        if (factor > GROW)
+            factor = GROW;
+        if (factor < SHRINK)
+            factor = SHRINK;
+        if (rejected && factor > 1.0)
+            factor = 1.0;
         rejected = 0;
         h = tried * factor;
+        if (elapsed == 0.0)
+            problem->first = last && factor > 1.0 && h < problem->first ? problem->first : h;
         /* a step cut short by the end of the call says nothing against the longer one it was cut from */
         next_step = last && h < next_step && factor > 1.0 ? next_step : h;
         elapsed = last ? duration : elapsed + tried;
-    }
-    if (problem->sum_y) {
-        rates_at(kernel, work, problem, y, duration);
-        add_sums(kernel, problem, work, half);
     }
     problem->step = next_step;
     count_negatives(kernel, y, work->free, counts);
@@ -410,13 +498,15 @@ int JOIN(solver_advance_, SOLVER_SUFFIX)(const Kernel *kernel, SolverWork *work,
 }
 
 void JOIN(solver_evaluate_, SOLVER_SUFFIX)(const Kernel *kernel, SolverWork *work, const PackProblem *problem,
-                                           double *f, double *jacobian) {
+                                           double *f, double *jacobian)
+{
     size_t n = (size_t)kernel->species, row = PACK * sizeof(double);
     load_held(kernel, work, problem);
     load_coefficients(kernel, work, problem);
     prepare_step(kernel, work, problem, problem->y, 0.0);
     memcpy(f, work->f, n * row);
-    if (!jacobian) return;
+    if (!jacobian)
+        return;
     memset(jacobian, 0, n * n * row);
     for (int i = 0; i < kernel->species; i++)
         for (int e = kernel->row_first[i]; e < kernel->row_first[i + 1]; e++) {

@@ -118,6 +118,12 @@ static int read_troposphere(Model *model, Fault *fault) {
 
 /* ---- ground conditions ---- */
 
+static int is_held(const Model *model, int solved) {
+    for (int h = 0; h < model->held; h++)
+        if (model->held_species[h] == solved) return 1;
+    return 0;
+}
+
 static int set_ground(Model *model, Fault *fault) {
     const Settings *settings = &model->settings;
     const Mechanism *mechanism = model->mechanism;
@@ -129,7 +135,7 @@ static int set_ground(Model *model, Fault *fault) {
         const char *gas = model->schedule.gas[g];
         int s = mechanism_solved(mechanism, gas);
         if (s < 0)
-            return fault_at(fault, model->schedule.path, 0,
+            return fault_at(fault, model->schedule.path, model->schedule.first_line[g],
                             "gas %s is not an active species of mechanism %s; correct the name or add the species", gas,
                             mechanism->path);
         model->surface_kind[s] = SURFACE_SCHEDULE;
@@ -141,11 +147,15 @@ static int set_ground(Model *model, Fault *fault) {
         int s = mechanism_solved(mechanism, bound->species);
         if (s < 0 && !settings->case_path[0]) continue;
         if (s < 0)
-            return fault_at(fault, file, 0, "surface.bounds names %s, which is no active species of %s; correct the name",
+            return fault_at(fault, file, bound->line, "surface.bounds names %s, which is no active species of %s; correct the name",
                             bound->species, mechanism->path);
         if (model->surface_kind[s] == SURFACE_SCHEDULE)
-            return fault_at(fault, file, 0, "surface.bounds names %s, which the schedule %s carries; keep one of the two",
+            return fault_at(fault, file, bound->line, "surface.bounds names %s, which the schedule %s carries; keep one of the two",
                             bound->species, model->schedule.path);
+        if (is_held(model, s))
+            return fault_at(fault, file, bound->line,
+                            "surface.bounds names %s, which a table holds up to the tropopause; remove one of the two",
+                            bound->species);
         model->surface_kind[s] = bound->kind == BOUND_FIXED ? SURFACE_FIXED : SURFACE_DEPOSITION;
         model->surface_value[s] = bound->value;
     }
@@ -227,9 +237,9 @@ int model_make(Model **made, const Settings *settings, Fault *fault) {
     if (!code) code = locate(settings, "schedule", settings->schedule_file, path, fault);
     if (!code) code = schedule_read(&model->schedule, path, fault);
     if (!code) code = add_source(model, fault, "schedule", model->schedule.header);
+    if (!code) code = read_troposphere(model, fault);
     if (!code) code = set_ground(model, fault);
     if (!code) code = read_aerosol(model, fault);
-    if (!code) code = read_troposphere(model, fault);
     if (code) {
         model_free(model);
         return code;

@@ -32,7 +32,7 @@ static void print_help(FILE *out) {
                  "For decisions on health or regulation defer to the competent authority.\n");
 }
 
-int main(int argc, char **argv) {
+static int dispatch(int argc, char **argv) {
     if (argc < 2) {
         fprintf(stderr, "skymend: no verb given; see skymend --help\n");
         return FAULT_INPUT;
@@ -56,4 +56,13 @@ int main(int argc, char **argv) {
     else
         fprintf(stderr, "skymend: unknown verb %s; see skymend --help\n", argv[1]);
     return FAULT_INPUT;
+}
+
+int main(int argc, char **argv) {
+    int code = dispatch(argc, argv);
+    if ((fflush(stdout) || ferror(stdout)) && !code) { /* a table cut short by a full disk is no success */
+        fprintf(stderr, "skymend: standard output could not be written; free some space or redirect it elsewhere\n");
+        code = FAULT_OUTPUT;
+    }
+    return code;
 }

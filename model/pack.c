@@ -1,6 +1,7 @@
 /* pack: loading, storing and the explicit day of one pack of layers. */
 #include "pack.h"
 
+#include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -18,7 +19,7 @@ int pack_make(PackWork **made, const Model *model, Fault *fault) {
     } part[] = {{&work->y, species},         {&work->k, reactions},     {&work->slope, reactions},
                 {&work->sum_y, species},     {&work->sum_w, reactions}, {&work->tally, tallies},
                 {&work->held_free, species}, {&work->held_value, species},
-                {&work->loss, species}};
+                {&work->loss, species},      {&work->atoms, MECHANISM_ELEMENTS}};
     size_t rows = 0, parts = sizeof part / sizeof part[0];
     for (size_t i = 0; i < parts; i++) rows += part[i].rows;
     work->block = aligned_alloc(PACK * sizeof(double), rows * PACK * sizeof(double));
@@ -45,6 +46,51 @@ void pack_free(PackWork *work) {
     free(work->held_species);
     free(work->block);
     free(work);
+}
+
+/* Elements that are accounted for: all but O, of which air is an endless store, and F, which ends in an inert sum. */
+static int accounted(const Mechanism *mechanism, int element) {
+    return strcmp(mechanism->element[element], "O") && strcmp(mechanism->element[element], "F");
+}
+
+/* Atoms cm-3 of an element in each lane: species, counters and tallies. */
+static void count_atoms(const PackWork *work, const Model *model, int element, double *atoms) {
+    const Kernel *kernel = model->kernel;
+    int solved = model->mechanism->solved;
+    memset(atoms, 0, PACK * sizeof(double));
+    for (int s = 0; s < solved; s++) {
+        int share = mechanism_atoms(model->mechanism, s, element);
+        for (int l = 0; share && l < PACK; l++) atoms[l] += share * work->y[s * PACK + l];
+    }
+    for (int c = 0; c < kernel->counters; c++)
+        for (int l = 0; kernel->counter_element[c] == element && l < PACK; l++)
+            atoms[l] += work->y[(solved + c) * PACK + l];
+    for (int t = 0; t < kernel->tallies; t++) {
+        int share = mechanism_atoms(model->mechanism, kernel->reactant[3 * kernel->tally_reaction[t]], element);
+        for (int l = 0; share && l < PACK; l++) atoms[l] += share * work->tally[t * PACK + l];
+    }
+}
+
+static void restore_atoms(PackWork *work, const Model *model) {
+    const Mechanism *mechanism = model->mechanism;
+    for (int e = 0; e < mechanism->elements; e++) {
+        if (!accounted(mechanism, e)) continue;
+        double now[PACK];
+        count_atoms(work, model, e, now);
+        for (int l = 0; l < PACK; l++) {
+            double before = work->atoms[e * PACK + l], defect = before - now[l], most = 0.0;
+            int carrier = -1, share = 1;
+            if (!(fabs(defect) <= PACK_ROUND_OFF * before)) continue;
+            for (int s = 0; s < mechanism->solved; s++) {
+                int atoms = mechanism_atoms(mechanism, s, e);
+                if (atoms * work->y[s * PACK + l] <= most) continue;
+                most = atoms * work->y[s * PACK + l];
+                carrier = s;
+                share = atoms;
+            }
+            if (carrier >= 0) work->y[carrier * PACK + l] += defect / share;
+        }
+    }
 }
 
 static int kept_by_ground(const Model *model, int s) {
@@ -84,6 +130,8 @@ void pack_load(PackWork *work, const Model *model, int first, const double *x) {
         }
         work->held_species[work->held++] = s;
     }
+    for (int e = 0; e < model->mechanism->elements; e++)
+        if (accounted(model->mechanism, e)) count_atoms(work, model, e, work->atoms + e * PACK);
 }
 
 void pack_rates(PackWork *work, const Model *model, int first, const double *coefficient, const double *mean_light,
@@ -104,10 +152,11 @@ void pack_rates(PackWork *work, const Model *model, int first, const double *coe
     }
 }
 
-void pack_store(const PackWork *work, const Model *model, int first, double *x, PackLedger *ledger) {
+void pack_store(PackWork *work, const Model *model, int first, double *x, PackLedger *ledger) {
     int padded = model->grid.padded, solved = model->mechanism->solved;
     int lanes = model->grid.layers - first < PACK ? model->grid.layers - first : PACK;
     const double *air = model->air.number_density + first, *depth = model->grid.depth + first;
+    restore_atoms(work, model);
     for (int s = 0; s < solved; s++) {
         double *row = x + FIELD(padded, s, first), kept = row[0];
         for (int l = 0; l < PACK; l++) row[l] = work->y[s * PACK + l] / air[l];
@@ -180,22 +229,6 @@ static void dark_rates(PackWork *work, const Light *light) {
            (size_t)light->reactions * PACK * sizeof(double));
 }
 
-/* One night half of a length in parts: radicals die within minutes of dusk, N2O5 forms over hours, and the time integrals
- * want points where the state bends. */
-static int carry_night(PackWork *work, const Kernel *kernel, PackProblem *problem, double length, int from_dusk,
-                       const Tolerance *tolerance, SolverCounts *counts, int *where) {
-    enum { PARTS = 8 };
-    double done = 0.0;
-    problem->k_slope = NULL;
-    for (int i = 1; i <= PARTS && length > 0.0; i++) {
-        double share = (double)i / PARTS, end = length * (from_dusk ? share * share * share : share);
-        int code = solver_advance(kernel, work->solver, problem, end - done, tolerance, counts, where);
-        if (code) return code;
-        done = end;
-    }
-    return 0;
-}
-
 int pack_day(PackWork *work, const Light *light, int first, int sums, const Tolerance *tolerance, double *step,
              SolverCounts *counts, int *where) {
     const Kernel *kernel = light->model->kernel;
@@ -206,7 +239,7 @@ int pack_day(PackWork *work, const Light *light, int first, int sums, const Tole
     double rise = sun->nodes ? sun->time[0] : 0.5 * DAY_SECONDS;
 
     dark_rates(work, light);
-    int code = carry_night(work, kernel, &problem, rise, 0, tolerance, counts, where);
+    int code = rise > 0.0 ? solver_advance(kernel, work->solver, &problem, rise, tolerance, counts, where) : 0;
     problem.k_slope = work->slope;
     for (int i = 0; !code && sun->nodes && i < 2 * (SUN_KNOTS - 1); i++) {
         int morning = i < SUN_KNOTS - 1;
@@ -217,7 +250,8 @@ int pack_day(PackWork *work, const Light *light, int first, int sums, const Tole
         code = solver_advance(kernel, work->solver, &problem, length, tolerance, counts, where);
     }
     dark_rates(work, light);
-    if (!code) code = carry_night(work, kernel, &problem, rise, 1, tolerance, counts, where);
+    problem.k_slope = NULL;
+    if (!code && rise > 0.0) code = solver_advance(kernel, work->solver, &problem, rise, tolerance, counts, where);
     *step = problem.step;
     return code;
 }

@@ -9,6 +9,8 @@
 #include "column.h"
 #include "light.h"
 
+#define PACK_ROUND_OFF 1e-10 /* relative defect of an element's atoms that counts as round-off */
+
 typedef struct {
     SolverWork *solver;
     double *y;         /* [kernel species][PACK] cm-3 */
@@ -18,6 +20,7 @@ typedef struct {
     double *sum_w;     /* [reactions][PACK] cm-3 */
     double *tally;     /* [tallies][PACK] cm-3 */
     double *held_free, *held_value; /* [held][PACK] */
+    double *atoms;     /* [elements][PACK] atoms cm-3 at loading */
     double *loss;      /* [kernel species][PACK] for day.c: mean loss rates */
     int held, *held_species; /* prescribed somewhere in this pack: below the tropopause, or in the lowest layer by the ground */
     void *block;
@@ -40,8 +43,10 @@ void pack_load(PackWork *work, const Model *model, int first, const double *x);
 void pack_rates(PackWork *work, const Model *model, int first, const double *coefficient, const double *mean_light,
                 const double *factor);
 /* x = y / N and the ledger of this pack; held lanes go back to their values, the difference counted. Values below zero are
- * left as they are. */
-void pack_store(const PackWork *work, const Model *model, int first, double *x, PackLedger *ledger);
+ * left as they are. The solver keeps the atoms of every element but for the round-off of its linear algebra, about 1e-12
+ * a call and always the same way once the state is steady; that much, and not more than PACK_ROUND_OFF, is put back onto
+ * the element's most abundant carrier in the lane. A larger defect is a fault of the chemistry and stays for the ledger to show. */
+void pack_store(PackWork *work, const Model *model, int first, double *x, PackLedger *ledger);
 /* The solver's problem over this pack; sums = 1 asks for time integrals. slope is not set. */
 PackProblem pack_problem(const PackWork *work, int sums, double step);
 

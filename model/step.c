@@ -36,7 +36,7 @@ struct Stepper {
     double **transport_work;  /* [threads] */
     PackOutcome *outcome;     /* [packs] */
     double *ledgers;          /* [packs][held + solved + tallies], behind outcome[].ledger */
-    double *pack_step;        /* [packs] solver step to try in the multi-year run */
+    double *pack_step;        /* [2][packs] solver step to try first: before the transport, after it */
     double *coefficient;      /* [reactions][padded] */
     double *density;          /* [solved][padded] work */
     double *mean;             /* [solved][padded] */
@@ -100,7 +100,7 @@ static int allocate(Stepper *stepper, Fault *fault) {
     stepper->outcome = calloc(packs, sizeof *stepper->outcome);
     size_t ledger = (size_t)model->held + solved + tallies;
     stepper->ledgers = calloc(packs * ledger, sizeof(double));
-    stepper->pack_step = calloc(packs, sizeof(double));
+    stepper->pack_step = calloc(2 * packs, sizeof(double));
     stepper->coefficient = calloc(reactions * padded, sizeof(double));
     stepper->density = calloc(solved * padded, sizeof(double));
     stepper->mean = calloc(solved * padded, sizeof(double));
@@ -311,7 +311,9 @@ static int settle_packs(Stepper *stepper, Column *column, Fault *fault) {
     return 0;
 }
 
-static int chemistry(Stepper *stepper, Column *column, double step, Fault *fault) {
+/* half: 0 before the transport, 1 after it. The two start differently: the second with radicals that transport has thrown out of
+ * balance. */
+static int chemistry(Stepper *stepper, Column *column, double step, int half, Fault *fault) {
     const Model *model = stepper->model;
     Tolerance tolerance = tolerance_of(model);
     const double *factor = model->settings.day == DAY_FACTORS ? stepper->day->factor : NULL;
@@ -322,10 +324,11 @@ static int chemistry(Stepper *stepper, Column *column, double step, Fault *fault
         outcome->counts = (SolverCounts){0};
         pack_load(work, model, p * PACK, column->x);
         pack_rates(work, model, p * PACK, stepper->coefficient, stepper->light->mean, factor);
-        PackProblem problem = pack_problem(work, 0, stepper->pack_step[p]);
+        double *first_step = &stepper->pack_step[half * stepper->packs + p];
+        PackProblem problem = pack_problem(work, 0, *first_step);
         outcome->result =
             solver_advance(model->kernel, work->solver, &problem, step, &tolerance, &outcome->counts, &outcome->where);
-        stepper->pack_step[p] = problem.step;
+        *first_step = problem.first;
         if (!outcome->result) pack_store(work, model, p * PACK, column->x, &outcome->ledger);
     }
     return settle_packs(stepper, column, fault);
@@ -409,13 +412,13 @@ static int advance_means(Stepper *stepper, Column *column, double step, double y
     charge(&stepper->clock.light, &since);
     code = refresh_factors(stepper, column, fault);
     charge(&stepper->clock.factors, &since);
-    if (!code) code = chemistry(stepper, column, 0.5 * step, fault);
+    if (!code) code = chemistry(stepper, column, 0.5 * step, 0, fault);
     charge(&stepper->clock.chemistry, &since);
     if (code) return code;
     set_ground(model, column, column->time + 0.5 * years);
     transport(stepper, column);
     charge(&stepper->clock.transport, &since);
-    code = chemistry(stepper, column, 0.5 * step, fault);
+    code = chemistry(stepper, column, 0.5 * step, 1, fault);
     charge(&stepper->clock.chemistry, &since);
     if (code) return code;
     set_ground(model, column, column->time + years);

@@ -11,7 +11,7 @@ plot_packages="python3 python3-numpy python3-matplotlib python3-xarray python3-n
 
 # cdo, nco and netcdf-bin read the output file as its users do; python3-pyspectral carries an
 # independent solar spectrum; libsundials-dev is the reference solver.
-test_packages="libcmocka-dev libsundials-dev python3-scipy python3-pyspectral cdo nco netcdf-bin"
+test_packages="libcmocka-dev libsundials-dev python3-scipy python3-pyspectral cdo nco netcdf-bin clang libomp-dev"
 
 # For work on the program itself.
 develop_packages="git clang clang-format shellcheck"

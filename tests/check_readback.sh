@@ -1,11 +1,18 @@
 #!/bin/sh
 # Reads a Skymend file with the programs its users have: ncdump, cdo, nco (ncks) and xarray.
-# usage: tests/check_readback.sh FILE.nc      exit code 0: all agree; 1: one does not; 2: wrong use or a tool is missing
+# usage: tests/check_readback.sh [FILE.nc]      exit code 0: all agree; 1: one does not; 2: wrong use or a tool is missing
+# Without a file it has SKYMEND make one from a short coarse case in TEST_DIR.
 # What one tool reads is compared with what another reads, not only looked for. PYTHON names the interpreter.
 set -u
 
+if [ $# -eq 0 ] && [ -n "${SKYMEND-}" ] && [ -n "${TEST_DIR-}" ]; then
+    printf '%s\n' 'years: { first = 1978; last = 1983; };' 'grid: { spacing_km = 4.0; };' \
+        'day: { mode = "mean"; };' 'numerics: { spinup_years = 0.5; };' >"$TEST_DIR/readback.cfg"
+    "$SKYMEND" project "$TEST_DIR/readback.cfg" -o "$TEST_DIR/readback.nc" --quiet || exit 2
+    set -- "$TEST_DIR/readback.nc"
+fi
 if [ $# -ne 1 ] || [ ! -r "$1" ]; then
-    echo "usage: $0 FILE.nc (a readable file)" >&2
+    echo "usage: $0 [FILE.nc] (a readable file)" >&2
     exit 2
 fi
 file=$1
@@ -20,10 +27,10 @@ work=$(mktemp -d) || exit 2
 trap 'rm -rf "$work"' EXIT
 failures=0
 
-ok() { echo "ok      $1"; }
+ok() { echo "ok $1"; }
 bad() {
     failures=$((failures + 1))
-    echo "FAILED  $1"
+    echo "not ok $1"
 }
 
 # check NAME COMMAND...: the command succeeds and says nothing that sounds like trouble

@@ -1,0 +1,280 @@
+/* validate: the baseline against published values, and the size of its numerical errors.
+ *
+ *     build/tests/validate [--csv FILE] [--no-numerics] [--case CASE.cfg]       (make validate)
+ *
+ * Every row of tests/published-values.csv is "in" its published range, "out", or "later" (nothing in the program
+ * computes it yet). A row that is out needs a reason in tests/validation-reasons.csv. Exit status: 0; 1 when a row is
+ * out without a reason or a numerical error is above its limit; else the fault's code. --case takes another case than the
+ * built-in baseline, to find out what a row depends on; it must cover 1964 to 2000. Runs from the repository root;
+ * SKYMEND_DATA names the data folder (default input/data).
+ */
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "../input/table.h"
+#include "validate.h"
+
+typedef struct {
+    char *text; /* of a row of the table, borrowed from Csv */
+    double low, high;
+    int state, inside;
+    double value;
+    char note[ROW_NOTE];
+    const char *reason; /* borrowed from Csv, NULL when there is none */
+} Verdict;
+
+typedef struct {
+    const char *csv, *case_path;
+    int numerics;
+} Request;
+
+static const char published_path[] = "tests/published-values.csv";
+static const char reasons_path[] = "tests/validation-reasons.csv";
+
+/* ---- the tables ---- */
+
+/* Columns of published-values.csv by position; read_published checks their names. */
+enum { ID, QUANTITY, CONDITIONS, VALUE, LOW, HIGH, UNIT, SOURCE, BASIS, COLUMNS };
+
+static const char *cell(const Csv *csv, size_t row, int column)
+{
+    return csv->cell[csv->first[row] + (size_t)column];
+}
+
+static int read_named(Csv *csv, const char *path, const char *const *names, size_t columns, Fault *fault)
+{
+    if (csv_read(csv, path, fault))
+        return fault->code;
+    int same = csv->first[1] - csv->first[0] == columns;
+    for (size_t c = 0; same && c < columns; c++)
+        same = !strcmp(cell(csv, 0, (int)c), names[c]);
+    if (!same) {
+        fault_at(fault, path, csv->line[0], "unexpected columns, the first should be %s", names[0]);
+        csv_free(csv);
+    }
+    return fault->code;
+}
+
+static const char *find_reason(const Csv *reasons, const char *id)
+{
+    for (size_t row = 1; row < reasons->rows; row++)
+        if (!strcmp(cell(reasons, row, 0), id) && cell(reasons, row, 1)[0])
+            return cell(reasons, row, 1);
+    return NULL;
+}
+
+/* ---- judging ---- */
+
+static int judge(const Csv *published, const Csv *reasons, const Evidence *evidence, Verdict *verdicts, Fault *fault)
+{
+    for (size_t row = 1; row < published->rows; row++) {
+        Verdict *v = &verdicts[row];
+        const char *id = cell(published, row, ID);
+        *v = (Verdict){0};
+        if (row_compute(evidence, id, cell(published, row, CONDITIONS), &v->state, &v->value, v->note, fault))
+            return fault->code;
+        v->reason = find_reason(reasons, id);
+        if (v->state == ROW_LATER)
+            continue;
+        if (csv_number(published_path, published->line[row], "low", cell(published, row, LOW), &v->low, fault) ||
+            csv_number(published_path, published->line[row], "high", cell(published, row, HIGH), &v->high, fault))
+            return fault->code;
+        v->inside = v->value >= v->low && v->value <= v->high; /* not a number is out */
+    }
+    return 0;
+}
+
+static const char *word(const Verdict *v)
+{
+    return v->state == ROW_LATER ? "later" : v->inside ? "in" : "out";
+}
+
+static void value_text(const Verdict *v, char *text, size_t size)
+{
+    if (v->state == ROW_LATER)
+        snprintf(text, size, "-");
+    else if (isfinite(v->value))
+        snprintf(text, size, "%.5g", v->value);
+    else
+        snprintf(text, size, "none");
+}
+
+/* Returns the number of rows out without a reason. */
+static int print_rows(const Csv *published, const Verdict *verdicts)
+{
+    int in = 0, out = 0, later = 0, unexplained = 0;
+    printf("%-16s %12s  %22s  %-8s %-5s  %s\n", "row", "Skymend", "published", "unit", "", "how");
+    for (size_t row = 1; row < published->rows; row++) {
+        const Verdict *v = &verdicts[row];
+        char value[32], range[64];
+        value_text(v, value, sizeof value);
+        snprintf(range, sizeof range, "%s..%s", cell(published, row, LOW), cell(published, row, HIGH));
+        printf("%-16s %12s  %22s  %-8s %-5s  %s\n", cell(published, row, ID), value, range, cell(published, row, UNIT),
+               word(v), v->note);
+        in += v->state == ROW_COMPUTED && v->inside;
+        out += v->state == ROW_COMPUTED && !v->inside;
+        later += v->state == ROW_LATER;
+    }
+    printf("\n%d in, %d out, %d later\n", in, out, later);
+    for (size_t row = 1; row < published->rows; row++) {
+        const Verdict *v = &verdicts[row];
+        const char *id = cell(published, row, ID);
+        if (v->state == ROW_COMPUTED && !v->inside) {
+            printf("out: %s: %s\n", id, v->reason ? v->reason : "NO REASON KNOWN");
+            unexplained += !v->reason;
+        } else if (v->reason) {
+            fprintf(stderr, "%s: %s is not out; its reason may go\n", reasons_path, id);
+        }
+    }
+    return unexplained;
+}
+
+/* Returns the number of errors above their limits. */
+static int print_numerics(const NumericRow *rows, int count)
+{
+    int above = 0;
+    printf("\nnumerical errors of the defaults\n%-22s %10s %8s %-4s %-5s  %s\n", "check", "found", "limit", "unit", "", "what");
+    for (int i = 0; i < count; i++) {
+        const NumericRow *row = &rows[i];
+        int good = row->value <= row->limit;
+        char limit[32] = "-";
+        if (isfinite(row->limit))
+            snprintf(limit, sizeof limit, "%g", row->limit);
+        printf("%-22s %10.4g %8s %-4s %-5s  %s%s%s\n", row->id, row->value, limit, row->unit, good ? "in" : "out",
+               row->what, row->note[0] ? ": " : "", row->note);
+        above += !good;
+    }
+    return above;
+}
+
+/* ---- the same as CSV ---- */
+
+static void quoted(FILE *out, const char *text)
+{
+    fputc('"', out);
+    for (; *text; text++) {
+        if (*text == '"')
+            fputc('"', out);
+        fputc(*text, out);
+    }
+    fputc('"', out);
+}
+
+static int write_csv(const char *path, const Csv *published, const Verdict *verdicts, const NumericRow *rows, int count,
+                     Fault *fault)
+{
+    FILE *out = fopen(path, "w");
+    if (!out)
+        return fault_set(fault, FAULT_OUTPUT, "%s: cannot be written", path);
+    fprintf(out, "id,value,low,high,unit,verdict,note,reason\n");
+    for (size_t row = 1; row < published->rows; row++) {
+        const Verdict *v = &verdicts[row];
+        fprintf(out, "%s,", cell(published, row, ID));
+        if (v->state == ROW_COMPUTED && isfinite(v->value))
+            fprintf(out, "%.10g", v->value);
+        fprintf(out, ",%s,%s,%s,%s,", cell(published, row, LOW), cell(published, row, HIGH), cell(published, row, UNIT),
+                word(v));
+        quoted(out, v->note);
+        fputc(',', out);
+        quoted(out, v->state == ROW_COMPUTED && !v->inside && v->reason ? v->reason : "");
+        fputc('\n', out);
+    }
+    for (int i = 0; i < count; i++) {
+        const NumericRow *row = &rows[i];
+        fprintf(out, "numerics-%s,%.10g,,", row->id, row->value);
+        if (isfinite(row->limit))
+            fprintf(out, "%g", row->limit);
+        fprintf(out, ",%s,%s,", row->unit, row->value <= row->limit ? "in" : "out");
+        quoted(out, row->note);
+        fprintf(out, ",\"\"\n");
+    }
+    int bad = ferror(out);
+    if (fclose(out) || bad)
+        return fault_set(fault, FAULT_OUTPUT, "%s: could not be written to its end", path);
+    return 0;
+}
+
+/* ---- the run ---- */
+
+static int validate(const Request *request, int *failures, Fault *fault)
+{
+    static const char *const published_names[] = {"id",   "quantity", "conditions", "value", "low",
+                                                  "high", "unit",     "source",     "basis"};
+    static const char *const reason_names[] = {"id", "reason"};
+    const char *data = getenv("SKYMEND_DATA");
+    Settings *settings = malloc(sizeof *settings);
+    Csv published = {0}, reasons = {0};
+    Run baseline = {0};
+    Steady steady = {0};
+    Verdict *verdicts = NULL;
+    NumericRow rows[NUMERIC_MOST];
+    int count = 0;
+    if (!settings)
+        return fault_memory(fault, "settings");
+    data = data && data[0] ? data : "input/data";
+    settings_default(settings, data);
+    int code = request->case_path ? settings_read(settings, request->case_path, data, fault) : 0;
+    if (!code && (settings->first_year > 1964 || settings->last_year < STEADY_YEAR))
+        code = fault_set(fault, FAULT_INPUT, "the case runs from %d to %d; 1964 to %d are needed", settings->first_year,
+                         settings->last_year, STEADY_YEAR);
+    if (!code)
+        code = read_named(&published, published_path, published_names, COLUMNS, fault);
+    if (!code)
+        code = read_named(&reasons, reasons_path, reason_names, 2, fault);
+    if (!code && !(verdicts = calloc(published.rows, sizeof *verdicts)))
+        code = fault_memory(fault, "verdicts");
+    if (!code)
+        code = run_years(&baseline, settings, NULL, "baseline", fault);
+    if (!code)
+        code = steady_make(&steady, baseline.model, run_fields(&baseline, STEADY_YEAR), STEADY_YEAR + 0.5, STEADY_YEARS,
+                           fault);
+    if (!code) {
+        Evidence evidence = {&baseline, &steady};
+        code = judge(&published, &reasons, &evidence, verdicts, fault);
+    }
+    if (!code) {
+        *failures = print_rows(&published, verdicts);
+        fflush(stdout);
+    }
+    if (!code && request->numerics)
+        code = numerics_measure(&baseline, rows, &count, fault);
+    if (!code && request->numerics)
+        *failures += print_numerics(rows, count);
+    if (!code && request->csv)
+        code = write_csv(request->csv, &published, verdicts, rows, count, fault);
+    steady_free(&steady);
+    run_free(&baseline);
+    free(verdicts);
+    csv_free(&published);
+    csv_free(&reasons);
+    free(settings);
+    return code;
+}
+
+int main(int argc, char **argv)
+{
+    Request request = {NULL, NULL, 1};
+    Fault fault = {0};
+    int failures = 0;
+    for (int i = 1; i < argc; i++) {
+        if (!strcmp(argv[i], "--csv") && i + 1 < argc)
+            request.csv = argv[++i];
+        else if (!strcmp(argv[i], "--case") && i + 1 < argc)
+            request.case_path = argv[++i];
+        else if (!strcmp(argv[i], "--no-numerics"))
+            request.numerics = 0;
+        else {
+            fprintf(stderr, "validate: unknown option %s; usage: validate [--csv FILE] [--no-numerics] [--case CASE.cfg]\n", argv[i]);
+            return FAULT_INPUT;
+        }
+    }
+    int code = validate(&request, &failures, &fault);
+    if (code) {
+        fprintf(stderr, "validate: %s\n", fault.text);
+        return code;
+    }
+    printf("\n%d failures\n", failures);
+    return failures ? 1 : 0;
+}

@@ -1,0 +1,77 @@
+/* validate: what the parts of the validation program share. Private to tests/validate*.c.
+ *
+ * The program runs the baseline projection, compares what can be compared with tests/published-values.csv and
+ * measures the numerical errors that take too long for make test. Results on standard output, progress on
+ * standard error. It judges and explains; it adjusts nothing.
+ */
+#ifndef SKYMEND_VALIDATE_H
+#define SKYMEND_VALIDATE_H
+
+#include <stddef.h>
+
+#include "../model/step.h"
+
+/* ---- validate_run.c: a run kept in memory ---- */
+
+typedef struct {
+    Model *model; /* owned */
+    int first_year, years;
+    size_t field;   /* solved * padded */
+    double *time;   /* [years] middle of the year */
+    double *column; /* [years] ozone column, DU */
+    double *x;      /* [years][solved][padded] mean mole fractions of the year */
+    long solver_steps, photolysis_refreshes, factor_refreshes;
+    double seconds; /* wall */
+} Run;
+
+/* Run the years of settings, one record a year, and keep every record. start: [solved][padded] state to begin with, or
+ * NULL for the initial profiles. what leads the progress lines. On a fault *run is zeroed. Owner: caller, run_free. */
+int run_years(Run *run, const Settings *settings, const double *start, const char *what, Fault *fault);
+void run_free(Run *run);
+/* Mean mole fractions of a calendar year, [solved][padded]; the year must lie in the run. */
+const double *run_fields(const Run *run, int year);
+/* Mean ozone column of calendar years first..last, DU. */
+double run_column(const Run *run, int first, int last);
+
+/* A column held at the conditions of one time, started from x. */
+typedef struct {
+    Column *column;
+    Stepper *stepper;
+} Steady;
+
+/* Carry model's column from x for years under the schedule of decimal year time. Owner: caller, steady_free. The
+ * model must outlive it. */
+int steady_make(Steady *steady, const Model *model, const double *x, double time, double years, Fault *fault);
+void steady_free(Steady *steady);
+
+/* ---- validate_rows.c: the published values ---- */
+
+typedef struct {
+    const Run *run;       /* the baseline, all years */
+    const Steady *steady; /* the same column in balance with the surface values of STEADY_YEAR */
+} Evidence;
+
+#define STEADY_YEAR 2000 /* the conditions of the published lifetimes (SPARC Report 6, 2013) */
+#define STEADY_YEARS 40  /* carried; the slowest exchange of the stratosphere takes 5 to 10 years */
+
+enum RowState { ROW_COMPUTED, ROW_LATER };
+#define ROW_NOTE 160
+
+/* The model's value of one row. conditions is the row's own text; *state tells whether value and note hold. FAULT_INPUT for
+ * an id nothing is known of. note: [ROW_NOTE] how it was taken. */
+int row_compute(const Evidence *evidence, const char *id, const char *conditions, int *state, double *value,
+                char *note, Fault *fault);
+
+/* ---- validate_numerics.c: the size of the numerical errors ---- */
+
+typedef struct {
+    const char *id, *what, *unit;
+    double value, limit; /* fails when above limit; limit is what the program promises */
+    char note[ROW_NOTE];
+} NumericRow;
+
+#define NUMERIC_MOST 24
+/* Measure them all; returns a fault's code. rows [NUMERIC_MOST], count out. */
+int numerics_measure(const Run *baseline, NumericRow *rows, int *count, Fault *fault);
+
+#endif

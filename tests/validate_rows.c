@@ -1,0 +1,400 @@
+/* validate_rows: the model's value of each row of tests/published-values.csv. */
+#include "validate.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "../chem/oxygen.h"
+#include "../chem/rates.h"
+#include "../input/constants.h"
+#include "../input/table.h"
+#include "../model/answers.h"
+
+typedef struct {
+    const Run *run;
+    const Steady *steady;
+    const Model *model;
+    const char *id, *conditions;
+    char *note;
+    Fault *fault;
+} Ask;
+
+static int begins(const char *text, const char *start)
+{
+    return strncmp(text, start, strlen(start)) == 0;
+}
+
+static int note(const Ask *ask, const char *format, double number)
+{
+    snprintf(ask->note, ROW_NOTE, format, number);
+    return 0;
+}
+
+static int plain_note(const Ask *ask, const char *text)
+{
+    snprintf(ask->note, ROW_NOTE, "%s", text);
+    return 0;
+}
+
+/* ---- fields ---- */
+
+static double layer_km(const Model *model, int layer)
+{
+    return 1e-5 * model->grid.middle[layer];
+}
+
+/* Linear in altitude between layer middles. */
+static double at_km(const Model *model, const double *profile, double km)
+{
+    int l = 0;
+    while (l + 2 < model->grid.layers && layer_km(model, l + 1) < km)
+        l++;
+    double share = (km - layer_km(model, l)) / (layer_km(model, l + 1) - layer_km(model, l));
+    return profile[l] + share * (profile[l + 1] - profile[l]);
+}
+
+/* Layer of the largest value from low to high km. */
+static int highest(const Model *model, const double *profile, double low, double high)
+{
+    int best = -1;
+    for (int l = 0; l < model->grid.layers; l++) {
+        if (layer_km(model, l) < low || layer_km(model, l) > high)
+            continue;
+        if (best < 0 || profile[l] > profile[best])
+            best = l;
+    }
+    return best;
+}
+
+static int solved(const Ask *ask, const char *name, int *index)
+{
+    *index = mechanism_solved(ask->model->mechanism, name);
+    return *index >= 0 ? 0 : fault_set(ask->fault, FAULT_INPUT, "%s: the mechanism has no %s", ask->id, name);
+}
+
+/* Atoms of an element in reactive or inorganic species: everything solved but what carries carbon and N2O. */
+static void inorganic(const Model *model, const double *x, const char *symbol, double *sum)
+{
+    const Mechanism *mechanism = model->mechanism;
+    int element = mechanism_element(mechanism, symbol), carbon = mechanism_element(mechanism, "C");
+    int nitrous_oxide = mechanism_solved(mechanism, "N2O");
+    for (int l = 0; l < model->grid.layers; l++)
+        sum[l] = 0.0;
+    for (int s = 0; s < mechanism->solved; s++) {
+        int atoms = mechanism_atoms(mechanism, s, element);
+        if (!atoms || mechanism_atoms(mechanism, s, carbon) || s == nitrous_oxide)
+            continue;
+        for (int l = 0; l < model->grid.layers; l++)
+            sum[l] += atoms * x[FIELD(model->grid.padded, s, l)];
+    }
+}
+
+/* Mean over calendar years of one species, [layers]. */
+static void mean_profile(const Ask *ask, int species, int first, int last, double *profile)
+{
+    for (int l = 0; l < ask->model->grid.layers; l++) {
+        double sum = 0.0;
+        for (int year = first; year <= last; year++)
+            sum += run_fields(ask->run, year)[FIELD(ask->model->grid.padded, species, l)];
+        profile[l] = sum / (last - first + 1);
+    }
+}
+
+/* ---- the standard atmosphere ---- */
+
+static int standard_air(const Ask *ask, double *value)
+{
+    double km = atof(ask->id + strlen("us76-T-")), temperature, pressure;
+    air_standard_at(km, &temperature, &pressure);
+    *value = ask->id[strlen("us76-")] == 'T' ? temperature : pressure;
+    return note(ask, "the standard's formulas at %g km", km);
+}
+
+/* ---- rate coefficients ---- */
+
+/* Names on the left of an equation that has exactly two reactants; 0 when it has not. */
+static int two_reactants(const char *equation, char name[2][MECHANISM_NAME])
+{
+    char left[200];
+    size_t length = strcspn(equation, ",{");
+    const char *arrow = strstr(equation, " ->");
+    if (arrow && (size_t)(arrow - equation) < length)
+        length = (size_t)(arrow - equation);
+    if (length >= sizeof left)
+        return 0;
+    memcpy(left, equation, length);
+    left[length] = '\0';
+    char tail[MECHANISM_NAME] = "";
+    return sscanf(left, " %31s + %31s %31s", name[0], name[1], tail) == 2;
+}
+
+static int coefficient_298(const Ask *ask, double *value)
+{
+    const Mechanism *mechanism = ask->model->mechanism;
+    const double air = 101325.0 / (BOLTZMANN * 298.0) * 1e-6;
+    char wanted[2][MECHANISM_NAME], name[2][MECHANISM_NAME];
+    int channels = 0;
+    if (!two_reactants(ask->conditions, wanted))
+        return fault_set(ask->fault, FAULT_INPUT, "%s: no two reactants in \"%s\"", ask->id, ask->conditions);
+    *value = 0.0;
+    for (int r = mechanism->thermal_first; r < mechanism->photolysis_first; r++) {
+        const Reaction *reaction = &mechanism->reaction[r];
+        if (strstr(reaction->equation, "(+M)") || !two_reactants(reaction->equation, name))
+            continue;
+        int same = !strcmp(name[0], wanted[0]) && !strcmp(name[1], wanted[1]);
+        int swapped = !strcmp(name[0], wanted[1]) && !strcmp(name[1], wanted[0]);
+        if (!same && !swapped)
+            continue;
+        *value += reaction->branch * rates_law(mechanism, r, 298.0, air, 0.0);
+        channels++;
+    }
+    if (!channels)
+        return fault_set(ask->fault, FAULT_INPUT, "%s: no reaction %s + %s in the mechanism", ask->id, wanted[0],
+                         wanted[1]);
+    return note(ask, "sum over %g channel(s)", channels);
+}
+
+/* ---- lifetimes ---- */
+
+/* Loss of a solved species in one layer, cm-3 s-1, under the factors of the steady column. */
+static double loss_rate(const Ask *ask, int species, int layer)
+{
+    const Model *model = ask->model;
+    const Mechanism *mechanism = model->mechanism;
+    const double *coefficient = stepper_coefficients(ask->steady->stepper), *x = ask->steady->column->x;
+    const double *factor =
+        model->settings.day == DAY_FACTORS ? stepper_day(ask->steady->stepper)->factor : NULL;
+    double sum = 0.0;
+    for (int r = 0; r < mechanism->reactions; r++) {
+        const Reaction *reaction = &mechanism->reaction[r];
+        double change = 0.0;
+        for (int c = 0; c < reaction->changes; c++)
+            if (reaction->changed[c] == species)
+                change += reaction->change[c];
+        if (change >= 0.0)
+            continue;
+        size_t at = FIELD(model->grid.padded, r, layer);
+        double rate = coefficient[at] * (factor ? factor[at] : 1.0);
+        for (int i = 0; i < reaction->reactants; i++)
+            rate *= x[FIELD(model->grid.padded, reaction->reactant[i], layer)] * model->air.number_density[layer];
+        sum -= change * rate;
+    }
+    return sum;
+}
+
+static int lifetime(const Ask *ask, double *value)
+{
+    const Model *model = ask->model;
+    const char *gas = ask->id + strlen("tau-");
+    int species, aloft = strstr(ask->conditions, "stratospheric loss only") != NULL;
+    if (solved(ask, gas, &species))
+        return ask->fault->code;
+    double loss = 0.0, burden = column_burden(model, ask->steady->column->x, species);
+    for (int l = 0; l < model->grid.layers; l++)
+        if (!aloft || layer_km(model, l) >= model->settings.tropopause_km)
+            loss += loss_rate(ask, species, l) * model->grid.depth[l];
+    if (!(loss > 0.0))
+        return fault_set(ask->fault, FAULT_NUMERICS, "%s: %s is not lost", ask->id, gas);
+    *value = burden / loss / YEAR_SECONDS;
+    return note(ask, aloft ? "balance of %g, loss above the tropopause" : "balance of %g, all loss", STEADY_YEAR);
+}
+
+/* ---- ozone ---- */
+
+enum { EARLY_FIRST = 1964, EARLY_LAST = 1980, LATE_FIRST = 1996, LATE_LAST = 2000 };
+
+static int ozone(const Ask *ask, double *value)
+{
+    const Model *model = ask->model;
+    double profile[SETTINGS_MAX_EDGES], density[SETTINGS_MAX_EDGES], early;
+    int species;
+    if (solved(ask, "O3", &species))
+        return ask->fault->code;
+    mean_profile(ask, species, EARLY_FIRST, EARLY_LAST, profile);
+    for (int l = 0; l < model->grid.layers; l++)
+        density[l] = profile[l] * model->air.number_density[l];
+    early = run_column(ask->run, EARLY_FIRST, EARLY_LAST);
+    int most = highest(model, profile, 0, 100), thickest = highest(model, density, 0, 100);
+    plain_note(ask, "mean of 1964-1980");
+    if (!strcmp(ask->id, "O3-column")) {
+        *value = early;
+    } else if (!strcmp(ask->id, "O3-peak-x")) {
+        *value = 1e6 * profile[most];
+    } else if (!strcmp(ask->id, "O3-peak-x-z")) {
+        *value = layer_km(model, most);
+    } else if (!strcmp(ask->id, "O3-peak-n-z")) {
+        *value = layer_km(model, thickest);
+    } else if (!strcmp(ask->id, "us76-O3-peak")) {
+        *value = density[thickest];
+        note(ask, "mean of 1964-1980, at %g km", layer_km(model, thickest));
+    } else if (!strcmp(ask->id, "O3-strat-share")) {
+        double below = 0.0;
+        for (int l = 0; l < model->grid.layers; l++)
+            if (layer_km(model, l) < model->settings.tropopause_km)
+                below += density[l] * model->grid.depth[l] / DOBSON_CM2;
+        *value = 1.0 - below / early;
+        note(ask, "mean of 1964-1980; %.1f DU below the tropopause", below);
+    } else if (!strcmp(ask->id, "O3-loss-2000")) {
+        *value = 100.0 * (run_column(ask->run, LATE_FIRST, LATE_LAST) / early - 1.0);
+        note(ask, "1996-2000 against %.2f DU", early);
+    } else {
+        return -1;
+    }
+    return 0;
+}
+
+static int return_year(const Ask *ask, double *value)
+{
+    ColumnSeries series = {ask->run->years, ask->run->time, ask->run->column};
+    Answers answers;
+    if (answers_compute(&answers, &series, 1980, ask->fault))
+        return ask->fault->code;
+    *value = answers.returns == 1 ? answers.return_year : NAN;
+    return note(ask, answers.returns == 1 ? "lowest year mean %.2f DU" : "no return by 2100; lowest year mean %.2f DU",
+                answers.minimum);
+}
+
+/* ---- other gases, year 2000 ---- */
+
+static int highest_above(const Ask *ask, const double *profile, double scale, double *value)
+{
+    int l = highest(ask->model, profile, ask->model->settings.tropopause_km, 60.0);
+    *value = scale * profile[l];
+    return note(ask, "year 2000, largest above the tropopause, at %g km", layer_km(ask->model, l));
+}
+
+static int at_altitude(const Ask *ask, const double *profile, double km, double scale, double *value)
+{
+    *value = scale * at_km(ask->model, profile, km);
+    return note(ask, "year 2000, %g km", km);
+}
+
+static int composition(const Ask *ask, double *value)
+{
+    static const struct {
+        const char *id, *species, *element; /* one of the two */
+        double km;                          /* 0: the largest */
+        double scale;
+    } rows[] = {{"H2O-50", "H2O", NULL, 50, 1e6},   {"NOy-max", NULL, "N", 0, 1e9},
+                {"HNO3-max", "HNO3", NULL, 0, 1e9}, {"ClO-max", "ClO", NULL, 0, 1e9},
+                {"HCl-50", "HCl", NULL, 50, 1e9},   {"Cly-50", NULL, "Cl", 50, 1e9},
+                {"Bry-30", NULL, "Br", 30, 1e12}};
+    for (size_t i = 0; i < sizeof rows / sizeof rows[0]; i++) {
+        if (strcmp(ask->id, rows[i].id))
+            continue;
+        double profile[SETTINGS_MAX_EDGES];
+        int species;
+        if (rows[i].species) {
+            if (solved(ask, rows[i].species, &species))
+                return ask->fault->code;
+            mean_profile(ask, species, 2000, 2000, profile);
+        } else {
+            inorganic(ask->model, run_fields(ask->run, 2000), rows[i].element, profile);
+        }
+        return rows[i].km > 0 ? at_altitude(ask, profile, rows[i].km, rows[i].scale, value)
+                              : highest_above(ask, profile, rows[i].scale, value);
+    }
+    return -1;
+}
+
+/* ---- sunlight ---- */
+
+/* Integral of the solar table, whose values are means over intervals that reach half-way to the neighbours. */
+static int sunlight_above(const Ask *ask, double *value)
+{
+    const Settings *settings = &ask->model->settings;
+    char path[SETTINGS_PATH];
+    Table table = {0};
+    size_t wavelength, irradiance;
+    double low, high;
+    if (sscanf(ask->id, "uv-toa-%lf-%lf", &low, &high) != 2)
+        return -1;
+    int code = table_locate("solar spectrum", settings->solar_file, settings->case_dir, settings->data_dir, path,
+                            sizeof path, ask->fault);
+    if (!code)
+        code = table_read(&table, path, ask->fault);
+    if (!code)
+        code = table_column(&table, "wavelength_nm", &wavelength, ask->fault);
+    if (!code)
+        code = table_column(&table, "irradiance_W_m-2_nm-1", &irradiance, ask->fault);
+    *value = 0.0;
+    for (size_t i = 1; !code && i + 1 < table.rows; i++) {
+        const double *x = table_values(&table, wavelength), *y = table_values(&table, irradiance);
+        double from = fmax(low, 0.5 * (x[i - 1] + x[i])), to = fmin(high, 0.5 * (x[i] + x[i + 1]));
+        if (to > from)
+            *value += y[i] * (to - from);
+    }
+    table_free(&table);
+    return code ? code : plain_note(ask, "the solar table, steps of its intervals");
+}
+
+/* The longest wavelength at which the program dissociates O2. */
+static int oxygen_threshold(const Ask *ask, double *value)
+{
+    const Spectra *spectra = ask->model->spectra;
+    const Mechanism *mechanism = ask->model->mechanism;
+    *value = 0.0;
+    for (int r = mechanism->photolysis_first; r < mechanism->surface_first; r++) {
+        if (mechanism->reaction[r].special != SPECIAL_O2)
+            continue;
+        int yield = spectra->reaction_yield[r - mechanism->photolysis_first];
+        for (int b = 0; b < spectra->bins; b++) {
+            double phi = yield >= 0 ? spectra->spectrum[yield].sigma[b] : 1.0;
+            if (phi * spectra->spectrum[spectra->oxygen].sigma[b] > 0.0)
+                *value = fmax(*value, fmin(spectra->upper[b], OXYGEN_DISSOCIATION_EDGE_NM));
+        }
+    }
+    return plain_note(ask, "end of the last bin with O2 + hv, or the edge within it");
+}
+
+/* "Strongly": the vertical ozone column of 1964-1980 takes at least a tenth of the light. */
+static int ozone_strong(const Ask *ask, double *value)
+{
+    const Spectra *spectra = ask->model->spectra;
+    const Spectrum *sigma = &spectra->spectrum[spectra->ozone];
+    double column = run_column(ask->run, EARLY_FIRST, EARLY_LAST) * DOBSON_CM2;
+    *value = 0.0;
+    for (int b = 0; b < spectra->bins && spectra->upper[b] < 400.0; b++)
+        if (sigma->sigma[(size_t)(sigma->temperatures - 1) * (size_t)spectra->bins + (size_t)b] * column > -log(0.9))
+            *value = spectra->upper[b];
+    return plain_note(ask, "the column of 1964-1980 takes a tenth of the light overhead");
+}
+
+/* ---- which is which ---- */
+
+int row_compute(const Evidence *evidence, const char *id, const char *conditions, int *state, double *value,
+                char *note_text, Fault *fault)
+{
+    static const char *const later[] = {"odp-", "eesc-", "uv-raf", "uvi-overhead", "uv-bands"};
+    const Ask ask = {evidence->run, evidence->steady, evidence->run->model, id, conditions, note_text, fault};
+    note_text[0] = '\0';
+    *value = NAN;
+    for (size_t i = 0; i < sizeof later / sizeof later[0]; i++)
+        if (begins(id, later[i])) {
+            *state = ROW_LATER;
+            return 0;
+        }
+    *state = ROW_COMPUTED;
+    int code = -1;
+    if (begins(id, "us76-T-") || begins(id, "us76-p-"))
+        code = standard_air(&ask, value);
+    else if (begins(id, "k298-"))
+        code = coefficient_298(&ask, value);
+    else if (begins(id, "tau-"))
+        code = lifetime(&ask, value);
+    else if (!strcmp(id, "return-1980"))
+        code = return_year(&ask, value);
+    else if (begins(id, "uv-toa-"))
+        code = sunlight_above(&ask, value);
+    else if (!strcmp(id, "O2-threshold"))
+        code = oxygen_threshold(&ask, value);
+    else if (!strcmp(id, "O3-strong"))
+        code = ozone_strong(&ask, value);
+    else if ((code = composition(&ask, value)) == -1)
+        code = ozone(&ask, value);
+    if (code == -1)
+        return fault_set(fault, FAULT_INPUT, "row %s: the program does not know how to compute it", id);
+    return code;
+}
