@@ -67,7 +67,7 @@ typedef struct {
 
     SolverCounts counts;
     long photolysis_refreshes, factor_refreshes, outer_steps;
-    long days, unsettled;    /* explicit days carried by packs; packs whose day did not repeat within DAY_MOST */
+    long days, unsettled;    /* explicit days carried; refreshes whose day did not repeat within DAY_MOST */
 } Column;
 
 /* Build the model a case describes: reads every table. Owner: caller. */

@@ -192,7 +192,7 @@ static int run_sunlight(const Look *look, Fault *fault) {
     if (!code) code = column_make(&column, model, fault);
     if (!code && look->given) code = one_sun(model, column, look->number, &rate, fault);
     if (!code && !look->given) code = light_make(&light, model, 1, fault);
-    if (!code && light) light_refresh(light, column->x);
+    if (!code && light) light_refresh(light, column->x, NULL);
     if (!code) print_sunlight(model, column, light, rate, look);
     free(rate);
     light_free(light);

@@ -98,7 +98,7 @@ static void print_summary(const Model *model, const Column *column) {
            "(absolute tolerance %g)\n",
            counts->steps, counts->rejections, counts->negatives, counts->most_negative,
            model->settings.absolute_tolerance_cm3);
-    printf("photolysis rates made %ld times, diurnal factors %ld times (%ld packs of days unsettled)\n",
+    printf("photolysis rates made %ld times, diurnal factors %ld times (%ld from a day that did not repeat)\n",
            column->photolysis_refreshes, column->factor_refreshes, column->unsettled);
     static const char *const elements[] = {"Cl", "Br", "N", "H"};
     printf("atoms unaccounted for, relative:");

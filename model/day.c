@@ -1,4 +1,4 @@
-/* day: diurnal factors from the explicit day. */
+/* day: diurnal factors. */
 #include "day.h"
 
 #include <math.h>
@@ -13,6 +13,8 @@ static const double SHARE_THAT_MATTERS = 0.01;
 static const double ABSENT = 1e-4;
 /* Species whose midnight value is within this of the mean have no diurnal course worth watching. */
 static const double FLAT = 0.05;
+/* Mole fraction below which no change is worth watching: a tenth of a part per trillion destroys no ozone to speak of. */
+static const double ENOUGH = 1e-13;
 
 int day_make(Day **made, const Model *model, Fault *fault) {
     *made = NULL;
@@ -23,14 +25,19 @@ int day_make(Day **made, const Model *model, Fault *fault) {
     day->model = model;
     day->factor = malloc(reactions * padded * sizeof(double));
     day->ratio = malloc(solved * padded * sizeof(double));
+    day->lit = malloc(solved * padded * sizeof(double));
     day->reference = calloc(solved * padded, sizeof(double));
-    day->step = calloc(padded / PACK, sizeof(double));
-    if (!day->factor || !day->ratio || !day->reference || !day->step) {
+    day->sum_y = calloc(solved * padded, sizeof(double));
+    day->sum_lit = calloc(solved * padded, sizeof(double));
+    day->sum_w = calloc(reactions * padded, sizeof(double));
+    day->loss = calloc(solved, sizeof(double));
+    if (!day->factor || !day->ratio || !day->lit || !day->reference || !day->sum_y || !day->sum_lit || !day->sum_w ||
+        !day->loss) {
         day_free(day);
         return fault_memory(fault, "diurnal factors");
     }
     for (size_t i = 0; i < reactions * padded; i++) day->factor[i] = 1.0;
-    for (size_t i = 0; i < solved * padded; i++) day->ratio[i] = 1.0;
+    for (size_t i = 0; i < solved * padded; i++) day->ratio[i] = day->lit[i] = 1.0;
     *made = day;
     return 0;
 }
@@ -39,8 +46,12 @@ void day_free(Day *day) {
     if (!day) return;
     free(day->factor);
     free(day->ratio);
+    free(day->lit);
     free(day->reference);
-    free(day->step);
+    free(day->sum_y);
+    free(day->sum_lit);
+    free(day->sum_w);
+    free(day->loss);
     free(day);
 }
 
@@ -48,106 +59,79 @@ int day_stale(const Day *day, const double *x) {
     if (!day->ready) return 1;
     const Model *model = day->model;
     int padded = model->grid.padded;
-    /* A tenth of a part per trillion of anything destroys no ozone worth counting. */
-    const double enough = 1e-13;
     for (int s = 0; s < model->mechanism->solved; s++)
         for (int l = 0; l < model->grid.layers; l++) {
             size_t at = FIELD(padded, s, l);
-            if (fabs(day->ratio[at] - 1.0) < FLAT || !(x[at] > enough || day->reference[at] > enough)) continue;
-            if (fabs(x[at] - day->reference[at]) > model->settings.refresh_state * fmax(day->reference[at], enough))
+            if (fabs(day->ratio[at] - 1.0) < FLAT || !(x[at] > ENOUGH || day->reference[at] > ENOUGH)) continue;
+            if (fabs(x[at] - day->reference[at]) > model->settings.refresh_state * fmax(day->reference[at], ENOUGH))
                 return 1;
         }
     return 0;
 }
 
-int day_fault(const Model *model, int first, int result, int where, double time, Fault *fault) {
-    static const char *const why[] = {"", "needed too many steps", "shrank its step to nothing", "met a value that is no number"};
-    int species = model->kernel->species, lane = where / species, s = where % species;
-    int layer = first + lane < model->grid.layers ? first + lane : model->grid.layers - 1;
-    const char *name = s < model->mechanism->solved ? mechanism_name(model->mechanism, s) : "an atom counter";
-    return fault_set(fault, FAULT_NUMERICS,
-                     "year %.2f, altitude %.2f km, species %s: the chemistry solver %s; check the mechanism's rates or loosen "
-                     "numerics.relative_tolerance",
-                     time, 1e-5 * model->grid.middle[layer], name, why[result]);
+static size_t fields(const Day *day, int rows) { return (size_t)rows * (size_t)day->model->grid.padded; }
+
+void day_midnight(const Day *day, const double *x, double *start) {
+    for (size_t i = 0; i < fields(day, day->model->mechanism->solved); i++) start[i] = x[i] * day->ratio[i];
 }
 
-/* Factors of one pack from the sums of one day; returns the largest change among reactions that matter. */
-static double take_factors(Day *day, const PackWork *work, const Light *light, int first, const double *coefficient) {
-    const Model *model = day->model;
-    const Mechanism *mechanism = model->mechanism;
-    const Kernel *kernel = model->kernel;
-    int padded = model->grid.padded;
+void day_clear(Day *day) {
+    memset(day->sum_y, 0, fields(day, day->model->mechanism->solved) * sizeof(double));
+    memset(day->sum_lit, 0, fields(day, day->model->mechanism->solved) * sizeof(double));
+    memset(day->sum_w, 0, fields(day, day->model->mechanism->reactions) * sizeof(double));
+}
+
+static void take_ratios(Day *day, const double *end, double lit_time) {
+    int padded = day->model->grid.padded;
+    for (int s = 0; s < day->model->mechanism->solved; s++)
+        for (int l = 0; l < padded; l++) {
+            size_t at = FIELD(padded, s, l);
+            double mean = day->sum_y[at] / DAY_SECONDS, midnight = end[at] * day->model->air.number_density[l];
+            int there = mean > ABSENT;
+            /* a value below zero is within the solver's tolerance of zero, and a ratio cannot say more than that */
+            day->ratio[at] = there ? fmax(0.0, midnight) / mean : 1.0;
+            day->lit[at] = there && lit_time > 0.0 ? fmax(0.0, day->sum_lit[at]) / lit_time / mean : 1.0;
+        }
+}
+
+/* One layer; returns the largest change among reactions that matter. */
+static double take_factors(Day *day, const Light *light, int layer, const double *coefficient) {
+    const Mechanism *mechanism = day->model->mechanism;
+    const Kernel *kernel = day->model->kernel;
+    int padded = day->model->grid.padded;
     double change = 0.0;
-    memset(work->loss, 0, (size_t)kernel->species * PACK * sizeof(double));
+    memset(day->loss, 0, (size_t)mechanism->solved * sizeof(double));
     for (int r = 0; r < kernel->reactions; r++)
         for (int i = 0; i < kernel->order[r]; i++)
-            for (int l = 0; l < PACK; l++)
-                work->loss[kernel->reactant[3 * r + i] * PACK + l] += work->sum_w[r * PACK + l] / DAY_SECONDS;
-    for (int l = 0; l < PACK; l++)
-        for (int r = 0; r < kernel->reactions; r++) {
-            int lit = r >= mechanism->photolysis_first && r < mechanism->surface_first;
-            double mean = lit ? light->mean[FIELD(padded, r - mechanism->photolysis_first, first + l)]
-                              : coefficient[FIELD(padded, r, first + l)];
-            double rate = work->sum_w[r * PACK + l] / DAY_SECONDS;
-            int absent = !(mean > 0.0), matters = 0;
-            for (int i = 0; i < kernel->order[r]; i++) {
-                int s = kernel->reactant[3 * r + i];
-                double y = work->sum_y[s * PACK + l] / DAY_SECONDS;
-                absent |= !(y > ABSENT);
-                mean *= y;
-                matters |= rate > SHARE_THAT_MATTERS * work->loss[s * PACK + l];
-            }
-            double *factor = &day->factor[FIELD(padded, r, first + l)], last = *factor;
-            *factor = absent || !(mean > 0.0) || !(rate > 0.0) ? 1.0 : rate / mean;
-            if (matters && !absent) change = fmax(change, fabs(*factor - last) / fmax(*factor, last));
+            day->loss[kernel->reactant[3 * r + i]] += day->sum_w[FIELD(padded, r, layer)] / DAY_SECONDS;
+    for (int r = 0; r < kernel->reactions; r++) {
+        size_t at = FIELD(padded, r, layer);
+        int lit = r >= mechanism->photolysis_first && r < mechanism->surface_first;
+        double mean = lit ? light->mean[FIELD(padded, r - mechanism->photolysis_first, layer)] : coefficient[at];
+        double rate = day->sum_w[at] / DAY_SECONDS, last = day->factor[at];
+        int absent = !(mean > 0.0), matters = 0;
+        for (int i = 0; i < kernel->order[r]; i++) {
+            int s = kernel->reactant[3 * r + i];
+            double y = day->sum_y[FIELD(padded, s, layer)] / DAY_SECONDS;
+            absent |= !(y > ABSENT);
+            mean *= y;
+            matters |= rate > SHARE_THAT_MATTERS * day->loss[s];
         }
+        absent |= !(mean > 0.0) || !(rate > 0.0);
+        day->factor[at] = absent ? 1.0 : rate / mean;
+        if (matters && !absent) change = fmax(change, fabs(day->factor[at] - last) / fmax(day->factor[at], last));
+    }
     return change;
 }
 
-static void hold(PackWork *work) {
-    for (int h = 0; h < work->held; h++)
-        for (int l = 0; l < PACK; l++)
-            if (work->held_free[h * PACK + l] == 0.0)
-                work->y[work->held_species[h] * PACK + l] = work->held_value[h * PACK + l];
+double day_take(Day *day, const Light *light, const double *end, double lit_time, const double *coefficient) {
+    double change = 0.0;
+    take_ratios(day, end, lit_time);
+    for (int l = 0; l < day->model->grid.padded; l++) change = fmax(change, take_factors(day, light, l, coefficient));
+    return change;
 }
 
-/* Densities at midnight: daily means of the run times the ratios of the last day. */
-static void set_midnight(const Day *day, PackWork *work, int first, const double *x) {
-    int padded = day->model->grid.padded;
-    pack_load(work, day->model, first, x);
-    for (int s = 0; s < day->model->mechanism->solved; s++)
-        for (int l = 0; l < PACK; l++) work->y[s * PACK + l] *= day->ratio[FIELD(padded, s, first + l)];
-}
-
-static void take_ratios(Day *day, const PackWork *work, int first) {
-    int padded = day->model->grid.padded;
-    for (int s = 0; s < day->model->mechanism->solved; s++)
-        for (int l = 0; l < PACK; l++) {
-            double mean = work->sum_y[s * PACK + l] / DAY_SECONDS;
-            day->ratio[FIELD(padded, s, first + l)] = mean > ABSENT ? fmax(0.0, work->y[s * PACK + l]) / mean : 1.0;
-        }
-}
-
-int day_factors(Day *day, PackWork *work, const Light *light, int first, const double *x, const double *coefficient,
-                double time, const Tolerance *tolerance, SolverCounts *counts, long *days, int *settled, Fault *fault) {
-    const Model *model = day->model;
-    int padded = model->grid.padded, solved = model->mechanism->solved, pack = first / PACK;
-    *days = 0;
-    *settled = 0;
-    pack_load(work, model, first, x);
-    while (day->ready ? !*settled && *days < DAY_MOST : *days < DAY_COLD) {
-        if (day->ready) set_midnight(day, work, first, x);
-        hold(work);
-        memset(work->sum_y, 0, (size_t)model->kernel->species * PACK * sizeof(double));
-        memset(work->sum_w, 0, (size_t)model->kernel->reactions * PACK * sizeof(double));
-        pack_rates(work, model, first, coefficient, light->mean, NULL);
-        int where, result = pack_day(work, light, first, 1, tolerance, &day->step[pack], counts, &where);
-        if (result) return day_fault(model, first, result, where, time, fault);
-        ++*days;
-        take_ratios(day, work, first);
-        *settled = take_factors(day, work, light, first, coefficient) < DAY_SETTLED;
-    }
-    for (int s = 0; s < solved; s++)
-        memcpy(day->reference + FIELD(padded, s, first), x + FIELD(padded, s, first), PACK * sizeof(double));
-    return 0;
+void day_settle(Day *day, const double *x) {
+    memcpy(day->reference, x, fields(day, day->model->mechanism->solved) * sizeof(double));
+    day->ready = 1;
 }

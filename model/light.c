@@ -55,22 +55,24 @@ void light_free(Light *light) {
 }
 
 /* Ozone above the middle of each layer, cm-2. */
-static void overhead_column(const Model *model, const double *x, double *out) {
-    int layers = model->grid.layers, padded = model->grid.padded;
-    const double *o3 = x + FIELD(padded, mechanism_solved(model->mechanism, "O3"), 0);
-    double above = o3[layers - 1] * model->air.column_above_top;
-    for (int l = layers - 1; l >= 0; l--) {
-        double half = 0.5 * o3[l] * model->air.number_density[l] * model->grid.depth[l];
+static void overhead_column(const Model *model, const double *x, const double *lit, double *out) {
+    int layers = model->grid.layers, padded = model->grid.padded, top = layers - 1;
+    size_t row = FIELD(padded, mechanism_solved(model->mechanism, "O3"), 0);
+    const double *o3 = x + row;
+    double above = o3[top] * (lit ? lit[row + (size_t)top] : 1.0) * model->air.column_above_top;
+    for (int l = top; l >= 0; l--) {
+        double share = lit ? lit[row + (size_t)l] : 1.0;
+        double half = 0.5 * o3[l] * share * model->air.number_density[l] * model->grid.depth[l];
         out[l] = above + half;
         above += 2.0 * half;
     }
 }
 
-int light_stale(const Light *light, const double *x) {
+int light_stale(const Light *light, const double *x, const double *lit) {
     if (!light->ready) return 1;
     const Model *model = light->model;
     double now[PACK_ROUND(SETTINGS_MAX_EDGES)];
-    overhead_column(model, x, now);
+    overhead_column(model, x, lit, now);
     for (int l = 0; l < model->grid.layers; l++) {
         double scale = fmax(light->overhead[l], UNIT_DEPTH);
         if (fabs(now[l] - light->overhead[l]) > model->settings.refresh_column * scale) return 1;
@@ -79,10 +81,13 @@ int light_stale(const Light *light, const double *x) {
 }
 
 /* A negative mole fraction within the tolerance absorbs nothing. */
-static void number_density(const Model *model, const double *x, const char *name, double *out) {
+static void number_density(const Model *model, const double *x, const double *lit, const char *name, double *out) {
     int solved = mechanism_solved(model->mechanism, name), padded = model->grid.padded;
-    for (int l = 0; l < padded; l++)
-        out[l] = solved < 0 ? 0.0 : fmax(0.0, x[FIELD(padded, solved, l)]) * model->air.number_density[l];
+    for (int l = 0; l < padded; l++) {
+        size_t at = solved < 0 ? 0 : FIELD(padded, solved, l);
+        double share = lit ? lit[at] : 1.0;
+        out[l] = solved < 0 ? 0.0 : fmax(0.0, x[at]) * share * model->air.number_density[l];
+    }
 }
 
 /* Number density of the fixed reactants of a photolysis reaction; 1 when the absorber is a solved species. */
@@ -106,13 +111,13 @@ static void fold_fixed_reactants(Light *light) {
     }
 }
 
-void light_refresh(Light *light, const double *x) {
+void light_refresh(Light *light, const double *x, const double *lit) {
     const Model *model = light->model;
     int padded = model->grid.padded, reactions = light->reactions;
     if (light->sun.nodes) {
-        number_density(model, x, "O3", light->density);
-        number_density(model, x, "NO2", light->density + padded);
-        number_density(model, x, "NO", light->density + 2 * padded);
+        number_density(model, x, lit, "O3", light->density);
+        number_density(model, x, lit, "NO2", light->density + padded);
+        number_density(model, x, lit, "NO", light->density + 2 * padded);
         photolysis_rates(light->photolysis, light->density, light->density + padded, light->density + 2 * padded,
                          light->sun.earth_sun, light->table);
         fold_fixed_reactants(light);
@@ -121,6 +126,6 @@ void light_refresh(Light *light, const double *x) {
         for (int i = 0; i < stride; i++)
             light->mean[i] = sun_spread(&light->sun, light->table + i, stride, light->knot + i, stride);
     }
-    overhead_column(model, x, light->overhead);
+    overhead_column(model, x, lit, light->overhead);
     light->ready = 1;
 }

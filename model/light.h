@@ -25,12 +25,15 @@ typedef struct {
 int light_make(Light **made, const Model *model, int refine, Fault *fault);
 void light_free(Light *light);
 
-/* 1 when the ozone above some layer has changed by more than refresh_column since the last refresh, relative to
- * itself or, where it is thinner, to a column of optical depth 1 at the ozone maximum of absorption. */
-int light_stale(const Light *light, const double *x);
+/* Absorbers while the sun is up: x [solved][padded] mole fractions, times lit [solved][padded] where that is not NULL (mean by
+ * daylight over daily mean: in the mesosphere ozone by day is a fraction of that by night).
+ *
+ * light_stale: 1 when the ozone above some layer has changed by more than refresh_column since the last refresh, relative to
+ * itself or, where it is thinner, to a column of optical depth 1 at the ozone maximum of absorption.
+ * light_refresh: compute the rates. */
+int light_stale(const Light *light, const double *x, const double *lit);
+void light_refresh(Light *light, const double *x, const double *lit);
 /* Photolysis rate itself, s-1, mean over 24 h. */
 double light_mean_rate(const Light *light, int reaction, int layer);
-/* Compute rates for the mole fractions x [solved][padded]. */
-void light_refresh(Light *light, const double *x);
 
 #endif

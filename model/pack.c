@@ -19,7 +19,7 @@ int pack_make(PackWork **made, const Model *model, Fault *fault) {
     } part[] = {{&work->y, species},         {&work->k, reactions},     {&work->slope, reactions},
                 {&work->sum_y, species},     {&work->sum_w, reactions}, {&work->tally, tallies},
                 {&work->held_free, species}, {&work->held_value, species},
-                {&work->loss, species},      {&work->atoms, MECHANISM_ELEMENTS}};
+                {&work->atoms, MECHANISM_ELEMENTS}};
     size_t rows = 0, parts = sizeof part / sizeof part[0];
     for (size_t i = 0; i < parts; i++) rows += part[i].rows;
     work->block = aligned_alloc(PACK * sizeof(double), rows * PACK * sizeof(double));
@@ -189,6 +189,17 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
     }
 }
 
+int pack_fault(const Model *model, int first, int result, int where, double time, Fault *fault) {
+    static const char *const why[] = {"", "needed too many steps", "shrank its step to nothing", "met a value that is no number"};
+    int species = model->kernel->species, lane = where / species, s = where % species;
+    int layer = first + lane < model->grid.layers ? first + lane : model->grid.layers - 1;
+    const char *name = s < model->mechanism->solved ? mechanism_name(model->mechanism, s) : "an atom counter";
+    return fault_set(fault, FAULT_NUMERICS,
+                     "year %.2f, altitude %.2f km, species %s: the chemistry solver %s; check the mechanism's rates or loosen "
+                     "numerics.relative_tolerance",
+                     time, 1e-5 * model->grid.middle[layer], name, why[result]);
+}
+
 PackProblem pack_problem(const PackWork *work, int sums, double step) {
     return (PackProblem){
         .y = work->y,
@@ -229,29 +240,55 @@ static void dark_rates(PackWork *work, const Light *light) {
            (size_t)light->reactions * PACK * sizeof(double));
 }
 
-int pack_day(PackWork *work, const Light *light, int first, int sums, const Tolerance *tolerance, double *step,
-             SolverCounts *counts, int *where) {
+enum { NOON = SUN_KNOTS - 1 };
+_Static_assert(NOON % PACK_MORNING_PARTS == 0, "the parts of the morning must end at knots");
+
+/* The part of the morning half that this one is or mirrors. */
+static int morning_part(int part) { return part < PACK_DAY_PARTS / 2 ? part : PACK_DAY_PARTS - 1 - part; }
+
+/* Knot at which a lit part of the morning begins; the next part's knot is its end. */
+static int part_knot(int part) { return (part - PACK_NIGHT_PARTS) * (NOON / PACK_MORNING_PARTS); }
+
+double pack_part_length(const Light *light, int part) {
+    const Sun *sun = &light->sun;
+    part = morning_part(part);
+    if (part < PACK_NIGHT_PARTS) return (sun->nodes ? sun->time[0] : 0.5 * DAY_SECONDS) / PACK_NIGHT_PARTS;
+    return sun->nodes ? sun->time[part_knot(part + 1)] - sun->time[part_knot(part)] : 0.0;
+}
+
+int pack_part_lit(int part) { return morning_part(part) >= PACK_NIGHT_PARTS; }
+
+double pack_lit_time(const Light *light) {
+    double time = 0.0;
+    for (int part = 0; part < PACK_DAY_PARTS; part++)
+        if (pack_part_lit(part)) time += pack_part_length(light, part);
+    return time;
+}
+
+int pack_part(PackWork *work, const Light *light, int first, int part, const Tolerance *tolerance, double *step,
+              SolverCounts *counts, int *where) {
     const Kernel *kernel = light->model->kernel;
     const Sun *sun = &light->sun;
-    PackProblem problem = pack_problem(work, sums, *step);
-    problem.slope_first = light->model->mechanism->photolysis_first;
-    problem.slope_last = light->model->mechanism->surface_first;
-    double rise = sun->nodes ? sun->time[0] : 0.5 * DAY_SECONDS;
-
-    dark_rates(work, light);
-    int code = rise > 0.0 ? solver_advance(kernel, work->solver, &problem, rise, tolerance, counts, where) : 0;
-    problem.k_slope = work->slope;
-    for (int i = 0; !code && sun->nodes && i < 2 * (SUN_KNOTS - 1); i++) {
-        int morning = i < SUN_KNOTS - 1;
-        int here = morning ? i : 2 * (SUN_KNOTS - 1) - i, next = morning ? here + 1 : here - 1;
-        double length = morning ? sun->time[next] - sun->time[here] : sun->time[here] - sun->time[next];
-        lit_rates(work, light, first, here);
-        lit_slopes(work, light, first, next, length);
+    double length = pack_part_length(light, part);
+    if (!(length > 0.0)) return SOLVER_DONE;
+    PackProblem problem = pack_problem(work, 1, *step);
+    int code = SOLVER_DONE;
+    if (!pack_part_lit(part)) {
+        dark_rates(work, light);
         code = solver_advance(kernel, work->solver, &problem, length, tolerance, counts, where);
+    } else {
+        int afternoon = part >= PACK_DAY_PARTS / 2, way = afternoon ? -1 : 1, like = morning_part(part);
+        int here = part_knot(like + afternoon), end = part_knot(like + !afternoon);
+        problem.k_slope = work->slope;
+        problem.slope_first = light->model->mechanism->photolysis_first;
+        problem.slope_last = light->model->mechanism->surface_first;
+        for (; !code && here != end; here += way) {
+            double interval = fabs(sun->time[here + way] - sun->time[here]);
+            lit_rates(work, light, first, here);
+            lit_slopes(work, light, first, here + way, interval);
+            code = solver_advance(kernel, work->solver, &problem, interval, tolerance, counts, where);
+        }
     }
-    dark_rates(work, light);
-    problem.k_slope = NULL;
-    if (!code && rise > 0.0) code = solver_advance(kernel, work->solver, &problem, rise, tolerance, counts, where);
     *step = problem.step;
     return code;
 }

@@ -21,7 +21,6 @@ typedef struct {
     double *tally;     /* [tallies][PACK] cm-3 */
     double *held_free, *held_value; /* [held][PACK] */
     double *atoms;     /* [elements][PACK] atoms cm-3 at loading */
-    double *loss;      /* [kernel species][PACK] for day.c: mean loss rates */
     int held, *held_species; /* prescribed somewhere in this pack: below the tropopause, or in the lowest layer by the ground */
     void *block;
 } PackWork;
@@ -47,12 +46,24 @@ void pack_rates(PackWork *work, const Model *model, int first, const double *coe
  * a call and always the same way once the state is steady; that much, and not more than PACK_ROUND_OFF, is put back onto
  * the element's most abundant carrier in the lane. A larger defect is a fault of the chemistry and stays for the ledger to show. */
 void pack_store(PackWork *work, const Model *model, int first, double *x, PackLedger *ledger);
+/* FAULT_NUMERICS for a solver that failed in the pack that starts at layer first, naming altitude and species. */
+int pack_fault(const Model *model, int first, int result, int where, double time, Fault *fault);
 /* The solver's problem over this pack; sums = 1 asks for time integrals. slope is not set. */
 PackProblem pack_problem(const PackWork *work, int sums, double step);
 
-/* Carry y from one midnight to the next under the light of the pack: k must hold everything but photolysis. Sums are added
- * to when sums = 1. step in/out: the solver's step size. Returns enum SolverResult; *where as solver_advance. */
-int pack_day(PackWork *work, const Light *light, int first, int sums, const Tolerance *tolerance, double *step,
-             SolverCounts *counts, int *where);
+/* A day goes in PACK_DAY_PARTS parts: PACK_NIGHT_PARTS of the night to sunrise, PACK_MORNING_PARTS of the morning, and their mirror
+ * images about noon. Length of a part, s: the same for a part and its image; 0 where there is no night. */
+#define PACK_NIGHT_PARTS 2
+#define PACK_MORNING_PARTS 2
+#define PACK_DAY_PARTS (2 * (PACK_NIGHT_PARTS + PACK_MORNING_PARTS))
+double pack_part_length(const Light *light, int part);
+int pack_part_lit(int part);
+/* s of a day with the sun up. */
+double pack_lit_time(const Light *light);
+
+/* Carry y through one part of the day under its light; k must hold everything but photolysis. Time integrals are added to
+ * sum_y and sum_w. step in/out: the solver's step size. Returns enum SolverResult; *where as solver_advance. */
+int pack_part(PackWork *work, const Light *light, int first, int part, const Tolerance *tolerance, double *step,
+              SolverCounts *counts, int *where);
 
 #endif

@@ -1,8 +1,8 @@
 /* step: one outer step of the column: half the chemistry, the transport, half the chemistry (Strang 1968).
  *
  * The stiff part comes last (Sportisse 2000): a step leaves radicals in balance with each other instead of smeared by
- * diffusion. With explicit days the chemistry is one whole day between two halves of the transport, whose smearing of a
- * few hundred metres does not matter.
+ * diffusion. With explicit days the step is a day in eight parts, each transport, chemistry, transport: in the mesosphere
+ * diffusion works within hours, and on profiles that differ between day and night.
  *
  * Before the step, photolysis rates, uptake on aerosol and diurnal factors are made afresh where the state has
  * moved enough. Packs of layers are independent within the chemistry and go through it in parallel; everything that is summed
@@ -12,6 +12,7 @@
 #define SKYMEND_STEP_H
 
 #include "day.h"
+#include "pack.h"
 
 /* Time spent by part, s, for the bench. */
 typedef struct {
@@ -35,8 +36,5 @@ const Day *stepper_day(const Stepper *stepper);
 StepClock stepper_clock(const Stepper *stepper);
 /* Rate coefficients of the last step without factors, [reactions][padded]; photolysis rows hold day means (Light.mean). */
 const double *stepper_coefficients(const Stepper *stepper);
-/* Carry one explicit day from midnight for every pack, leaving daily means in mean [solved][padded] and midnight values in x.
- * No transport. */
-int stepper_explicit_day(Stepper *stepper, Column *column, double *mean, Fault *fault);
 
 #endif

@@ -2,11 +2,11 @@
  *
  *     build/tests/validate [--csv FILE] [--no-numerics] [--case CASE.cfg]       (make validate)
  *
- * Every row of tests/published-values.csv is "in" its published range, "out", or "later" (nothing in the program
- * computes it yet). A row that is out needs a reason in tests/validation-reasons.csv. Exit status: 0; 1 when a row is
- * out without a reason or a numerical error is above its limit; else the fault's code. --case takes another case than the
- * built-in baseline, to find out what a row depends on; it must cover 1964 to 2000. Runs from the repository root;
- * SKYMEND_DATA names the data folder (default input/data).
+ * Every row of tests/published-values.csv is "in" its published range, "out", or "later" (nothing in the
+ * program computes it yet). A row that is out, and a numerical error above its limit, needs a reason in
+ * tests/validation-reasons.csv. Exit status: 0; 1 when one is out without a reason; else the fault's code.
+ * --case takes another case than the built-in baseline, to find out what a row depends on; it must cover 1964
+ * to 2000. Runs from the repository root; SKYMEND_DATA names the data folder (default input/data).
  */
 #include <math.h>
 #include <stdio.h>
@@ -67,7 +67,8 @@ static const char *find_reason(const Csv *reasons, const char *id)
 
 /* ---- judging ---- */
 
-static int judge(const Csv *published, const Csv *reasons, const Evidence *evidence, Verdict *verdicts, Fault *fault)
+static int judge(const Csv *published, const Csv *reasons, const Evidence *evidence, Verdict *verdicts,
+                 Fault *fault)
 {
     for (size_t row = 1; row < published->rows; row++) {
         Verdict *v = &verdicts[row];
@@ -78,8 +79,10 @@ static int judge(const Csv *published, const Csv *reasons, const Evidence *evide
         v->reason = find_reason(reasons, id);
         if (v->state == ROW_LATER)
             continue;
-        if (csv_number(published_path, published->line[row], "low", cell(published, row, LOW), &v->low, fault) ||
-            csv_number(published_path, published->line[row], "high", cell(published, row, HIGH), &v->high, fault))
+        if (csv_number(published_path, published->line[row], "low", cell(published, row, LOW), &v->low,
+                       fault) ||
+            csv_number(published_path, published->line[row], "high", cell(published, row, HIGH), &v->high,
+                       fault))
             return fault->code;
         v->inside = v->value >= v->low && v->value <= v->high; /* not a number is out */
     }
@@ -111,8 +114,8 @@ static int print_rows(const Csv *published, const Verdict *verdicts)
         char value[32], range[64];
         value_text(v, value, sizeof value);
         snprintf(range, sizeof range, "%s..%s", cell(published, row, LOW), cell(published, row, HIGH));
-        printf("%-16s %12s  %22s  %-8s %-5s  %s\n", cell(published, row, ID), value, range, cell(published, row, UNIT),
-               word(v), v->note);
+        printf("%-16s %12s  %22s  %-8s %-5s  %s\n", cell(published, row, ID), value, range,
+               cell(published, row, UNIT), word(v), v->note);
         in += v->state == ROW_COMPUTED && v->inside;
         out += v->state == ROW_COMPUTED && !v->inside;
         later += v->state == ROW_LATER;
@@ -131,20 +134,27 @@ static int print_rows(const Csv *published, const Verdict *verdicts)
     return unexplained;
 }
 
-/* Returns the number of errors above their limits. */
-static int print_numerics(const NumericRow *rows, int count)
+/* Returns the number of errors above their limits without a reason. */
+static int print_numerics(const NumericRow *rows, int count, const Csv *reasons)
 {
     int above = 0;
-    printf("\nnumerical errors of the defaults\n%-22s %10s %8s %-4s %-5s  %s\n", "check", "found", "limit", "unit", "", "what");
+    printf("\nnumerical errors of the defaults\n%-22s %10s %8s %-4s %-5s  %s\n", "check", "found", "limit",
+           "unit", "", "what");
     for (int i = 0; i < count; i++) {
         const NumericRow *row = &rows[i];
         int good = row->value <= row->limit;
         char limit[32] = "-";
         if (isfinite(row->limit))
             snprintf(limit, sizeof limit, "%g", row->limit);
-        printf("%-22s %10.4g %8s %-4s %-5s  %s%s%s\n", row->id, row->value, limit, row->unit, good ? "in" : "out",
-               row->what, row->note[0] ? ": " : "", row->note);
-        above += !good;
+        printf("%-22s %10.4g %8s %-4s %-5s  %s%s%s\n", row->id, row->value, limit, row->unit,
+               good ? "in" : "out", row->what, row->note[0] ? ": " : "", row->note);
+    }
+    for (int i = 0; i < count; i++) {
+        const char *reason = find_reason(reasons, rows[i].id);
+        if (rows[i].value <= rows[i].limit)
+            continue;
+        printf("out: %s: %s\n", rows[i].id, reason ? reason : "NO REASON KNOWN");
+        above += !reason;
     }
     return above;
 }
@@ -162,8 +172,8 @@ static void quoted(FILE *out, const char *text)
     fputc('"', out);
 }
 
-static int write_csv(const char *path, const Csv *published, const Verdict *verdicts, const NumericRow *rows, int count,
-                     Fault *fault)
+static int write_csv(const char *path, const Csv *published, const Verdict *verdicts, const NumericRow *rows,
+                     int count, const Csv *reasons, Fault *fault)
 {
     FILE *out = fopen(path, "w");
     if (!out)
@@ -174,8 +184,8 @@ static int write_csv(const char *path, const Csv *published, const Verdict *verd
         fprintf(out, "%s,", cell(published, row, ID));
         if (v->state == ROW_COMPUTED && isfinite(v->value))
             fprintf(out, "%.10g", v->value);
-        fprintf(out, ",%s,%s,%s,%s,", cell(published, row, LOW), cell(published, row, HIGH), cell(published, row, UNIT),
-                word(v));
+        fprintf(out, ",%s,%s,%s,%s,", cell(published, row, LOW), cell(published, row, HIGH),
+                cell(published, row, UNIT), word(v));
         quoted(out, v->note);
         fputc(',', out);
         quoted(out, v->state == ROW_COMPUTED && !v->inside && v->reason ? v->reason : "");
@@ -188,7 +198,10 @@ static int write_csv(const char *path, const Csv *published, const Verdict *verd
             fprintf(out, "%g", row->limit);
         fprintf(out, ",%s,%s,", row->unit, row->value <= row->limit ? "in" : "out");
         quoted(out, row->note);
-        fprintf(out, ",\"\"\n");
+        fputc(',', out);
+        const char *reason = row->value <= row->limit ? NULL : find_reason(reasons, row->id);
+        quoted(out, reason ? reason : "");
+        fputc('\n', out);
     }
     int bad = ferror(out);
     if (fclose(out) || bad)
@@ -217,8 +230,8 @@ static int validate(const Request *request, int *failures, Fault *fault)
     settings_default(settings, data);
     int code = request->case_path ? settings_read(settings, request->case_path, data, fault) : 0;
     if (!code && (settings->first_year > 1964 || settings->last_year < STEADY_YEAR))
-        code = fault_set(fault, FAULT_INPUT, "the case runs from %d to %d; 1964 to %d are needed", settings->first_year,
-                         settings->last_year, STEADY_YEAR);
+        code = fault_set(fault, FAULT_INPUT, "the case runs from %d to %d; 1964 to %d are needed",
+                         settings->first_year, settings->last_year, STEADY_YEAR);
     if (!code)
         code = read_named(&published, published_path, published_names, COLUMNS, fault);
     if (!code)
@@ -228,8 +241,8 @@ static int validate(const Request *request, int *failures, Fault *fault)
     if (!code)
         code = run_years(&baseline, settings, NULL, "baseline", fault);
     if (!code)
-        code = steady_make(&steady, baseline.model, run_fields(&baseline, STEADY_YEAR), STEADY_YEAR + 0.5, STEADY_YEARS,
-                           fault);
+        code = steady_make(&steady, baseline.model, run_fields(&baseline, STEADY_YEAR), STEADY_YEAR + 0.5,
+                           STEADY_YEARS, fault);
     if (!code) {
         Evidence evidence = {&baseline, &steady};
         code = judge(&published, &reasons, &evidence, verdicts, fault);
@@ -241,9 +254,9 @@ static int validate(const Request *request, int *failures, Fault *fault)
     if (!code && request->numerics)
         code = numerics_measure(&baseline, rows, &count, fault);
     if (!code && request->numerics)
-        *failures += print_numerics(rows, count);
+        *failures += print_numerics(rows, count, &reasons);
     if (!code && request->csv)
-        code = write_csv(request->csv, &published, verdicts, rows, count, fault);
+        code = write_csv(request->csv, &published, verdicts, rows, count, &reasons, fault);
     steady_free(&steady);
     run_free(&baseline);
     free(verdicts);
@@ -266,7 +279,10 @@ int main(int argc, char **argv)
         else if (!strcmp(argv[i], "--no-numerics"))
             request.numerics = 0;
         else {
-            fprintf(stderr, "validate: unknown option %s; usage: validate [--csv FILE] [--no-numerics] [--case CASE.cfg]\n", argv[i]);
+            fprintf(stderr,
+                    "validate: unknown option %s; usage: validate [--csv FILE] [--no-numerics] [--case "
+                    "CASE.cfg]\n",
+                    argv[i]);
             return FAULT_INPUT;
         }
     }

@@ -24,8 +24,9 @@ typedef struct {
     double seconds; /* wall */
 } Run;
 
-/* Run the years of settings, one record a year, and keep every record. start: [solved][padded] state to begin with, or
- * NULL for the initial profiles. what leads the progress lines. On a fault *run is zeroed. Owner: caller, run_free. */
+/* Run the years of settings, one record a year, and keep every record. start: [solved][padded] state to begin
+ * with, or NULL for the initial profiles. what leads the progress lines. On a fault *run is zeroed. Owner:
+ * caller, run_free. */
 int run_years(Run *run, const Settings *settings, const double *start, const char *what, Fault *fault);
 void run_free(Run *run);
 /* Mean mole fractions of a calendar year, [solved][padded]; the year must lie in the run. */
@@ -39,8 +40,8 @@ typedef struct {
     Stepper *stepper;
 } Steady;
 
-/* Carry model's column from x for years under the schedule of decimal year time. Owner: caller, steady_free. The
- * model must outlive it. */
+/* Carry model's column from x for years under the schedule of decimal year time. Owner: caller, steady_free.
+ * The model must outlive it. */
 int steady_make(Steady *steady, const Model *model, const double *x, double time, double years, Fault *fault);
 void steady_free(Steady *steady);
 
@@ -57,8 +58,8 @@ typedef struct {
 enum RowState { ROW_COMPUTED, ROW_LATER };
 #define ROW_NOTE 160
 
-/* The model's value of one row. conditions is the row's own text; *state tells whether value and note hold. FAULT_INPUT for
- * an id nothing is known of. note: [ROW_NOTE] how it was taken. */
+/* The model's value of one row. conditions is the row's own text; *state tells whether value and note hold.
+ * FAULT_INPUT for an id nothing is known of. note: [ROW_NOTE] how it was taken. */
 int row_compute(const Evidence *evidence, const char *id, const char *conditions, int *state, double *value,
                 char *note, Fault *fault);
 

@@ -1,5 +1,5 @@
-/* validate_numerics: the numerical errors of the baseline, each found by tightening one knob or by leaving one
- * approximation out. */
+/* validate_numerics: the numerical errors of the baseline, each found by tightening one knob or by leaving
+ * one approximation out. */
 #include "validate.h"
 
 #include <math.h>
@@ -11,13 +11,14 @@
 
 /* ---- limits: what DEVELOPERS.md promises of the defaults; none is fitted to a run ---- */
 
-/* Factors against explicit days, relative ozone by layer and column: held by hand, far below the 20 % that constant mean
- * light costs at 40 km. */
+/* Factors against explicit days, relative ozone by layer and column: held by hand, far below the 20 % that
+ * constant mean light costs at 40 km. */
 static const double DAY_LAYER_PERCENT = 1.0, DAY_COLUMN_DU = 0.5;
 /* Each other error: a twentieth of the smallest change an analyst reads off, 1 % of the column. */
 static const double SMALL_DU = 0.15;
 
-static NumericRow *add(NumericRow *rows, int *count, const char *id, const char *what, const char *unit, double limit)
+static NumericRow *add(NumericRow *rows, int *count, const char *id, const char *what, const char *unit,
+                       double limit)
 {
     NumericRow *row = &rows[(*count)++];
     *row = (NumericRow){.id = id, .what = what, .unit = unit, .value = NAN, .limit = limit};
@@ -33,7 +34,8 @@ typedef struct {
     double at[6];             /* percent, explicit less factors, at 15, 20, 25, 30, 40, 50 km */
 } DayError;
 
-static void compare_days(const Model *model, const double *factors, const double *explicit_days, DayError *error)
+static void compare_days(const Model *model, const double *factors, const double *explicit_days,
+                         DayError *error)
 {
     static const double km[6] = {15, 20, 25, 30, 40, 50};
     int o3 = mechanism_solved(model->mechanism, "O3");
@@ -57,8 +59,8 @@ static void compare_days(const Model *model, const double *factors, const double
     }
 }
 
-/* Both ways from the same state, a year under the values of mid-year. Ozone below some 25 km lives longer than that: there the
- * difference is a year's worth of error, above it is the whole. */
+/* Both ways from the same state, a year under the values of mid-year. Ozone below some 25 km lives longer
+ * than that: there the difference is a year's worth of error, above it is the whole. */
 static int measure_day(const Run *baseline, int year, DayError *error, Fault *fault)
 {
     Settings settings = baseline->model->settings;
@@ -92,20 +94,23 @@ static int day_rows(const Run *baseline, NumericRow *rows, int *count, Fault *fa
         DayError error;
         if (measure_day(baseline, when[i].year, &error, fault))
             return fault->code;
-        NumericRow *row = add(rows, count, when[i].layer, "explicit days against factors, a year: O3, largest of a layer",
-                              "%", INFINITY);
+        NumericRow *row = add(rows, count, when[i].layer,
+                              "explicit days against factors, a year: O3, largest of a layer", "%", INFINITY);
         row->value = error.layer;
         snprintf(row->note, ROW_NOTE, "at %g km", error.layer_km);
-        row = add(rows, count, when[i].strato, "the same from the tropopause to 50 km", "%", DAY_LAYER_PERCENT);
+        row =
+            add(rows, count, when[i].strato, "the same from the tropopause to 50 km", "%", DAY_LAYER_PERCENT);
         row->value = error.strato;
         snprintf(row->note, ROW_NOTE, "at %g km; 15 20 25 30 40 50 km: %+.2f %+.2f %+.2f %+.2f %+.2f %+.2f",
-                 error.strato_km, error.at[0], error.at[1], error.at[2], error.at[3], error.at[4], error.at[5]);
+                 error.strato_km, error.at[0], error.at[1], error.at[2], error.at[3], error.at[4],
+                 error.at[5]);
         row = add(rows, count, when[i].column, "the same for the column", "DU", DAY_COLUMN_DU);
         row->value = fabs(error.column);
         snprintf(row->note, ROW_NOTE, "%+.4f DU", error.column);
         column[i] = error.column;
     }
-    NumericRow *row = add(rows, count, "day-1980-2000", "its share in the change from 1980 to 2000", "DU", SMALL_DU);
+    NumericRow *row =
+        add(rows, count, "day-1980-2000", "its share in the change from 1980 to 2000", "DU", SMALL_DU);
     row->value = fabs(column[1] - column[0]);
     return 0;
 }
@@ -117,7 +122,8 @@ static double largest(const Run *run, const Run *reference, double *when)
 {
     double most = 0.0;
     for (int i = 0; i < run->years; i++) {
-        double difference = fabs(run->column[i] - reference->column[run->first_year + i - reference->first_year]);
+        double difference =
+            fabs(run->column[i] - reference->column[run->first_year + i - reference->first_year]);
         if (!(difference > most))
             continue;
         most = difference;
@@ -136,8 +142,34 @@ static int splitting_row(const Run *baseline, NumericRow *rows, int *count, Faul
         return fault->code;
     NumericRow *row = add(rows, count, "split-half", "outer step halved, all years: column", "DU", SMALL_DU);
     row->value = largest(&half, baseline, &when);
-    snprintf(row->note, ROW_NOTE, "in %.0f; %g against %g days", floor(when), baseline->model->settings.outer_step_days,
-             settings.outer_step_days);
+    snprintf(row->note, ROW_NOTE, "in %.0f; %g against %g days", floor(when),
+             baseline->model->settings.outer_step_days, settings.outer_step_days);
+    run_free(&half);
+    return 0;
+}
+
+/* The splitting alone: refreshes so dense that the moments at which they fall make no difference to speak of.
+ */
+static int splitting_alone_row(const Run *baseline, NumericRow *rows, int *count, Fault *fault)
+{
+    Settings settings = baseline->model->settings;
+    Run whole, half;
+    double when = 0.0;
+    settings.last_year = settings.first_year + 15;
+    settings.refresh_state *= 0.1;
+    settings.refresh_column *= 0.25;
+    if (run_years(&whole, &settings, NULL, "dense refreshes", fault))
+        return fault->code;
+    settings.outer_step_days *= 0.5;
+    if (run_years(&half, &settings, NULL, "dense refreshes, outer step halved", fault)) {
+        run_free(&whole);
+        return fault->code;
+    }
+    NumericRow *row = add(rows, count, "split-half-alone", "the same with dense refreshes, 16 years: column",
+                          "DU", SMALL_DU);
+    row->value = largest(&half, &whole, &when);
+    snprintf(row->note, ROW_NOTE, "in %.0f", floor(when));
+    run_free(&whole);
     run_free(&half);
     return 0;
 }
@@ -157,10 +189,11 @@ static int tolerance_row(const Run *baseline, NumericRow *rows, int *count, Faul
         run_free(&loose);
         return fault->code;
     }
-    NumericRow *row = add(rows, count, "tolerance", "relative tolerance 1e-5, 1980-1989: column", "DU", SMALL_DU);
+    NumericRow *row =
+        add(rows, count, "tolerance", "relative tolerance 1e-5, 1980-1989: column", "DU", SMALL_DU);
     row->value = largest(&tight, &loose, &when);
-    snprintf(row->note, ROW_NOTE, "in %.0f; %g: %ld solver steps, 1e-5: %ld", floor(when), now, loose.solver_steps,
-             tight.solver_steps);
+    snprintf(row->note, ROW_NOTE, "in %.0f; %g: %ld solver steps, 1e-5: %ld", floor(when), now,
+             loose.solver_steps, tight.solver_steps);
     run_free(&loose);
     run_free(&tight);
     return 0;
@@ -176,9 +209,10 @@ static int refresh_row(const Run *baseline, int of_state, NumericRow *rows, int 
         return fault->code;
     double change = run_column(baseline, 2000, 2000) - run_column(baseline, 1980, 1980);
     double fine_change = run_column(&fine, 2000, 2000) - run_column(&fine, 1980, 1980);
-    NumericRow *row = of_state ? add(rows, count, "refresh-state", "refresh_state a fifth: change 1980-2000", "DU", SMALL_DU)
-                               : add(rows, count, "refresh-column", "refresh_column a quarter: change 1980-2000", "DU",
-                                     SMALL_DU);
+    NumericRow *row = of_state ? add(rows, count, "refresh-state", "refresh_state a fifth: change 1980-2000",
+                                     "DU", SMALL_DU)
+                               : add(rows, count, "refresh-column",
+                                     "refresh_column a quarter: change 1980-2000", "DU", SMALL_DU);
     row->value = fabs(fine_change - change);
     snprintf(row->note, ROW_NOTE, "%+.3f against %+.3f DU; %ld refreshes", fine_change, change,
              of_state ? fine.factor_refreshes : fine.photolysis_refreshes);
@@ -190,8 +224,8 @@ int numerics_measure(const Run *baseline, NumericRow *rows, int *count, Fault *f
 {
     *count = 0;
     if (day_rows(baseline, rows, count, fault) || splitting_row(baseline, rows, count, fault) ||
-        tolerance_row(baseline, rows, count, fault) || refresh_row(baseline, 1, rows, count, fault) ||
-        refresh_row(baseline, 0, rows, count, fault))
+        splitting_alone_row(baseline, rows, count, fault) || tolerance_row(baseline, rows, count, fault) ||
+        refresh_row(baseline, 1, rows, count, fault) || refresh_row(baseline, 0, rows, count, fault))
         return fault->code;
     return 0;
 }

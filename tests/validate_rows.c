@@ -151,8 +151,8 @@ static int coefficient_298(const Ask *ask, double *value)
         channels++;
     }
     if (!channels)
-        return fault_set(ask->fault, FAULT_INPUT, "%s: no reaction %s + %s in the mechanism", ask->id, wanted[0],
-                         wanted[1]);
+        return fault_set(ask->fault, FAULT_INPUT, "%s: no reaction %s + %s in the mechanism", ask->id,
+                         wanted[0], wanted[1]);
     return note(ask, "sum over %g channel(s)", channels);
 }
 
@@ -178,7 +178,8 @@ static double loss_rate(const Ask *ask, int species, int layer)
         size_t at = FIELD(model->grid.padded, r, layer);
         double rate = coefficient[at] * (factor ? factor[at] : 1.0);
         for (int i = 0; i < reaction->reactants; i++)
-            rate *= x[FIELD(model->grid.padded, reaction->reactant[i], layer)] * model->air.number_density[layer];
+            rate *=
+                x[FIELD(model->grid.padded, reaction->reactant[i], layer)] * model->air.number_density[layer];
         sum -= change * rate;
     }
     return sum;
@@ -198,7 +199,8 @@ static int lifetime(const Ask *ask, double *value)
     if (!(loss > 0.0))
         return fault_set(ask->fault, FAULT_NUMERICS, "%s: %s is not lost", ask->id, gas);
     *value = burden / loss / YEAR_SECONDS;
-    return note(ask, aloft ? "balance of %g, loss above the tropopause" : "balance of %g, all loss", STEADY_YEAR);
+    return note(ask, aloft ? "balance of %g, loss above the tropopause" : "balance of %g, all loss",
+                STEADY_YEAR);
 }
 
 /* ---- ozone ---- */
@@ -252,7 +254,9 @@ static int return_year(const Ask *ask, double *value)
     if (answers_compute(&answers, &series, 1980, ask->fault))
         return ask->fault->code;
     *value = answers.returns == 1 ? answers.return_year : NAN;
-    return note(ask, answers.returns == 1 ? "lowest year mean %.2f DU" : "no return by 2100; lowest year mean %.2f DU",
+    return note(ask,
+                answers.returns == 1 ? "lowest year mean %.2f DU"
+                                     : "no return by 2100; lowest year mean %.2f DU",
                 answers.minimum);
 }
 
@@ -301,7 +305,8 @@ static int composition(const Ask *ask, double *value)
 
 /* ---- sunlight ---- */
 
-/* Integral of the solar table, whose values are means over intervals that reach half-way to the neighbours. */
+/* Integral of the solar table, whose values are means over intervals that reach half-way to the neighbours.
+ */
 static int sunlight_above(const Ask *ask, double *value)
 {
     const Settings *settings = &ask->model->settings;
@@ -311,8 +316,8 @@ static int sunlight_above(const Ask *ask, double *value)
     double low, high;
     if (sscanf(ask->id, "uv-toa-%lf-%lf", &low, &high) != 2)
         return -1;
-    int code = table_locate("solar spectrum", settings->solar_file, settings->case_dir, settings->data_dir, path,
-                            sizeof path, ask->fault);
+    int code = table_locate("solar spectrum", settings->solar_file, settings->case_dir, settings->data_dir,
+                            path, sizeof path, ask->fault);
     if (!code)
         code = table_read(&table, path, ask->fault);
     if (!code)
@@ -357,7 +362,8 @@ static int ozone_strong(const Ask *ask, double *value)
     double column = run_column(ask->run, EARLY_FIRST, EARLY_LAST) * DOBSON_CM2;
     *value = 0.0;
     for (int b = 0; b < spectra->bins && spectra->upper[b] < 400.0; b++)
-        if (sigma->sigma[(size_t)(sigma->temperatures - 1) * (size_t)spectra->bins + (size_t)b] * column > -log(0.9))
+        if (sigma->sigma[(size_t)(sigma->temperatures - 1) * (size_t)spectra->bins + (size_t)b] * column >
+            -log(0.9))
             *value = spectra->upper[b];
     return plain_note(ask, "the column of 1964-1980 takes a tenth of the light overhead");
 }

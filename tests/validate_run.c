@@ -27,8 +27,8 @@ static int keep(void *context, const Record *record, Fault *fault)
     memcpy(run->x + (size_t)keeper->next * run->field, record->x, run->field * sizeof(double));
     keeper->next++;
     if (keeper->next % 20 == 0 || keeper->next == run->years)
-        fprintf(stderr, "%s: %.0f, %.2f DU, %.0f s\n", keeper->what, floor(record->time), record->ozone_column,
-                omp_get_wtime() - keeper->began);
+        fprintf(stderr, "%s: %.0f, %.2f DU, %.0f s\n", keeper->what, floor(record->time),
+                record->ozone_column, omp_get_wtime() - keeper->began);
     return 0;
 }
 

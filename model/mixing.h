@@ -1,0 +1,28 @@
+/* mixing: eddy diffusion of a whole column, species by species, with what crosses the ground and the tropopause booked.
+ *
+ * Species that share a ground condition share a factorisation. Held species (water, OH, NO) are carried from their highest
+ * prescribed layer up: water falls a thousandfold within the troposphere, and letting it diffuse there between two
+ * moments of being set right would wet the stratosphere.
+ */
+#ifndef SKYMEND_MIXING_H
+#define SKYMEND_MIXING_H
+
+#include "column.h"
+
+#define MIXING_SLOTS 9 /* step lengths that can be kept ready at once */
+
+typedef struct Mixing Mixing;
+
+/* The model must outlive it. Owner: caller. */
+int mixing_make(Mixing **made, const Model *model, int threads, Fault *fault);
+void mixing_free(Mixing *mixing);
+
+/* Make slot ready for steps of a length in s; nothing is done when it is. */
+int mixing_prepare(Mixing *mixing, int slot, double step, Fault *fault);
+/* One step of the length slot is ready for. Padding lanes repeat the top layer afterwards. */
+void mixing_step(Mixing *mixing, int slot, Column *column);
+
+/* Give the lowest layer its scheduled (at decimal year time) or fixed values; what that adds has come through the ground. */
+void mixing_set_ground(const Model *model, Column *column, double time);
+
+#endif

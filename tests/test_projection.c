@@ -1,0 +1,672 @@
+/* Tests of the column through the years (model/column, model/step, model/projection): what goes in and out is counted, the
+ * splitting converges, threads change nothing, and chlorine destroys ozone. Built-in case on coarse layers. */
+#define _XOPEN_SOURCE 700
+#include "scratch.h"
+
+#include "../input/constants.h"
+#include "../model/projection.h"
+
+typedef struct {
+    Model *model;
+    Column *column;
+    Stepper *stepper;
+} Run;
+
+static void ok(int code, const Fault *fault) {
+    if (code) fail_msg("fault %d: %s", code, fault->text);
+}
+
+static Settings coarse(double spacing_km, int first_year) {
+    Settings settings;
+    settings_default(&settings, data_dir());
+    settings.spacing_km = spacing_km;
+    settings.first_year = settings.last_year = first_year;
+    settings.spinup_years = 0.0;
+    return settings;
+}
+
+static Run start(const Settings *settings, int threads) {
+    Run run;
+    Fault fault = {0};
+    ok(model_make(&run.model, settings, &fault), &fault);
+    ok(column_make(&run.column, run.model, &fault), &fault);
+    ok(stepper_make(&run.stepper, run.model, threads, &fault), &fault);
+    return run;
+}
+
+static void end(Run *run) {
+    stepper_free(run->stepper);
+    column_free(run->column);
+    model_free(run->model);
+}
+
+static void advance(Run *run, double days, long steps, int frozen) {
+    Fault fault = {0};
+    for (long i = 0; i < steps; i++)
+        ok(stepper_advance(run->stepper, run->column, days * DAY_SECONDS, frozen, &fault), &fault);
+}
+
+static size_t field_size(const Model *model) { return (size_t)model->mechanism->solved * (size_t)model->grid.padded; }
+
+static int solved(const Model *model, const char *name) {
+    int s = mechanism_solved(model->mechanism, name);
+    if (s < 0) fail_msg("no species %s", name);
+    return s;
+}
+
+static double at(const Run *run, const char *name, int layer) {
+    return run->column->x[FIELD(run->model->grid.padded, solved(run->model, name), layer)];
+}
+
+static double du(const Run *run) { return column_ozone_du(run->model, run->column->x); }
+
+static Run copy_of(const Run *from, const Settings *settings, int threads) {
+    Run run = start(settings, threads);
+    assert_int_equal(field_size(run.model), field_size(from->model));
+    memcpy(run.column->x, from->column->x, field_size(from->model) * sizeof(double));
+    column_open_ledger(run.model, run.column);
+    return run;
+}
+
+/* ---- what goes in and out ---- */
+
+static const char *const accounted[] = {"Cl", "Br", "N", "H"};
+
+static void check_closure(const Run *run, const char *what) {
+    for (size_t i = 0; i < 4; i++) {
+        int element = mechanism_element(run->model->mechanism, accounted[i]);
+        double closure = column_closure(run->model, run->column, element);
+        double moved = column_ledger_atoms(run->model, run->column, element) /
+                       column_atoms(run->model, run->column->x, element);
+        print_message("   %s, %s: closed to %.1e, %+.1e of it moved\n", what, accounted[i], closure, moved);
+        if (!(fabs(closure) < 1e-10)) fail_msg("%s: %s is closed to %.2e only", what, accounted[i], closure);
+        if (!(fabs(moved) > 1e-7)) fail_msg("%s: hardly any %s came or went, the test shows nothing", what, accounted[i]);
+    }
+    const SolverCounts *counts = &run->column->counts;
+    if (!(counts->most_negative >= -run->model->settings.absolute_tolerance_cm3))
+        fail_msg("%s: a density of %g cm-3", what, counts->most_negative);
+    assert_true((counts->negatives == 0) == (counts->most_negative == 0.0));
+}
+
+static void test_closure(void **state) {
+    (void)state;
+    static const struct {
+        const char *name;
+        int day;
+        double days;
+        long steps;
+    } modes[] = {{"factors", DAY_FACTORS, 365.25 / 24, 96}, {"means", DAY_MEAN, 365.25 / 24, 96}, {"explicit days", DAY_EXPLICIT, 1.0, 60}};
+    for (size_t i = 0; i < sizeof modes / sizeof modes[0]; i++) {
+        Settings settings = coarse(2.0, 1985);
+        settings.last_year = 1989;
+        settings.day = modes[i].day;
+        Run run = start(&settings, 1); /* from the initial profiles: radicals from nothing, everything moves */
+        advance(&run, modes[i].days, modes[i].steps, 0);
+        check_closure(&run, modes[i].name);
+        end(&run);
+    }
+}
+
+/* The ledger is not the difference of the contents in other words: it does not see a molecule put in by hand, and a ledger
+ * entry that nothing stands behind shows. */
+static void test_closure_can_fail(void **state) {
+    (void)state;
+    Settings settings = coarse(4.0, 1985);
+    Run run = start(&settings, 1);
+    advance(&run, 15.0, 4, 0);
+    int element = mechanism_element(run.model->mechanism, "Cl"), clo = solved(run.model, "ClO"), padded = run.model->grid.padded;
+    double atoms = column_atoms(run.model, run.column->x, element), cell = run.model->air.number_density[5] * run.model->grid.depth[5];
+    assert_true(fabs(column_closure(run.model, run.column, element)) < 1e-10);
+    run.column->x[FIELD(padded, clo, 5)] += 1e-8 * atoms / cell;
+    check_near(column_closure(run.model, run.column, element), 1e-8, 1e-2);
+    run.column->x[FIELD(padded, clo, 5)] -= 1e-8 * atoms / cell;
+    int f11 = solved(run.model, "CFC-11");
+    run.column->received[f11] += 1e-6 * atoms; /* three atoms each */
+    check_near(column_closure(run.model, run.column, element), -3e-6, 1e-2);
+    run.column->received[f11] -= 1e-6 * atoms;
+    run.column->washed[solved(run.model, "HCl")] += 1e-6 * atoms;
+    check_near(column_closure(run.model, run.column, element), 1e-6, 1e-2);
+    column_open_ledger(run.model, run.column);
+    assert_true(column_closure(run.model, run.column, element) == 0.0);
+    assert_true(column_ledger_atoms(run.model, run.column, element) == 0.0);
+    assert_int_equal(run.column->outer_steps, 0);
+    end(&run);
+}
+
+/* ---- ground and held species ---- */
+
+static void test_ground_and_held(void **state) {
+    (void)state;
+    Settings settings = coarse(2.0, 1985);
+    Run run = start(&settings, 1);
+    const Model *model = run.model;
+    const Schedule *schedule = &model->schedule;
+    advance(&run, 20.0, 5, 0);
+    double years = 100.0 / 365.25;
+    check_near(run.column->time, 1985.0 + years, 1e-12);
+    for (int g = 0; g < schedule->gases; g++) {
+        assert_true(at(&run, schedule->gas[g], 0) == schedule_abundance(schedule, g, run.column->time));
+        int s = solved(model, schedule->gas[g]);
+        assert_int_equal(model->surface_kind[s], SURFACE_SCHEDULE);
+        assert_true(run.column->received[s] != 0.0 && run.column->exchanged[s] == 0.0);
+    }
+    assert_true(at(&run, "CO", 0) == 90e-9 && at(&run, "H2", 0) == 530e-9); /* built-in bounds */
+    /* the ground takes ozone, HCl and HNO3 up, and lets the CFCs in */
+    assert_true(run.column->received[solved(model, "O3")] < 0.0);
+    assert_true(run.column->received[solved(model, "HCl")] < 0.0 && run.column->received[solved(model, "HNO3")] < 0.0);
+    assert_true(run.column->received[solved(model, "CFC-12")] > 0.0);
+    assert_true(run.column->washed[solved(model, "HCl")] > 0.0);
+    assert_true(run.column->washed[solved(model, "CFC-12")] == 0.0);
+
+    assert_int_equal(model->held, 3);
+    for (int h = 0; h < model->held; h++) {
+        int s = model->held_species[h], any = 0;
+        for (int l = 0; l < model->grid.layers; l++) {
+            size_t i = FIELD(model->grid.padded, h, l);
+            assert_true((model->held_free[i] == 0.0) == (1e-5 * model->grid.middle[l] < settings.tropopause_km));
+            if (model->held_free[i] != 0.0) continue;
+            any++;
+            assert_true(model->held_fraction[i] > 0.0);
+            assert_true(run.column->x[FIELD(model->grid.padded, s, l)] == model->held_fraction[i]);
+        }
+        assert_int_equal(any, 6);
+        assert_true(run.column->exchanged[s] != 0.0);
+    }
+    /* frozen: the clock and the schedule stand still, the values stay */
+    double time = run.column->time, f11 = at(&run, "CFC-11", 0);
+    advance(&run, 20.0, 2, 1);
+    assert_true(run.column->time == time && at(&run, "CFC-11", 0) == f11);
+    end(&run);
+}
+
+/* Deposition alone: a gas that nothing else touches leaves through the ground, and the ledger says how much. */
+static void test_deposition_is_counted(void **state) {
+    (void)state;
+    Settings settings = coarse(2.0, 1985);
+    Run run = start(&settings, 1);
+    Settings closed = settings;
+    closed.bounds = 0;
+    for (int b = 0; b < settings.bounds; b++)
+        if (strcmp(settings.bound[b].species, "O3")) closed.bound[closed.bounds++] = settings.bound[b];
+    assert_int_equal(closed.bounds, settings.bounds - 1);
+    Run shut = start(&closed, 1);
+    assert_int_equal(shut.model->surface_kind[solved(shut.model, "O3")], SURFACE_CLOSED);
+    assert_int_equal(run.model->surface_kind[solved(run.model, "O3")], SURFACE_DEPOSITION);
+    advance(&run, 10.0, 6, 1);
+    advance(&shut, 10.0, 6, 1);
+    assert_true(shut.column->received[solved(shut.model, "O3")] == 0.0);
+    assert_true(at(&shut, "O3", 0) > at(&run, "O3", 0));
+    /* v = 0.1 cm/s of ozone in the lowest layer: a flux of v x N, its mean between that of the two ends */
+    double flux = -run.column->received[solved(run.model, "O3")] / (60.0 * DAY_SECONDS);
+    double now = 0.1 * at(&run, "O3", 0) * run.model->air.number_density[0];
+    assert_true(flux > 0.5 * now && flux < 3.0 * now);
+    end(&run);
+    end(&shut);
+}
+
+/* ---- faults of the case ---- */
+
+static void expect_fault(const Settings *settings, const char *piece, const char *other) {
+    Model *model = (Model *)1;
+    Fault fault = {0};
+    if (!model_make(&model, settings, &fault)) {
+        Column *column = NULL;
+        int code = column_make(&column, model, &fault);
+        if (!code) fail_msg("no fault about %s", piece);
+        assert_null(column);
+        model_free(model);
+    } else {
+        assert_null(model);
+    }
+    check_fault(&fault, piece, other, NULL);
+}
+
+static void test_faults_of_the_case(void **state) {
+    char path[300];
+    Settings settings = coarse(4.0, 1985), bad = settings;
+    write_file(state, "schedule.csv", "# source: test\nyear,gas,kind,amount,unit,line\n1985,CFC-99,abundance,1,ppt,x\n", path);
+    snprintf(bad.schedule_file, sizeof bad.schedule_file, "%s", path);
+    expect_fault(&bad, path, "CFC-99");
+
+    write_file(state, "short.csv", "# source: test\nyear,gas,kind,amount,unit,line\n1980,N2O,abundance,300,ppb,x\n", path);
+    snprintf(bad.schedule_file, sizeof bad.schedule_file, "%s", path);
+    expect_fault(&bad, path, "N2O");
+
+    bad = settings;
+    snprintf(bad.schedule_file, sizeof bad.schedule_file, "no-such-schedule.csv");
+    expect_fault(&bad, "no-such-schedule.csv", "schedule");
+
+    bad = settings;
+    snprintf(bad.case_path, sizeof bad.case_path, "mine.cfg");
+    snprintf(bad.bound[0].species, sizeof bad.bound[0].species, "CFC-11");
+    expect_fault(&bad, "mine.cfg", "CFC-11");
+    snprintf(bad.bound[0].species, sizeof bad.bound[0].species, "XeF6");
+    expect_fault(&bad, "mine.cfg", "XeF6");
+
+    bad = settings;
+    write_file(state, "aerosol.csv", "# source: test\naltitude_km,surface_um2_cm-3,effective_radius_um\n0,1,0.1\n40,1,0.1\n", path);
+    snprintf(bad.aerosol_file, sizeof bad.aerosol_file, "%s", path);
+    expect_fault(&bad, path, "0 to 40 km");
+
+    bad = settings;
+    write_file(state, "water.csv", "# source: test\naltitude_km,H2O_mol_mol-1\n0,0.01\n8,1e-5\n", path);
+    snprintf(bad.tropospheric_water_file, sizeof bad.tropospheric_water_file, "%s", path);
+    expect_fault(&bad, path, "tropospheric water");
+
+    bad = settings;
+    write_file(state, "initial.csv", "# source: test\naltitude_km,O3,Unobtainium\n0,1e-8,0\n90,1e-7,0\n", path);
+    snprintf(bad.initial_file, sizeof bad.initial_file, "%s", path);
+    expect_fault(&bad, path, "Unobtainium");
+
+    bad = settings;
+    write_file(state, "eddy.csv", "# source: test\naltitude_km,eddy_cm2_s-1\n0,1e5\n50,1e5\n", path);
+    snprintf(bad.eddy_file, sizeof bad.eddy_file, "%s", path);
+    expect_fault(&bad, path, "eddy");
+}
+
+/* ---- splitting ---- */
+
+/* Slow gases after 60 days at steps h, h/2, h/4, h/8, from one settled state, with everything that is made afresh now and then
+ * held: mean light, no aerosol, photolysis never refreshed. Then the splitting is all that differs. */
+static void test_splitting_is_second_order(void **state) {
+    static const char *const gases[] = {"N2O", "CFC-12", "CFC-11", "CH4", "O3"};
+    enum { GASES = 5, LEVELS = 4 };
+    char path[300];
+    write_file(state, "clear.csv",
+               "# source: test\naltitude_km,surface_um2_cm-3,effective_radius_um\n0,1e-12,0.1\n90,1e-12,0.1\n", path);
+    Settings settings = coarse(2.0, 1990);
+    snprintf(settings.aerosol_file, sizeof settings.aerosol_file, "%s", path);
+    settings.day = DAY_MEAN;
+    settings.relative_tolerance = 1e-6;
+    settings.absolute_tolerance_cm3 = 1.0;
+    Run from = start(&settings, 2);
+    advance(&from, 15.0, 48, 1);
+    settings.refresh_column = 1.0;
+    double step[LEVELS] = {30.0, 15.0, 7.5, 3.75}, *x[LEVELS];
+    size_t size = field_size(from.model);
+    for (int i = 0; i < LEVELS; i++) {
+        Run run = copy_of(&from, &settings, 2);
+        advance(&run, step[i], lround(60.0 / step[i]), 1);
+        assert_int_equal(run.column->photolysis_refreshes, 1);
+        x[i] = malloc(size * sizeof(double));
+        assert_non_null(x[i]);
+        memcpy(x[i], run.column->x, size * sizeof(double));
+        end(&run);
+    }
+    for (int g = 0; g < GASES; g++) {
+        double apart[LEVELS - 1] = {0};
+        int s = solved(from.model, gases[g]);
+        for (int l = 10; l < 23; l++) /* 20 to 46 km */
+            for (int i = 0; i + 1 < LEVELS; i++) {
+                double coarse_x = x[i][FIELD(from.model->grid.padded, s, l)], fine_x = x[i + 1][FIELD(from.model->grid.padded, s, l)];
+                apart[i] += fabs(coarse_x - fine_x);
+            }
+        double first = log2(apart[0] / apart[1]), second = log2(apart[1] / apart[2]);
+        print_message("   %s: order %.2f, then %.2f\n", gases[g], first, second);
+        if (strcmp(gases[g], "O3")) assert_true(second > 1.5 && second < 2.5);
+        assert_true(apart[1] < apart[0] && apart[2] < apart[1]);
+    }
+    for (int i = 0; i < LEVELS; i++) free(x[i]);
+    end(&from);
+}
+
+/* Halving the default step on the default layers moves the column by less than 0.1 DU. What is made afresh now and then is
+ * made afresh often, so that its thresholds do not hide what the step does. */
+static void test_default_step(void **state) {
+    (void)state;
+    Settings settings = coarse(1.0, 1990);
+    settings.refresh_column = 2e-4;
+    settings.refresh_state = 0.05;
+    Run whole = start(&settings, 2), half;
+    Settings finer = settings;
+    finer.outer_step_days *= 0.5;
+    half = start(&finer, 2);
+    advance(&whole, settings.outer_step_days, lround(6.0 * 365.25 / settings.outer_step_days), 0);
+    advance(&half, finer.outer_step_days, lround(6.0 * 365.25 / finer.outer_step_days), 0);
+    double moved = du(&half) - du(&whole);
+    print_message("   six years: %.3f DU, half the step %.3f DU, moved by %.3f\n", du(&whole), du(&half), moved);
+    assert_true(fabs(moved) < 0.1);
+    end(&whole);
+    end(&half);
+}
+
+/* ---- threads ---- */
+
+static void test_threads_change_nothing(void **state) {
+    (void)state;
+    for (int day = DAY_MEAN; day <= DAY_EXPLICIT; day++) {
+        Settings settings = coarse(2.0, 1985);
+        settings.day = day;
+        Run one = start(&settings, 1), two = start(&settings, 2);
+        double days = day == DAY_EXPLICIT ? 1.0 : 15.0;
+        advance(&one, days, 6, 0);
+        advance(&two, days, 6, 0);
+        size_t bytes = field_size(one.model) * sizeof(double), list = (size_t)one.model->mechanism->solved * sizeof(double);
+        assert_memory_equal(one.column->x, two.column->x, bytes);
+        assert_memory_equal(stepper_mean(one.stepper), stepper_mean(two.stepper), bytes);
+        assert_memory_equal(one.column->received, two.column->received, list);
+        assert_memory_equal(one.column->exchanged, two.column->exchanged, list);
+        assert_memory_equal(one.column->washed, two.column->washed, list);
+        assert_int_equal(one.column->counts.steps, two.column->counts.steps);
+        end(&one);
+        end(&two);
+    }
+}
+
+/* ---- when light is made afresh ---- */
+
+static void test_light_stale(void **state) {
+    (void)state;
+    Settings settings = coarse(2.0, 1985);
+    Run run = start(&settings, 1);
+    advance(&run, 15.0, 1, 1);
+    assert_int_equal(run.column->photolysis_refreshes, 1);
+    end(&run);
+    settings.refresh_column = 1e-5; /* a column that still moves refreshes at every step */
+    run = start(&settings, 1);
+    advance(&run, 15.0, 5, 1);
+    assert_int_equal(run.column->photolysis_refreshes, 5);
+    end(&run);
+    settings.refresh_column = 1.0;
+    run = start(&settings, 1);
+    advance(&run, 15.0, 5, 1);
+    assert_int_equal(run.column->photolysis_refreshes, 1);
+    end(&run);
+}
+
+/* ---- layers that fill no pack ---- */
+
+static void test_layers_that_fill_no_pack(void **state) {
+    (void)state;
+    Settings settings = coarse(2.0, 1985), uneven = settings;
+    /* 35 layers: 2 km as in the even grid up to 60 km, 4 km above: 3 lanes of padding */
+    uneven.edges = 0;
+    for (int i = 0; i <= 30; i++) uneven.edge_km[uneven.edges++] = 2.0 * i;
+    for (int i = 1; i <= 5; i++) uneven.edge_km[uneven.edges++] = 60.0 + 4.0 * i;
+    uneven.top_km = 80.0;
+    Run even = start(&settings, 2), other = start(&uneven, 2);
+    assert_int_equal(other.model->grid.layers, 35);
+    assert_int_equal(other.model->grid.padded, 40);
+    advance(&even, 365.25 / 24, 48, 0);
+    advance(&other, 365.25 / 24, 48, 0);
+    print_message("   even layers %.3f DU, uneven %.3f DU\n", du(&even), du(&other));
+    assert_true(fabs(du(&even) - du(&other)) < 0.3);
+    for (int l = 8; l < 25; l++) check_near(at(&other, "O3", l), at(&even, "O3", l), 0.02);
+    for (int s = 0; s < other.model->mechanism->solved; s++) /* padding follows the top layer within its own step */
+        for (int l = 35; l < 40; l++) assert_true(isfinite(other.column->x[FIELD(40, s, l)]));
+    check_closure(&other, "uneven layers");
+    end(&even);
+    end(&other);
+
+    /* 27 layers of their own, nothing like the even ones: runs and gives nearly the same column */
+    uneven.edges = 0;
+    for (int i = 0; i <= 20; i++) uneven.edge_km[uneven.edges++] = 2.0 * i; /* to 40 km */
+    static const double above[] = {43, 47, 52, 58, 65, 72, 80};
+    for (int i = 0; i < 7; i++) uneven.edge_km[uneven.edges++] = above[i];
+    even = start(&settings, 2);
+    other = start(&uneven, 2);
+    assert_int_equal(other.model->grid.layers, 27);
+    assert_int_equal(other.model->grid.padded, 32);
+    advance(&even, 365.25 / 24, 48, 0);
+    advance(&other, 365.25 / 24, 48, 0);
+    print_message("   even layers %.3f DU, 27 layers %.3f DU\n", du(&even), du(&other));
+    assert_true(fabs(du(&even) - du(&other)) < 0.01 * du(&even));
+    check_closure(&other, "27 layers");
+    end(&even);
+    end(&other);
+}
+
+/* ---- the projection ---- */
+
+typedef struct {
+    const Run *run;
+    int records, steps, spinning;
+    double last_end, share, sum_of_means;
+    double first_column, last_column;
+    int stop_after; /* records; 0: never */
+    volatile sig_atomic_t stop;
+    double *sum; /* [field] of step means of this interval */
+    long in_interval;
+    double worst;
+} Notes;
+
+static int on_record(void *context, const Record *record, Fault *fault) {
+    (void)fault;
+    Notes *notes = context;
+    const Model *model = notes->run->model;
+    size_t size = field_size(model);
+    assert_true(record->time_start == notes->last_end && record->time_end > record->time_start);
+    check_near(record->time, 0.5 * (record->time_start + record->time_end), 1e-15);
+    assert_true(notes->run->column->time == record->time_end);
+    check_near(record->ozone_column, column_ozone_du(model, record->x), 1e-14);
+    for (size_t i = 0; i < size; i++) {
+        double mean = notes->sum[i] / (double)notes->in_interval;
+        notes->worst = fmax(notes->worst, fabs(record->x[i] - mean) / (fabs(mean) + 1e-30));
+    }
+    memset(notes->sum, 0, size * sizeof(double));
+    notes->in_interval = 0;
+    notes->last_end = record->time_end;
+    if (!notes->records++) notes->first_column = record->ozone_column;
+    notes->last_column = record->ozone_column;
+    if (notes->records == notes->stop_after) notes->stop = 1;
+    return 0;
+}
+
+static void on_progress(void *context, const Progress *progress) {
+    Notes *notes = context;
+    assert_true(progress->share >= notes->share && progress->share <= 1.0 + 1e-12);
+    notes->share = progress->share;
+    notes->spinning += progress->spinning_up;
+    notes->steps++;
+    if (progress->spinning_up) return;
+    const double *mean = stepper_mean(notes->run->stepper);
+    for (size_t i = 0; i < field_size(notes->run->model); i++) notes->sum[i] += mean[i];
+    notes->in_interval++;
+}
+
+static Notes watch(const Run *run, Watcher *watcher) {
+    Notes notes = {.run = run, .last_end = run->model->settings.first_year};
+    notes.sum = calloc(field_size(run->model), sizeof(double));
+    assert_non_null(notes.sum);
+    *watcher = (Watcher){.record = on_record, .progress = on_progress};
+    return notes;
+}
+
+static void test_records(void **state) {
+    (void)state;
+    Settings settings = coarse(4.0, 1985);
+    settings.last_year = 1986;
+    settings.spinup_years = 1.0;
+    settings.outputs_per_year = 3;
+    settings.outer_step_days = 15.0;
+    Run run = start(&settings, 1);
+    Watcher watcher;
+    Notes notes = watch(&run, &watcher);
+    watcher.context = &notes;
+    watcher.stop = &notes.stop;
+    Fault fault = {0};
+    ok(projection_run(run.model, run.stepper, run.column, &watcher, &fault), &fault);
+    assert_int_equal(notes.records, 6);
+    assert_int_equal(notes.spinning, 25);               /* a year in steps of at most 15 days */
+    assert_int_equal(notes.steps - notes.spinning, 54); /* six thirds of it, 121.75 days in 9 steps each */
+    assert_int_equal(run.column->outer_steps, 54);      /* counted since the spin-up */
+    check_near(notes.share, 1.0, 1e-12);
+    assert_true(notes.last_end == 1987.0 && run.column->time == 1987.0);
+    assert_true(notes.worst < 1e-12);
+    check_closure(&run, "a projection");
+    free(notes.sum);
+    end(&run);
+}
+
+static void test_interruption(void **state) {
+    (void)state;
+    Settings settings = coarse(4.0, 1985);
+    settings.last_year = 1990;
+    Run run = start(&settings, 1);
+    Watcher watcher;
+    Notes notes = watch(&run, &watcher);
+    watcher.context = &notes;
+    watcher.stop = &notes.stop;
+    notes.stop_after = 2;
+    Fault fault = {0};
+    assert_int_equal(projection_run(run.model, run.stepper, run.column, &watcher, &fault), FAULT_INTERRUPTED);
+    assert_int_equal(notes.records, 2);
+    assert_non_null(strstr(fault.text, "1987"));
+    free(notes.sum);
+    end(&run);
+
+    settings.spinup_years = 3.0;
+    run = start(&settings, 1);
+    notes = watch(&run, &watcher);
+    watcher.context = &notes;
+    watcher.stop = &notes.stop;
+    notes.stop = 1;
+    fault = (Fault){0};
+    assert_int_equal(projection_run(run.model, run.stepper, run.column, &watcher, &fault), FAULT_INTERRUPTED);
+    assert_int_equal(notes.records, 0);
+    assert_int_equal(notes.steps, 1);
+    assert_non_null(strstr(fault.text, "spin-up"));
+    free(notes.sum);
+    end(&run);
+}
+
+/* A year of explicit days has 365 or 366 of them, four years 1461. */
+static void test_explicit_days_fill_the_years(void **state) {
+    (void)state;
+    Settings settings = coarse(5.0, 1985);
+    settings.day = DAY_EXPLICIT;
+    settings.outputs_per_year = 4;
+    Run run = start(&settings, 2);
+    Watcher watcher;
+    Notes notes = watch(&run, &watcher);
+    watcher.context = &notes;
+    watcher.stop = &notes.stop;
+    Fault fault = {0};
+    ok(projection_run(run.model, run.stepper, run.column, &watcher, &fault), &fault);
+    assert_true(notes.steps == 365 || notes.steps == 366);
+    assert_int_equal(notes.records, 4);
+    assert_true(notes.worst < 1e-12);
+    free(notes.sum);
+    end(&run);
+}
+
+/* ---- chlorine and ozone ---- */
+
+/* Ozone column of the record that holds a year, and the settings' whole schedule run. */
+typedef struct {
+    double column[400];
+    int first;
+} Series;
+
+static int keep_column(void *context, const Record *record, Fault *fault) {
+    (void)fault;
+    Series *series = context;
+    series->column[(int)record->time_start - series->first] = record->ozone_column;
+    return 0;
+}
+
+static double in_year(const Series *series, int year) { return series->column[year - series->first]; }
+
+static void project(Settings *settings, Series *series, const char *what) {
+    Run run = start(settings, 2);
+    Watcher watcher = {.record = keep_column, .context = series};
+    Fault fault = {0};
+    series->first = settings->first_year;
+    ok(projection_run(run.model, run.stepper, run.column, &watcher, &fault), &fault);
+    print_message("   %s: 1960 %.2f, 1980 %.2f, 1998 %.2f, 2040 %.2f, 2080 %.2f DU\n", what, in_year(series, 1960),
+                  in_year(series, 1980), in_year(series, 1998), in_year(series, 2040), in_year(series, 2080));
+    check_closure(&run, what);
+    end(&run);
+}
+
+static int lowest_year(const Series *series, int first, int last) {
+    int lowest = first;
+    for (int year = first; year <= last; year++)
+        if (in_year(series, year) < in_year(series, lowest)) lowest = year;
+    return lowest;
+}
+
+/* The built-in schedule with N2O, CH4 and CO2 of 1960 throughout: only halogens differ between its years. */
+static void write_halogens_only(void **state, char *path) {
+    char from[400], line[400], kept[3][40] = {"", "", ""};
+    static const char *const constant[] = {"N2O", "CH4", "CO2"};
+    snprintf(from, sizeof from, "%s/baseline-schedule.csv", data_dir());
+    snprintf(path, 300, "%s/halogens.csv", (char *)*state);
+    for (int pass = 0; pass < 2; pass++) {
+        FILE *in = fopen(from, "r"), *out = pass ? fopen(path, "w") : NULL;
+        assert_non_null(in);
+        while (fgets(line, sizeof line, in)) {
+            char year[8], gas[32], amount[40], rest[300];
+            int which = 3;
+            if (sscanf(line, "%4[0-9],%31[^,],abundance,%39[^,],%299[^\n]", year, gas, amount, rest) == 4)
+                for (which = 0; which < 3 && strcmp(gas, constant[which]); which++) continue;
+            if (which < 3 && !strcmp(year, "1960")) strcpy(kept[which], amount);
+            if (out && which < 3)
+                fprintf(out, "%s,%s,abundance,%s,%s\n", year, gas, kept[which], rest);
+            else if (out)
+                fputs(line, out);
+        }
+        fclose(in);
+        if (out) assert_int_equal(fclose(out), 0);
+    }
+    for (int i = 0; i < 3; i++) assert_true(kept[i][0] != '\0');
+}
+
+/* More chlorine, less ozone, and back: nothing but the halogens changes. */
+static void test_chlorine_destroys_ozone(void **state) {
+    char path[300];
+    write_halogens_only(state, path);
+    Settings settings = coarse(2.5, 1955);
+    settings.last_year = 2080;
+    settings.spinup_years = 10.0;
+    settings.outer_step_days = 365.25 / 12;
+    snprintf(settings.schedule_file, sizeof settings.schedule_file, "%s", path);
+    Series series = {{0}, 0};
+    project(&settings, &series, "halogens alone");
+    double start_column = in_year(&series, 1960), low = in_year(&series, 1998), late = in_year(&series, 2080);
+    double loss = 1.0 - low / start_column;
+    assert_true(loss > 0.01 && loss < 0.08);
+    assert_true(in_year(&series, 1980) < start_column && low < in_year(&series, 1980));
+    int lowest = lowest_year(&series, 1955, 2080);
+    assert_true(lowest >= 1994 && lowest <= 2010);
+    assert_true(late - low > 0.5 * (start_column - low)); /* most of it back by 2080 */
+    assert_true(late < start_column + 0.002 * start_column);
+}
+
+/* The whole schedule on a coarse case: falls from 1960 to the late 1990s and recovers. */
+static void test_baseline_falls_and_recovers(void **state) {
+    (void)state;
+    Settings settings = coarse(4.0, 1955);
+    settings.last_year = 2100;
+    settings.spinup_years = 10.0;
+    settings.outer_step_days = 365.25 / 12;
+    Series series = {{0}, 0};
+    project(&settings, &series, "baseline");
+    double start_column = in_year(&series, 1960), low = in_year(&series, 1998), late = in_year(&series, 2080);
+    double loss = 1.0 - low / start_column;
+    assert_true(loss > 0.01 && loss < 0.08);
+    int lowest = lowest_year(&series, 1955, 2100);
+    assert_true(lowest >= 1994 && lowest <= 2010);
+    assert_true(late > low + 0.2 * (start_column - low));
+}
+
+int main(void) {
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test(test_closure),
+        cmocka_unit_test(test_closure_can_fail),
+        cmocka_unit_test(test_ground_and_held),
+        cmocka_unit_test(test_deposition_is_counted),
+        WITH_FOLDER(test_faults_of_the_case),
+        WITH_FOLDER(test_splitting_is_second_order),
+        cmocka_unit_test(test_default_step),
+        cmocka_unit_test(test_threads_change_nothing),
+        cmocka_unit_test(test_light_stale),
+        cmocka_unit_test(test_layers_that_fill_no_pack),
+        cmocka_unit_test(test_records),
+        cmocka_unit_test(test_interruption),
+        cmocka_unit_test(test_explicit_days_fill_the_years),
+        WITH_FOLDER(test_chlorine_destroys_ozone),
+        cmocka_unit_test(test_baseline_falls_and_recovers),
+    };
+    return cmocka_run_group_tests_name("projection", tests, NULL, NULL);
+}
