@@ -55,7 +55,7 @@ typedef struct {
     char initial_file[SETTINGS_PATH];   /* initial-profiles.csv */
     char tropospheric_oh_file[SETTINGS_PATH];    /* tropospheric-oh.csv; "" = OH computed everywhere */
     char tropospheric_water_file[SETTINGS_PATH]; /* tropospheric-water.csv */
-    char tropospheric_no_file[SETTINGS_PATH];    /* tropospheric-nitric-oxide.csv; "" = NO computed everywhere */
+    char tropospheric_no2_file[SETTINGS_PATH];    /* tropospheric-nitrogen-dioxide.csv; "" = NO2 computed everywhere */
 
     /* sun */
     int sun;              /* enum SunMode */

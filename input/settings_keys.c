@@ -54,8 +54,8 @@ static const SettingKey keys[] = {
          "CSV profile of OH held below the tropopause; empty to compute OH everywhere"),
     NAMED("files", "tropospheric_water", tropospheric_water_file, "tropospheric-water.csv",
          "CSV profile of water vapour held below the tropopause"),
-    TEXT("files", "tropospheric_no", tropospheric_no_file, "tropospheric-nitric-oxide.csv",
-         "CSV profile of NO held below the tropopause; empty to compute NO everywhere"),
+    TEXT("files", "tropospheric_no2", tropospheric_no2_file, "tropospheric-nitrogen-dioxide.csv",
+         "CSV profile of NO2 held below the tropopause; empty to compute NO2 everywhere"),
 
     CHOICE("sun", "kind", sun, SUN_GLOBAL, sun_choices,
            "global mean sun, or the sun of latitude_deg on day_of_year"),

@@ -112,7 +112,7 @@ static int read_troposphere(Model *model, Fault *fault) {
     const Settings *settings = &model->settings;
     int code = read_held(model, "H2O", "tropospheric water", settings->tropospheric_water_file, "H2O_mol_mol-1", fault);
     if (!code) code = read_held(model, "OH", "tropospheric OH", settings->tropospheric_oh_file, "OH_cm-3", fault);
-    if (!code) code = read_held(model, "NO", "tropospheric NO", settings->tropospheric_no_file, "NO_mol_mol-1", fault);
+    if (!code) code = read_held(model, "NO2", "tropospheric NO2", settings->tropospheric_no2_file, "NO2_mol_mol-1", fault);
     return code;
 }
 

@@ -45,7 +45,7 @@ typedef struct {
     double *surface_value;   /* [solved] mole fraction or deposition velocity, cm s-1 */
 
     /* held species: prescribed below the tropopause */
-#define MODEL_HELD_MOST 3 /* H2O, OH, NO */
+#define MODEL_HELD_MOST 3 /* H2O, OH, NO2 */
     int held;
     int *held_species;       /* [held] */
     double *held_free;       /* [held][padded] 1 free, 0 held */

@@ -1,6 +1,6 @@
 /* mixing: eddy diffusion of a whole column, species by species, with what crosses the ground and the tropopause booked.
  *
- * Species that share a ground condition share a factorisation. Held species (water, OH, NO) are carried from their highest
+ * Species that share a ground condition share a factorisation. Held species (water, OH, NO2) are carried from their highest
  * prescribed layer up: water falls a thousandfold within the troposphere, and letting it diffuse there between two
  * moments of being set right would wet the stratosphere.
  */

@@ -76,7 +76,7 @@ static int spin(void **state) {
     (void)state;
     Settings settings = coarse();
     spun = start(&settings);
-    advance(&spun, settings.outer_step_days, 72); /* three years */
+    advance(&spun, settings.outer_step_days, (int)lround(3.0 * 365.25 / settings.outer_step_days));
     return 0;
 }
 
@@ -147,15 +147,15 @@ static void test_load_and_store(void **state) {
     for (size_t i = 0; i < field_size(&spun); i++) assert_true(fabs(x[i] - spun.column->x[i]) <= 1e-15 * fabs(x[i]));
 
     /* held and ground values come back whatever the chemistry made of them, and the difference is counted */
-    int no = solved(&spun, "NO"), n2o = solved(&spun, "N2O"), o3 = solved(&spun, "O3"), h = 0;
-    while (model->held_species[h] != no) h++;
+    int h = model->held - 1, held = model->held_species[h], n2o = solved(&spun, "N2O"), o3 = solved(&spun, "O3");
+    assert_true(h >= 0);
     pack_load(work, model, 0, x);
-    work->y[no * PACK + 2] -= 1e6;
+    work->y[held * PACK + 2] -= 1e6;
     work->y[n2o * PACK] -= 1e9;
     work->y[o3 * PACK + 3] = -5.0; /* below zero stays below zero */
-    double kept_no = x[FIELD(padded, no, 2)], kept_n2o = x[FIELD(padded, n2o, 0)];
+    double kept_held = x[FIELD(padded, held, 2)], kept_n2o = x[FIELD(padded, n2o, 0)];
     pack_store(work, model, 0, x, &ledger);
-    assert_true(x[FIELD(padded, no, 2)] == kept_no && x[FIELD(padded, n2o, 0)] == kept_n2o);
+    assert_true(x[FIELD(padded, held, 2)] == kept_held && x[FIELD(padded, n2o, 0)] == kept_n2o);
     check_near(ledger.exchanged[h], 1e6 * model->grid.depth[2], 1e-6);
     check_near(ledger.received[n2o], 1e9 * model->grid.depth[0], 1e-6);
     check_near(x[FIELD(padded, o3, 3)], -5.0 / model->air.number_density[3], 1e-12);
@@ -387,23 +387,24 @@ static void test_factors_make_sense(void **state) {
     assert_true(factor_at("NO + NO3", 31.0) < 0.2);
 }
 
-/* A settled state is the mean of its own day: one explicit day from its midnight has the run's means. */
+/* A settled state is the mean of its own day: explicit days from its midnight have the run's means. */
 static void test_factors_are_consistent(void **state) {
     (void)state;
     static const char *const gases[] = {"O3", "NO2", "ClO", "HNO3", "OH", "ClONO2"};
     Settings settings = coarse();
     settings.day = DAY_EXPLICIT;
+    settings.refresh_column = 1e-4; /* the first light knows the ozone of midnight only */
     Run run = start(&settings);
     day_midnight(stepper_day(spun.stepper), spun.column->x, run.column->x);
-    advance(&run, 1.0, 1);
+    advance(&run, 1.0, 3);
     int padded = run.model->grid.padded;
     for (size_t g = 0; g < sizeof gases / sizeof gases[0]; g++) {
         double worst = 0.0;
         int s = solved(&run, gases[g]);
-        for (int l = 8; l < 30; l++) /* 16 to 60 km */
+        for (int l = 8; l < (g ? 23 : 30); l++) /* 16 to 46 km, ozone to 60 km */
             worst = fmax(worst, fabs(stepper_mean(run.stepper)[FIELD(padded, s, l)] / spun.column->x[FIELD(padded, s, l)] - 1.0));
         print_message("   %s: the day's mean %.1f %% from the run's at worst\n", gases[g], 100.0 * worst);
-        assert_true(worst < (g ? 0.1 : 0.02));
+        assert_true(worst < (g ? 0.05 : 0.02));
     }
     end(&run);
 }
@@ -546,11 +547,12 @@ static void test_explicit_year_agrees(void **state) {
     Settings settings = coarse();
     Run means = start(&settings);
     copy_state(&means, &spun);
-    advance(&means, settings.outer_step_days, 7 * 24);
+    advance(&means, settings.outer_step_days, (int)lround(7.0 * 365.25 / settings.outer_step_days));
     settings.day = DAY_EXPLICIT;
     Run days = start(&settings);
     copy_state(&days, &means);
-    advance(&means, 365.0 / 24.0, 24);
+    long steps = lround(365.0 / settings.outer_step_days);
+    advance(&means, 365.0 / (double)steps, (int)steps);
     advance(&days, 1.0, 365);
     double worst = worst_ozone(&means, &days, 0.0, 90.0), du = column_ozone_du(means.model, means.column->x);
     double du_days = column_ozone_du(days.model, stepper_mean(days.stepper));
