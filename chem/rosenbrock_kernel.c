@@ -221,6 +221,29 @@ static double error_norm(const Kernel *kernel, const Vec *restrict y, const Vec 
     return sqrt(worst / solved);
 }
 
+/* Whether the step takes a value further below zero than the absolute tolerance. The error of a gas that decays to
+ * nothing within one step is measured against what it was and would let that pass. */
+static int falls_too_low(const Kernel *kernel, const Vec *restrict y, const Vec *restrict next,
+                         const Vec *restrict is_free, double absolute)
+{
+    union {
+        Vec pack;
+        double lane[PACK];
+    } low = {.lane = {0}};
+    Vec most = {0};
+    for (int s = 0; s < kernel->species - kernel->counters; s++)
+        for (int p = 0; p < PARTS; p++) {
+            Native below = -next[s].at[p] * is_free[s].at[p];
+            NativeMask falls = next[s].at[p] < y[s].at[p];
+            most.at[p] = larger((Native)((NativeMask)below & falls), most.at[p]);
+        }
+    low.pack = most;
+    for (int l = 0; l < PACK; l++)
+        if (low.lane[l] > absolute)
+            return 1;
+    return 0;
+}
+
 /* What failed, as lane * species + s: of the lane's free species the first whose state or error is not
  * finite, else the one with the largest scaled error. */
 static int blame(const Kernel *kernel, const SolverWork *work, const double *y, const Tolerance *tolerance,
@@ -463,10 +486,12 @@ int JOIN(solver_advance_, SOLVER_SUFFIX)(const Kernel *kernel, SolverWork *work,
         counts->factorisations++;
         double norm = error_norm(kernel, (const Vec *)y, (const Vec *)work->next, (const Vec *)error,
                                  (const Vec *)work->free, tolerance, &lane);
-        if (!(norm <= 1.0)) {
+        int low = norm <= 1.0 && falls_too_low(kernel, (const Vec *)y, (const Vec *)work->next,
+                                               (const Vec *)work->free, tolerance->absolute);
+        if (!(norm <= 1.0) || low) {
             counts->rejections++;
             rejected = 1;
-            h = tried * (isfinite(norm) ? fmax(SHRINK, SAFETY / cbrt(norm)) : 0.1);
+            h = tried * (low ? 0.5 : isfinite(norm) ? fmax(SHRINK, SAFETY / cbrt(norm)) : 0.1);
             if (h < 1e-14 * duration || h < 1e-10) {
                 *where = blame(kernel, work, y, tolerance, lane);
                 return isfinite(norm) ? SOLVER_STEP_UNDERFLOW : SOLVER_NOT_FINITE;
