@@ -401,6 +401,7 @@ static void beam(const Photolysis *p, int sun, int target, double *out)
 static void beams(Photolysis *p)
 {
     size_t stride = (size_t)p->stride, special = (size_t)p->parametrised;
+#pragma omp parallel for schedule(static)
     for (int s = 0; s < p->suns; s++)
         for (int k = 0; k <= p->layers; k++) {
             size_t at = (size_t)(s * p->layers + k);
@@ -487,6 +488,7 @@ static void nitric_oxide_rates(Photolysis *p, int r, const double *nitric_oxide,
 static void all_rates(Photolysis *p, const double *nitric_oxide, double earth_sun, double *rate)
 {
     size_t stride = (size_t)p->stride, set = (size_t)p->reactions * (size_t)p->padded;
+#pragma omp parallel for schedule(static) /* layers are independent: the same bits for any number of threads */
     for (int k = 0; k < p->layers; k++)
         for (int s = 0; s < p->suns; s += 2) {
             int t = s + 1 < p->suns ? s + 1 : s; /* an odd last sun goes with itself */
@@ -516,6 +518,7 @@ void photolysis_rates(Photolysis *photolysis, const double *ozone, const double 
     beams(p);
     radiation_solve(p->suns, p->layers, p->stride, p->absorb, p->scatter, p->direct, p->ground_direct,
                     p->cosine, p->albedo, STREAMS, p->flux, p->ground, p->work);
+#pragma omp parallel for schedule(static)
     for (size_t row = 0; row < (size_t)p->suns * (size_t)p->layers; row++)
         for (size_t b = 0; b < stride; b++)
             p->flux[row * stride + b] *= b < (size_t)p->bins ? p->spectra->flux[b] * earth_sun : 0;

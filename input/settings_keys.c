@@ -69,9 +69,9 @@ static const SettingKey keys[] = {
     CHOICE("day", "mode", day, DAY_FACTORS, day_choices,
            "mean: constant mean light (wrong for chlorine, for comparison only); factors: diurnal "
            "factors from a repeating day; explicit: every day resolved (slow)"),
-    REAL("day", "refresh_column", refresh_column, 0.002, 1e-5, 1, "relative",
+    REAL("day", "refresh_column", refresh_column, 0.0015, 1e-5, 1, "relative",
          "change of overhead ozone at which photolysis rates are made afresh"),
-    REAL("day", "refresh_state", refresh_state, 0.1, 1e-4, 10, "relative",
+    REAL("day", "refresh_state", refresh_state, 0.03, 1e-4, 10, "relative",
          "change of the state at which the diurnal factors are made afresh"),
 
     REAL("surface", "tropopause_km", tropopause_km, 12, 5, 20, "km",
@@ -86,7 +86,7 @@ static const SettingKey keys[] = {
 
     REAL("numerics", "outer_step_days", outer_step_days, 30.4375 / 4, 0.01, 366, "days",
          "step of the splitting between transport and chemistry; the default is a quarter of a mean month"),
-    REAL("numerics", "relative_tolerance", relative_tolerance, 3e-3, 1e-10, 0.1, "",
+    REAL("numerics", "relative_tolerance", relative_tolerance, 1e-2, 1e-10, 0.1, "",
          "error allowed per step of the chemistry"),
     REAL("numerics", "absolute_tolerance_cm3", absolute_tolerance_cm3, 1e2, 1e-6, 1e8,
          "molecules cm-3", "the same for gases too scarce to matter"),

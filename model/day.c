@@ -7,8 +7,9 @@
 
 #include "../input/constants.h"
 
-/* A reaction matters for convergence when it is this share of the loss of one of its reactants. */
-static const double SHARE_THAT_MATTERS = 0.01;
+/* A reaction matters for convergence when it is this share of the loss of one of its reactants, and faster than this,
+ * cm-3 s-1: in a year it then turns over 3e5 cm-3, of ozone's 1e10 and more. */
+static const double SHARE_THAT_MATTERS = 0.01, RATE_THAT_MATTERS = 0.01;
 /* Mean number density, cm-3, below which a reactant is as good as absent and its factors stay 1: one molecule in 10 l. */
 static const double ABSENT = 1e-4;
 /* Species whose midnight value is within this of the mean have no diurnal course worth watching. */
@@ -115,7 +116,7 @@ static double take_factors(Day *day, const Light *light, int layer, const double
             double y = day->sum_y[FIELD(padded, s, layer)] / DAY_SECONDS;
             absent |= !(y > ABSENT);
             mean *= y;
-            matters |= rate > SHARE_THAT_MATTERS * day->loss[s];
+            matters |= rate > SHARE_THAT_MATTERS * day->loss[s] && rate > RATE_THAT_MATTERS;
         }
         absent |= !(mean > 0.0) || !(rate > 0.0);
         day->factor[at] = absent ? 1.0 : rate / mean;

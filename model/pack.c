@@ -7,6 +7,29 @@
 
 #include "../input/constants.h"
 
+/* Who carries each element. Not O, of which air is an endless store, and F, which ends in an inert sum. */
+static void list_carriers(PackWork *work, const Model *model) {
+    const Mechanism *mechanism = model->mechanism;
+    const Kernel *kernel = model->kernel;
+    int rows = kernel->species + kernel->tallies;
+    for (int e = 0; e < mechanism->elements; e++) {
+        if (!strcmp(mechanism->element[e], "O") || !strcmp(mechanism->element[e], "F")) continue;
+        for (int row = 0; row < rows; row++) {
+            double atoms;
+            if (row < mechanism->solved)
+                atoms = mechanism_atoms(mechanism, row, e);
+            else if (row < kernel->species)
+                atoms = kernel->counter_element[row - mechanism->solved] == e;
+            else
+                atoms = mechanism_atoms(mechanism, kernel->reactant[3 * kernel->tally_reaction[row - kernel->species]], e);
+            if (atoms == 0.0) continue;
+            int at = e * rows + work->carriers[e]++;
+            work->carrier[at] = row;
+            work->carried[at] = atoms;
+        }
+    }
+}
+
 int pack_make(PackWork **made, const Model *model, Fault *fault) {
     *made = NULL;
     PackWork *work = calloc(1, sizeof *work);
@@ -24,7 +47,10 @@ int pack_make(PackWork **made, const Model *model, Fault *fault) {
     for (size_t i = 0; i < parts; i++) rows += part[i].rows;
     work->block = aligned_alloc(PACK * sizeof(double), rows * PACK * sizeof(double));
     work->held_species = calloc(species, sizeof(int));
-    int code = work->block && work->held_species ? solver_work_make(&work->solver, model->kernel, fault)
+    work->carriers = calloc(MECHANISM_ELEMENTS, sizeof(int));
+    work->carrier = calloc(MECHANISM_ELEMENTS * (species + tallies), sizeof(int));
+    work->carried = calloc(MECHANISM_ELEMENTS * (species + tallies), sizeof(double));
+    int code = work->block && work->held_species && work->carriers && work->carrier && work->carried ? solver_work_make(&work->solver, model->kernel, fault)
                                                  : fault_memory(fault, "chemistry of a pack");
     if (code) {
         pack_free(work);
@@ -36,6 +62,7 @@ int pack_make(PackWork **made, const Model *model, Fault *fault) {
         *part[i].array = at;
         at += part[i].rows * PACK;
     }
+    list_carriers(work, model);
     *made = work;
     return 0;
 }
@@ -44,51 +71,45 @@ void pack_free(PackWork *work) {
     if (!work) return;
     solver_work_free(work->solver);
     free(work->held_species);
+    free(work->carriers);
+    free(work->carrier);
+    free(work->carried);
     free(work->block);
     free(work);
 }
 
-/* Elements that are accounted for: all but O, of which air is an endless store, and F, which ends in an inert sum. */
-static int accounted(const Mechanism *mechanism, int element) {
-    return strcmp(mechanism->element[element], "O") && strcmp(mechanism->element[element], "F");
-}
-
 /* Atoms cm-3 of an element in each lane: species, counters and tallies. */
 static void count_atoms(const PackWork *work, const Model *model, int element, double *atoms) {
-    const Kernel *kernel = model->kernel;
-    int solved = model->mechanism->solved;
+    int rows = model->kernel->species + model->kernel->tallies;
+    const int *carrier = work->carrier + element * rows;
+    const double *carried = work->carried + element * rows;
     memset(atoms, 0, PACK * sizeof(double));
-    for (int s = 0; s < solved; s++) {
-        int share = mechanism_atoms(model->mechanism, s, element);
-        for (int l = 0; share && l < PACK; l++) atoms[l] += share * work->y[s * PACK + l];
-    }
-    for (int c = 0; c < kernel->counters; c++)
-        for (int l = 0; kernel->counter_element[c] == element && l < PACK; l++)
-            atoms[l] += work->y[(solved + c) * PACK + l];
-    for (int t = 0; t < kernel->tallies; t++) {
-        int share = mechanism_atoms(model->mechanism, kernel->reactant[3 * kernel->tally_reaction[t]], element);
-        for (int l = 0; share && l < PACK; l++) atoms[l] += share * work->tally[t * PACK + l];
+    for (int c = 0; c < work->carriers[element]; c++) {
+        int row = carrier[c];
+        const double *y = row < model->kernel->species ? work->y + row * PACK
+                                                       : work->tally + (row - model->kernel->species) * PACK;
+        for (int l = 0; l < PACK; l++) atoms[l] += carried[c] * y[l];
     }
 }
 
 static void restore_atoms(PackWork *work, const Model *model) {
-    const Mechanism *mechanism = model->mechanism;
-    for (int e = 0; e < mechanism->elements; e++) {
-        if (!accounted(mechanism, e)) continue;
+    int rows = model->kernel->species + model->kernel->tallies;
+    for (int e = 0; e < model->mechanism->elements; e++) {
+        if (!work->carriers[e]) continue;
         double now[PACK];
         count_atoms(work, model, e, now);
         for (int l = 0; l < PACK; l++) {
             double before = work->atoms[e * PACK + l], defect = before - now[l], most = 0.0;
-            int carrier = -1, share = 1;
-            if (!(fabs(defect) <= PACK_ROUND_OFF * before)) continue;
-            for (int s = 0; s < mechanism->solved; s++) {
-                int atoms = mechanism_atoms(mechanism, s, e);
-                if (atoms * work->y[s * PACK + l] <= most) continue;
-                most = atoms * work->y[s * PACK + l];
-                carrier = s;
-                share = atoms;
+            int best = -1;
+            if (defect == 0.0 || !(fabs(defect) <= PACK_ROUND_OFF * before)) continue;
+            for (int c = 0; c < work->carriers[e] && work->carrier[e * rows + c] < model->mechanism->solved; c++) {
+                double here = work->carried[e * rows + c] * work->y[work->carrier[e * rows + c] * PACK + l];
+                if (here <= most) continue;
+                most = here;
+                best = c;
             }
-            if (carrier >= 0) work->y[carrier * PACK + l] += defect / share;
+            if (best >= 0)
+                work->y[work->carrier[e * rows + best] * PACK + l] += defect / work->carried[e * rows + best];
         }
     }
 }
@@ -131,7 +152,7 @@ void pack_load(PackWork *work, const Model *model, int first, const double *x) {
         work->held_species[work->held++] = s;
     }
     for (int e = 0; e < model->mechanism->elements; e++)
-        if (accounted(model->mechanism, e)) count_atoms(work, model, e, work->atoms + e * PACK);
+        if (work->carriers[e]) count_atoms(work, model, e, work->atoms + e * PACK);
 }
 
 void pack_rates(PackWork *work, const Model *model, int first, const double *coefficient, const double *mean_light,

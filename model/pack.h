@@ -21,6 +21,9 @@ typedef struct {
     double *tally;     /* [tallies][PACK] cm-3 */
     double *held_free, *held_value; /* [held][PACK] */
     double *atoms;     /* [elements][PACK] atoms cm-3 at loading */
+    int *carriers;     /* [elements] rows (species, then counters, then tallies) that hold an element; 0 for O and F */
+    int *carrier;      /* [elements][rows] which */
+    double *carried;   /* [elements][rows] atoms of the element in each */
     int held, *held_species; /* prescribed somewhere in this pack: below the tropopause, or in the lowest layer by the ground */
     void *block;
 } PackWork;

@@ -27,6 +27,7 @@ struct Stepper {
     Column *sample;       /* the column of the explicit days that give the factors; its ledger is nobody's */
     PackWork **work;      /* [threads] */
     PackOutcome *outcome; /* [packs] */
+    int *order;           /* [2 + PACK_DAY_PARTS][packs] packs by the work they were last time, most first: threads end together */
     double *ledgers;      /* [packs][held + solved + tallies], behind outcome[].ledger */
     double *half_step;    /* [2][packs] solver step to try first: before the transport, after it */
     double *part_step;    /* [PACK_DAY_PARTS][packs] the same for the parts of the day */
@@ -47,6 +48,7 @@ static int allocate(Stepper *stepper, Fault *fault) {
     size_t ledger = (size_t)model->held + solved + (size_t)model->kernel->tallies;
     stepper->work = calloc(threads, sizeof *stepper->work);
     stepper->outcome = calloc(packs, sizeof *stepper->outcome);
+    stepper->order = calloc((2 + PACK_DAY_PARTS) * packs, sizeof(int));
     stepper->ledgers = calloc(packs * ledger, sizeof(double));
     stepper->half_step = calloc(2 * packs, sizeof(double));
     stepper->part_step = calloc(PACK_DAY_PARTS * packs, sizeof(double));
@@ -54,9 +56,10 @@ static int allocate(Stepper *stepper, Fault *fault) {
     stepper->density = calloc(solved * padded, sizeof(double));
     stepper->mean = calloc(solved * padded, sizeof(double));
     stepper->daylight = calloc(solved * padded, sizeof(double));
-    if (!stepper->work || !stepper->outcome || !stepper->ledgers || !stepper->half_step || !stepper->part_step ||
+    if (!stepper->work || !stepper->outcome || !stepper->order || !stepper->ledgers || !stepper->half_step || !stepper->part_step ||
         !stepper->coefficient || !stepper->density || !stepper->mean || !stepper->daylight)
         return fault_memory(fault, "stepper");
+    for (size_t i = 0; i < (2 + PACK_DAY_PARTS) * packs; i++) stepper->order[i] = (int)(i % packs);
     for (size_t p = 0; p < packs; p++) {
         double *at = stepper->ledgers + p * ledger;
         stepper->outcome[p].ledger =
@@ -101,6 +104,7 @@ void stepper_free(Stepper *stepper) {
     column_free(stepper->sample);
     free(stepper->work);
     free(stepper->outcome);
+    free(stepper->order);
     free(stepper->ledgers);
     free(stepper->half_step);
     free(stepper->part_step);
@@ -157,6 +161,15 @@ static void add_counts(SolverCounts *sum, const SolverCounts *part) {
     if (part->most_negative < sum->most_negative) sum->most_negative = part->most_negative;
 }
 
+static void arrange(const Stepper *stepper, int *order) {
+    for (int i = 1; i < stepper->packs; i++) { /* nearly sorted already */
+        int pack = order[i], j = i;
+        for (; j > 0 && stepper->outcome[order[j - 1]].counts.factorisations < stepper->outcome[pack].counts.factorisations; j--)
+            order[j] = order[j - 1];
+        order[j] = pack;
+    }
+}
+
 /* After the packs: sums in their order, or the first fault. */
 static int settle_packs(Stepper *stepper, Column *column, Fault *fault) {
     const Model *model = stepper->model;
@@ -180,8 +193,10 @@ static int chemistry(Stepper *stepper, Column *column, double step, int half, Fa
     const Model *model = stepper->model;
     Tolerance tolerance = tolerance_of(model);
     const double *factor = model->settings.day == DAY_FACTORS ? stepper->day->factor : NULL;
+    int *order = stepper->order + half * stepper->packs;
 #pragma omp parallel for schedule(dynamic, 1) num_threads(stepper->threads)
-    for (int p = 0; p < stepper->packs; p++) {
+    for (int i = 0; i < stepper->packs; i++) {
+        int p = order[i];
         PackWork *work = stepper->work[omp_get_thread_num()];
         PackOutcome *outcome = &stepper->outcome[p];
         double *first_step = &stepper->half_step[half * stepper->packs + p];
@@ -194,6 +209,7 @@ static int chemistry(Stepper *stepper, Column *column, double step, int half, Fa
         *first_step = problem.first;
         if (!outcome->result) pack_store(work, model, p * PACK, column->x, &outcome->ledger);
     }
+    arrange(stepper, order);
     return settle_packs(stepper, column, fault);
 }
 
@@ -216,8 +232,10 @@ static void add_integrals(Stepper *stepper, const PackWork *work, int first, int
 static int carry_part(Stepper *stepper, Column *column, int part, Fault *fault) {
     const Model *model = stepper->model;
     Tolerance tolerance = tolerance_of(model);
+    int *order = stepper->order + (2 + part) * stepper->packs;
 #pragma omp parallel for schedule(dynamic, 1) num_threads(stepper->threads)
-    for (int p = 0; p < stepper->packs; p++) {
+    for (int i = 0; i < stepper->packs; i++) {
+        int p = order[i];
         PackWork *work = stepper->work[omp_get_thread_num()];
         PackOutcome *outcome = &stepper->outcome[p];
         outcome->counts = (SolverCounts){0};
@@ -231,6 +249,7 @@ static int carry_part(Stepper *stepper, Column *column, int part, Fault *fault) 
         pack_store(work, model, p * PACK, column->x, &outcome->ledger);
         add_integrals(stepper, work, p * PACK, part);
     }
+    arrange(stepper, order);
     return settle_packs(stepper, column, fault);
 }
 

@@ -14,7 +14,7 @@
 #include "../input/fault.h"
 #include "../input/settings.h"
 
-#define SUN_KNOTS 25    /* morning knots, sunrise and noon included */
+#define SUN_KNOTS 21    /* morning knots, sunrise and noon included */
 #define SUN_NODES 28    /* at most */
 #define SUN_TWILIGHT (-0.2) /* cosine below which a real sun gives no light worth counting */
 
