@@ -5,7 +5,8 @@
  * Rate coefficients may change linearly in time within one call, so sunrise and sunset are resolved without
  * a jump.
  *
- * A step that takes a value below minus the absolute tolerance is rejected, whatever its error.
+ * A step that takes a value below minus the absolute tolerance (or minus twice the lowest value given) is rejected, whatever
+ * its error.
  *
  * Held species (prescribed on some layers, e.g. tropospheric OH): in those lanes every rate sees the held
  * value, and the species' own row integrates what the chemistry would have changed: the exchange with the

@@ -221,10 +221,10 @@ static double error_norm(const Kernel *kernel, const Vec *restrict y, const Vec 
     return sqrt(worst / solved);
 }
 
-/* Whether the step takes a value further below zero than the absolute tolerance. The error of a gas that decays to
+/* Whether the step takes a value further below zero than is allowed. The error of a gas that decays to
  * nothing within one step is measured against what it was and would let that pass. */
 static int falls_too_low(const Kernel *kernel, const Vec *restrict y, const Vec *restrict next,
-                         const Vec *restrict is_free, double absolute)
+                         const Vec *restrict is_free, double allowed)
 {
     union {
         Vec pack;
@@ -239,9 +239,20 @@ static int falls_too_low(const Kernel *kernel, const Vec *restrict y, const Vec 
         }
     low.pack = most;
     for (int l = 0; l < PACK; l++)
-        if (low.lane[l] > absolute)
+        if (low.lane[l] > allowed)
             return 1;
     return 0;
+}
+
+/* How far below zero a step may go: the absolute tolerance, or twice the lowest value the call was given, since what
+ * follows a negative value (ClOO follows Cl within milliseconds) cannot but be negative too. */
+static double lowest_allowed(const Kernel *kernel, const double *y, const double *is_free, double absolute)
+{
+    double allowed = absolute;
+    for (int i = 0; i < (kernel->species - kernel->counters) * PACK; i++)
+        if (is_free[i] != 0.0 && -2.0 * y[i] > allowed)
+            allowed = -2.0 * y[i];
+    return allowed;
 }
 
 /* What failed, as lane * species + s: of the lane's free species the first whose state or error is not
@@ -472,6 +483,7 @@ int JOIN(solver_advance_, SOLVER_SUFFIX)(const Kernel *kernel, SolverWork *work,
     problem->first = h;
     load_held(kernel, work, problem);
     load_coefficients(kernel, work, problem);
+    double allowed = lowest_allowed(kernel, y, work->free, tolerance->absolute);
     for (int step = 0; elapsed < duration;) {
         if (!rejected)
             prepare_step(kernel, work, problem, y, elapsed);
@@ -487,7 +499,7 @@ int JOIN(solver_advance_, SOLVER_SUFFIX)(const Kernel *kernel, SolverWork *work,
         double norm = error_norm(kernel, (const Vec *)y, (const Vec *)work->next, (const Vec *)error,
                                  (const Vec *)work->free, tolerance, &lane);
         int low = norm <= 1.0 && falls_too_low(kernel, (const Vec *)y, (const Vec *)work->next,
-                                               (const Vec *)work->free, tolerance->absolute);
+                                               (const Vec *)work->free, allowed);
         if (!(norm <= 1.0) || low) {
             counts->rejections++;
             rejected = 1;
