@@ -322,6 +322,8 @@ static int list_products(Kernel *kernel, const int32_t *entry_at, Fault *fault)
 static int analyse_matrix(Kernel *kernel, Fault *fault)
 {
     int n = kernel->species;
+    if (n < 1)
+        return fault_set(fault, FAULT_INPUT, "the mechanism has no active species; give it at least one");
     size_t square = (size_t)n * (size_t)n;
     unsigned char *pattern = calloc(square, 1);
     unsigned char *done = malloc((size_t)n);

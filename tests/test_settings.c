@@ -247,7 +247,7 @@ static void settings_defaults_fit_the_data(void **state)
             fail_msg("%s", fault.text);
         files++;
     }
-    assert_int_equal(files, 9);
+    assert_int_equal(files, 10);
 
     char path[2 * SETTINGS_PATH], *text;
     Fault fault = {0};
