@@ -96,13 +96,13 @@ static double atoms_leaving(const Mechanism *mechanism, int r, int element)
 }
 
 /* A counter for each element that leaves or enters: all but O, of which air is an endless store, and F, which
- * nobody follows. */
+ * nobody follows. In the order of the mechanism's list of elements. */
 static void choose_counters(Kernel *kernel, const Mechanism *mechanism)
 {
-    static const char *const counted[] = {"H", "C", "N", "Cl", "Br"};
-    for (size_t i = 0; i < sizeof counted / sizeof counted[0]; i++) {
-        int element = mechanism_element(mechanism, counted[i]), leaves = 0;
-        if (element < 0)
+    for (int element = 0; element < mechanism->elements; element++) {
+        const char *symbol = mechanism->element[element];
+        int leaves = 0;
+        if (strcmp(symbol, "O") == 0 || strcmp(symbol, "F") == 0)
             continue;
         for (int r = 0; r < mechanism->reactions; r++)
             leaves |= atoms_leaving(mechanism, r, element) != 0.0;

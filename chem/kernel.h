@@ -17,7 +17,7 @@ typedef struct {
     int species;  /* rows: the solved species, then the counters */
     int counters; /* rows that only count atoms leaving for fixed or inert species (N in N2, H in CH3OH),
                      entering ones negative: no feedback, no say in the step size. Set to 0 by the caller
-                     before a call, read after it. One for each of H, C, N, Cl, Br that leaves; washout is
+                     before a call, read after it. One for each element but O and F that leaves; washout is
                      tallied, not counted. */
     int counter_element[MECHANISM_ELEMENTS]; /* [counters] index in mechanism->element */
     int reactions;                           /* all reactions */

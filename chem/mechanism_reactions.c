@@ -10,7 +10,8 @@
 
 enum { LABEL = 64 };
 
-/* The word of every rate law, its parameters in the order of Reaction.parameter, and how many are required. */
+/* The word of every rate law, its parameters in the order of Reaction.parameter, and how many are required.
+ */
 static const struct {
     const char *word;
     int parameters, required;

@@ -302,10 +302,8 @@ static void set_oxygen(Photolysis *p)
     for (int k = 0; k < p->layers; k++) {
         p->column[k] = p->oxygen_share * p->air[k] * p->depth[k];
         for (int i = 0; i < NITRIC_OXIDE_INTERVALS; i++) {
-            const NitricOxideInterval *to = &spectra->nitric_oxide->interval[i];
-            double loss = to->emission + to->quench * p->nitrogen_share * p->air[k];
             p->efficiency[k * NITRIC_OXIDE_INTERVALS + i] =
-                to->predissociation / (to->predissociation + loss);
+                nitric_oxide_efficiency(&spectra->nitric_oxide->interval[i], p->nitrogen_share * p->air[k]);
         }
     }
     for (int s = 0; s < p->suns; s++)
@@ -488,7 +486,8 @@ static void nitric_oxide_rates(Photolysis *p, int r, const double *nitric_oxide,
 static void all_rates(Photolysis *p, const double *nitric_oxide, double earth_sun, double *rate)
 {
     size_t stride = (size_t)p->stride, set = (size_t)p->reactions * (size_t)p->padded;
-#pragma omp parallel for schedule(static) /* layers are independent: the same bits for any number of threads */
+#pragma omp parallel for schedule(                                                                           \
+    static) /* layers are independent: the same bits for any number of threads */
     for (int k = 0; k < p->layers; k++)
         for (int s = 0; s < p->suns; s += 2) {
             int t = s + 1 < p->suns ? s + 1 : s; /* an odd last sun goes with itself */

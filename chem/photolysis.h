@@ -6,22 +6,28 @@
 #include "radiation.h"
 #include "spectra.h"
 
-typedef struct Photolysis Photolysis; /* one column's photolysis module with its workspace: one per thread/column */
+typedef struct Photolysis
+    Photolysis; /* one column's photolysis module with its workspace: one per thread/column */
 
-/* layers/padded and edges of the grid; temperature K and air cm-3 at layer middles [padded] (kept by copy; may be renewed with
- * photolysis_set_air); depth cm [padded]; air_above_top cm-2; cosine [suns]. mechanism and spectra are kept by reference. */
-int photolysis_make(Photolysis **made, const Mechanism *mechanism, const Spectra *spectra, int layers, int padded,
-                    const double *edge_km, const double *temperature, const double *air, const double *depth,
-                    double air_above_top, const double *cosine, int suns, double albedo, Fault *fault);
+/* layers/padded and edges of the grid; temperature K and air cm-3 at layer middles [padded] (kept by copy;
+ * may be renewed with photolysis_set_air); depth cm [padded]; air_above_top cm-2; cosine [suns]. mechanism
+ * and spectra are kept by reference. */
+int photolysis_make(Photolysis **made, const Mechanism *mechanism, const Spectra *spectra, int layers,
+                    int padded, const double *edge_km, const double *temperature, const double *air,
+                    const double *depth, double air_above_top, const double *cosine, int suns, double albedo,
+                    Fault *fault);
 void photolysis_free(Photolysis *photolysis);
-void photolysis_set_air(Photolysis *photolysis, const double *temperature, const double *air, double air_above_top);
+void photolysis_set_air(Photolysis *photolysis, const double *temperature, const double *air,
+                        double air_above_top);
 
-/* rate [suns][photolysis reactions][padded] s-1 out, padding lanes repeat the top layer. ozone, nitrogen_dioxide,
- * nitric_oxide: number densities cm-3 [padded]. O2 is air times the mechanism's share. earth_sun: flux multiplier (1 at 1 au). */
+/* rate [suns][photolysis reactions][padded] s-1 out, padding lanes repeat the top layer. ozone,
+ * nitrogen_dioxide, nitric_oxide: number densities cm-3 [padded]. O2 is air times the mechanism's share.
+ * earth_sun: flux multiplier (1 at 1 au). */
 void photolysis_rates(Photolysis *photolysis, const double *ozone, const double *nitrogen_dioxide,
                       const double *nitric_oxide, double earth_sun, double *rate);
 
-/* Actinic flux of the last call, photons cm-2 s-1 per bin: pointer to [suns][layers][stride] with stride = photolysis_stride() >= bins. */
+/* Actinic flux of the last call, photons cm-2 s-1 per bin: pointer to [suns][layers][stride] with stride =
+ * photolysis_stride() >= bins. */
 const double *photolysis_actinic(const Photolysis *photolysis);
 /* Downward irradiance at the ground of the last call relative to the incident: [suns][stride]. */
 const double *photolysis_ground(const Photolysis *photolysis);

@@ -1,7 +1,7 @@
 /* rates: rate coefficients of all thermal and washout reactions on all layers.
  *
- * Coefficients are held as [reaction][padded], layers contiguous, for every reaction of the mechanism, in units
- * such that rate (molecules cm-3 s-1) = coefficient * product of number densities of the solved
+ * Coefficients are held as [reaction][padded], layers contiguous, for every reaction of the mechanism, in
+ * units such that rate (molecules cm-3 s-1) = coefficient * product of number densities of the solved
  * reactants: fixed reactants (M, O2, N2) are folded in.
  */
 #ifndef SKYMEND_RATES_H
@@ -9,8 +9,8 @@
 
 #include "mechanism.h"
 
-/* One law at one point, without branch and fixed reactants: cm3 s-1 (bimolecular and effective fall-off), cm6 s-1,
- * or s-1 (decomposition). temperature K, air cm-3, water cm-3. For tests and listings. */
+/* One law at one point, without branch and fixed reactants: cm3 s-1 (bimolecular and effective fall-off), cm6
+ * s-1, or s-1 (decomposition). temperature K, air cm-3, water cm-3. For tests and listings. */
 double rates_law(const Mechanism *mechanism, int reaction, double temperature, double air, double water);
 
 /* Fill coefficient[r][.] for thermal reactions.

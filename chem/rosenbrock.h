@@ -5,8 +5,8 @@
  * Rate coefficients may change linearly in time within one call, so sunrise and sunset are resolved without
  * a jump.
  *
- * A step that takes a value below minus the absolute tolerance (or minus twice the lowest value given) is rejected, whatever
- * its error.
+ * A step that takes a value below minus the absolute tolerance (or minus twice the lowest value given) is
+ * rejected, whatever its error.
  *
  * Held species (prescribed on some layers, e.g. tropospheric OH): in those lanes every rate sees the held
  * value, and the species' own row integrates what the chemistry would have changed: the exchange with the
@@ -26,7 +26,7 @@ typedef struct {
 
 typedef struct {
     long calls, steps, rejections, factorisations;
-    long negatives;       /* values below zero (but within the absolute tolerance) at the ends of calls */
+    long negatives;       /* values below zero (no lower than a step may fall) at the ends of calls */
     double most_negative; /* lowest value met at the end of a call, cm-3 */
 } SolverCounts;
 
@@ -47,7 +47,8 @@ typedef struct {
     double *sum_y; /* [species][PACK] cm-3 s */
     double *sum_w; /* [reactions][PACK] cm-3 */
     double step;   /* s: in: first step to try (<= 0: chosen); out: step to try next */
-    double first;  /* s, out: the step that suited the start of this call: to try first when a like call comes */
+    double
+        first; /* s, out: the step that suited the start of this call: to try first when a like call comes */
 } PackProblem;
 
 typedef struct SolverWork SolverWork; /* one per thread */

@@ -244,8 +244,8 @@ static int falls_too_low(const Kernel *kernel, const Vec *restrict y, const Vec 
     return 0;
 }
 
-/* How far below zero a step may go: the absolute tolerance, or twice the lowest value the call was given, since what
- * follows a negative value (ClOO follows Cl within milliseconds) cannot but be negative too. */
+/* How far below zero a step may go: the absolute tolerance, or twice the lowest value the call was given,
+ * since what follows a negative value (ClOO follows Cl within milliseconds) cannot but be negative too. */
 static double lowest_allowed(const Kernel *kernel, const double *y, const double *is_free, double absolute)
 {
     double allowed = absolute;

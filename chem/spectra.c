@@ -260,21 +260,23 @@ static void bin_means(const Spectra *spectra, const Curve *solar, const Curve *c
                   integrate(solar, NULL, spectra->lower[k], spectra->upper[k]);
 }
 
-/* A cross section is zero outside its table. One that meets no bin is a slip, and that of ozone, which sets the light all
- * others get, must leave no bin out. */
-static int covers_bins(const Spectrum *to, const Spectra *spectra, const Table *table, const double *wavelength,
-                       Fault *fault)
+/* A cross section is zero outside its table. One that meets no bin is a slip, and that of ozone, which sets
+ * the light all others get, must leave no bin out. */
+static int covers_bins(const Spectrum *to, const Spectra *spectra, const Table *table,
+                       const double *wavelength, Fault *fault)
 {
     double low = spectra->lower[0], high = spectra->upper[spectra->bins - 1];
     double first = wavelength[0], last = wavelength[table->rows - 1];
     if (first >= high || last <= low)
-        return fault_at(fault, table->path, table->line[0],
-                        "the table covers %g to %g nm, none of the bins' %g to %g nm; correct its wavelengths", first, last,
-                        low, high);
+        return fault_at(
+            fault, table->path, table->line[0],
+            "the table covers %g to %g nm, none of the bins' %g to %g nm; correct its wavelengths", first,
+            last, low, high);
     if (to->logarithmic && strcmp(to->name, "O3") == 0 && (first > low || last < high))
-        return fault_at(fault, table->path, table->line[first > low ? 0 : table->rows - 1],
-                        "the ozone cross section covers %g to %g nm, but the bins reach from %g to %g nm; add rows", first,
-                        last, low, high);
+        return fault_at(
+            fault, table->path, table->line[first > low ? 0 : table->rows - 1],
+            "the ozone cross section covers %g to %g nm, but the bins reach from %g to %g nm; add rows",
+            first, last, low, high);
     return 0;
 }
 

@@ -1,17 +1,19 @@
 /* surface: heterogeneous reactions on background sulfate aerosol.
  *
  * First-order uptake of the first reactant: gamma * mean speed * area / 4, with gas-phase diffusion
- * correction left out (radii well below the mean free path in the stratosphere). gamma constant, or after Shi et al.
- * (2001) for ClONO2 + H2O, ClONO2 + HCl and HOCl + HCl, and Hanson (2003) for BrONO2 + H2O, all as tabulated by JPL 19-5,
- * with sulfuric acid composition from water pressure and temperature (Tabazadeh et al. 1997).
- * A reaction with two solved reactants is returned as a second-order coefficient: uptake / n(second reactant).
+ * correction left out (radii well below the mean free path in the stratosphere). gamma constant, or after Shi
+ * et al. (2001) for ClONO2 + H2O, ClONO2 + HCl and HOCl + HCl, and Hanson (2003) for BrONO2 + H2O, all as
+ * tabulated by JPL 19-5, with sulfuric acid composition from water pressure and temperature (Tabazadeh et al.
+ * 1997). A reaction with two solved reactants is returned as a second-order coefficient: uptake / n(second
+ * reactant).
  */
 #ifndef SKYMEND_SURFACE_H
 #define SKYMEND_SURFACE_H
 
 #include "mechanism.h"
 
-/* Sulfuric acid mass fraction (percent) in equilibrium with water partial pressure (hPa) at temperature (K). */
+/* Sulfuric acid mass fraction (percent) in equilibrium with water partial pressure (hPa) at temperature (K).
+ */
 double surface_acid_percent(double temperature, double water_hpa);
 
 /* Fill coefficient[r][.] for surface reactions.
@@ -22,7 +24,8 @@ double surface_acid_percent(double temperature, double water_hpa);
 void surface_rates(const Mechanism *mechanism, int padded, const double *temperature, const double *air,
                    const double *area, const double *radius, const double *density, double *coefficient);
 
-/* Reaction probability of one surface reaction at one point, for tests and listings. Partial pressures in hPa. */
+/* Reaction probability of one surface reaction at one point, for tests and listings. Partial pressures in
+ * hPa. */
 double surface_probability(const Mechanism *mechanism, int reaction, double temperature, double water_hpa,
                            double hcl_hpa, double clono2_hpa, double radius_cm);
 

@@ -57,8 +57,7 @@ static char *read_stream(FILE *stream, const char *path, size_t *length, Fault *
 static int check_text(const char *path, char *text, size_t *length, Fault *fault)
 {
     const unsigned char *byte = (const unsigned char *)text;
-    if (*length >= 2 &&
-        ((byte[0] == 0xff && byte[1] == 0xfe) || (byte[0] == 0xfe && byte[1] == 0xff)))
+    if (*length >= 2 && ((byte[0] == 0xff && byte[1] == 0xfe) || (byte[0] == 0xfe && byte[1] == 0xff)))
         return fault_at(fault, path, 1, "is UTF-16 text; save it as UTF-8");
     if (*length >= 3 && byte[0] == 0xef && byte[1] == 0xbb && byte[2] == 0xbf) {
         *length -= 3;
@@ -69,8 +68,7 @@ static int check_text(const char *path, char *text, size_t *length, Fault *fault
         int line = 1;
         for (const char *p = text; p < nul; p++)
             line += *p == '\n';
-        return fault_at(fault, path, line,
-                        "holds a NUL byte, so it is no text file; check its name");
+        return fault_at(fault, path, line, "holds a NUL byte, so it is no text file; check its name");
     }
     return 0;
 }
@@ -85,8 +83,7 @@ int table_text(const char *path, char **text, size_t *length, Fault *fault)
         return fault_at(fault, path, 0, "is a folder; name a file in it");
     FILE *stream = fopen(path, "rb");
     if (!stream)
-        return fault_at(fault, path, 0, "cannot be opened: %s; check its permissions",
-                        strerror(errno));
+        return fault_at(fault, path, 0, "cannot be opened: %s; check its permissions", strerror(errno));
     size_t size = 0;
     char *whole = read_stream(stream, path, &size, fault);
     fclose(stream);
@@ -163,9 +160,8 @@ static int cut_cells(Csv *csv, char *p, int line, size_t *used, const char *path
         if (*p == '"') {
             end = unquote(p);
             if (!end)
-                return fault_at(
-                    fault, path, line,
-                    "a quoted cell is not closed on its line; close or remove the quote");
+                return fault_at(fault, path, line,
+                                "a quoted cell is not closed on its line; close or remove the quote");
         } else {
             end = p + strcspn(p, ",");
         }
@@ -233,8 +229,8 @@ static int cut_lines(Csv *csv, const char *path, Fault *fault)
         csv->first[csv->rows] = used;
         size_t cells = used - csv->first[csv->rows - 1], columns = csv->first[1];
         if (cells != columns)
-            return fault_at(fault, path, line,
-                            "%zu cells where the line of column names has %zu; %s", cells, columns,
+            return fault_at(fault, path, line, "%zu cells where the line of column names has %zu; %s", cells,
+                            columns,
                             cells > columns ? "remove cells, or write decimal points for commas"
                                             : "fill in the missing cells");
     }
@@ -280,8 +276,7 @@ void csv_free(Csv *csv)
     memset(csv, 0, sizeof *csv);
 }
 
-int csv_number(const char *path, int line, const char *column, const char *cell, double *value,
-               Fault *fault)
+int csv_number(const char *path, int line, const char *column, const char *cell, double *value, Fault *fault)
 {
     if (*cell == '\0')
         return fault_at(fault, path, line, "the cell under %s is empty; write a number", column);
@@ -296,8 +291,8 @@ int csv_number(const char *path, int line, const char *column, const char *cell,
                             "\"%.60s\" under %s is no number; write a decimal point and separate "
                             "cells by commas",
                             cell, column);
-        return fault_at(fault, path, line, "\"%.60s\" under %s is no %snumber; correct the cell",
-                        cell, column, end && end != cell && *end == '\0' ? "finite " : "");
+        return fault_at(fault, path, line, "\"%.60s\" under %s is no %snumber; correct the cell", cell,
+                        column, end && end != cell && *end == '\0' ? "finite " : "");
     }
     return 0;
 }

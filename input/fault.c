@@ -58,8 +58,8 @@ int fault_at(Fault *fault, const char *file, int line, const char *format, ...)
 
 int fault_memory(Fault *fault, const char *what)
 {
-    return fault_set(fault, FAULT_NUMERICS,
-                     "out of memory for %s; use fewer layers or free some memory", what);
+    return fault_set(fault, FAULT_NUMERICS, "out of memory for %s; use fewer layers or free some memory",
+                     what);
 }
 
 /* ---- nearest word ---- */

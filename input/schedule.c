@@ -38,10 +38,9 @@ static int find_columns(const Csv *csv, const char *path, size_t *place, Fault *
             k++;
         if (k == COLUMNS) {
             const char *near = fault_nearest(csv->cell[c], column_names, COLUMNS);
-            return fault_at(
-                fault, path, csv->line[0], "unknown column \"%.60s\"; %s%s%s", csv->cell[c],
-                near ? "did you mean " : "the columns are year,gas,kind,amount,unit,line",
-                near ? near : "", near ? "?" : "");
+            return fault_at(fault, path, csv->line[0], "unknown column \"%.60s\"; %s%s%s", csv->cell[c],
+                            near ? "did you mean " : "the columns are year,gas,kind,amount,unit,line",
+                            near ? near : "", near ? "?" : "");
         }
         if (place[k] != count)
             return fault_at(fault, path, csv->line[0], "two columns are called %s; remove one",
@@ -51,8 +50,7 @@ static int find_columns(const Csv *csv, const char *path, size_t *place, Fault *
     for (int k = 0; k < COLUMNS; k++)
         if (place[k] == count)
             return fault_at(fault, path, csv->line[0],
-                            "no column %s; the columns are year,gas,kind,amount,unit,line",
-                            column_names[k]);
+                            "no column %s; the columns are year,gas,kind,amount,unit,line", column_names[k]);
     return 0;
 }
 
@@ -68,8 +66,8 @@ static int read_year(const char *path, int line, const char *cell, int *year, Fa
     return 0;
 }
 
-static int read_amount(const char *path, int line, const char *cell, const char *unit,
-                       double *abundance, Fault *fault)
+static int read_amount(const char *path, int line, const char *cell, const char *unit, double *abundance,
+                       Fault *fault)
 {
     double amount;
     if (csv_number(path, line, "amount", cell, &amount, fault))
@@ -79,16 +77,15 @@ static int read_amount(const char *path, int line, const char *cell, const char 
         u++;
     if (u == UNITS) {
         const char *near = fault_nearest(unit, units, UNITS);
-        return fault_at(fault, path, line,
-                        "unit is \"%.60s\"; write ppt, ppb, ppm or mol/mol%s%s%s", unit,
+        return fault_at(fault, path, line, "unit is \"%.60s\"; write ppt, ppb, ppm or mol/mol%s%s%s", unit,
                         near ? " (did you mean " : "", near ? near : "", near ? "?)" : "");
     }
     if (amount < 0)
         return fault_at(fault, path, line, "amount is %s; an abundance cannot be negative", cell);
     *abundance = amount * unit_size[u];
     if (*abundance > 1)
-        return fault_at(fault, path, line,
-                        "amount is %s %s, more than the air itself; check the unit", cell, unit);
+        return fault_at(fault, path, line, "amount is %s %s, more than the air itself; check the unit", cell,
+                        unit);
     return 0;
 }
 
@@ -110,9 +107,8 @@ static int place_gas(Schedule *schedule, const char *name, int line, int *gas, F
     if (name[0] == '\0')
         return fault_at(fault, schedule->path, line, "gas is empty; name a species");
     if (strlen(name) >= sizeof schedule->gas[0])
-        return fault_at(fault, schedule->path, line,
-                        "gas \"%.60s\" has more than %zu letters; shorten it", name,
-                        sizeof schedule->gas[0] - 1);
+        return fault_at(fault, schedule->path, line, "gas \"%.60s\" has more than %zu letters; shorten it",
+                        name, sizeof schedule->gas[0] - 1);
     *gas = schedule_find(schedule, name);
     if (*gas < 0) {
         *gas = schedule->gases++;
@@ -121,15 +117,15 @@ static int place_gas(Schedule *schedule, const char *name, int line, int *gas, F
     return 0;
 }
 
-static int read_entry(Schedule *schedule, const Csv *csv, size_t row, const size_t *place,
-                      Entry *entry, Fault *fault)
+static int read_entry(Schedule *schedule, const Csv *csv, size_t row, const size_t *place, Entry *entry,
+                      Fault *fault)
 {
     char *const *cell = csv->cell + csv->first[row];
     entry->line = csv->line[row];
     if (read_year(schedule->path, entry->line, cell[place[YEAR]], &entry->year, fault) ||
         check_kind(schedule->path, entry->line, cell[place[KIND]], fault) ||
-        read_amount(schedule->path, entry->line, cell[place[AMOUNT]], cell[place[UNIT]],
-                    &entry->abundance, fault) ||
+        read_amount(schedule->path, entry->line, cell[place[AMOUNT]], cell[place[UNIT]], &entry->abundance,
+                    fault) ||
         place_gas(schedule, cell[place[GAS]], entry->line, &entry->gas, fault))
         return fault->code;
     if (cell[place[LINE]][0] == '\0')
@@ -158,15 +154,13 @@ static int check_series(const Schedule *schedule, const Entry *entry, size_t cou
         int before = entry[e - 1].year, year = entry[e].year;
         if (year == before)
             return fault_at(fault, schedule->path, entry[e].line,
-                            "%s has year %d twice, first on line %d; keep one", gas, year,
-                            entry[e - 1].line);
+                            "%s has year %d twice, first on line %d; keep one", gas, year, entry[e - 1].line);
         if (year == before + 2)
-            return fault_at(fault, schedule->path, entry[e].line,
-                            "%s lacks the year %d; add a row for it", gas, before + 1);
+            return fault_at(fault, schedule->path, entry[e].line, "%s lacks the year %d; add a row for it",
+                            gas, before + 1);
         if (year != before + 1)
             return fault_at(fault, schedule->path, entry[e].line,
-                            "%s lacks the years %d to %d; add a row for each", gas, before + 1,
-                            year - 1);
+                            "%s lacks the years %d to %d; add a row for each", gas, before + 1, year - 1);
     }
     return 0;
 }
@@ -180,8 +174,8 @@ static int build_series(Schedule *schedule, const Entry *entry, size_t count, Fa
     schedule->first_line = calloc(gases, sizeof *schedule->first_line);
     schedule->last_line = calloc(gases, sizeof *schedule->last_line);
     schedule->abundance = calloc(gases, sizeof *schedule->abundance);
-    if (!schedule->first_year || !schedule->years || !schedule->first_line ||
-        !schedule->last_line || !schedule->abundance)
+    if (!schedule->first_year || !schedule->years || !schedule->first_line || !schedule->last_line ||
+        !schedule->abundance)
         return fault_memory(fault, schedule->path);
     for (size_t start = 0, end; start < count; start = end) {
         int gas = entry[start].gas;
@@ -285,12 +279,11 @@ int schedule_covers(const Schedule *schedule, int first_year, int last_year, Fau
     for (int g = 0; g < schedule->gases; g++) {
         int first = schedule->first_year[g], last = first + schedule->years[g] - 1;
         if (first > first_year || last < last_year)
-            return fault_at(
-                fault, schedule->path,
-                first > first_year ? schedule->first_line[g] : schedule->last_line[g],
-                "%s has values for %d to %d, but the run needs %d to %d; add the missing "
-                "years or change years.first and years.last",
-                schedule->gas[g], first, last, first_year, last_year);
+            return fault_at(fault, schedule->path,
+                            first > first_year ? schedule->first_line[g] : schedule->last_line[g],
+                            "%s has values for %d to %d, but the run needs %d to %d; add the missing "
+                            "years or change years.first and years.last",
+                            schedule->gas[g], first, last, first_year, last_year);
     }
     return 0;
 }

@@ -13,13 +13,13 @@
 
 typedef struct {
     int gases;
-    char (*gas)[32];     /* [gases] names, in order of first appearance */
-    int *first_year;     /* [gases] */
-    int *years;          /* [gases] number of consecutive years */
+    char (*gas)[32];             /* [gases] names, in order of first appearance */
+    int *first_year;             /* [gases] */
+    int *years;                  /* [gases] number of consecutive years */
     int *first_line, *last_line; /* [gases] lines of the first and the last year, for messages */
-    double **abundance;  /* [gases][years] mole fraction, mol mol-1, global mean at mid-year */
+    double **abundance;          /* [gases][years] mole fraction, mol mol-1, global mean at mid-year */
     char *path;
-    char *header;        /* commented header, for the archive */
+    char *header; /* commented header, for the archive */
 } Schedule;
 
 int schedule_read(Schedule *schedule, const char *path, Fault *fault);

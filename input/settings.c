@@ -62,13 +62,13 @@ static const char *type_word(const config_setting_t *setting)
 static int wrong_type(const Reading *reading, const config_setting_t *setting, const char *label,
                       const char *wanted)
 {
-    return fault_at(reading->fault, file_of(reading, setting), line_of(setting),
-                    "%s is %s; write %s", label, type_word(setting), wanted);
+    return fault_at(reading->fault, file_of(reading, setting), line_of(setting), "%s is %s; write %s", label,
+                    type_word(setting), wanted);
 }
 
 /* A number, whole or not: libconfig itself would refuse 1 for 1.0. */
-static int read_number(const Reading *reading, const config_setting_t *setting, const char *label,
-                       double low, double high, const char *unit, double *value)
+static int read_number(const Reading *reading, const config_setting_t *setting, const char *label, double low,
+                       double high, const char *unit, double *value)
 {
     switch (config_setting_type(setting)) {
     case CONFIG_TYPE_INT:
@@ -125,8 +125,8 @@ static int read_choice(const Reading *reading, const config_setting_t *setting, 
             *value = (int)count;
             return 0;
         }
-        used += (size_t)snprintf(list + used, sizeof list - used, "%s\"%s\"", count ? ", " : "",
-                                 choices[count]);
+        used +=
+            (size_t)snprintf(list + used, sizeof list - used, "%s\"%s\"", count ? ", " : "", choices[count]);
     }
     const char *near = fault_nearest(word, choices, count);
     return fault_at(reading->fault, file_of(reading, setting), line_of(setting),
@@ -159,17 +159,14 @@ static int read_edges(const Reading *reading, const config_setting_t *setting, c
                         SETTINGS_MAX_EDGES);
     for (int e = 0; e < count; e++) {
         const config_setting_t *element = config_setting_get_elem(setting, (unsigned)e);
-        if (read_number(reading, element, label, key->low, key->high, key->unit,
-                        &settings->edge_km[e]))
+        if (read_number(reading, element, label, key->low, key->high, key->unit, &settings->edge_km[e]))
             return reading->fault->code;
         if (e > 0 && !(settings->edge_km[e] > settings->edge_km[e - 1]))
-            return fault_at(reading->fault, file, line_of(element),
-                            "%s has %g after %g; edges must increase", label, settings->edge_km[e],
-                            settings->edge_km[e - 1]);
+            return fault_at(reading->fault, file, line_of(element), "%s has %g after %g; edges must increase",
+                            label, settings->edge_km[e], settings->edge_km[e - 1]);
     }
     if (settings->edge_km[0] != 0)
-        return fault_at(reading->fault, file, line,
-                        "%s starts at %g; the first edge is the ground, 0", label,
+        return fault_at(reading->fault, file, line, "%s starts at %g; the first edge is the ground, 0", label,
                         settings->edge_km[0]);
     settings->edges = count;
     return 0;
@@ -193,10 +190,9 @@ static int read_bound(const Reading *reading, const config_setting_t *entry, con
             known |= strcmp(name, names[n]) == 0;
         if (!known) {
             const char *near = fault_nearest(name, names, 4);
-            return fault_at(
-                reading->fault, file, line_of(member), "%s has no key %.60s; %s%s%s", label, name,
-                near ? "did you mean " : "use species, kind, mole_fraction, velocity_cm_s",
-                near ? near : "", near ? "?" : "");
+            return fault_at(reading->fault, file, line_of(member), "%s has no key %.60s; %s%s%s", label, name,
+                            near ? "did you mean " : "use species, kind, mole_fraction, velocity_cm_s",
+                            near ? near : "", near ? "?" : "");
         }
     }
     const config_setting_t *species = config_setting_get_member(entry, "species");
@@ -212,12 +208,11 @@ static int read_bound(const Reading *reading, const config_setting_t *entry, con
     const config_setting_t *value = config_setting_get_member(entry, wanted);
     const config_setting_t *stray = config_setting_get_member(entry, other);
     if (stray)
-        return fault_at(reading->fault, file, line_of(stray),
-                        "%s does not go with kind = \"%s\"; use %s", other,
-                        bound_kinds[bound->kind], wanted);
+        return fault_at(reading->fault, file, line_of(stray), "%s does not go with kind = \"%s\"; use %s",
+                        other, bound_kinds[bound->kind], wanted);
     if (!value)
-        return fault_at(reading->fault, file, line, "the entry of %s for %s has no %s; add it",
-                        label, bound->species, wanted);
+        return fault_at(reading->fault, file, line, "the entry of %s for %s has no %s; add it", label,
+                        bound->species, wanted);
     int fixed = bound->kind == BOUND_FIXED;
     return read_number(reading, value, wanted, 0, fixed ? 1 : BOUND_VELOCITY_MOST,
                        fixed ? "mol mol-1" : "cm s-1", &bound->value);
@@ -233,6 +228,7 @@ static int read_bounds(const Reading *reading, const config_setting_t *setting, 
         return fault_at(reading->fault, file_of(reading, setting), line_of(setting),
                         "%s has %d entries; at most %d fit", label, count, SETTINGS_MAX_BOUNDS);
     settings->bounds = 0;
+    settings->bounds_given = 1;
     for (int b = 0; b < count; b++) {
         const config_setting_t *entry = config_setting_get_elem(setting, (unsigned)b);
         if (read_bound(reading, entry, label, &settings->bound[b]))
@@ -240,8 +236,7 @@ static int read_bounds(const Reading *reading, const config_setting_t *setting, 
         for (int a = 0; a < b; a++)
             if (strcmp(settings->bound[a].species, settings->bound[b].species) == 0)
                 return fault_at(reading->fault, file_of(reading, entry), line_of(entry),
-                                "%s names %s twice; keep one entry", label,
-                                settings->bound[b].species);
+                                "%s names %s twice; keep one entry", label, settings->bound[b].species);
         settings->bounds = b + 1;
     }
     return 0;
@@ -249,8 +244,7 @@ static int read_bounds(const Reading *reading, const config_setting_t *setting, 
 
 /* ---- keys and groups ---- */
 
-static int read_key(Reading *reading, const config_setting_t *setting, const SettingKey *key,
-                    size_t index)
+static int read_key(Reading *reading, const config_setting_t *setting, const SettingKey *key, size_t index)
 {
     char label[100], *member = (char *)reading->settings + key->offset;
     snprintf(label, sizeof label, "%s%s%s", key->group, *key->group ? "." : "", key->name);
@@ -258,11 +252,9 @@ static int read_key(Reading *reading, const config_setting_t *setting, const Set
     switch (key->type) {
     case KEY_WHOLE: return read_whole(reading, setting, label, key, (int *)(void *)member);
     case KEY_REAL:
-        return read_number(reading, setting, label, key->low, key->high, key->unit,
-                           (double *)(void *)member);
+        return read_number(reading, setting, label, key->low, key->high, key->unit, (double *)(void *)member);
     case KEY_TEXT: return read_text(reading, setting, label, key->low < 1, member, key->size);
-    case KEY_CHOICE:
-        return read_choice(reading, setting, label, key->choices, (int *)(void *)member);
+    case KEY_CHOICE: return read_choice(reading, setting, label, key->choices, (int *)(void *)member);
     case KEY_EDGES: return read_edges(reading, setting, label, key);
     default: return read_bounds(reading, setting, label);
     }
@@ -290,18 +282,16 @@ static int unknown_key(const Reading *reading, const config_setting_t *setting, 
     const char *near = fault_nearest(name, names, names_in(group, names));
     const char *dot = *group ? "." : "";
     if (near)
-        return fault_at(reading->fault, file, line, "unknown key %s%s%.60s; did you mean %s%s%s?",
-                        group, dot, name, group, dot, near);
+        return fault_at(reading->fault, file, line, "unknown key %s%s%.60s; did you mean %s%s%s?", group, dot,
+                        name, group, dot, near);
     size_t count;
     const SettingKey *keys = settings_keys(&count);
     for (size_t k = 0; k < count; k++)
         if (strcmp(keys[k].name, name) == 0)
-            return fault_at(reading->fault, file, line, "unknown key %s%s%.60s; %s belongs %s%s",
-                            group, dot, name, name,
-                            *keys[k].group ? "in the group " : "outside groups", keys[k].group);
+            return fault_at(reading->fault, file, line, "unknown key %s%s%.60s; %s belongs %s%s", group, dot,
+                            name, name, *keys[k].group ? "in the group " : "outside groups", keys[k].group);
     return fault_at(reading->fault, file, line,
-                    "unknown key %s%s%.60s; remove it (check prints every key there is)", group,
-                    dot, name);
+                    "unknown key %s%s%.60s; remove it (check prints every key there is)", group, dot, name);
 }
 
 static int read_group(Reading *reading, const config_setting_t *group_setting, const char *group)
@@ -350,8 +340,8 @@ static int clash(const Reading *reading, const char *group, const char *one, con
     }
     if (at == SIZE_MAX)
         return fault_at(reading->fault, reading->path, 0, "%s", text);
-    return fault_at(reading->fault, file_of(reading, reading->given[at]),
-                    line_of(reading->given[at]), "%s", text);
+    return fault_at(reading->fault, file_of(reading, reading->given[at]), line_of(reading->given[at]), "%s",
+                    text);
 }
 
 /* Every file the case names can be read; table_locate alone knows no line of the case. */
@@ -368,10 +358,8 @@ static int check_files(const Reading *reading)
         char found[2 * SETTINGS_PATH + 2], what[100];
         Fault missing = {0};
         snprintf(what, sizeof what, "files.%s", keys[k].name);
-        if (table_locate(what, name, settings->case_dir, settings->data_dir, found, sizeof found,
-                         &missing))
-            return fault_at(reading->fault, file_of(reading, setting), line_of(setting), "%s",
-                            missing.text);
+        if (table_locate(what, name, settings->case_dir, settings->data_dir, found, sizeof found, &missing))
+            return fault_at(reading->fault, file_of(reading, setting), line_of(setting), "%s", missing.text);
     }
     return 0;
 }
@@ -381,26 +369,30 @@ static int check_together(Reading *reading)
     Settings *settings = reading->settings;
     char text[300];
     if (settings->last_year < settings->first_year) {
-        snprintf(text, sizeof text,
-                 "years.last (%d) comes before years.first (%d); swap or correct them",
+        snprintf(text, sizeof text, "years.last (%d) comes before years.first (%d); swap or correct them",
                  settings->last_year, settings->first_year);
         return clash(reading, "years", "last", "first", text);
     }
     if (settings->edges > 0) {
         settings->top_km = settings->edge_km[settings->edges - 1];
         if (settings->top_km < 20)
-            return clash(reading, "grid", "edges_km", "",
-                         "grid.edges_km ends below 20 km; carry it higher");
+            return clash(reading, "grid", "edges_km", "", "grid.edges_km ends below 20 km; carry it higher");
     } else {
         double layers = settings->top_km / settings->spacing_km;
         if (fabs(layers - round(layers)) > 1e-6 || layers > SETTINGS_MAX_EDGES - 1) {
-            snprintf(
-                text, sizeof text,
-                "grid.top_km / grid.spacing_km is %.6g layers; make it a whole number up to %d, "
-                "or list grid.edges_km",
-                layers, SETTINGS_MAX_EDGES - 1);
+            snprintf(text, sizeof text,
+                     "grid.top_km / grid.spacing_km is %.6g layers; make it a whole number up to %d, "
+                     "or list grid.edges_km",
+                     layers, SETTINGS_MAX_EDGES - 1);
             return clash(reading, "grid", "spacing_km", "top_km", text);
         }
+    }
+    if (settings->day == DAY_EXPLICIT && settings->outputs_per_year > 365) {
+        snprintf(text, sizeof text,
+                 "output.per_year is %d, and some interval would hold none of the whole days of day.mode = "
+                 "\"explicit\"; give at most 365",
+                 settings->outputs_per_year);
+        return clash(reading, "output", "per_year", "", text);
     }
     return check_files(reading);
 }
@@ -410,16 +402,14 @@ static int check_together(Reading *reading)
 static int set_paths(Settings *settings, const char *path, Fault *fault)
 {
     if (strlen(path) >= SETTINGS_PATH)
-        return fault_set(fault, FAULT_INPUT,
-                         "%.80s...: the path has more than %d characters; shorten it", path,
-                         SETTINGS_PATH - 1);
+        return fault_set(fault, FAULT_INPUT, "%.80s...: the path has more than %d characters; shorten it",
+                         path, SETTINGS_PATH - 1);
     strcpy(settings->case_path, path);
     const char *slash = strrchr(path, '/');
     if (!slash)
         strcpy(settings->case_dir, ".");
     else
-        snprintf(settings->case_dir, SETTINGS_PATH, "%.*s", slash == path ? 1 : (int)(slash - path),
-                 path);
+        snprintf(settings->case_dir, SETTINGS_PATH, "%.*s", slash == path ? 1 : (int)(slash - path), path);
     return 0;
 }
 
@@ -429,8 +419,7 @@ static int read_config(Reading *reading, config_t *config, const char *text)
         return read_group(reading, config_root_setting(config), "") ? reading->fault->code
                                                                     : check_together(reading);
     const char *file = config_error_file(config), *what = config_error_text(config);
-    const char *advice =
-        "look there and on the line above for a missing semicolon, quote or bracket";
+    const char *advice = "look there and on the line above for a missing semicolon, quote or bracket";
     if (what && strstr(what, "duplicate"))
         advice = "a key or group may stand only once; remove one";
     else if (what && strstr(what, "mismatched"))
@@ -444,8 +433,8 @@ int settings_read(Settings *settings, const char *path, const char *data_dir, Fa
     settings_default(settings, data_dir);
     if (strlen(data_dir) >= SETTINGS_PATH)
         return fault_set(fault, FAULT_INPUT,
-                         "%.80s...: the path of the data has more than %d characters; shorten it",
-                         data_dir, SETTINGS_PATH - 1);
+                         "%.80s...: the path of the data has more than %d characters; shorten it", data_dir,
+                         SETTINGS_PATH - 1);
     char *text;
     if (set_paths(settings, path, fault) || table_text(path, &text, NULL, fault))
         return fault->code;

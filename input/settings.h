@@ -38,29 +38,30 @@ typedef struct {
     int first_year, last_year; /* years of the run, both included */
 
     /* grid */
-    double top_km;     /* 80 */
-    double spacing_km; /* 1 */
-    int edges;         /* 0, or the number of edges listed */
+    double top_km;                      /* 80 */
+    double spacing_km;                  /* 1 */
+    int edges;                          /* 0, or the number of edges listed */
     double edge_km[SETTINGS_MAX_EDGES]; /* own edges, ascending from 0; override spacing; top_km is
                                            then the last of them */
 
     /* files (resolved by table_locate when used) */
-    char air_file[SETTINGS_PATH];       /* "" = U.S. Standard Atmosphere 1976 */
-    char eddy_file[SETTINGS_PATH];      /* eddy-diffusion.csv */
-    char mechanism_file[SETTINGS_PATH]; /* mechanism.cfg */
-    char schedule_file[SETTINGS_PATH];  /* baseline-schedule.csv */
-    char aerosol_file[SETTINGS_PATH];   /* aerosol-surface.csv */
-    char bins_file[SETTINGS_PATH];      /* wavelength-bins.csv */
-    char solar_file[SETTINGS_PATH];     /* solar-irradiance.csv */
-    char initial_file[SETTINGS_PATH];   /* initial-profiles.csv */
+    char air_file[SETTINGS_PATH];                /* "" = U.S. Standard Atmosphere 1976 */
+    char eddy_file[SETTINGS_PATH];               /* eddy-diffusion.csv */
+    char mechanism_file[SETTINGS_PATH];          /* mechanism.cfg */
+    char schedule_file[SETTINGS_PATH];           /* baseline-schedule.csv */
+    char aerosol_file[SETTINGS_PATH];            /* aerosol-surface.csv */
+    char bins_file[SETTINGS_PATH];               /* wavelength-bins.csv */
+    char solar_file[SETTINGS_PATH];              /* solar-irradiance.csv */
+    char initial_file[SETTINGS_PATH];            /* initial-profiles.csv */
     char tropospheric_oh_file[SETTINGS_PATH];    /* tropospheric-oh.csv; "" = OH computed everywhere */
     char tropospheric_water_file[SETTINGS_PATH]; /* tropospheric-water.csv */
-    char tropospheric_no2_file[SETTINGS_PATH];    /* tropospheric-nitrogen-dioxide.csv; "" = NO2 computed everywhere */
+    char tropospheric_no2_file[SETTINGS_PATH];   /* tropospheric-nitrogen-dioxide.csv; "" = NO2 computed
+                                                    everywhere */
 
     /* sun */
-    int sun;              /* enum SunMode */
-    double latitude_deg;  /* SUN_LATITUDE */
-    double day_of_year;   /* SUN_LATITUDE, 1..366 */
+    int sun;               /* enum SunMode */
+    double latitude_deg;   /* SUN_LATITUDE */
+    double day_of_year;    /* SUN_LATITUDE, 1..366 */
     double surface_albedo; /* 0..1 */
 
     /* day */
@@ -69,20 +70,21 @@ typedef struct {
     double refresh_state;  /* relative change of the state that refreshes the diurnal factors */
 
     /* boundaries */
-    double tropopause_km;  /* prescribed water and OH, washout below */
+    double tropopause_km;   /* prescribed water, OH and NO2, washout below */
     double washout_per_day; /* first-order rate of a fully soluble gas at the ground, falling to 0 at
                                the tropopause */
     int bounds;
+    int bounds_given; /* 1: the case lists them, 0: the built-in ones */
     SurfaceBound bound[SETTINGS_MAX_BOUNDS];
 
     /* numerics */
-    double outer_step_days;      /* splitting step */
-    double relative_tolerance;   /* chemistry */
+    double outer_step_days;        /* splitting step */
+    double relative_tolerance;     /* chemistry */
     double absolute_tolerance_cm3; /* chemistry, molecules cm-3 */
-    double spinup_years;         /* balance at the first year's values before the run */
+    double spinup_years;           /* balance at the first year's values before the run */
 
     /* output */
-    int outputs_per_year;  /* number of equal intervals per year, each record is the mean over its interval */
+    int outputs_per_year; /* number of equal intervals per year, each record is the mean over its interval */
 } Settings;
 
 /* The built-in baseline. data_dir is copied; it must be shorter than SETTINGS_PATH. */

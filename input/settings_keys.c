@@ -8,20 +8,30 @@ const char *const bound_kinds[] = {"fixed", "deposition", NULL};
 const char *const bound_value_keys[] = {"mole_fraction", "velocity_cm_s", NULL};
 
 #define AT(member) offsetof(Settings, member)
-#define WHOLE(group, name, member, standard, low, high, unit, help) \
-    {group, name, KEY_WHOLE, AT(member), 0, standard, "", low, high, unit, NULL, help}
-#define REAL(group, name, member, standard, low, high, unit, help)  \
-    {group, name, KEY_REAL, AT(member), 0, standard, "", low, high, unit, NULL, help}
-#define CHOICE(group, name, member, standard, choices, help)        \
-    {group, name, KEY_CHOICE, AT(member), 0, standard, "", 0, 0, "", choices, help}
-#define TEXT_OF(group, name, member, standard, least, help)         \
-    {group, name, KEY_TEXT, AT(member), sizeof ((Settings *)0)->member, 0, standard, least, 0, "",   \
-     NULL, help}
+#define WHOLE(group, name, member, standard, low, high, unit, help)                                          \
+    {                                                                                                        \
+        group, name, KEY_WHOLE, AT(member), 0, standard, "", low, high, unit, NULL, help                     \
+    }
+#define REAL(group, name, member, standard, low, high, unit, help)                                           \
+    {                                                                                                        \
+        group, name, KEY_REAL, AT(member), 0, standard, "", low, high, unit, NULL, help                      \
+    }
+#define CHOICE(group, name, member, standard, choices, help)                                                 \
+    {                                                                                                        \
+        group, name, KEY_CHOICE, AT(member), 0, standard, "", 0, 0, "", choices, help                        \
+    }
+#define TEXT_OF(group, name, member, standard, least, help)                                                  \
+    {                                                                                                        \
+        group, name, KEY_TEXT, AT(member), sizeof((Settings *)0)->member, 0, standard, least, 0, "", NULL,   \
+            help                                                                                             \
+    }
 #define TEXT(group, name, member, standard, help) TEXT_OF(group, name, member, standard, 0, help)
 /* a file the model cannot do without: its name may not be empty */
 #define NAMED(group, name, member, standard, help) TEXT_OF(group, name, member, standard, 1, help)
-#define LIST(group, name, type, low, high, unit, help)              \
-    {group, name, type, 0, 0, 0, "", low, high, unit, NULL, help}
+#define LIST(group, name, type, low, high, unit, help)                                                       \
+    {                                                                                                        \
+        group, name, type, 0, 0, 0, "", low, high, unit, NULL, help                                          \
+    }
 
 static const SettingKey keys[] = {
     TEXT("", "title", title, "Baseline projection of the ozone layer",
@@ -42,25 +52,22 @@ static const SettingKey keys[] = {
     NAMED("files", "eddy", eddy_file, "eddy-diffusion.csv", "CSV profile of the eddy coefficient"),
     NAMED("files", "mechanism", mechanism_file, "mechanism.cfg", "species and reactions"),
     NAMED("files", "schedule", schedule_file, "baseline-schedule.csv",
-         "CSV of source-gas abundances by year"),
-    NAMED("files", "aerosol", aerosol_file, "aerosol-surface.csv",
-         "CSV profile of sulfate surface area"),
+          "CSV of source-gas abundances by year"),
+    NAMED("files", "aerosol", aerosol_file, "aerosol-surface.csv", "CSV profile of sulfate surface area"),
     NAMED("files", "bins", bins_file, "wavelength-bins.csv", "CSV of wavelength intervals"),
-    NAMED("files", "solar", solar_file, "solar-irradiance.csv",
-         "CSV of sunlight above the atmosphere"),
+    NAMED("files", "solar", solar_file, "solar-irradiance.csv", "CSV of sunlight above the atmosphere"),
     NAMED("files", "initial", initial_file, "initial-profiles.csv",
-         "CSV of the state the spin-up starts from"),
+          "CSV of the state the spin-up starts from"),
     TEXT("files", "tropospheric_oh", tropospheric_oh_file, "tropospheric-oh.csv",
          "CSV profile of OH held below the tropopause; empty to compute OH everywhere"),
     NAMED("files", "tropospheric_water", tropospheric_water_file, "tropospheric-water.csv",
-         "CSV profile of water vapour held below the tropopause"),
+          "CSV profile of water vapour held below the tropopause"),
     TEXT("files", "tropospheric_no2", tropospheric_no2_file, "tropospheric-nitrogen-dioxide.csv",
          "CSV profile of NO2 held below the tropopause; empty to compute NO2 everywhere"),
 
     CHOICE("sun", "kind", sun, SUN_GLOBAL, sun_choices,
            "global mean sun, or the sun of latitude_deg on day_of_year"),
-    REAL("sun", "latitude_deg", latitude_deg, 0, -90, 90, "degrees north",
-         "used when kind is latitude"),
+    REAL("sun", "latitude_deg", latitude_deg, 0, -90, 90, "degrees north", "used when kind is latitude"),
     REAL("sun", "day_of_year", day_of_year, 80, 1, 366, "", "used when kind is latitude; 1 = 1 January"),
     REAL("sun", "surface_albedo", surface_albedo, 0.3, 0, 1, "",
          "share of light the lower boundary returns; 0.3 is the whole Earth with its clouds "
@@ -75,7 +82,8 @@ static const SettingKey keys[] = {
          "change of the state at which the diurnal factors are made afresh"),
 
     REAL("surface", "tropopause_km", tropopause_km, 12, 5, 20, "km",
-         "water, OH and washout are prescribed below it; the global mean of the thermal tropopause "
+         "water, OH and NO2 are prescribed and washout acts below it; the global mean of the thermal "
+         "tropopause "
          "is 12 to 13 km (common practice), the standard atmosphere turns isothermal at 11 km"),
     REAL("surface", "washout_per_day", washout_per_day, 0.2, 0, 10, "per day",
          "loss of a fully soluble gas at the ground, falling to 0 at the tropopause; 0.2 is a "
@@ -88,8 +96,8 @@ static const SettingKey keys[] = {
          "step of the splitting between transport and chemistry; the default is a quarter of a mean month"),
     REAL("numerics", "relative_tolerance", relative_tolerance, 1e-2, 1e-10, 0.1, "",
          "error allowed per step of the chemistry"),
-    REAL("numerics", "absolute_tolerance_cm3", absolute_tolerance_cm3, 1e2, 1e-6, 1e8,
-         "molecules cm-3", "the same for gases too scarce to matter"),
+    REAL("numerics", "absolute_tolerance_cm3", absolute_tolerance_cm3, 1e2, 1e-6, 1e8, "molecules cm-3",
+         "the same for gases too scarce to matter"),
     REAL("numerics", "spinup_years", spinup_years, 15, 0, 500, "years",
          "balance at the first year's values before the run starts"),
 

@@ -18,13 +18,13 @@ enum KeyType {
 typedef struct {
     const char *group; /* "" for a key outside any group */
     const char *name;
-    int type;          /* enum KeyType */
-    size_t offset;     /* of the member in Settings (unused for KEY_EDGES, KEY_BOUNDS) */
-    size_t size;       /* of the array, KEY_TEXT */
-    double standard;   /* default of KEY_WHOLE, KEY_REAL, KEY_CHOICE */
-    const char *text;  /* default of KEY_TEXT */
-    double low, high;  /* accepted range, both ends included; KEY_TEXT: low 1 = may not be empty */
-    const char *unit;  /* "" when it has none */
+    int type;                   /* enum KeyType */
+    size_t offset;              /* of the member in Settings (unused for KEY_EDGES, KEY_BOUNDS) */
+    size_t size;                /* of the array, KEY_TEXT */
+    double standard;            /* default of KEY_WHOLE, KEY_REAL, KEY_CHOICE */
+    const char *text;           /* default of KEY_TEXT */
+    double low, high;           /* accepted range, both ends included; KEY_TEXT: low 1 = may not be empty */
+    const char *unit;           /* "" when it has none */
     const char *const *choices; /* NULL-terminated, KEY_CHOICE */
     const char *help;
 } SettingKey;

@@ -43,7 +43,7 @@ void settings_default(Settings *settings, const char *data_dir)
 static void print_real(double value, FILE *out)
 {
     char text[40];
-    for (int digits = 1; digits <= 17; digits++) {
+    for (int digits = 6; digits <= 17; digits++) { /* 6: 80.0 and not 8e+01 */
         snprintf(text, sizeof text, "%.*g", digits, value);
         if (strtod(text, NULL) == value)
             break;
@@ -91,8 +91,7 @@ static void print_bounds(const Settings *settings, int help, FILE *out)
             fprintf(out, "        # %s\n", note);
         fputs("        { species = ", out);
         print_quoted(bound->species, out);
-        fprintf(out, "; kind = \"%s\"; %s = ", bound_kinds[bound->kind],
-                bound_value_keys[bound->kind]);
+        fprintf(out, "; kind = \"%s\"; %s = ", bound_kinds[bound->kind], bound_value_keys[bound->kind]);
         print_real(bound->value, out);
         fprintf(out, "; }%s", b + 1 < settings->bounds ? "," : "");
     }
@@ -116,8 +115,7 @@ static void print_help(const SettingKey *key, const char *indent, FILE *out)
         fprintf(out, " [%g to %g%s%s]", key->low, key->high, *key->unit ? " " : "", key->unit);
     if (key->type == KEY_CHOICE)
         for (size_t c = 0; key->choices[c]; c++)
-            fprintf(out, "%s\"%s\"%s", c ? " | " : " [", key->choices[c],
-                    key->choices[c + 1] ? "" : "]");
+            fprintf(out, "%s\"%s\"%s", c ? " | " : " [", key->choices[c], key->choices[c + 1] ? "" : "]");
     fputs("\n", out);
 }
 

@@ -43,8 +43,7 @@ static int scan_include(const Scan *scan, const char *name, size_t length)
     char path[1024];
     if (scan->depth == DEEPEST_INCLUDE)
         return fault_at(scan->fault, scan->path, scan->line,
-                        "@include nests more than %d deep; does a file include itself?",
-                        DEEPEST_INCLUDE);
+                        "@include nests more than %d deep; does a file include itself?", DEEPEST_INCLUDE);
     if (memchr(name, '\\', length) || strlen(scan->folder) + length + 2 > sizeof path)
         return fault_at(scan->fault, scan->path, scan->line,
                         "@include names a file with a backslash or too long a name; rename it");
@@ -57,10 +56,8 @@ static int scan_include(const Scan *scan, const char *name, size_t length)
     int code =
         inside(path, scan->folder)
             ? scan_text(&inner, text)
-            : fault_at(
-                  scan->fault, scan->path, scan->line,
-                  "@include leads outside the folder of the case (\"%s\"); copy the file there",
-                  path);
+            : fault_at(scan->fault, scan->path, scan->line,
+                       "@include leads outside the folder of the case (\"%s\"); copy the file there", path);
     free(text);
     return code;
 }
@@ -74,8 +71,7 @@ static const char *scan_number(const Scan *scan, const char *p)
         end++;
     size_t length = (size_t)(end - p);
     int hexadecimal = p[0] == '0' && (p[1] == 'x' || p[1] == 'X');
-    if (!hexadecimal &&
-        (memchr(p, '.', length) || memchr(p, 'e', length) || memchr(p, 'E', length)))
+    if (!hexadecimal && (memchr(p, '.', length) || memchr(p, 'e', length) || memchr(p, 'E', length)))
         return end;
     int marked_long = end[-1] == 'L';
     errno = 0;
@@ -122,8 +118,7 @@ static int scan_text(Scan *scan, const char *text)
         } else if (*p == '@') {
             const char *quote = p + strcspn(p, "\"\n");
             const char *close = *quote == '"' ? quote + 1 + strcspn(quote + 1, "\"\n") : quote;
-            if (*quote == '"' && *close == '"' &&
-                scan_include(scan, quote + 1, (size_t)(close - quote - 1)))
+            if (*quote == '"' && *close == '"' && scan_include(scan, quote + 1, (size_t)(close - quote - 1)))
                 return scan->fault->code;
             p = *close == '"' ? close + 1 : close;
         } else if (isalpha((unsigned char)*p) || *p == '_' || *p == '*') {

@@ -16,8 +16,7 @@ static int take_names(Table *table, const Csv *csv, Fault *fault)
     for (size_t c = 0; c < table->columns; c++) {
         const char *name = csv->cell[c];
         if (*name == '\0')
-            return fault_at(fault, table->path, csv->line[0], "column %zu has no name; name it",
-                            c + 1);
+            return fault_at(fault, table->path, csv->line[0], "column %zu has no name; name it", c + 1);
         for (size_t b = 0; b < c; b++)
             if (strcmp(table->name[b], name) == 0)
                 return fault_at(fault, table->path, csv->line[0],
@@ -34,9 +33,8 @@ static int take_values(Table *table, const Csv *csv, Fault *fault)
     for (size_t r = 0; r < table->rows; r++) {
         table->line[r] = csv->line[r + 1];
         for (size_t c = 0; c < table->columns; c++)
-            if (csv_number(table->path, table->line[r], table->name[c],
-                           csv->cell[csv->first[r + 1] + c], &table->value[c * table->rows + r],
-                           fault))
+            if (csv_number(table->path, table->line[r], table->name[c], csv->cell[csv->first[r + 1] + c],
+                           &table->value[c * table->rows + r], fault))
                 return fault->code;
     }
     return 0;
@@ -100,14 +98,13 @@ int table_column(const Table *table, const char *name, size_t *index, Fault *fau
         }
     char list[400] = "";
     for (size_t c = 0, used = 0; c < table->columns && used + 4 < sizeof list; c++)
-        used += (size_t)snprintf(list + used, sizeof list - used, "%s%s", c ? ", " : "",
-                                 table->name[c]);
+        used += (size_t)snprintf(list + used, sizeof list - used, "%s%s", c ? ", " : "", table->name[c]);
     const char *near = fault_nearest(name, (const char *const *)table->name, table->columns);
     if (near)
-        return fault_at(fault, table->path, table->name_line,
-                        "has no column %s; is it %s? (it has: %s)", name, near, list);
-    return fault_at(fault, table->path, table->name_line,
-                    "has no column %s; add it (it has: %s)", name, list);
+        return fault_at(fault, table->path, table->name_line, "has no column %s; is it %s? (it has: %s)",
+                        name, near, list);
+    return fault_at(fault, table->path, table->name_line, "has no column %s; add it (it has: %s)", name,
+                    list);
 }
 
 const double *table_values(const Table *table, size_t column)
@@ -140,8 +137,8 @@ int table_require_increasing(const Table *table, size_t column, Fault *fault)
     for (size_t r = 1; r < table->rows; r++)
         if (!(value[r] > value[r - 1]))
             return fault_at(fault, table->path, table->line[r],
-                            "%s is %g after %g; it must increase from row to row",
-                            table->name[column], value[r], value[r - 1]);
+                            "%s is %g after %g; it must increase from row to row", table->name[column],
+                            value[r], value[r - 1]);
     return 0;
 }
 
@@ -150,9 +147,8 @@ int table_require_range(const Table *table, size_t column, double low, double hi
     const double *value = table_values(table, column);
     for (size_t r = 0; r < table->rows; r++)
         if (!(value[r] >= low && value[r] <= high))
-            return fault_at(fault, table->path, table->line[r],
-                            "%s is %g; it must lie between %g and %g", table->name[column],
-                            value[r], low, high);
+            return fault_at(fault, table->path, table->line[r], "%s is %g; it must lie between %g and %g",
+                            table->name[column], value[r], low, high);
     return 0;
 }
 
@@ -210,8 +206,8 @@ static int try_folder(const char *folder, const char *path, char *found, size_t 
     return length >= 0 && (size_t)length < size && is_file(found);
 }
 
-int table_locate(const char *what, const char *path, const char *base_dir, const char *data_dir,
-                 char *found, size_t size, Fault *fault)
+int table_locate(const char *what, const char *path, const char *base_dir, const char *data_dir, char *found,
+                 size_t size, Fault *fault)
 {
     if (path[0] == '\0')
         return fault_set(fault, FAULT_INPUT, "%s: no file is named; name one in the case", what);

@@ -15,13 +15,13 @@
 int table_text(const char *path, char **text, size_t *length, Fault *fault);
 
 typedef struct {
-    char *path;       /* as opened */
+    char *path; /* as opened */
     size_t rows, columns;
-    char **name;      /* [columns] column names as written */
-    double *value;    /* [columns][rows], column contiguous */
-    int *line;        /* [rows] line number in the file, for messages */
-    int name_line;    /* that of the column names */
-    char *header;     /* all "# key: text" lines, '\n' separated, '#' removed; "" if none */
+    char **name;   /* [columns] column names as written */
+    double *value; /* [columns][rows], column contiguous */
+    int *line;     /* [rows] line number in the file, for messages */
+    int name_line; /* that of the column names */
+    char *header;  /* all "# key: text" lines, '\n' separated, '#' removed; "" if none */
 } Table;
 
 /* Read path. On failure *table is left freed/zeroed. Owner: caller, table_free. */
@@ -49,17 +49,17 @@ double table_loglinear(const double *xs, const double *ys, size_t count, double 
  * so that no file that happens to lie in the current folder changes it), data_dir that of the
  * installed input/data.
  * Fault (what, path, both folders tried) when neither has it. found: [size] the path to open. */
-int table_locate(const char *what, const char *path, const char *base_dir, const char *data_dir,
-                 char *found, size_t size, Fault *fault);
+int table_locate(const char *what, const char *path, const char *base_dir, const char *data_dir, char *found,
+                 size_t size, Fault *fault);
 
 /* ---- raw CSV, for tables that hold text (schedules) ---- */
 typedef struct {
-    char *text;        /* whole file, cells are cut in place */
+    char *text; /* whole file, cells are cut in place */
     size_t rows;
-    int *line;         /* [rows] */
-    size_t *first;     /* [rows + 1] index of a row's first cell in cell[] */
-    char **cell;       /* trimmed, unquoted */
-    char *header;      /* as in Table */
+    int *line;     /* [rows] */
+    size_t *first; /* [rows + 1] index of a row's first cell in cell[] */
+    char **cell;   /* trimmed, unquoted */
+    char *header;  /* as in Table */
 } Csv;
 /* Read path; row 0 holds the column names and every row has as many cells as it. Lines that start
  * with '#' are the header, wherever they stand. On failure *csv is left freed/zeroed. Owner: caller,
@@ -67,7 +67,6 @@ typedef struct {
 int csv_read(Csv *csv, const char *path, Fault *fault);
 void csv_free(Csv *csv);
 /* strtod that must use the whole cell and give a finite number. */
-int csv_number(const char *path, int line, const char *column, const char *cell, double *value,
-               Fault *fault);
+int csv_number(const char *path, int line, const char *column, const char *cell, double *value, Fault *fault);
 
 #endif

@@ -15,7 +15,7 @@
 
 #include "calendar.h"
 
-enum { DECADE = 10 };
+enum { DECADE = 10, SHORT_FILE = 15 /* years */ };
 
 /* ---- reading ---- */
 
@@ -153,12 +153,15 @@ int series_read(ColumnSeries *series, const char *path, Fault *fault)
     int file;
     memset(series, 0, sizeof *series);
     if (stat(path, &found))
-        return fault_set(fault, FAULT_INPUT, "%s: cannot be opened: %s", path, strerror(errno));
+        return fault_set(fault, FAULT_INPUT, "%s: cannot be opened: %s; give a file made by skymend project",
+                         path, strerror(errno));
     if (!S_ISREG(found.st_mode))
         return fault_set(fault, FAULT_INPUT, "%s is not a file", path);
     int status = nc_open(path, NC_NOWRITE, &file);
     if (status != NC_NOERR)
-        return fault_set(fault, FAULT_INPUT, "%s cannot be read as NetCDF: %s", path, nc_strerror(status));
+        return fault_set(fault, FAULT_INPUT,
+                         "%s cannot be read as NetCDF (%s); give a file made by skymend project", path,
+                         nc_strerror(status));
     int code = read_open(series, file, path, fault);
     nc_close(file);
     if (code)
@@ -268,8 +271,10 @@ static void print_decades(const Answers *answers, const ColumnSeries *series, FI
     int first = (int)floor(series->time[0]), last = (int)floor(series->time[series->count - 1]);
     double column;
     fprintf(out, "  year   column/DU  change/DU  change/%%\n");
+    int every = last - first < SHORT_FILE ? 1 : DECADE; /* a short file may hold no decade at all */
     for (int year = first; year <= last; year++)
-        if ((year % DECADE == 0 || year == (int)answers->benchmark_year) && year_mean(series, year, &column))
+        if ((year % every == 0 || year == first || year == last || year == (int)answers->benchmark_year) &&
+            year_mean(series, year, &column))
             print_row(answers, year, column, out);
 }
 
@@ -310,7 +315,7 @@ void answers_print(const Answers *answers, const ColumnSeries *series, FILE *out
     print_decades(answers, series, out);
     fprintf(
         out,
-        "\nCaution: one near-global column, without polar winter, ozone hole or change of circulation; a\n"
-        "planning figure. Health and regulatory decisions defer to the competent authority and its "
-        "methods.\n");
+        "\nCaution: one near-global column, without polar winter, ozone hole, or change of circulation or\n"
+        "temperature; a planning figure. Health and regulatory decisions defer to the competent authority\n"
+        "and its methods.\n");
 }

@@ -57,7 +57,8 @@ static int library_fault(Archive *archive, int status, const char *what, Fault *
 /* Of the system; error is an errno value. */
 static int system_fault(const char *path, const char *what, int error, Fault *fault)
 {
-    return fault_set(fault, FAULT_OUTPUT, "%s: cannot %s: %s", path, what, strerror(error));
+    return fault_set(fault, FAULT_OUTPUT, "%s: cannot %s: %s; choose a place that can be written", path, what,
+                     strerror(error));
 }
 
 /* Whether the file has room to grow by bytes: reserve them, then give them back. Growing and shrinking
@@ -67,7 +68,10 @@ static int reserve_space(const Archive *archive, size_t bytes, Fault *fault)
     struct stat now;
     if (fstat(archive->probe, &now))
         return system_fault(archive->path, "examine the file", errno, fault);
-    int error = posix_fallocate(archive->probe, now.st_size, (off_t)bytes);
+    int error;
+    do
+        error = posix_fallocate(archive->probe, now.st_size, (off_t)bytes);
+    while (error == EINTR); /* Ctrl-C is no lack of room; the run stops at its next step */
     if (ftruncate(archive->probe, now.st_size) && !error)
         error = errno;
     if (error)
@@ -97,8 +101,8 @@ static int choose_path(Archive *archive, const char *path, int overwrite, Fault 
     struct stat old;
     int exists = stat(path, &old) == 0;
     if (exists && !overwrite)
-        return fault_set(fault, FAULT_INPUT,
-                         "%s exists already: choose another name or ask for it to be overwritten", path);
+        return fault_set(fault, FAULT_INPUT, "%s exists already: choose another name, or add --overwrite",
+                         path);
     if (exists && !S_ISREG(old.st_mode))
         return fault_set(fault, FAULT_OUTPUT, "%s is not a regular file and cannot be replaced", path);
     if (exists && access(path, W_OK))

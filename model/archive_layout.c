@@ -182,7 +182,8 @@ static int put_global(const Layout *out, const char *command_line, Fault *fault)
          "long; a decimal year is written as the same fraction of that calendar year. Mole fractions are "
          "layer means; ozone_column includes the part above the top of the grid."},
         {"caution",
-         "A single near-global column: no polar winter, no ozone hole, no change of circulation. A planning "
+         "A single near-global column: no polar winter, no ozone hole, no change of circulation or "
+         "temperature. A planning "
          "figure. Health and regulatory decisions defer to the competent authority and its own methods."},
         {"mechanism", mechanism->title ? mechanism->title : ""},
         {"mechanism_version", mechanism->version ? mechanism->version : ""},

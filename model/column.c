@@ -12,85 +12,111 @@
 
 /* ---- tables of the case ---- */
 
-static int locate(const Settings *settings, const char *what, const char *file, char *found, Fault *fault) {
+static int locate(const Settings *settings, const char *what, const char *file, char *found, Fault *fault)
+{
     return table_locate(what, file, settings->case_dir, settings->data_dir, found, SETTINGS_PATH, fault);
 }
 
 /* Append "what: text" to the list of sources. */
-static int add_source(Model *model, Fault *fault, const char *what, const char *text) {
+static int add_source(Model *model, Fault *fault, const char *what, const char *text)
+{
     size_t old = model->sources ? strlen(model->sources) : 0, more = strlen(what) + strlen(text) + 4;
     char *longer = realloc(model->sources, old + more);
-    if (!longer) return fault_memory(fault, "list of sources");
+    if (!longer)
+        return fault_memory(fault, "list of sources");
     snprintf(longer + old, more, "%s: %s\n", what, text);
     model->sources = longer;
     return 0;
 }
 
-static int add_table_source(Model *model, const char *what, const Table *table, Fault *fault) {
+static int add_table_source(Model *model, const char *what, const Table *table, Fault *fault)
+{
     char text[600];
-    if (!table_header(table, "source", text, sizeof text)) snprintf(text, sizeof text, "%s", table->path);
+    if (!table_header(table, "source", text, sizeof text))
+        snprintf(text, sizeof text, "%s", table->path);
     return add_source(model, fault, what, text);
 }
 
 /* A profile table: opened, altitude ascending, covering the grid up to `to` cm. */
 static int read_profile(const Model *model, Table *table, const char *what, const char *file, double to,
-                        const double **altitude, Fault *fault) {
+                        const double **altitude, Fault *fault)
+{
     char path[SETTINGS_PATH];
     size_t column = 0;
     int code = locate(&model->settings, what, file, path, fault);
-    if (!code) code = table_read(table, path, fault);
-    if (!code) code = table_column(table, "altitude_km", &column, fault);
-    if (!code) code = table_require_increasing(table, column, fault);
-    if (code) return code;
+    if (!code)
+        code = table_read(table, path, fault);
+    if (!code)
+        code = table_column(table, "altitude_km", &column, fault);
+    if (!code)
+        code = table_require_increasing(table, column, fault);
+    if (code)
+        return code;
     *altitude = table_values(table, column);
     double last = (*altitude)[table->rows - 1];
     if ((*altitude)[0] > 0.5 * 1e-5 * model->grid.depth[0] || last * 1e5 < to * (1.0 - 1e-9))
         return fault_at(fault, path, table->line[table->rows - 1],
-                        "%s covers %g to %g km, but 0 to %g km is needed; add rows", what, (*altitude)[0], last,
-                        to * 1e-5);
+                        "%s covers %g to %g km, but 0 to %g km is needed; add rows", what, (*altitude)[0],
+                        last, to * 1e-5);
     return 0;
 }
 
 static int read_column(const Table *table, const char *name, double low, double high, const double **values,
-                       Fault *fault) {
+                       Fault *fault)
+{
     size_t column;
     int code = table_column(table, name, &column, fault);
-    if (!code) code = table_require_range(table, column, low, high, fault);
-    if (!code) *values = table_values(table, column);
+    if (!code)
+        code = table_require_range(table, column, low, high, fault);
+    if (!code)
+        *values = table_values(table, column);
     return code;
 }
 
-static double middle_km(const Model *model, int layer) { return 1e-5 * model->grid.middle[layer]; }
+static double middle_km(const Model *model, int layer)
+{
+    return 1e-5 * model->grid.middle[layer];
+}
 
-static int read_aerosol(Model *model, Fault *fault) {
+static int read_aerosol(Model *model, Fault *fault)
+{
     Table table = {0};
     const double *altitude, *area, *radius;
     double top = model->grid.middle[model->grid.layers - 1];
-    int code = read_profile(model, &table, "aerosol surface", model->settings.aerosol_file, top, &altitude, fault);
-    if (!code) code = read_column(&table, "surface_um2_cm-3", 1e-12, 1e4, &area, fault);
-    if (!code) code = read_column(&table, "effective_radius_um", 1e-3, 100.0, &radius, fault);
+    int code =
+        read_profile(model, &table, "aerosol surface", model->settings.aerosol_file, top, &altitude, fault);
+    if (!code)
+        code = read_column(&table, "surface_um2_cm-3", 1e-12, 1e4, &area, fault);
+    if (!code)
+        code = read_column(&table, "effective_radius_um", 1e-3, 100.0, &radius, fault);
     for (int l = 0; !code && l < model->grid.padded; l++) {
         model->aerosol_area[l] = 1e-8 * table_loglinear(altitude, area, table.rows, middle_km(model, l));
         model->aerosol_radius[l] = 1e-4 * table_loglinear(altitude, radius, table.rows, middle_km(model, l));
     }
-    if (!code) code = add_table_source(model, "aerosol surface", &table, fault);
+    if (!code)
+        code = add_table_source(model, "aerosol surface", &table, fault);
     table_free(&table);
     return code;
 }
 
-static int tropospheric(const Model *model, int layer) {
+static int tropospheric(const Model *model, int layer)
+{
     return middle_km(model, layer) < model->settings.tropopause_km;
 }
 
-/* Hold a species below the tropopause. column is in number density (cm-3) if it ends so, else in mole fraction. */
-static int read_held(Model *model, const char *species, const char *what, const char *file, const char *column,
-                     Fault *fault) {
+/* Hold a species below the tropopause. column is in number density (cm-3) if it ends so, else in mole
+ * fraction. */
+static int read_held(Model *model, const char *species, const char *what, const char *file,
+                     const char *column, Fault *fault)
+{
     int solved = mechanism_solved(model->mechanism, species), density = strstr(column, "_cm-3") != NULL;
-    if (!file[0] || solved < 0) return 0;
+    if (!file[0] || solved < 0)
+        return 0;
     Table table = {0};
     const double *altitude, *value;
     int code = read_profile(model, &table, what, file, 1e5 * model->settings.tropopause_km, &altitude, fault);
-    if (!code) code = read_column(&table, column, density ? 0.0 : 1e-15, density ? 1e9 : 0.1, &value, fault);
+    if (!code)
+        code = read_column(&table, column, density ? 0.0 : 1e-15, density ? 1e9 : 0.1, &value, fault);
     if (!code) {
         int padded = model->grid.padded, h = model->held++;
         model->held_species[h] = solved;
@@ -108,23 +134,37 @@ static int read_held(Model *model, const char *species, const char *what, const 
     return code;
 }
 
-static int read_troposphere(Model *model, Fault *fault) {
+static int read_troposphere(Model *model, Fault *fault)
+{
     const Settings *settings = &model->settings;
-    int code = read_held(model, "H2O", "tropospheric water", settings->tropospheric_water_file, "H2O_mol_mol-1", fault);
-    if (!code) code = read_held(model, "OH", "tropospheric OH", settings->tropospheric_oh_file, "OH_cm-3", fault);
-    if (!code) code = read_held(model, "NO2", "tropospheric NO2", settings->tropospheric_no2_file, "NO2_mol_mol-1", fault);
+    if (!tropospheric(model, 0))
+        return fault_set(
+            fault, FAULT_INPUT,
+            "grid.edges_km: the middle of the lowest layer, %g km, lies above surface.tropopause_km, %g km; "
+            "add edges below",
+            middle_km(model, 0), settings->tropopause_km);
+    int code = read_held(model, "H2O", "tropospheric water", settings->tropospheric_water_file,
+                         "H2O_mol_mol-1", fault);
+    if (!code)
+        code = read_held(model, "OH", "tropospheric OH", settings->tropospheric_oh_file, "OH_cm-3", fault);
+    if (!code)
+        code = read_held(model, "NO2", "tropospheric NO2", settings->tropospheric_no2_file, "NO2_mol_mol-1",
+                         fault);
     return code;
 }
 
 /* ---- ground conditions ---- */
 
-static int is_held(const Model *model, int solved) {
+static int is_held(const Model *model, int solved)
+{
     for (int h = 0; h < model->held; h++)
-        if (model->held_species[h] == solved) return 1;
+        if (model->held_species[h] == solved)
+            return 1;
     return 0;
 }
 
-static int set_ground(Model *model, Fault *fault) {
+static int set_ground(Model *model, Fault *fault)
+{
     const Settings *settings = &model->settings;
     const Mechanism *mechanism = model->mechanism;
     for (int s = 0; s < mechanism->solved; s++) {
@@ -135,27 +175,43 @@ static int set_ground(Model *model, Fault *fault) {
         const char *gas = model->schedule.gas[g];
         int s = mechanism_solved(mechanism, gas);
         if (s < 0)
-            return fault_at(fault, model->schedule.path, model->schedule.first_line[g],
-                            "gas %s is not an active species of mechanism %s; correct the name or add the species", gas,
-                            mechanism->path);
+            return fault_at(
+                fault, model->schedule.path, model->schedule.first_line[g],
+                "gas %s is not an active species of mechanism %s; correct the name or add the species", gas,
+                mechanism->path);
+        if (is_held(model, s))
+            return fault_at(
+                fault, model->schedule.path, model->schedule.first_line[g],
+                "gas %s is also held up to the tropopause by a table of the case; remove one of the two",
+                gas);
         model->surface_kind[s] = SURFACE_SCHEDULE;
         model->surface_gas[s] = g;
     }
     for (int b = 0; b < settings->bounds; b++) {
         const SurfaceBound *bound = &settings->bound[b];
         const char *file = settings->case_path[0] ? settings->case_path : "built-in case";
-        int s = mechanism_solved(mechanism, bound->species);
-        if (s < 0 && !settings->case_path[0]) continue;
+        int s = mechanism_solved(mechanism, bound->species), built_in = !settings->bounds_given;
+        if (s < 0 && built_in)
+            continue; /* a mechanism of the user's own may do without */
         if (s < 0)
-            return fault_at(fault, file, bound->line, "surface.bounds names %s, which is no active species of %s; correct the name",
+            return fault_at(fault, file, bound->line,
+                            "surface.bounds names %s, which is no active species of %s; correct the name",
                             bound->species, mechanism->path);
+        if (model->surface_kind[s] == SURFACE_SCHEDULE && built_in)
+            return fault_at(fault, file, 0,
+                            "the built-in surface.bounds holds %s, which the schedule %s carries; give "
+                            "surface.bounds without it, "
+                            "or take it out of the schedule",
+                            bound->species, model->schedule.path);
         if (model->surface_kind[s] == SURFACE_SCHEDULE)
-            return fault_at(fault, file, bound->line, "surface.bounds names %s, which the schedule %s carries; keep one of the two",
+            return fault_at(fault, file, bound->line,
+                            "surface.bounds names %s, which the schedule %s carries; keep one of the two",
                             bound->species, model->schedule.path);
         if (is_held(model, s))
-            return fault_at(fault, file, bound->line,
-                            "surface.bounds names %s, which a table holds up to the tropopause; remove one of the two",
-                            bound->species);
+            return fault_at(
+                fault, file, bound->line,
+                "surface.bounds names %s, which a table holds up to the tropopause; remove one of the two",
+                bound->species);
         model->surface_kind[s] = bound->kind == BOUND_FIXED ? SURFACE_FIXED : SURFACE_DEPOSITION;
         model->surface_value[s] = bound->value;
     }
@@ -164,45 +220,65 @@ static int set_ground(Model *model, Fault *fault) {
 
 /* ---- the model ---- */
 
-static int make_grid_and_air(Model *model, Fault *fault) {
+static int make_grid_and_air(Model *model, Fault *fault)
+{
     const Settings *settings = &model->settings;
     char path[SETTINGS_PATH], source[600];
-    int code = grid_make(&model->grid, settings->top_km, settings->spacing_km, settings->edge_km, settings->edges, fault);
-    if (code) return code;
+    int code = grid_make(&model->grid, settings->top_km, settings->spacing_km, settings->edge_km,
+                         settings->edges, fault);
+    if (code)
+        return code;
     if (settings->air_file[0]) {
         code = locate(settings, "air profile", settings->air_file, path, fault);
-        if (!code) code = air_from_file(&model->air, &model->grid, path, fault);
+        if (!code)
+            code = air_from_file(&model->air, &model->grid, path, fault);
     } else {
         code = air_standard(&model->air, &model->grid, fault);
     }
-    if (!code) code = add_source(model, fault, "air", model->air.source);
-    if (!code) code = locate(settings, "eddy profile", settings->eddy_file, path, fault);
-    if (code) return code;
+    if (!code)
+        code = add_source(model, fault, "air", model->air.source);
+    if (!code)
+        code = locate(settings, "eddy profile", settings->eddy_file, path, fault);
+    if (code)
+        return code;
     model->eddy = calloc((size_t)model->grid.layers + 1, sizeof(double));
-    if (!model->eddy) return fault_memory(fault, "eddy profile");
+    if (!model->eddy)
+        return fault_memory(fault, "eddy profile");
     code = diffusion_read_eddy(model->eddy, &model->grid, path, source, sizeof source, fault);
-    if (!code) code = add_source(model, fault, "eddy diffusion coefficient", source);
-    if (!code) code = diffusion_make(&model->diffusion, &model->grid, &model->air, model->eddy, fault);
+    if (!code)
+        code = add_source(model, fault, "eddy diffusion coefficient", source);
+    if (!code)
+        code = diffusion_make(&model->diffusion, &model->grid, &model->air, model->eddy, fault);
     return code;
 }
 
-static int make_chemistry(Model *model, Fault *fault) {
+static int make_chemistry(Model *model, Fault *fault)
+{
     const Settings *settings = &model->settings;
     char path[SETTINGS_PATH], bins[SETTINGS_PATH], solar[SETTINGS_PATH];
     int code = locate(settings, "mechanism", settings->mechanism_file, path, fault);
-    if (!code) code = mechanism_read(&model->mechanism, path, fault);
+    if (!code)
+        code = mechanism_read(&model->mechanism, path, fault);
     if (!code && mechanism_solved(model->mechanism, "O3") < 0)
-        code = fault_at(fault, path, 0, "the mechanism has no active species O3; add it, it is what the column is for");
-    if (!code) code = kernel_make(&model->kernel, model->mechanism, fault);
-    if (!code) code = add_source(model, fault, "mechanism", model->mechanism->citations);
-    if (!code) code = locate(settings, "wavelength bins", settings->bins_file, bins, fault);
-    if (!code) code = locate(settings, "solar spectrum", settings->solar_file, solar, fault);
-    if (!code) code = spectra_read(&model->spectra, model->mechanism, settings->data_dir, bins, solar, fault);
-    if (!code) code = add_source(model, fault, "spectra", model->spectra->sources);
+        code = fault_at(fault, path, 0,
+                        "the mechanism has no active species O3; add it, it is what the column is for");
+    if (!code)
+        code = kernel_make(&model->kernel, model->mechanism, fault);
+    if (!code)
+        code = add_source(model, fault, "mechanism", model->mechanism->citations);
+    if (!code)
+        code = locate(settings, "wavelength bins", settings->bins_file, bins, fault);
+    if (!code)
+        code = locate(settings, "solar spectrum", settings->solar_file, solar, fault);
+    if (!code)
+        code = spectra_read(&model->spectra, model->mechanism, settings->data_dir, bins, solar, fault);
+    if (!code)
+        code = add_source(model, fault, "spectra", model->spectra->sources);
     return code;
 }
 
-static int make_fields(Model *model, Fault *fault) {
+static int make_fields(Model *model, Fault *fault)
+{
     size_t padded = (size_t)model->grid.padded, solved = (size_t)model->mechanism->solved;
     model->aerosol_area = calloc(padded, sizeof(double));
     model->aerosol_radius = calloc(padded, sizeof(double));
@@ -225,21 +301,31 @@ static int make_fields(Model *model, Fault *fault) {
     return 0;
 }
 
-int model_make(Model **made, const Settings *settings, Fault *fault) {
+int model_make(Model **made, const Settings *settings, Fault *fault)
+{
     *made = NULL;
     Model *model = calloc(1, sizeof *model);
-    if (!model) return fault_memory(fault, "model");
+    if (!model)
+        return fault_memory(fault, "model");
     model->settings = *settings;
     char path[SETTINGS_PATH];
     int code = make_grid_and_air(model, fault);
-    if (!code) code = make_chemistry(model, fault);
-    if (!code) code = make_fields(model, fault);
-    if (!code) code = locate(settings, "schedule", settings->schedule_file, path, fault);
-    if (!code) code = schedule_read(&model->schedule, path, fault);
-    if (!code) code = add_source(model, fault, "schedule", model->schedule.header);
-    if (!code) code = read_troposphere(model, fault);
-    if (!code) code = set_ground(model, fault);
-    if (!code) code = read_aerosol(model, fault);
+    if (!code)
+        code = make_chemistry(model, fault);
+    if (!code)
+        code = make_fields(model, fault);
+    if (!code)
+        code = locate(settings, "schedule", settings->schedule_file, path, fault);
+    if (!code)
+        code = schedule_read(&model->schedule, path, fault);
+    if (!code)
+        code = add_source(model, fault, "schedule", model->schedule.header);
+    if (!code)
+        code = read_troposphere(model, fault);
+    if (!code)
+        code = set_ground(model, fault);
+    if (!code)
+        code = read_aerosol(model, fault);
     if (code) {
         model_free(model);
         return code;
@@ -248,8 +334,10 @@ int model_make(Model **made, const Settings *settings, Fault *fault) {
     return 0;
 }
 
-void model_free(Model *model) {
-    if (!model) return;
+void model_free(Model *model)
+{
+    if (!model)
+        return;
     diffusion_free(model->diffusion);
     spectra_free(model->spectra);
     kernel_free(model->kernel);
@@ -273,26 +361,33 @@ void model_free(Model *model) {
 
 /* ---- the first state ---- */
 
-static int initial_state(const Model *model, Column *column, Fault *fault) {
+static int initial_state(const Model *model, Column *column, Fault *fault)
+{
     const Mechanism *mechanism = model->mechanism;
     int padded = model->grid.padded;
     for (int s = 0; s < mechanism->solved; s++) {
         int gas = model->surface_gas[s];
         double x = gas >= 0 ? schedule_abundance(&model->schedule, gas, column->time) : 0.0;
-        if (model->surface_kind[s] == SURFACE_FIXED) x = model->surface_value[s];
-        for (int l = 0; l < padded; l++) column->x[FIELD(padded, s, l)] = x;
+        if (model->surface_kind[s] == SURFACE_FIXED)
+            x = model->surface_value[s];
+        for (int l = 0; l < padded; l++)
+            column->x[FIELD(padded, s, l)] = x;
     }
     Table table = {0};
     const double *altitude, *value;
     double top = model->grid.middle[model->grid.layers - 1];
-    int code = read_profile(model, &table, "initial profiles", model->settings.initial_file, top, &altitude, fault);
+    int code =
+        read_profile(model, &table, "initial profiles", model->settings.initial_file, top, &altitude, fault);
     for (size_t c = 0; !code && c < table.columns; c++) {
-        if (!strcmp(table.name[c], "altitude_km")) continue;
+        if (!strcmp(table.name[c], "altitude_km"))
+            continue;
         int s = mechanism_solved(mechanism, table.name[c]);
         if (s < 0)
-            code = fault_at(fault, table.path, 0, "column %s is no active species of %s; correct or remove it",
-                            table.name[c], mechanism->path);
-        if (!code) code = read_column(&table, table.name[c], 0.0, 1.0, &value, fault);
+            code =
+                fault_at(fault, table.path, 0, "column %s is no active species of %s; correct or remove it",
+                         table.name[c], mechanism->path);
+        if (!code)
+            code = read_column(&table, table.name[c], 0.0, 1.0, &value, fault);
         for (int l = 0; !code && l < padded; l++)
             column->x[FIELD(padded, s, l)] = table_linear(altitude, value, table.rows, middle_km(model, l));
     }
@@ -306,11 +401,13 @@ static int initial_state(const Model *model, Column *column, Fault *fault) {
     return code;
 }
 
-int column_make(Column **made, const Model *model, Fault *fault) {
+int column_make(Column **made, const Model *model, Fault *fault)
+{
     *made = NULL;
     size_t solved = (size_t)model->mechanism->solved, padded = (size_t)model->grid.padded;
     Column *column = calloc(1, sizeof *column);
-    if (!column) return fault_memory(fault, "column");
+    if (!column)
+        return fault_memory(fault, "column");
     column->x = aligned_alloc(64, solved * padded * sizeof(double));
     column->received = calloc(solved, sizeof(double));
     column->exchanged = calloc(solved, sizeof(double));
@@ -320,7 +417,8 @@ int column_make(Column **made, const Model *model, Fault *fault) {
     if (!column->x || !column->received || !column->exchanged || !column->washed || !column->escaped)
         code = fault_memory(fault, "column");
     column->time = model->settings.first_year;
-    if (!code) code = initial_state(model, column, fault);
+    if (!code)
+        code = initial_state(model, column, fault);
     if (code) {
         column_free(column);
         return code;
@@ -330,8 +428,10 @@ int column_make(Column **made, const Model *model, Fault *fault) {
     return 0;
 }
 
-void column_free(Column *column) {
-    if (!column) return;
+void column_free(Column *column)
+{
+    if (!column)
+        return;
     free(column->x);
     free(column->received);
     free(column->exchanged);
@@ -342,51 +442,62 @@ void column_free(Column *column) {
 
 /* ---- sums ---- */
 
-void column_open_ledger(const Model *model, Column *column) {
+void column_open_ledger(const Model *model, Column *column)
+{
     size_t bytes = (size_t)model->mechanism->solved * sizeof(double);
     memset(column->received, 0, bytes);
     memset(column->exchanged, 0, bytes);
     memset(column->washed, 0, bytes);
     memset(column->escaped, 0, MECHANISM_ELEMENTS * sizeof(double));
-    for (int e = 0; e < model->mechanism->elements; e++) column->start_atoms[e] = column_atoms(model, column->x, e);
+    for (int e = 0; e < model->mechanism->elements; e++)
+        column->start_atoms[e] = column_atoms(model, column->x, e);
     column->counts = (SolverCounts){0};
     column->photolysis_refreshes = column->factor_refreshes = column->outer_steps = 0;
     column->days = column->unsettled = 0;
 }
 
-double column_burden(const Model *model, const double *x, int solved) {
+double column_burden(const Model *model, const double *x, int solved)
+{
     const double *row = x + FIELD(model->grid.padded, solved, 0);
     double sum = 0.0;
-    for (int l = 0; l < model->grid.layers; l++) sum += row[l] * model->air.number_density[l] * model->grid.depth[l];
+    for (int l = 0; l < model->grid.layers; l++)
+        sum += row[l] * model->air.number_density[l] * model->grid.depth[l];
     return sum;
 }
 
-double column_ozone_du(const Model *model, const double *x) {
+double column_ozone_du(const Model *model, const double *x)
+{
     int solved = mechanism_solved(model->mechanism, "O3"), top = model->grid.layers - 1;
     double above = x[FIELD(model->grid.padded, solved, top)] * model->air.column_above_top;
     return (column_burden(model, x, solved) + above) / DOBSON_CM2;
 }
 
-double column_atoms(const Model *model, const double *x, int element) {
+double column_atoms(const Model *model, const double *x, int element)
+{
     double sum = 0.0;
     for (int s = 0; s < model->mechanism->solved; s++) {
         int atoms = mechanism_atoms(model->mechanism, s, element);
-        if (atoms) sum += atoms * column_burden(model, x, s);
+        if (atoms)
+            sum += atoms * column_burden(model, x, s);
     }
     return sum;
 }
 
-double column_ledger_atoms(const Model *model, const Column *column, int element) {
+double column_ledger_atoms(const Model *model, const Column *column, int element)
+{
     double sum = 0.0;
     for (int s = 0; s < model->mechanism->solved; s++)
         sum += mechanism_atoms(model->mechanism, s, element) *
                (column->received[s] + column->exchanged[s] - column->washed[s]);
     for (int c = 0; c < model->kernel->counters; c++)
-        if (model->kernel->counter_element[c] == element) sum -= column->escaped[c];
+        if (model->kernel->counter_element[c] == element)
+            sum -= column->escaped[c];
     return sum;
 }
 
-double column_closure(const Model *model, const Column *column, int element) {
+double column_closure(const Model *model, const Column *column, int element)
+{
     double now = column_atoms(model, column->x, element);
-    return (now - column->start_atoms[element] - column_ledger_atoms(model, column, element)) / now;
+    double defect = now - column->start_atoms[element] - column_ledger_atoms(model, column, element);
+    return defect != 0.0 ? defect / now : 0.0; /* 0 also where there are no atoms at all */
 }

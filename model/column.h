@@ -1,8 +1,8 @@
 /* column: everything a run is made of.
  *
- * Model is what does not change: settings, grid, air, mechanism, spectra, schedule, operators. It is built once and
- * shared. Column is what changes: mole fractions, rates, factors, and the ledger of what crossed the borders. A
- * Column is a value of its own; many can run side by side on one Model.
+ * Model is what does not change: settings, grid, air, mechanism, spectra, schedule, operators. It is built
+ * once and shared. Column is what changes: mole fractions, rates, factors, and the ledger of what crossed the
+ * borders. A Column is a value of its own; many can run side by side on one Model.
  */
 #ifndef SKYMEND_COLUMN_H
 #define SKYMEND_COLUMN_H
@@ -29,45 +29,47 @@ typedef struct {
     Settings settings;
     Grid grid;
     Air air;
-    double *eddy;            /* [layers + 1] eddy diffusion coefficient at edges, cm2 s-1 */
+    double *eddy; /* [layers + 1] eddy diffusion coefficient at edges, cm2 s-1 */
     Mechanism *mechanism;
     Kernel *kernel;
     Spectra *spectra;
     Schedule schedule;
     Diffusion *diffusion;
-    double *aerosol_area;    /* [padded] cm2 cm-3 */
-    double *aerosol_radius;  /* [padded] cm */
-    double *washout_rate;    /* [padded] s-1 of a fully soluble gas */
+    double *aerosol_area;   /* [padded] cm2 cm-3 */
+    double *aerosol_radius; /* [padded] cm */
+    double *washout_rate;   /* [padded] s-1 of a fully soluble gas */
 
     /* ground condition by solved species */
-    int *surface_kind;       /* [solved] enum SurfaceKind */
-    int *surface_gas;        /* [solved] index in the schedule or -1 */
-    double *surface_value;   /* [solved] mole fraction or deposition velocity, cm s-1 */
+    int *surface_kind;     /* [solved] enum SurfaceKind */
+    int *surface_gas;      /* [solved] index in the schedule or -1 */
+    double *surface_value; /* [solved] mole fraction or deposition velocity, cm s-1 */
 
     /* held species: prescribed below the tropopause */
 #define MODEL_HELD_MOST 3 /* H2O, OH, NO2 */
     int held;
-    int *held_species;       /* [held] */
-    double *held_free;       /* [held][padded] 1 free, 0 held */
-    double *held_fraction;   /* [held][padded] mole fraction where held, 0 where free */
+    int *held_species;     /* [held] */
+    double *held_free;     /* [held][padded] 1 free, 0 held */
+    double *held_fraction; /* [held][padded] mole fraction where held, 0 where free */
 
-    char *sources;           /* citations of every table read, one a line */
+    char *sources; /* citations of every table read, one a line */
 } Model;
 
 typedef struct {
-    double *x;               /* [solved][padded] mole fraction, mol mol-1 (daily mean under factors, midnight in explicit days) */
-    double time;             /* decimal years of 365.25 days; 1980.0 = start of 1980 */
+    double *x;   /* [solved][padded] mole fraction, mol mol-1 (daily mean under factors, midnight in explicit
+                    days) */
+    double time; /* decimal years of 365.25 days; 1980.0 = start of 1980 */
 
     /* ledger per solved species, molecules cm-2 since the start of the run */
-    double *received;        /* through the ground by transport, incl. what keeping the surface value supplied */
-    double *exchanged;       /* given by the reservoirs that hold prescribed species (negative: taken) */
-    double *washed;          /* removed by washout */
-    double *escaped;         /* [counters] atoms cm-2 of kernel->counter_element that left for fixed or inert species */
+    double *received;  /* through the ground by transport, incl. what keeping the surface value supplied */
+    double *exchanged; /* given by the reservoirs that hold prescribed species (negative: taken) */
+    double *washed;    /* removed by washout */
+    double
+        *escaped; /* [counters] atoms cm-2 of kernel->counter_element that left for fixed or inert species */
     double start_atoms[MECHANISM_ELEMENTS]; /* atoms cm-2 in the solved species when the ledger was opened */
 
     SolverCounts counts;
     long photolysis_refreshes, factor_refreshes, outer_steps;
-    long days, unsettled;    /* explicit days carried; refreshes whose day did not repeat within DAY_MOST */
+    long days, unsettled; /* explicit days carried; refreshes whose day did not repeat within DAY_MOST */
 } Column;
 
 /* Build the model a case describes: reads every table. Owner: caller. */
@@ -81,14 +83,16 @@ void column_free(Column *column);
 /* Empty the ledger and the counters: what happens from now on is accounted for. */
 void column_open_ledger(const Model *model, Column *column);
 
-/* Molecules cm-2 of solved species s; DU of ozone (above the ground, the part above the grid's top included for ozone_column). */
+/* Molecules cm-2 of solved species s; DU of ozone (above the ground, the part above the grid's top included
+ * for ozone_column). */
 double column_burden(const Model *model, const double *x, int solved);
 double column_ozone_du(const Model *model, const double *x);
-/* Atoms cm-2 of an element in all solved species, and atoms that entered by the ledger (received + exchanged - washed -
- * escaped). */
+/* Atoms cm-2 of an element in all solved species, and atoms that entered by the ledger (received + exchanged
+ * - washed - escaped). */
 double column_atoms(const Model *model, const double *x, int element);
 double column_ledger_atoms(const Model *model, const Column *column, int element);
-/* (atoms now - atoms when the ledger was opened - ledger) / atoms now: 0 up to round-off. */
+/* (atoms now - atoms when the ledger was opened - ledger) / atoms now: 0 up to round-off, and 0 of no atoms
+ * at all. */
 double column_closure(const Model *model, const Column *column, int element);
 
 #endif

@@ -11,18 +11,21 @@
 
 static volatile sig_atomic_t stop_asked;
 
-static void ask_stop(int signal_number) {
+static void ask_stop(int signal_number)
+{
     (void)signal_number;
     stop_asked = 1;
 }
 
-static void catch_signals(void) {
+static void catch_signals(void)
+{
     struct sigaction action = {.sa_handler = ask_stop};
     sigemptyset(&action.sa_mask);
     sigaction(SIGINT, &action, NULL);
     sigaction(SIGTERM, &action, NULL);
 #ifdef SIGXFSZ
-    struct sigaction ignore = {.sa_handler = SIG_IGN}; /* a file at its size limit is a write error, not a death */
+    struct sigaction ignore = {.sa_handler =
+                                   SIG_IGN}; /* a file at its size limit is a write error, not a death */
     sigemptyset(&ignore.sa_mask);
     sigaction(SIGXFSZ, &ignore, NULL);
 #endif
@@ -34,26 +37,33 @@ typedef struct {
     char command_line[2000];
 } Request;
 
-static void print_help(void) {
-    printf("usage: skymend project [CASE.cfg] -o FILE.nc [options]\n\n"
-           "Carries the column of a case through its years and writes a CF NetCDF file; then prints the\n"
-           "table of answers. Without a case: the built-in baseline, 1955 to 2100.\n\n"
-           "  -o, --output FILE.nc  where the field goes\n"
-           "      --overwrite       replace FILE.nc if it is there\n"
-           "      --threads N       threads to use (default: OMP_NUM_THREADS or all); results do not depend on it\n"
-           "      --quiet           no progress, no table\n"
-           "  -h, --help            this text\n\n"
-           "An interrupted run (Ctrl-C) leaves FILE.nc with every finished interval in it.\n");
+static void print_help(void)
+{
+    printf(
+        "usage: skymend project [CASE.cfg] -o FILE.nc [options]\n\n"
+        "Carries the column of a case through its years and writes a CF NetCDF file; then prints the\n"
+        "table of answers. Without a case: the built-in baseline, 1955 to 2100.\n\n"
+        "  -o, --output FILE.nc  the file to write\n"
+        "      --overwrite       replace FILE.nc if it is there\n"
+        "      --threads N       threads to use (default: OMP_NUM_THREADS or all); results do not depend on "
+        "it\n"
+        "      --quiet           no progress, no table\n"
+        "  -h, --help            this text\n\n"
+        "An interrupted run (Ctrl-C) leaves FILE.nc with every finished interval in it; during the spin-up\n"
+        "there is none yet, and no file.\n");
 }
 
-static int read_request(Request *request, int argc, char **argv, Fault *fault) {
-    static const struct option options[] = {{"output", required_argument, NULL, 'o'}, {"overwrite", no_argument, NULL, 'w'},
-                                            {"quiet", no_argument, NULL, 'q'},        {"threads", required_argument, NULL, 't'},
-                                            {"help", no_argument, NULL, 'h'},         {NULL, 0, NULL, 0}};
+static int read_request(Request *request, int argc, char **argv, Fault *fault)
+{
+    static const struct option options[] = {
+        {"output", required_argument, NULL, 'o'}, {"overwrite", no_argument, NULL, 'w'},
+        {"quiet", no_argument, NULL, 'q'},        {"threads", required_argument, NULL, 't'},
+        {"help", no_argument, NULL, 'h'},         {NULL, 0, NULL, 0}};
     static const char *const names[] = {"--output", "--overwrite", "--quiet", "--threads", "--help", NULL};
     size_t used = (size_t)snprintf(request->command_line, sizeof request->command_line, "skymend");
     for (int i = 0; i < argc && used < sizeof request->command_line; i++)
-        used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s", argv[i]);
+        used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s",
+                                 argv[i]);
     int found, before = 1;
     opterr = 0;
     optind = 1;
@@ -65,16 +75,20 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault) {
         case 'q': request->quiet = 1; break;
         case 'h': request->help = 1; break;
         case 't':
-            if (option_number("--threads", optarg, 1, 1024, &value, fault)) return fault->code;
+            if (option_number("--threads", optarg, 1, 1024, &value, fault))
+                return fault->code;
             request->threads = (int)value;
             if (request->threads != value)
-                return fault_set(fault, FAULT_INPUT, "--threads: %s is no whole number; give 1, 2, 3, ...", optarg);
+                return fault_set(fault, FAULT_INPUT, "--threads: %s is no whole number; give 1, 2, 3, ...",
+                                 optarg);
             break;
-        default: return option_fault("project", argv, optind > before ? optind - 1 : before, found, names, fault);
+        default:
+            return option_fault("project", argv, optind > before ? optind - 1 : before, found, names, fault);
         }
         before = optind;
     }
-    if (request->help) return 0;
+    if (request->help)
+        return 0;
     int code = one_operand("project", argc, argv, optind, &request->case_path, fault);
     if (!code && !request->output)
         code = fault_set(fault, FAULT_INPUT, "project: no output file named; add -o FILE.nc");
@@ -86,53 +100,70 @@ typedef struct {
     ProgressBar bar;
 } Outlets;
 
-static int write_record(void *context, const Record *record, Fault *fault) {
+static int write_record(void *context, const Record *record, Fault *fault)
+{
     return archive_append(((Outlets *)context)->archive, record, fault);
 }
 
-static void show_progress(void *context, const Progress *progress) { progress_show(&((Outlets *)context)->bar, progress); }
+static void show_progress(void *context, const Progress *progress)
+{
+    progress_show(&((Outlets *)context)->bar, progress);
+}
 
-static void print_summary(const Model *model, const Column *column) {
+static void print_summary(const Model *model, const Column *column)
+{
     const SolverCounts *counts = &column->counts;
-    printf("chemistry: %ld solver steps, %ld rejected; values below zero at step ends: %ld, the lowest %.2g cm-3 "
+    printf("chemistry: %ld solver steps, %ld rejected; values below zero at ends of calls: %ld, the lowest "
+           "%.2g cm-3 "
            "(absolute tolerance %g)\n",
            counts->steps, counts->rejections, counts->negatives, counts->most_negative,
            model->settings.absolute_tolerance_cm3);
-    printf("photolysis rates made %ld times, diurnal factors %ld times (%ld from a day that did not repeat)\n",
+    printf("refreshes: photolysis rates %ld, diurnal factors %ld (%ld from a day that did not repeat)\n",
            column->photolysis_refreshes, column->factor_refreshes, column->unsettled);
     static const char *const elements[] = {"Cl", "Br", "N", "H"};
     printf("atoms unaccounted for, relative:");
     for (int i = 0; i < 4; i++) {
         int element = mechanism_element(model->mechanism, elements[i]);
-        if (element >= 0) printf(" %s %.1e", elements[i], column_closure(model, column, element));
+        if (element >= 0)
+            printf(" %s %.1e", elements[i], column_closure(model, column, element));
     }
     printf("\n");
 }
 
-static int print_answers(const char *path, Fault *fault) {
+static int print_answers(const char *path, Fault *fault)
+{
     ColumnSeries series = {0};
     Answers answers;
     int code = series_read(&series, path, fault);
-    if (!code) code = answers_compute(&answers, &series, 1980, fault);
-    if (!code) answers_print(&answers, &series, stdout);
+    if (!code)
+        code = answers_compute(&answers, &series, 1980, fault);
+    if (!code)
+        answers_print(&answers, &series, stdout);
     series_free(&series);
     return code;
 }
 
-static int run(const Request *request, Fault *fault) {
+static int run(const Request *request, Fault *fault)
+{
     Settings *settings = malloc(sizeof *settings);
     Model *model = NULL;
     Column *column = NULL;
     Stepper *stepper = NULL;
     Outlets outlets = {0};
-    if (!settings) return fault_memory(fault, "settings");
+    if (!settings)
+        return fault_memory(fault, "settings");
     int code = load_case(settings, request->case_path, fault);
-    if (!code) code = model_make(&model, settings, fault);
-    if (!code) code = column_make(&column, model, fault);
-    if (!code && request->threads) omp_set_num_threads(request->threads);
-    if (!code) code = stepper_make(&stepper, model, request->threads, fault);
     if (!code)
-        code = archive_create(&outlets.archive, model, request->output, request->overwrite, request->command_line, fault);
+        code = model_make(&model, settings, fault);
+    if (!code)
+        code = column_make(&column, model, fault);
+    if (!code && request->threads)
+        omp_set_num_threads(request->threads);
+    if (!code)
+        code = stepper_make(&stepper, model, request->threads, fault);
+    if (!code)
+        code = archive_create(&outlets.archive, model, request->output, request->overwrite,
+                              request->command_line, fault);
     if (!code) {
         Watcher watcher = {write_record, show_progress, &outlets, &stop_asked};
         progress_open(&outlets.bar, request->quiet);
@@ -157,7 +188,8 @@ static int run(const Request *request, Fault *fault) {
     return code;
 }
 
-int command_project(int argc, char **argv) {
+int command_project(int argc, char **argv)
+{
     Request request = {0};
     Fault fault = {0};
     int code = read_request(&request, argc, argv, &fault);
@@ -166,6 +198,7 @@ int command_project(int argc, char **argv) {
         return 0;
     }
     catch_signals();
-    if (!code) code = run(&request, &fault);
+    if (!code)
+        code = run(&request, &fault);
     return code ? report_fault(&fault) : 0;
 }

@@ -9,21 +9,26 @@
 #include <string.h>
 #include <unistd.h>
 
-static int holds_data(const char *folder) {
+static int holds_data(const char *folder)
+{
     char path[SETTINGS_PATH + 32];
     snprintf(path, sizeof path, "%s/wavelength-bins.csv", folder);
     return access(path, R_OK) == 0;
 }
 
-int find_data(char *folder, size_t size, Fault *fault) {
+int find_data(char *folder, size_t size, Fault *fault)
+{
     const char *named = getenv("SKYMEND_DATA");
     if (named && named[0]) {
         if (strlen(named) >= size)
-            return fault_set(fault, FAULT_INPUT, "SKYMEND_DATA is longer than %zu characters; use a shorter path", size - 1);
+            return fault_set(fault, FAULT_INPUT,
+                             "SKYMEND_DATA is longer than %zu characters; use a shorter path", size - 1);
         snprintf(folder, size, "%s", named);
-        if (holds_data(folder)) return 0;
+        if (holds_data(folder))
+            return 0;
         return fault_set(fault, FAULT_INPUT,
-                         "SKYMEND_DATA names %s, which holds no data tables; set it to the folder with wavelength-bins.csv, "
+                         "SKYMEND_DATA names %s, which holds no data tables; set it to the folder with "
+                         "wavelength-bins.csv, "
                          "or unset it",
                          folder);
     }
@@ -34,54 +39,68 @@ int find_data(char *folder, size_t size, Fault *fault) {
         program[length] = '\0';
         *strrchr(program, '/') = '\0';
         for (size_t i = 0; i < sizeof beside / sizeof beside[0]; i++) {
-            if (snprintf(folder, size, "%s/%s", program, beside[i]) >= (int)size) continue;
-            if (holds_data(folder)) return 0;
+            if (snprintf(folder, size, "%s/%s", program, beside[i]) >= (int)size)
+                continue;
+            if (holds_data(folder))
+                return 0;
         }
     }
-    return fault_set(fault, FAULT_INPUT, "the data tables are not where the program looks for them; set SKYMEND_DATA to the "
-                                         "folder that holds wavelength-bins.csv");
+    return fault_set(fault, FAULT_INPUT,
+                     "the data tables are not where the program looks for them; set SKYMEND_DATA to the "
+                     "folder that holds wavelength-bins.csv");
 }
 
-int load_case(Settings *settings, const char *path, Fault *fault) {
+int load_case(Settings *settings, const char *path, Fault *fault)
+{
     char folder[SETTINGS_PATH];
     int code = find_data(folder, sizeof folder, fault);
-    if (code) return code;
+    if (code)
+        return code;
     settings_default(settings, folder);
     return path ? settings_read(settings, path, folder, fault) : 0;
 }
 
-int report_fault(const Fault *fault) {
+int report_fault(const Fault *fault)
+{
     fprintf(stderr, "skymend: %s\n", fault->text);
     return fault->code;
 }
 
-int option_number(const char *option, const char *text, double low, double high, double *value, Fault *fault) {
+int option_number(const char *option, const char *text, double low, double high, double *value, Fault *fault)
+{
     char *end;
     errno = 0;
     *value = strtod(text, &end);
     if (end == text || *end || errno || !isfinite(*value))
-        return fault_set(fault, FAULT_INPUT, "%s: \"%s\" is no number; give one from %g to %g", option, text, low, high);
+        return fault_set(fault, FAULT_INPUT, "%s: \"%s\" is no number; give one from %g to %g", option, text,
+                         low, high);
     if (*value < low || *value > high)
-        return fault_set(fault, FAULT_INPUT, "%s: %s is outside %g to %g; give a value within", option, text, low, high);
+        return fault_set(fault, FAULT_INPUT, "%s: %s is outside %g to %g; give a value within", option, text,
+                         low, high);
     return 0;
 }
 
-int option_fault(const char *verb, char *const *argv, int optind_before, int found, const char *const *names, Fault *fault) {
+int option_fault(const char *verb, char *const *argv, int optind_before, int found, const char *const *names,
+                 Fault *fault)
+{
     const char *word = argv[optind_before];
     if (found == ':')
-        return fault_set(fault, FAULT_INPUT, "%s: option %s needs a value; see skymend %s --help", verb, word, verb);
+        return fault_set(fault, FAULT_INPUT, "%s: option %s needs a value; see skymend %s --help", verb, word,
+                         verb);
     size_t count = 0;
-    while (names[count]) count++;
+    while (names[count])
+        count++;
     const char *near = fault_nearest(word, names, count);
     if (near)
         return fault_set(fault, FAULT_INPUT, "%s: unknown option %s; did you mean %s?", verb, word, near);
     return fault_set(fault, FAULT_INPUT, "%s: unknown option %s; see skymend %s --help", verb, word, verb);
 }
 
-int one_operand(const char *verb, int argc, char *const *argv, int first, const char **operand, Fault *fault) {
+int one_operand(const char *verb, int argc, char *const *argv, int first, const char **operand, Fault *fault)
+{
     *operand = first < argc ? argv[first] : NULL;
     if (first + 1 < argc)
-        return fault_set(fault, FAULT_INPUT, "%s: takes one file, but %s and %s are given; name one", verb, argv[first],
-                         argv[first + 1]);
+        return fault_set(fault, FAULT_INPUT, "%s: takes one file, but %s and %s are given; name one", verb,
+                         argv[first], argv[first + 1]);
     return 0;
 }

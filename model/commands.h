@@ -1,5 +1,5 @@
-/* commands: the verbs of the program. Each gets its own arguments (argv[0] is the verb) and returns the exit code; they alone
- * print. */
+/* commands: the verbs of the program. Each gets its own arguments (argv[0] is the verb) and returns the exit
+ * code; they alone print. */
 #ifndef SKYMEND_COMMANDS_H
 #define SKYMEND_COMMANDS_H
 
@@ -13,7 +13,8 @@ int command_answers(int argc, char **argv);
 
 /* ---- shared by the verbs (commands.c) ---- */
 
-/* Folder of the data: SKYMEND_DATA if set, else share/skymend beside the program's folder, else input/data beside it. */
+/* Folder of the data: SKYMEND_DATA if set, else share/skymend beside the program's folder, else input/data
+ * beside it. */
 int find_data(char *folder, size_t size, Fault *fault);
 /* The case of path (NULL: built-in baseline). */
 int load_case(Settings *settings, const char *path, Fault *fault);
@@ -21,8 +22,10 @@ int load_case(Settings *settings, const char *path, Fault *fault);
 int report_fault(const Fault *fault);
 /* Numbers from the command line; a fault names the option. */
 int option_number(const char *option, const char *text, double low, double high, double *value, Fault *fault);
-/* A fault for an option the verb does not know or that lacks its value; names lists the verb's options, NULL at the end. */
-int option_fault(const char *verb, char *const *argv, int optind_before, int found, const char *const *names, Fault *fault);
+/* A fault for an option the verb does not know or that lacks its value; names lists the verb's options, NULL
+ * at the end. */
+int option_fault(const char *verb, char *const *argv, int optind_before, int found, const char *const *names,
+                 Fault *fault);
 /* At most one operand; FAULT_INPUT otherwise. *operand NULL when there is none. */
 int one_operand(const char *verb, int argc, char *const *argv, int first, const char **operand, Fault *fault);
 

@@ -1,23 +1,24 @@
 /* day: the diurnal factors, from the time integrals of an explicit day.
  *
- * Turco and Whitten (1978, J. Atmos. Terr. Phys. 40, 13): for each reaction and layer the factor is the 24 h mean of
- * the reaction's rate over the product of the 24 h means of its coefficient and its reactants. Multiplying the
- * coefficients of a run that knows only daily means, the factors make its rates those of the real day.
+ * Turco and Whitten (1978, J. Atmos. Terr. Phys. 40, 13): for each reaction and layer the factor is the 24 h
+ * mean of the reaction's rate over the product of the 24 h means of its coefficient and its reactants.
+ * Multiplying the coefficients of a run that knows only daily means, the factors make its rates those of the
+ * real day.
  *
- * The day itself is carried by step.c, transport included: near the top of the column diffusion works within hours. Each
- * midnight every species is set to the run's daily mean times the ratio of midnight value to daily mean found on the
- * day before, so that the day stays that of the run. It is repeated until the factors of all reactions that
- * matter change by less than DAY_SETTLED. The first time, when most radicals of the run are still zero, DAY_COLD days
- * run freely instead.
+ * The day itself is carried by step.c, transport included: near the top of the column diffusion works within
+ * hours. Each midnight every species is set to the run's daily mean times the ratio of midnight value to
+ * daily mean found on the day before, so that the day stays that of the run. It is repeated until the factors
+ * of all reactions that matter change by less than DAY_SETTLED. The first time, when most radicals of the run
+ * are still zero, DAY_COLD days run freely instead.
  */
 #ifndef SKYMEND_DAY_H
 #define SKYMEND_DAY_H
 
 #include "light.h"
 
-#define DAY_SETTLED 0.005 /* relative change of factors between days at which the day counts as repeating */
-#define DAY_MOST 15       /* days tried */
-#define DAY_COLD 10       /* days of the first time */
+#define DAY_SETTLED 0.005/* relative change of factors between days at which the day counts as repeating */
+#define DAY_MOST 15      /* days tried */
+#define DAY_COLD 10      /* days of the first time */
 
 typedef struct {
     const Model *model;
@@ -26,23 +27,25 @@ typedef struct {
     double *lit;       /* [solved][padded] mean while the sun is up over daily mean */
     double *reference; /* [solved][padded] mole fractions when the factors were made */
     /* time integrals of a day, cleared by day_clear and added to by whoever carries it */
-    double *sum_y;     /* [solved][padded] cm-3 s */
-    double *sum_lit;   /* [solved][padded] cm-3 s, while the sun is up */
-    double *sum_w;     /* [reactions][padded] cm-3 */
-    double *loss;      /* [solved] work */
+    double *sum_y;   /* [solved][padded] cm-3 s */
+    double *sum_lit; /* [solved][padded] cm-3 s, while the sun is up */
+    double *sum_w;   /* [reactions][padded] cm-3 */
+    double *loss;    /* [solved] work */
     int ready;
 } Day;
 
 int day_make(Day **made, const Model *model, Fault *fault);
 void day_free(Day *day);
 
-/* 1 when some species with a diurnal course has moved by more than refresh_state since the factors were made. */
+/* 1 when some species with a diurnal course has moved by more than refresh_state since the factors were made.
+ */
 int day_stale(const Day *day, const double *x);
 /* Mole fractions at midnight for the daily means x: start [solved][padded] out. */
 void day_midnight(const Day *day, const double *x, double *start);
 void day_clear(Day *day);
-/* Ratios and factors from the integrals of the day that ended with mole fractions end. lit_time: s with the sun up.
- * coefficient [reactions][padded]: thermal, surface, washout. Returns the largest relative change of a factor that matters. */
+/* Ratios and factors from the integrals of the day that ended with mole fractions end. lit_time: s with the
+ * sun up. coefficient [reactions][padded]: thermal, surface, washout. Returns the largest relative change of
+ * a factor that matters. */
 double day_take(Day *day, const Light *light, const double *end, double lit_time, const double *coefficient);
 /* The factors now belong to the daily means x. */
 void day_settle(Day *day, const double *x);

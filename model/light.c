@@ -1,17 +1,20 @@
 /* light: photolysis rates along the day. */
 #include "light.h"
 
+#include "../input/constants.h"
 #include <math.h>
 #include <stdlib.h>
-#include "../input/constants.h"
 
-/* Absorption cross section of ozone at its maximum is 1.15e-17 cm2 (JPL 19-5): optical depth 1 is this column. */
+/* Absorption cross section of ozone at its maximum is 1.15e-17 cm2 (JPL 19-5): optical depth 1 is this
+ * column. */
 static const double UNIT_DEPTH = 8.7e16;
 
-int light_make(Light **made, const Model *model, int refine, Fault *fault) {
+int light_make(Light **made, const Model *model, int refine, Fault *fault)
+{
     *made = NULL;
     Light *light = calloc(1, sizeof *light);
-    if (!light) return fault_memory(fault, "photolysis rates");
+    if (!light)
+        return fault_memory(fault, "photolysis rates");
     const Mechanism *mechanism = model->mechanism;
     size_t padded = (size_t)model->grid.padded;
     light->model = model;
@@ -28,11 +31,12 @@ int light_make(Light **made, const Model *model, int refine, Fault *fault) {
     if (!light->table || !light->knot || !light->mean || !light->overhead || !light->density || !edge_km)
         code = fault_memory(fault, "photolysis rates");
     if (!code && light->sun.nodes) {
-        for (int i = 0; i <= model->grid.layers; i++) edge_km[i] = 1e-5 * model->grid.edge[i];
-        code = photolysis_make(&light->photolysis, mechanism, model->spectra, model->grid.layers, model->grid.padded,
-                               edge_km, model->air.temperature, model->air.number_density, model->grid.depth,
-                               model->air.column_above_top, light->sun.cosine, light->sun.nodes,
-                               model->settings.surface_albedo, fault);
+        for (int i = 0; i <= model->grid.layers; i++)
+            edge_km[i] = 1e-5 * model->grid.edge[i];
+        code = photolysis_make(&light->photolysis, mechanism, model->spectra, model->grid.layers,
+                               model->grid.padded, edge_km, model->air.temperature, model->air.number_density,
+                               model->grid.depth, model->air.column_above_top, light->sun.cosine,
+                               light->sun.nodes, model->settings.surface_albedo, fault);
     }
     free(edge_km);
     if (code) {
@@ -43,8 +47,10 @@ int light_make(Light **made, const Model *model, int refine, Fault *fault) {
     return 0;
 }
 
-void light_free(Light *light) {
-    if (!light) return;
+void light_free(Light *light)
+{
+    if (!light)
+        return;
     photolysis_free(light->photolysis);
     free(light->table);
     free(light->knot);
@@ -55,7 +61,8 @@ void light_free(Light *light) {
 }
 
 /* Ozone above the middle of each layer, cm-2. */
-static void overhead_column(const Model *model, const double *x, const double *lit, double *out) {
+static void overhead_column(const Model *model, const double *x, const double *lit, double *out)
+{
     int layers = model->grid.layers, padded = model->grid.padded, top = layers - 1;
     size_t row = FIELD(padded, mechanism_solved(model->mechanism, "O3"), 0);
     const double *o3 = x + row;
@@ -68,20 +75,25 @@ static void overhead_column(const Model *model, const double *x, const double *l
     }
 }
 
-int light_stale(const Light *light, const double *x, const double *lit) {
-    if (!light->ready) return 1;
+int light_stale(const Light *light, const double *x, const double *lit)
+{
+    if (!light->ready)
+        return 1;
     const Model *model = light->model;
     double now[PACK_ROUND(SETTINGS_MAX_EDGES)];
     overhead_column(model, x, lit, now);
     for (int l = 0; l < model->grid.layers; l++) {
         double scale = fmax(light->overhead[l], UNIT_DEPTH);
-        if (fabs(now[l] - light->overhead[l]) > model->settings.refresh_column * scale) return 1;
+        if (fabs(now[l] - light->overhead[l]) > model->settings.refresh_column * scale)
+            return 1;
     }
     return 0;
 }
 
 /* A negative mole fraction within the tolerance absorbs nothing. */
-static void number_density(const Model *model, const double *x, const double *lit, const char *name, double *out) {
+static void number_density(const Model *model, const double *x, const double *lit, const char *name,
+                           double *out)
+{
     int solved = mechanism_solved(model->mechanism, name), padded = model->grid.padded;
     for (int l = 0; l < padded; l++) {
         size_t at = solved < 0 ? 0 : FIELD(padded, solved, l);
@@ -91,35 +103,42 @@ static void number_density(const Model *model, const double *x, const double *li
 }
 
 /* Number density of the fixed reactants of a photolysis reaction; 1 when the absorber is a solved species. */
-static double fixed_density(const Model *model, int reaction, int layer) {
+static double fixed_density(const Model *model, int reaction, int layer)
+{
     const Reaction *photolysis = &model->mechanism->reaction[model->mechanism->photolysis_first + reaction];
-    return photolysis->fixed_order ? photolysis->fixed_share * pow(model->air.number_density[layer], photolysis->fixed_order)
-                                   : 1.0;
+    return photolysis->fixed_order
+               ? photolysis->fixed_share * pow(model->air.number_density[layer], photolysis->fixed_order)
+               : 1.0;
 }
 
-double light_mean_rate(const Light *light, int reaction, int layer) {
-    return light->mean[FIELD(light->model->grid.padded, reaction, layer)] / fixed_density(light->model, reaction, layer);
+double light_mean_rate(const Light *light, int reaction, int layer)
+{
+    return light->mean[FIELD(light->model->grid.padded, reaction, layer)] /
+           fixed_density(light->model, reaction, layer);
 }
 
-static void fold_fixed_reactants(Light *light) {
+static void fold_fixed_reactants(Light *light)
+{
     int padded = light->model->grid.padded;
     for (int r = 0; r < light->reactions; r++) {
-        if (!light->model->mechanism->reaction[light->model->mechanism->photolysis_first + r].fixed_order) continue;
+        if (!light->model->mechanism->reaction[light->model->mechanism->photolysis_first + r].fixed_order)
+            continue;
         for (int l = 0; l < padded; l++)
             for (int n = 0; n < light->sun.nodes; n++)
                 light->table[FIELD(padded, n * light->reactions + r, l)] *= fixed_density(light->model, r, l);
     }
 }
 
-void light_refresh(Light *light, const double *x, const double *lit) {
+void light_refresh(Light *light, const double *x, const double *lit)
+{
     const Model *model = light->model;
     int padded = model->grid.padded, reactions = light->reactions;
     if (light->sun.nodes) {
         number_density(model, x, lit, "O3", light->density);
         number_density(model, x, lit, "NO2", light->density + padded);
         number_density(model, x, lit, "NO", light->density + 2 * padded);
-        photolysis_rates(light->photolysis, light->density, light->density + padded, light->density + 2 * padded,
-                         light->sun.earth_sun, light->table);
+        photolysis_rates(light->photolysis, light->density, light->density + padded,
+                         light->density + 2 * padded, light->sun.earth_sun, light->table);
         fold_fixed_reactants(light);
         int stride = reactions * padded;
 #pragma omp parallel for schedule(static)

@@ -10,27 +10,27 @@ typedef struct {
     const Model *model;
     Sun sun;
     Photolysis *photolysis;
-    int reactions;     /* photolysis reactions; row 0 is the mechanism's reaction photolysis_first */
-    /* rate coefficients: photolysis rate, s-1, times the number density of the fixed reactant where there is one (O2), as
-     * the kernel wants it */
-    double *table;     /* [nodes][reactions][padded] */
-    double *knot;      /* [SUN_KNOTS][reactions][padded], morning */
-    double *mean;      /* [reactions][padded], mean over 24 h */
-    double *overhead;  /* [padded] ozone above each layer's middle at the last refresh, cm-2 */
-    double *density;   /* [3][padded] work: number densities of O3, NO2, NO */
-    int ready;         /* rates have been computed */
+    int reactions; /* photolysis reactions; row 0 is the mechanism's reaction photolysis_first */
+    /* rate coefficients: photolysis rate, s-1, times the number density of the fixed reactant where there is
+     * one (O2), as the kernel wants it */
+    double *table;    /* [nodes][reactions][padded] */
+    double *knot;     /* [SUN_KNOTS][reactions][padded], morning */
+    double *mean;     /* [reactions][padded], mean over 24 h */
+    double *overhead; /* [padded] ozone above each layer's middle at the last refresh, cm-2 */
+    double *density;  /* [3][padded] work: number densities of O3, NO2, NO */
+    int ready;        /* rates have been computed */
 } Light;
 
 /* Owner: caller. refine as in sun_make. */
 int light_make(Light **made, const Model *model, int refine, Fault *fault);
 void light_free(Light *light);
 
-/* Absorbers while the sun is up: x [solved][padded] mole fractions, times lit [solved][padded] where that is not NULL (mean by
- * daylight over daily mean: in the mesosphere ozone by day is a fraction of that by night).
+/* Absorbers while the sun is up: x [solved][padded] mole fractions, times lit [solved][padded] where that is
+ * not NULL (mean by daylight over daily mean: in the mesosphere ozone by day is a fraction of that by night).
  *
- * light_stale: 1 when the ozone above some layer has changed by more than refresh_column since the last refresh, relative to
- * itself or, where it is thinner, to a column of optical depth 1 at the ozone maximum of absorption.
- * light_refresh: compute the rates. */
+ * light_stale: 1 when the ozone above some layer has changed by more than refresh_column since the last
+ * refresh, relative to itself or, where it is thinner, to a column of optical depth 1 at the ozone maximum of
+ * absorption. light_refresh: compute the rates. */
 int light_stale(const Light *light, const double *x, const double *lit);
 void light_refresh(Light *light, const double *x, const double *lit);
 /* Photolysis rate itself, s-1, mean over 24 h. */

@@ -13,26 +13,31 @@ static const struct {
     int (*run)(int argc, char **argv);
     const char *help;
 } verbs[] = {
-    {"project", command_project, "run a case through its years; write the field and the answers"},
-    {"check", command_check, "read everything a case names, print the resolved settings, run nothing"},
-    {"sunlight", command_sunlight, "photolysis rates of a column by altitude, as CSV"},
-    {"answers", command_answers, "the table of answers from a finished file"},
+    {"project", command_project, "run a case through its years; write the file, print the answers"},
+    {"check", command_check, "read everything a case names, print the resolved case, run nothing"},
+    {"sunlight", command_sunlight, "print photolysis rates by altitude, as CSV"},
+    {"answers", command_answers, "print the table of answers of a finished or interrupted file"},
 };
 enum { VERBS = sizeof verbs / sizeof verbs[0] };
 
-static void print_help(FILE *out) {
-    fprintf(out, "Skymend projects the recovery of the ozone layer from a schedule of ozone-depleting gases.\n\n"
-                 "usage: skymend VERB [FILE] [options]\n\n");
-    for (int v = 0; v < VERBS; v++) fprintf(out, "  %-10s %s\n", verbs[v].name, verbs[v].help);
-    fprintf(out, "\n  skymend VERB --help   options of a verb\n"
-                 "  skymend --version\n\n"
-                 "Exit codes: 0 done, 2 the request or an input is wrong, 3 the numerics failed,\n"
-                 "4 the output could not be written, 130 interrupted (what is finished is kept).\n\n"
-                 "A single near-global column has no polar winter, no ozone hole and no change of circulation.\n"
-                 "For decisions on health or regulation defer to the competent authority.\n");
+static void print_help(FILE *out)
+{
+    fprintf(out,
+            "Skymend projects the recovery of the ozone layer from a schedule of ozone-depleting gases.\n\n"
+            "usage: skymend VERB [FILE] [options]\n\n");
+    for (int v = 0; v < VERBS; v++)
+        fprintf(out, "  %-10s %s\n", verbs[v].name, verbs[v].help);
+    fprintf(out,
+            "\n  skymend VERB --help   options of a verb\n"
+            "  skymend --version\n\n"
+            "Exit codes: 0 done, 2 the request or an input is wrong, 3 the numerics failed,\n"
+            "4 the output could not be written, 130 interrupted (what is finished is kept).\n\n"
+            "A single near-global column has no polar winter, no ozone hole, and no change of circulation\n"
+            "or temperature. For decisions on health or regulation defer to the competent authority.\n");
 }
 
-static int dispatch(int argc, char **argv) {
+static int dispatch(int argc, char **argv)
+{
     if (argc < 2) {
         fprintf(stderr, "skymend: no verb given; see skymend --help\n");
         return FAULT_INPUT;
@@ -47,7 +52,8 @@ static int dispatch(int argc, char **argv) {
     }
     const char *names[VERBS];
     for (int v = 0; v < VERBS; v++) {
-        if (!strcmp(argv[1], verbs[v].name)) return verbs[v].run(argc - 1, argv + 1);
+        if (!strcmp(argv[1], verbs[v].name))
+            return verbs[v].run(argc - 1, argv + 1);
         names[v] = verbs[v].name;
     }
     const char *near = fault_nearest(argv[1], names, VERBS);
@@ -58,10 +64,12 @@ static int dispatch(int argc, char **argv) {
     return FAULT_INPUT;
 }
 
-int main(int argc, char **argv) {
+int main(int argc, char **argv)
+{
     int code = dispatch(argc, argv);
     if ((fflush(stdout) || ferror(stdout)) && !code) { /* a table cut short by a full disk is no success */
-        fprintf(stderr, "skymend: standard output could not be written; free some space or redirect it elsewhere\n");
+        fprintf(stderr,
+                "skymend: standard output could not be written; free some space or redirect it elsewhere\n");
         code = FAULT_OUTPUT;
     }
     return code;

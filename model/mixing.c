@@ -14,57 +14,69 @@ typedef struct {
 struct Mixing {
     const Model *model;
     int threads;
-    double **work;       /* [threads] */
-    double *received;    /* [solved] */
+    double **work;    /* [threads] */
+    double *received; /* [solved] */
     int grounds;
-    Ground *ground;      /* [grounds] */
-    int *ground_of;      /* [solved], -1: not carried */
+    Ground *ground;             /* [grounds] */
+    int *ground_of;             /* [solved], -1: not carried */
     double ready[MIXING_SLOTS]; /* step in s the factors are for, 0: none */
-    Diffusion *above;    /* the column from held_top up; NULL when nothing is held */
-    int held_top;        /* highest layer that is prescribed */
+    Diffusion *above;           /* the column from held_top up; NULL when nothing is held */
+    int held_top;               /* highest layer that is prescribed */
 };
 
-static int is_held(const Model *model, int solved) {
+static int is_held(const Model *model, int solved)
+{
     for (int h = 0; h < model->held; h++)
-        if (model->held_species[h] == solved) return 1;
+        if (model->held_species[h] == solved)
+            return 1;
     return 0;
 }
 
-static void list_grounds(Mixing *mixing) {
+static void list_grounds(Mixing *mixing)
+{
     const Model *model = mixing->model;
     for (int s = 0; s < model->mechanism->solved; s++) {
         mixing->ground_of[s] = -1;
-        if (!model->mechanism->item[model->mechanism->solved_item[s]].transport) continue;
+        if (!model->mechanism->item[model->mechanism->solved_item[s]].transport)
+            continue;
         Ground ground = {.kind = GROUND_CLOSED, .held = is_held(model, s)};
-        if (ground.held || model->surface_kind[s] == SURFACE_SCHEDULE || model->surface_kind[s] == SURFACE_FIXED)
+        if (ground.held || model->surface_kind[s] == SURFACE_SCHEDULE ||
+            model->surface_kind[s] == SURFACE_FIXED)
             ground.kind = GROUND_FIXED;
         else if (model->surface_kind[s] == SURFACE_DEPOSITION) {
             ground.kind = GROUND_DEPOSITION;
             ground.velocity = model->surface_value[s];
         }
         int g = 0;
-        while (g < mixing->grounds && (mixing->ground[g].kind != ground.kind || mixing->ground[g].held != ground.held ||
-                                       mixing->ground[g].velocity != ground.velocity))
+        while (g < mixing->grounds &&
+               (mixing->ground[g].kind != ground.kind || mixing->ground[g].held != ground.held ||
+                mixing->ground[g].velocity != ground.velocity))
             g++;
-        if (g == mixing->grounds) mixing->ground[mixing->grounds++] = ground;
+        if (g == mixing->grounds)
+            mixing->ground[mixing->grounds++] = ground;
         mixing->ground_of[s] = g;
     }
 }
 
-static int make_above(Mixing *mixing, Fault *fault) {
+static int make_above(Mixing *mixing, Fault *fault)
+{
     const Model *model = mixing->model;
-    if (!model->held) return 0;
+    if (!model->held)
+        return 0;
     int top = 0;
-    while (top + 1 < model->grid.layers && model->held_free[top + 1] == 0.0) top++;
+    while (top + 1 < model->grid.layers && model->held_free[top + 1] == 0.0)
+        top++;
     mixing->held_top = top;
     return diffusion_make_above(&mixing->above, &model->grid, &model->air, model->eddy, top, fault);
 }
 
-int mixing_make(Mixing **made, const Model *model, int threads, Fault *fault) {
+int mixing_make(Mixing **made, const Model *model, int threads, Fault *fault)
+{
     *made = NULL;
     size_t solved = (size_t)model->mechanism->solved;
     Mixing *mixing = calloc(1, sizeof *mixing);
-    if (!mixing) return fault_memory(fault, "mixing");
+    if (!mixing)
+        return fault_memory(fault, "mixing");
     mixing->model = model;
     mixing->threads = threads;
     mixing->work = calloc((size_t)threads, sizeof *mixing->work);
@@ -72,9 +84,12 @@ int mixing_make(Mixing **made, const Model *model, int threads, Fault *fault) {
     mixing->ground = calloc(solved, sizeof *mixing->ground);
     mixing->ground_of = calloc(solved, sizeof(int));
     int code = 0;
-    if (!mixing->work || !mixing->received || !mixing->ground || !mixing->ground_of) code = fault_memory(fault, "mixing");
-    if (!code) list_grounds(mixing);
-    if (!code) code = make_above(mixing, fault);
+    if (!mixing->work || !mixing->received || !mixing->ground || !mixing->ground_of)
+        code = fault_memory(fault, "mixing");
+    if (!code)
+        list_grounds(mixing);
+    if (!code)
+        code = make_above(mixing, fault);
     if (code) {
         mixing_free(mixing);
         return code;
@@ -83,11 +98,15 @@ int mixing_make(Mixing **made, const Model *model, int threads, Fault *fault) {
     return 0;
 }
 
-void mixing_free(Mixing *mixing) {
-    if (!mixing) return;
-    for (int t = 0; mixing->work && t < mixing->threads; t++) free(mixing->work[t]);
+void mixing_free(Mixing *mixing)
+{
+    if (!mixing)
+        return;
+    for (int t = 0; mixing->work && t < mixing->threads; t++)
+        free(mixing->work[t]);
     for (int g = 0; g < mixing->grounds; g++)
-        for (int i = 0; i < MIXING_SLOTS; i++) diffusion_factor_free(mixing->ground[g].factor[i]);
+        for (int i = 0; i < MIXING_SLOTS; i++)
+            diffusion_factor_free(mixing->ground[g].factor[i]);
     diffusion_free(mixing->above);
     free(mixing->work);
     free(mixing->received);
@@ -96,41 +115,51 @@ void mixing_free(Mixing *mixing) {
     free(mixing);
 }
 
-int mixing_prepare(Mixing *mixing, int slot, double step, Fault *fault) {
-    if (mixing->ready[slot] == step) return 0;
+int mixing_prepare(Mixing *mixing, int slot, double step, Fault *fault)
+{
+    if (mixing->ready[slot] == step)
+        return 0;
     mixing->ready[slot] = 0.0;
     size_t most = 0;
     for (int g = 0; g < mixing->grounds; g++) {
         Ground *ground = &mixing->ground[g];
         diffusion_factor_free(ground->factor[slot]);
         ground->factor[slot] = NULL;
-        int code = diffusion_factor(&ground->factor[slot], ground->held ? mixing->above : mixing->model->diffusion,
-                                    ground->kind, ground->velocity, step, fault);
-        if (code) return code;
+        int code =
+            diffusion_factor(&ground->factor[slot], ground->held ? mixing->above : mixing->model->diffusion,
+                             ground->kind, ground->velocity, step, fault);
+        if (code)
+            return code;
         size_t size = diffusion_work(ground->factor[slot], 1);
-        if (size > most) most = size;
+        if (size > most)
+            most = size;
     }
     for (int t = 0; t < mixing->threads; t++) {
-        if (mixing->work[t]) continue;
+        if (mixing->work[t])
+            continue;
         mixing->work[t] = malloc(most * sizeof(double));
-        if (!mixing->work[t]) return fault_memory(fault, "mixing");
+        if (!mixing->work[t])
+            return fault_memory(fault, "mixing");
     }
     mixing->ready[slot] = step;
     return 0;
 }
 
-void mixing_step(Mixing *mixing, int slot, Column *column) {
+void mixing_step(Mixing *mixing, int slot, Column *column)
+{
     const Model *model = mixing->model;
     int solved = model->mechanism->solved, padded = model->grid.padded, layers = model->grid.layers;
 #pragma omp parallel for schedule(static) num_threads(mixing->threads)
     for (int s = 0; s < solved; s++) {
         mixing->received[s] = 0.0;
-        if (mixing->ground_of[s] < 0) continue;
+        if (mixing->ground_of[s] < 0)
+            continue;
         const Ground *ground = &mixing->ground[mixing->ground_of[s]];
         double *x = column->x + FIELD(padded, s, 0);
-        diffusion_step(ground->factor[slot], x + (ground->held ? mixing->held_top : 0), 1, &mixing->received[s],
-                       mixing->work[omp_get_thread_num()]);
-        for (int l = layers; l < padded; l++) x[l] = x[layers - 1];
+        diffusion_step(ground->factor[slot], x + (ground->held ? mixing->held_top : 0), 1,
+                       &mixing->received[s], mixing->work[omp_get_thread_num()]);
+        for (int l = layers; l < padded; l++)
+            x[l] = x[layers - 1];
     }
     for (int s = 0; s < solved; s++) {
         int held = mixing->ground_of[s] >= 0 && mixing->ground[mixing->ground_of[s]].held;
@@ -138,7 +167,8 @@ void mixing_step(Mixing *mixing, int slot, Column *column) {
     }
 }
 
-void mixing_set_ground(const Model *model, Column *column, double time) {
+void mixing_set_ground(const Model *model, Column *column, double time)
+{
     int padded = model->grid.padded;
     double cell = model->air.number_density[0] * model->grid.depth[0];
     for (int s = 0; s < model->mechanism->solved; s++) {

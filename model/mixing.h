@@ -1,8 +1,9 @@
-/* mixing: eddy diffusion of a whole column, species by species, with what crosses the ground and the tropopause booked.
+/* mixing: eddy diffusion of a whole column, species by species, with what crosses the ground and the
+ * tropopause booked.
  *
- * Species that share a ground condition share a factorisation. Held species (water, OH, NO2) are carried from their highest
- * prescribed layer up: water falls a thousandfold within the troposphere, and letting it diffuse there between two
- * moments of being set right would wet the stratosphere.
+ * Species that share a ground condition share a factorisation. Held species (water, OH, NO2) are carried from
+ * their highest prescribed layer up: water falls a thousandfold within the troposphere, and letting it
+ * diffuse there between two moments of being set right would wet the stratosphere.
  */
 #ifndef SKYMEND_MIXING_H
 #define SKYMEND_MIXING_H
@@ -22,7 +23,8 @@ int mixing_prepare(Mixing *mixing, int slot, double step, Fault *fault);
 /* One step of the length slot is ready for. Padding lanes repeat the top layer afterwards. */
 void mixing_step(Mixing *mixing, int slot, Column *column);
 
-/* Give the lowest layer its scheduled (at decimal year time) or fixed values; what that adds has come through the ground. */
+/* Give the lowest layer its scheduled (at decimal year time) or fixed values; what that adds has come through
+ * the ground. */
 void mixing_set_ground(const Model *model, Column *column, double time);
 
 #endif

@@ -8,12 +8,14 @@
 #include "../input/constants.h"
 
 /* Who carries each element. Not O, of which air is an endless store, and F, which ends in an inert sum. */
-static void list_carriers(PackWork *work, const Model *model) {
+static void list_carriers(PackWork *work, const Model *model)
+{
     const Mechanism *mechanism = model->mechanism;
     const Kernel *kernel = model->kernel;
     int rows = kernel->species + kernel->tallies;
     for (int e = 0; e < mechanism->elements; e++) {
-        if (!strcmp(mechanism->element[e], "O") || !strcmp(mechanism->element[e], "F")) continue;
+        if (!strcmp(mechanism->element[e], "O") || !strcmp(mechanism->element[e], "F"))
+            continue;
         for (int row = 0; row < rows; row++) {
             double atoms;
             if (row < mechanism->solved)
@@ -21,8 +23,10 @@ static void list_carriers(PackWork *work, const Model *model) {
             else if (row < kernel->species)
                 atoms = kernel->counter_element[row - mechanism->solved] == e;
             else
-                atoms = mechanism_atoms(mechanism, kernel->reactant[3 * kernel->tally_reaction[row - kernel->species]], e);
-            if (atoms == 0.0) continue;
+                atoms = mechanism_atoms(
+                    mechanism, kernel->reactant[3 * kernel->tally_reaction[row - kernel->species]], e);
+            if (atoms == 0.0)
+                continue;
             int at = e * rows + work->carriers[e]++;
             work->carrier[at] = row;
             work->carried[at] = atoms;
@@ -30,28 +34,32 @@ static void list_carriers(PackWork *work, const Model *model) {
     }
 }
 
-int pack_make(PackWork **made, const Model *model, Fault *fault) {
+int pack_make(PackWork **made, const Model *model, Fault *fault)
+{
     *made = NULL;
     PackWork *work = calloc(1, sizeof *work);
-    if (!work) return fault_memory(fault, "chemistry of a pack");
+    if (!work)
+        return fault_memory(fault, "chemistry of a pack");
     size_t species = (size_t)model->kernel->species, reactions = (size_t)model->kernel->reactions;
     size_t tallies = (size_t)model->kernel->tallies;
     struct {
         double **array;
         size_t rows;
-    } part[] = {{&work->y, species},         {&work->k, reactions},     {&work->slope, reactions},
-                {&work->sum_y, species},     {&work->sum_w, reactions}, {&work->tally, tallies},
-                {&work->held_free, species}, {&work->held_value, species},
-                {&work->atoms, MECHANISM_ELEMENTS}};
+    } part[] = {
+        {&work->y, species},         {&work->k, reactions},        {&work->slope, reactions},
+        {&work->sum_y, species},     {&work->sum_w, reactions},    {&work->tally, tallies},
+        {&work->held_free, species}, {&work->held_value, species}, {&work->atoms, MECHANISM_ELEMENTS}};
     size_t rows = 0, parts = sizeof part / sizeof part[0];
-    for (size_t i = 0; i < parts; i++) rows += part[i].rows;
+    for (size_t i = 0; i < parts; i++)
+        rows += part[i].rows;
     work->block = aligned_alloc(PACK * sizeof(double), rows * PACK * sizeof(double));
     work->held_species = calloc(species, sizeof(int));
     work->carriers = calloc(MECHANISM_ELEMENTS, sizeof(int));
     work->carrier = calloc(MECHANISM_ELEMENTS * (species + tallies), sizeof(int));
     work->carried = calloc(MECHANISM_ELEMENTS * (species + tallies), sizeof(double));
-    int code = work->block && work->held_species && work->carriers && work->carrier && work->carried ? solver_work_make(&work->solver, model->kernel, fault)
-                                                 : fault_memory(fault, "chemistry of a pack");
+    int code = work->block && work->held_species && work->carriers && work->carrier && work->carried
+                   ? solver_work_make(&work->solver, model->kernel, fault)
+                   : fault_memory(fault, "chemistry of a pack");
     if (code) {
         pack_free(work);
         return code;
@@ -67,8 +75,10 @@ int pack_make(PackWork **made, const Model *model, Fault *fault) {
     return 0;
 }
 
-void pack_free(PackWork *work) {
-    if (!work) return;
+void pack_free(PackWork *work)
+{
+    if (!work)
+        return;
     solver_work_free(work->solver);
     free(work->held_species);
     free(work->carriers);
@@ -79,7 +89,8 @@ void pack_free(PackWork *work) {
 }
 
 /* Atoms cm-3 of an element in each lane: species, counters and tallies. */
-static void count_atoms(const PackWork *work, const Model *model, int element, double *atoms) {
+static void count_atoms(const PackWork *work, const Model *model, int element, double *atoms)
+{
     int rows = model->kernel->species + model->kernel->tallies;
     const int *carrier = work->carrier + element * rows;
     const double *carried = work->carried + element * rows;
@@ -88,23 +99,29 @@ static void count_atoms(const PackWork *work, const Model *model, int element, d
         int row = carrier[c];
         const double *y = row < model->kernel->species ? work->y + row * PACK
                                                        : work->tally + (row - model->kernel->species) * PACK;
-        for (int l = 0; l < PACK; l++) atoms[l] += carried[c] * y[l];
+        for (int l = 0; l < PACK; l++)
+            atoms[l] += carried[c] * y[l];
     }
 }
 
-static void restore_atoms(PackWork *work, const Model *model) {
+static void restore_atoms(PackWork *work, const Model *model)
+{
     int rows = model->kernel->species + model->kernel->tallies;
     for (int e = 0; e < model->mechanism->elements; e++) {
-        if (!work->carriers[e]) continue;
+        if (!work->carriers[e])
+            continue;
         double now[PACK];
         count_atoms(work, model, e, now);
         for (int l = 0; l < PACK; l++) {
             double before = work->atoms[e * PACK + l], defect = before - now[l], most = 0.0;
             int best = -1;
-            if (defect == 0.0 || !(fabs(defect) <= PACK_ROUND_OFF * before)) continue;
-            for (int c = 0; c < work->carriers[e] && work->carrier[e * rows + c] < model->mechanism->solved; c++) {
+            if (defect == 0.0 || !(fabs(defect) <= PACK_ROUND_OFF * before))
+                continue;
+            for (int c = 0; c < work->carriers[e] && work->carrier[e * rows + c] < model->mechanism->solved;
+                 c++) {
                 double here = work->carried[e * rows + c] * work->y[work->carrier[e * rows + c] * PACK + l];
-                if (here <= most) continue;
+                if (here <= most)
+                    continue;
                 most = here;
                 best = c;
             }
@@ -114,19 +131,24 @@ static void restore_atoms(PackWork *work, const Model *model) {
     }
 }
 
-static int kept_by_ground(const Model *model, int s) {
-    if (model->surface_kind[s] != SURFACE_SCHEDULE && model->surface_kind[s] != SURFACE_FIXED) return 0;
+static int kept_by_ground(const Model *model, int s)
+{
+    if (model->surface_kind[s] != SURFACE_SCHEDULE && model->surface_kind[s] != SURFACE_FIXED)
+        return 0;
     for (int h = 0; h < model->held; h++)
-        if (model->held_species[h] == s) return 0; /* already prescribed up to the tropopause */
+        if (model->held_species[h] == s)
+            return 0; /* already prescribed up to the tropopause */
     return 1;
 }
 
-void pack_load(PackWork *work, const Model *model, int first, const double *x) {
+void pack_load(PackWork *work, const Model *model, int first, const double *x)
+{
     int padded = model->grid.padded, solved = model->mechanism->solved;
     const double *air = model->air.number_density + first;
     for (int s = 0; s < solved; s++) {
         const double *row = x + FIELD(padded, s, first);
-        for (int l = 0; l < PACK; l++) work->y[s * PACK + l] = row[l] * air[l];
+        for (int l = 0; l < PACK; l++)
+            work->y[s * PACK + l] = row[l] * air[l];
     }
     memset(work->y + solved * PACK, 0, (size_t)(model->kernel->species - solved) * PACK * sizeof(double));
     memset(work->tally, 0, (size_t)model->kernel->tallies * PACK * sizeof(double));
@@ -140,11 +162,14 @@ void pack_load(PackWork *work, const Model *model, int first, const double *x) {
             work->held_free[row + l] = free_here[l];
             work->held_value[row + l] = fraction[l] * air[l];
         }
-        if (any) work->held_species[work->held++] = model->held_species[h];
+        if (any)
+            work->held_species[work->held++] = model->held_species[h];
     }
     for (int s = 0; first == 0 && s < solved; s++) {
-        if (!kept_by_ground(model, s)) continue;
-        double *free_here = work->held_free + work->held * PACK, *value = work->held_value + work->held * PACK;
+        if (!kept_by_ground(model, s))
+            continue;
+        double *free_here = work->held_free + work->held * PACK,
+               *value = work->held_value + work->held * PACK;
         for (int l = 0; l < PACK; l++) {
             free_here[l] = l > 0;
             value[l] = l > 0 ? 0.0 : work->y[s * PACK];
@@ -152,11 +177,13 @@ void pack_load(PackWork *work, const Model *model, int first, const double *x) {
         work->held_species[work->held++] = s;
     }
     for (int e = 0; e < model->mechanism->elements; e++)
-        if (work->carriers[e]) count_atoms(work, model, e, work->atoms + e * PACK);
+        if (work->carriers[e])
+            count_atoms(work, model, e, work->atoms + e * PACK);
 }
 
-void pack_rates(PackWork *work, const Model *model, int first, const double *coefficient, const double *mean_light,
-                const double *factor) {
+void pack_rates(PackWork *work, const Model *model, int first, const double *coefficient,
+                const double *mean_light, const double *factor)
+{
     const Mechanism *mechanism = model->mechanism;
     int padded = model->grid.padded;
     for (int r = 0; r < mechanism->reactions; r++) {
@@ -166,24 +193,30 @@ void pack_rates(PackWork *work, const Model *model, int first, const double *coe
         double *k = work->k + r * PACK;
         if (factor) {
             const double *f = factor + FIELD(padded, r, first);
-            for (int l = 0; l < PACK; l++) k[l] = row[l] * f[l];
+            for (int l = 0; l < PACK; l++)
+                k[l] = row[l] * f[l];
         } else {
-            for (int l = 0; l < PACK; l++) k[l] = row[l];
+            for (int l = 0; l < PACK; l++)
+                k[l] = row[l];
         }
     }
 }
 
-void pack_store(PackWork *work, const Model *model, int first, double *x, PackLedger *ledger) {
+void pack_store(PackWork *work, const Model *model, int first, double *x, PackLedger *ledger)
+{
     int padded = model->grid.padded, solved = model->mechanism->solved;
     int lanes = model->grid.layers - first < PACK ? model->grid.layers - first : PACK;
     const double *air = model->air.number_density + first, *depth = model->grid.depth + first;
     restore_atoms(work, model);
     for (int s = 0; s < solved; s++) {
         double *row = x + FIELD(padded, s, first), kept = row[0];
-        for (int l = 0; l < PACK; l++) row[l] = work->y[s * PACK + l] / air[l];
-        if (first) continue;
+        for (int l = 0; l < PACK; l++)
+            row[l] = work->y[s * PACK + l] / air[l];
+        if (first)
+            continue;
         ledger->received[s] = 0.0;
-        if (!kept_by_ground(model, s)) continue;
+        if (!kept_by_ground(model, s))
+            continue;
         ledger->received[s] = (kept * air[0] - work->y[s * PACK]) * depth[0];
         row[0] = kept;
     }
@@ -191,7 +224,8 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
         ledger->exchanged[h] = 0.0;
         for (int l = 0; l < PACK; l++) {
             size_t at = FIELD(padded, h, first + l);
-            if (model->held_free[at] != 0.0) continue;
+            if (model->held_free[at] != 0.0)
+                continue;
             int s = model->held_species[h];
             if (l < lanes) {
                 double held = model->held_fraction[at] * air[l];
@@ -202,26 +236,32 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
     }
     for (int t = 0; t < model->kernel->tallies; t++) {
         ledger->washed[t] = 0.0;
-        for (int l = 0; l < lanes; l++) ledger->washed[t] += work->tally[t * PACK + l] * depth[l];
+        for (int l = 0; l < lanes; l++)
+            ledger->washed[t] += work->tally[t * PACK + l] * depth[l];
     }
     for (int c = 0; c < model->kernel->counters; c++) {
         ledger->escaped[c] = 0.0;
-        for (int l = 0; l < lanes; l++) ledger->escaped[c] += work->y[(solved + c) * PACK + l] * depth[l];
+        for (int l = 0; l < lanes; l++)
+            ledger->escaped[c] += work->y[(solved + c) * PACK + l] * depth[l];
     }
 }
 
-int pack_fault(const Model *model, int first, int result, int where, double time, Fault *fault) {
-    static const char *const why[] = {"", "needed too many steps", "shrank its step to nothing", "met a value that is no number"};
+int pack_fault(const Model *model, int first, int result, int where, double time, Fault *fault)
+{
+    static const char *const why[] = {"", "needed too many steps", "shrank its step to nothing",
+                                      "met a value that is no number"};
     int species = model->kernel->species, lane = where / species, s = where % species;
     int layer = first + lane < model->grid.layers ? first + lane : model->grid.layers - 1;
     const char *name = s < model->mechanism->solved ? mechanism_name(model->mechanism, s) : "an atom counter";
     return fault_set(fault, FAULT_NUMERICS,
-                     "year %.2f, altitude %.2f km, species %s: the chemistry solver %s; check the mechanism's rates or loosen "
+                     "year %.2f, altitude %.2f km, species %s: the chemistry solver %s; check the "
+                     "mechanism's rates or loosen "
                      "numerics.relative_tolerance",
                      time, 1e-5 * model->grid.middle[layer], name, why[result]);
 }
 
-PackProblem pack_problem(const PackWork *work, int sums, double step) {
+PackProblem pack_problem(const PackWork *work, int sums, double step)
+{
     return (PackProblem){
         .y = work->y,
         .k = work->k,
@@ -237,7 +277,8 @@ PackProblem pack_problem(const PackWork *work, int sums, double step) {
 }
 
 /* Photolysis rows of k at one knot. */
-static void lit_rates(PackWork *work, const Light *light, int first, int knot) {
+static void lit_rates(PackWork *work, const Light *light, int first, int knot)
+{
     int padded = light->model->grid.padded, start = light->model->mechanism->photolysis_first;
     for (int j = 0; j < light->reactions; j++) {
         const double *row = light->knot + FIELD(padded, knot * light->reactions + j, first);
@@ -246,17 +287,20 @@ static void lit_rates(PackWork *work, const Light *light, int first, int knot) {
 }
 
 /* Slopes from k at this knot to the next knot. */
-static void lit_slopes(PackWork *work, const Light *light, int first, int next_knot, double length) {
+static void lit_slopes(PackWork *work, const Light *light, int first, int next_knot, double length)
+{
     int padded = light->model->grid.padded, start = light->model->mechanism->photolysis_first;
     for (int j = 0; j < light->reactions; j++) {
         const double *row = light->knot + FIELD(padded, next_knot * light->reactions + j, first);
         double *slope = work->slope + (start + j) * PACK;
         const double *k = work->k + (start + j) * PACK;
-        for (int l = 0; l < PACK; l++) slope[l] = (row[l] - k[l]) / length;
+        for (int l = 0; l < PACK; l++)
+            slope[l] = (row[l] - k[l]) / length;
     }
 }
 
-static void dark_rates(PackWork *work, const Light *light) {
+static void dark_rates(PackWork *work, const Light *light)
+{
     memset(work->k + light->model->mechanism->photolysis_first * PACK, 0,
            (size_t)light->reactions * PACK * sizeof(double));
 }
@@ -265,38 +309,55 @@ enum { NOON = SUN_KNOTS - 1 };
 _Static_assert(NOON % PACK_MORNING_PARTS == 0, "the parts of the morning must end at knots");
 
 /* The part of the morning half that this one is or mirrors. */
-static int morning_part(int part) { return part < PACK_DAY_PARTS / 2 ? part : PACK_DAY_PARTS - 1 - part; }
+static int morning_part(int part)
+{
+    return part < PACK_DAY_PARTS / 2 ? part : PACK_DAY_PARTS - 1 - part;
+}
 
 /* Knot at which a lit part of the morning begins; the next part's knot is its end. */
-static int part_knot(int part) { return (part - PACK_NIGHT_PARTS) * (NOON / PACK_MORNING_PARTS); }
+static int part_knot(int part)
+{
+    return (part - PACK_NIGHT_PARTS) * (NOON / PACK_MORNING_PARTS);
+}
 
-double pack_part_length(const Light *light, int part) {
+double pack_part_length(const Light *light, int part)
+{
     const Sun *sun = &light->sun;
     part = morning_part(part);
-    if (part < PACK_NIGHT_PARTS) return (sun->nodes ? sun->time[0] : 0.5 * DAY_SECONDS) / PACK_NIGHT_PARTS;
+    if (part < PACK_NIGHT_PARTS)
+        return (sun->nodes ? sun->time[0] : 0.5 * DAY_SECONDS) / PACK_NIGHT_PARTS;
     return sun->nodes ? sun->time[part_knot(part + 1)] - sun->time[part_knot(part)] : 0.0;
 }
 
-int pack_part_lit(int part) { return morning_part(part) >= PACK_NIGHT_PARTS; }
+int pack_part_lit(int part)
+{
+    return morning_part(part) >= PACK_NIGHT_PARTS;
+}
 
-double pack_lit_time(const Light *light) {
+double pack_lit_time(const Light *light)
+{
     double time = 0.0;
     for (int part = 0; part < PACK_DAY_PARTS; part++)
-        if (pack_part_lit(part)) time += pack_part_length(light, part);
+        if (pack_part_lit(part))
+            time += pack_part_length(light, part);
     return time;
 }
 
-int pack_part(PackWork *work, const Light *light, int first, int part, const Tolerance *tolerance, double *step,
-              SolverCounts *counts, int *where) {
+int pack_part(PackWork *work, const Light *light, int first, int part, const Tolerance *tolerance,
+              double *step, SolverCounts *counts, int *where)
+{
     const Kernel *kernel = light->model->kernel;
     const Sun *sun = &light->sun;
     double length = pack_part_length(light, part);
-    if (!(length > 0.0)) return SOLVER_DONE;
+    if (!(length > 0.0))
+        return SOLVER_DONE;
     PackProblem problem = pack_problem(work, 1, *step);
     int code = SOLVER_DONE;
+    double first_step = 0.0;
     if (!pack_part_lit(part)) {
         dark_rates(work, light);
         code = solver_advance(kernel, work->solver, &problem, length, tolerance, counts, where);
+        first_step = problem.first;
     } else {
         int afternoon = part >= PACK_DAY_PARTS / 2, way = afternoon ? -1 : 1, like = morning_part(part);
         int here = part_knot(like + afternoon), end = part_knot(like + !afternoon);
@@ -308,8 +369,10 @@ int pack_part(PackWork *work, const Light *light, int first, int part, const Tol
             lit_rates(work, light, first, here);
             lit_slopes(work, light, first, here + way, interval);
             code = solver_advance(kernel, work->solver, &problem, interval, tolerance, counts, where);
+            if (first_step == 0.0)
+                first_step = problem.first;
         }
     }
-    *step = problem.step;
+    *step = first_step; /* tomorrow's part starts like today's, not like today's ended */
     return code;
 }

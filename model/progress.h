@@ -1,4 +1,5 @@
-/* progress: how far a long run is, on standard error: a bar with time left on a terminal, a line every ten seconds in a log. */
+/* progress: how far a long run is, on standard error: a bar with time left on a terminal, a line every ten
+ * seconds in a log. */
 #ifndef SKYMEND_PROGRESS_H
 #define SKYMEND_PROGRESS_H
 

@@ -16,17 +16,19 @@ typedef struct {
 
 /* What the outside sees of a run. Any of the functions may be NULL. */
 typedef struct {
-    int (*record)(void *context, const Record *record, Fault *fault); /* every output interval; non-zero stops the run */
-    void (*progress)(void *context, const Progress *progress);        /* every outer step */
+    int (*record)(void *context, const Record *record,
+                  Fault *fault); /* every output interval; non-zero stops the run */
+    void (*progress)(void *context, const Progress *progress); /* every outer step */
     void *context;
     volatile sig_atomic_t *stop; /* checked every outer step; non-zero: FAULT_INTERRUPTED */
 } Watcher;
 
-/* Spin up at the first year's values, then run first_year..last_year of the case, both included. The ledger of column is opened
- * after the spin-up. */
-int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher, Fault *fault);
+/* Spin up at the first year's values, then run first_year..last_year of the case, both included. The ledger
+ * of column is opened after the spin-up. */
+int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher,
+                   Fault *fault);
 /* Only the spin-up (years of it), schedule and clock held. share_of_all scales the progress. */
-int projection_spin_up(const Model *model, Stepper *stepper, Column *column, double years, double share_of_all,
-                       const Watcher *watcher, Fault *fault);
+int projection_spin_up(const Model *model, Stepper *stepper, Column *column, double years,
+                       double share_of_all, const Watcher *watcher, Fault *fault);
 
 #endif

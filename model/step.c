@@ -21,27 +21,30 @@ typedef struct {
 struct Stepper {
     const Model *model;
     int threads, packs;
-    Mixing *mixing;       /* slot 0: the step of a run of means; the others: parts of the day with their mirror images */
+    Mixing *mixing; /* slot 0: the step of a run of means; the others: parts of the day with their mirror
+                       images */
     Light *light;
     Day *day;
     Column *sample;       /* the column of the explicit days that give the factors; its ledger is nobody's */
     PackWork **work;      /* [threads] */
     PackOutcome *outcome; /* [packs] */
-    int *order;           /* [2 + PACK_DAY_PARTS][packs] packs by the work they were last time, most first: threads end together */
-    double *ledgers;      /* [packs][held + solved + tallies], behind outcome[].ledger */
-    double *half_step;    /* [2][packs] solver step to try first: before the transport, after it */
-    double *part_step;    /* [PACK_DAY_PARTS][packs] the same for the parts of the day */
-    double *coefficient;  /* [reactions][padded] */
-    double *density;      /* [solved][padded] work */
-    double *mean;         /* [solved][padded] */
-    double *daylight;     /* [solved][padded] explicit days: mean of the last day while the sun was up */
+    int *order; /* [2 + PACK_DAY_PARTS][packs] packs by the work they were last time, most first: threads end
+                   together */
+    double *ledgers;     /* [packs][held + solved + tallies], behind outcome[].ledger */
+    double *half_step;   /* [2][packs] solver step to try first: before the transport, after it */
+    double *part_step;   /* [PACK_DAY_PARTS][packs] the same for the parts of the day */
+    double *coefficient; /* [reactions][padded] */
+    double *density;     /* [solved][padded] work */
+    double *mean;        /* [solved][padded] */
+    double *daylight;    /* [solved][padded] explicit days: mean of the last day while the sun was up */
     int daylight_known;
     StepClock clock;
 };
 
 /* ---- making ---- */
 
-static int allocate(Stepper *stepper, Fault *fault) {
+static int allocate(Stepper *stepper, Fault *fault)
+{
     const Model *model = stepper->model;
     size_t padded = (size_t)model->grid.padded, solved = (size_t)model->mechanism->solved;
     size_t packs = (size_t)stepper->packs, threads = (size_t)stepper->threads;
@@ -56,48 +59,60 @@ static int allocate(Stepper *stepper, Fault *fault) {
     stepper->density = calloc(solved * padded, sizeof(double));
     stepper->mean = calloc(solved * padded, sizeof(double));
     stepper->daylight = calloc(solved * padded, sizeof(double));
-    if (!stepper->work || !stepper->outcome || !stepper->order || !stepper->ledgers || !stepper->half_step || !stepper->part_step ||
-        !stepper->coefficient || !stepper->density || !stepper->mean || !stepper->daylight)
+    if (!stepper->work || !stepper->outcome || !stepper->order || !stepper->ledgers || !stepper->half_step ||
+        !stepper->part_step || !stepper->coefficient || !stepper->density || !stepper->mean ||
+        !stepper->daylight)
         return fault_memory(fault, "stepper");
-    for (size_t i = 0; i < (2 + PACK_DAY_PARTS) * packs; i++) stepper->order[i] = (int)(i % packs);
+    for (size_t i = 0; i < (2 + PACK_DAY_PARTS) * packs; i++)
+        stepper->order[i] = (int)(i % packs);
     for (size_t p = 0; p < packs; p++) {
         double *at = stepper->ledgers + p * ledger;
-        stepper->outcome[p].ledger =
-            (PackLedger){.exchanged = at, .received = at + model->held, .washed = at + (size_t)model->held + solved};
+        stepper->outcome[p].ledger = (PackLedger){
+            .exchanged = at, .received = at + model->held, .washed = at + (size_t)model->held + solved};
     }
     int code = 0;
-    for (size_t t = 0; !code && t < threads; t++) code = pack_make(&stepper->work[t], model, fault);
+    for (size_t t = 0; !code && t < threads; t++)
+        code = pack_make(&stepper->work[t], model, fault);
     return code;
 }
 
-int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault) {
+int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault)
+{
     *made = NULL;
     Stepper *stepper = calloc(1, sizeof *stepper);
-    if (!stepper) return fault_memory(fault, "stepper");
+    if (!stepper)
+        return fault_memory(fault, "stepper");
     stepper->model = model;
     stepper->threads = threads < 1 ? omp_get_max_threads() : threads;
     stepper->packs = model->grid.padded / PACK;
     int code = allocate(stepper, fault);
-    if (!code) code = mixing_make(&stepper->mixing, model, stepper->threads, fault);
-    if (!code) code = light_make(&stepper->light, model, 1, fault);
-    if (!code) code = day_make(&stepper->day, model, fault);
-    if (!code) code = column_make(&stepper->sample, model, fault);
+    if (!code)
+        code = mixing_make(&stepper->mixing, model, stepper->threads, fault);
+    if (!code)
+        code = light_make(&stepper->light, model, 1, fault);
+    if (!code)
+        code = day_make(&stepper->day, model, fault);
+    if (!code)
+        code = column_make(&stepper->sample, model, fault);
     if (code) {
         stepper_free(stepper);
         return code;
     }
     const Air *air = &model->air;
     /* water enters HO2 + HO2 only and is renewed at every step */
-    rates_thermal(model->mechanism, model->grid.padded, air->temperature, air->number_density, stepper->density, 0,
-                  stepper->coefficient);
+    rates_thermal(model->mechanism, model->grid.padded, air->temperature, air->number_density,
+                  stepper->density, 0, stepper->coefficient);
     rates_washout(model->mechanism, model->grid.padded, model->washout_rate, stepper->coefficient);
     *made = stepper;
     return 0;
 }
 
-void stepper_free(Stepper *stepper) {
-    if (!stepper) return;
-    for (int t = 0; stepper->work && t < stepper->threads; t++) pack_free(stepper->work[t]);
+void stepper_free(Stepper *stepper)
+{
+    if (!stepper)
+        return;
+    for (int t = 0; stepper->work && t < stepper->threads; t++)
+        pack_free(stepper->work[t]);
     mixing_free(stepper->mixing);
     light_free(stepper->light);
     day_free(stepper->day);
@@ -117,7 +132,8 @@ void stepper_free(Stepper *stepper) {
 
 /* ---- coefficients and light ---- */
 
-static void refresh_coefficients(Stepper *stepper, const Column *column) {
+static void refresh_coefficients(Stepper *stepper, const Column *column)
+{
     const Model *model = stepper->model;
     const Mechanism *mechanism = model->mechanism;
     const Air *air = &model->air;
@@ -126,70 +142,85 @@ static void refresh_coefficients(Stepper *stepper, const Column *column) {
         for (int l = 0; l < padded; l++)
             stepper->density[FIELD(padded, s, l)] = column->x[FIELD(padded, s, l)] * air->number_density[l];
     if (water >= 0)
-        rates_thermal(mechanism, padded, air->temperature, air->number_density, stepper->density + FIELD(padded, water, 0), 1,
-                      stepper->coefficient);
-    surface_rates(mechanism, padded, air->temperature, air->number_density, model->aerosol_area, model->aerosol_radius,
-                  stepper->density, stepper->coefficient);
+        rates_thermal(mechanism, padded, air->temperature, air->number_density,
+                      stepper->density + FIELD(padded, water, 0), 1, stepper->coefficient);
+    surface_rates(mechanism, padded, air->temperature, air->number_density, model->aerosol_area,
+                  model->aerosol_radius, stepper->density, stepper->coefficient);
 }
 
-static void refresh_light(Stepper *stepper, Column *column) {
+static void refresh_light(Stepper *stepper, Column *column)
+{
     const Mechanism *mechanism = stepper->model->mechanism;
     const double *x = column->x, *lit = stepper->day->lit; /* 1 as long as no day has been made */
     if (stepper->model->settings.day == DAY_EXPLICIT) {
         x = stepper->daylight_known ? stepper->daylight : column->x;
         lit = NULL;
     }
-    if (!light_stale(stepper->light, x, lit)) return;
+    if (!light_stale(stepper->light, x, lit))
+        return;
     light_refresh(stepper->light, x, lit);
     column->photolysis_refreshes++;
-    memcpy(stepper->coefficient + FIELD(stepper->model->grid.padded, mechanism->photolysis_first, 0), stepper->light->mean,
+    memcpy(stepper->coefficient + FIELD(stepper->model->grid.padded, mechanism->photolysis_first, 0),
+           stepper->light->mean,
            (size_t)stepper->light->reactions * (size_t)stepper->model->grid.padded * sizeof(double));
 }
 
 /* ---- chemistry ---- */
 
-static Tolerance tolerance_of(const Model *model) {
+static Tolerance tolerance_of(const Model *model)
+{
     return (Tolerance){model->settings.relative_tolerance, model->settings.absolute_tolerance_cm3, 20000};
 }
 
-static void add_counts(SolverCounts *sum, const SolverCounts *part) {
+static void add_counts(SolverCounts *sum, const SolverCounts *part)
+{
     sum->calls += part->calls;
     sum->steps += part->steps;
     sum->rejections += part->rejections;
     sum->factorisations += part->factorisations;
     sum->negatives += part->negatives;
-    if (part->most_negative < sum->most_negative) sum->most_negative = part->most_negative;
+    if (part->most_negative < sum->most_negative)
+        sum->most_negative = part->most_negative;
 }
 
-static void arrange(const Stepper *stepper, int *order) {
+static void arrange(const Stepper *stepper, int *order)
+{
     for (int i = 1; i < stepper->packs; i++) { /* nearly sorted already */
         int pack = order[i], j = i;
-        for (; j > 0 && stepper->outcome[order[j - 1]].counts.factorisations < stepper->outcome[pack].counts.factorisations; j--)
+        for (; j > 0 && stepper->outcome[order[j - 1]].counts.factorisations <
+                            stepper->outcome[pack].counts.factorisations;
+             j--)
             order[j] = order[j - 1];
         order[j] = pack;
     }
 }
 
 /* After the packs: sums in their order, or the first fault. */
-static int settle_packs(Stepper *stepper, Column *column, Fault *fault) {
+static int settle_packs(Stepper *stepper, Column *column, Fault *fault)
+{
     const Model *model = stepper->model;
     const Kernel *kernel = model->kernel;
     for (int p = 0; p < stepper->packs; p++) {
         PackOutcome *outcome = &stepper->outcome[p];
-        if (outcome->result) return pack_fault(model, p * PACK, outcome->result, outcome->where, column->time, fault);
-        for (int s = 0; p == 0 && s < model->mechanism->solved; s++) column->received[s] += outcome->ledger.received[s];
-        for (int h = 0; h < model->held; h++) column->exchanged[model->held_species[h]] += outcome->ledger.exchanged[h];
+        if (outcome->result)
+            return pack_fault(model, p * PACK, outcome->result, outcome->where, column->time, fault);
+        for (int s = 0; p == 0 && s < model->mechanism->solved; s++)
+            column->received[s] += outcome->ledger.received[s];
+        for (int h = 0; h < model->held; h++)
+            column->exchanged[model->held_species[h]] += outcome->ledger.exchanged[h];
         for (int t = 0; t < kernel->tallies; t++)
             column->washed[kernel->reactant[3 * kernel->tally_reaction[t]]] += outcome->ledger.washed[t];
-        for (int c = 0; c < kernel->counters; c++) column->escaped[c] += outcome->ledger.escaped[c];
+        for (int c = 0; c < kernel->counters; c++)
+            column->escaped[c] += outcome->ledger.escaped[c];
         add_counts(&column->counts, &outcome->counts);
     }
     return 0;
 }
 
-/* half: 0 before the transport, 1 after it. The two start differently: the second with radicals that transport has thrown out of
- * balance. */
-static int chemistry(Stepper *stepper, Column *column, double step, int half, Fault *fault) {
+/* half: 0 before the transport, 1 after it. The two start differently: the second with radicals that
+ * transport has thrown out of balance. */
+static int chemistry(Stepper *stepper, Column *column, double step, int half, Fault *fault)
+{
     const Model *model = stepper->model;
     Tolerance tolerance = tolerance_of(model);
     const double *factor = model->settings.day == DAY_FACTORS ? stepper->day->factor : NULL;
@@ -204,10 +235,11 @@ static int chemistry(Stepper *stepper, Column *column, double step, int half, Fa
         pack_load(work, model, p * PACK, column->x);
         pack_rates(work, model, p * PACK, stepper->coefficient, stepper->light->mean, factor);
         PackProblem problem = pack_problem(work, 0, *first_step);
-        outcome->result =
-            solver_advance(model->kernel, work->solver, &problem, step, &tolerance, &outcome->counts, &outcome->where);
+        outcome->result = solver_advance(model->kernel, work->solver, &problem, step, &tolerance,
+                                         &outcome->counts, &outcome->where);
         *first_step = problem.first;
-        if (!outcome->result) pack_store(work, model, p * PACK, column->x, &outcome->ledger);
+        if (!outcome->result)
+            pack_store(work, model, p * PACK, column->x, &outcome->ledger);
     }
     arrange(stepper, order);
     return settle_packs(stepper, column, fault);
@@ -216,20 +248,24 @@ static int chemistry(Stepper *stepper, Column *column, double step, int half, Fa
 /* ---- the day ---- */
 
 /* Time integrals of a part of the day, from one pack to those of the day. */
-static void add_integrals(Stepper *stepper, const PackWork *work, int first, int part) {
+static void add_integrals(Stepper *stepper, const PackWork *work, int first, int part)
+{
     const Model *model = stepper->model;
     Day *day = stepper->day;
     int padded = model->grid.padded;
     for (int s = 0; s < model->mechanism->solved; s++)
         for (int l = 0; l < PACK; l++) {
             day->sum_y[FIELD(padded, s, first + l)] += work->sum_y[s * PACK + l];
-            if (pack_part_lit(part)) day->sum_lit[FIELD(padded, s, first + l)] += work->sum_y[s * PACK + l];
+            if (pack_part_lit(part))
+                day->sum_lit[FIELD(padded, s, first + l)] += work->sum_y[s * PACK + l];
         }
     for (int r = 0; r < model->kernel->reactions; r++)
-        for (int l = 0; l < PACK; l++) day->sum_w[FIELD(padded, r, first + l)] += work->sum_w[r * PACK + l];
+        for (int l = 0; l < PACK; l++)
+            day->sum_w[FIELD(padded, r, first + l)] += work->sum_w[r * PACK + l];
 }
 
-static int carry_part(Stepper *stepper, Column *column, int part, Fault *fault) {
+static int carry_part(Stepper *stepper, Column *column, int part, Fault *fault)
+{
     const Model *model = stepper->model;
     Tolerance tolerance = tolerance_of(model);
     int *order = stepper->order + (2 + part) * stepper->packs;
@@ -243,9 +279,11 @@ static int carry_part(Stepper *stepper, Column *column, int part, Fault *fault) 
         pack_rates(work, model, p * PACK, stepper->coefficient, stepper->light->mean, NULL);
         memset(work->sum_y, 0, (size_t)model->kernel->species * PACK * sizeof(double));
         memset(work->sum_w, 0, (size_t)model->kernel->reactions * PACK * sizeof(double));
-        outcome->result = pack_part(work, stepper->light, p * PACK, part, &tolerance,
-                                    &stepper->part_step[part * stepper->packs + p], &outcome->counts, &outcome->where);
-        if (outcome->result) continue;
+        outcome->result =
+            pack_part(work, stepper->light, p * PACK, part, &tolerance,
+                      &stepper->part_step[part * stepper->packs + p], &outcome->counts, &outcome->where);
+        if (outcome->result)
+            continue;
         pack_store(work, model, p * PACK, column->x, &outcome->ledger);
         add_integrals(stepper, work, p * PACK, part);
     }
@@ -253,21 +291,26 @@ static int carry_part(Stepper *stepper, Column *column, int part, Fault *fault) 
     return settle_packs(stepper, column, fault);
 }
 
-/* From midnight to midnight in parts, each half its transport, its chemistry, half its transport. Leaves the time integrals in
- * stepper->day. years: what the schedule's clock moves by. */
-static int carry_day(Stepper *stepper, Column *column, double years, Fault *fault) {
+/* From midnight to midnight in parts, each half its transport, its chemistry, half its transport. Leaves the
+ * time integrals in stepper->day. years: what the schedule's clock moves by. */
+static int carry_day(Stepper *stepper, Column *column, double years, Fault *fault)
+{
     double elapsed = 0.0;
     day_clear(stepper->day);
     for (int part = 0; part < PACK_DAY_PARTS; part++) {
         double length = pack_part_length(stepper->light, part);
         int slot = 1 + (part < PACK_DAY_PARTS / 2 ? part : PACK_DAY_PARTS - 1 - part);
-        if (!(length > 0.0)) continue;
+        if (!(length > 0.0))
+            continue;
         int code = mixing_prepare(stepper->mixing, slot, 0.5 * length, fault);
-        if (code) return code;
-        mixing_set_ground(stepper->model, column, column->time + (elapsed + 0.5 * length) / DAY_SECONDS * years);
+        if (code)
+            return code;
+        mixing_set_ground(stepper->model, column,
+                          column->time + (elapsed + 0.5 * length) / DAY_SECONDS * years);
         mixing_step(stepper->mixing, slot, column);
         code = carry_part(stepper, column, part, fault);
-        if (code) return code;
+        if (code)
+            return code;
         mixing_step(stepper->mixing, slot, column);
         elapsed += length;
     }
@@ -275,19 +318,25 @@ static int carry_day(Stepper *stepper, Column *column, double years, Fault *faul
     return 0;
 }
 
-static int refresh_factors(Stepper *stepper, Column *column, Fault *fault) {
+static int refresh_factors(Stepper *stepper, Column *column, Fault *fault)
+{
     const Model *model = stepper->model;
     Day *day = stepper->day;
-    if (model->settings.day != DAY_FACTORS || !day_stale(day, column->x)) return 0;
+    if (model->settings.day != DAY_FACTORS || !day_stale(day, column->x))
+        return 0;
     Column *sample = stepper->sample;
     int cold = !day->ready, settled = 0, days = 0;
-    memcpy(sample->x, column->x, (size_t)model->mechanism->solved * (size_t)model->grid.padded * sizeof(double));
+    memcpy(sample->x, column->x,
+           (size_t)model->mechanism->solved * (size_t)model->grid.padded * sizeof(double));
     sample->time = column->time;
     while (cold ? days < DAY_COLD : !settled && days < DAY_MOST) {
-        if (!cold) day_midnight(day, column->x, sample->x);
+        if (!cold)
+            day_midnight(day, column->x, sample->x);
         int code = carry_day(stepper, sample, 0.0, fault);
-        if (code) return code;
-        settled = day_take(day, stepper->light, sample->x, pack_lit_time(stepper->light), stepper->coefficient) < DAY_SETTLED;
+        if (code)
+            return code;
+        settled = day_take(day, stepper->light, sample->x, pack_lit_time(stepper->light),
+                           stepper->coefficient) < DAY_SETTLED;
         days++;
     }
     day_settle(day, column->x);
@@ -299,25 +348,31 @@ static int refresh_factors(Stepper *stepper, Column *column, Fault *fault) {
 
 /* ---- the step ---- */
 
-static void count_negatives(const Model *model, Column *column) {
+/* The solver counts at the end of each call; this is for a state that transport had last. */
+static void count_negatives(const Model *model, Column *column)
+{
     int padded = model->grid.padded;
     for (int s = 0; s < model->mechanism->solved; s++)
         for (int l = 0; l < model->grid.layers; l++) {
             double y = column->x[FIELD(padded, s, l)] * model->air.number_density[l];
-            if (y >= 0.0) continue;
+            if (y >= 0.0)
+                continue;
             column->counts.negatives++;
-            if (y < column->counts.most_negative) column->counts.most_negative = y;
+            if (y < column->counts.most_negative)
+                column->counts.most_negative = y;
         }
 }
 
 /* Part of the clock that ends now. */
-static void charge(double *part, double *since) {
+static void charge(double *part, double *since)
+{
     double now = omp_get_wtime();
     *part += now - *since;
     *since = now;
 }
 
-static int advance_explicit(Stepper *stepper, Column *column, double years, Fault *fault) {
+static int advance_explicit(Stepper *stepper, Column *column, double years, Fault *fault)
+{
     const Model *model = stepper->model;
     size_t padded = (size_t)model->grid.padded, field = (size_t)model->mechanism->solved * padded;
     double since = omp_get_wtime(), lit_time = pack_lit_time(stepper->light);
@@ -326,56 +381,82 @@ static int advance_explicit(Stepper *stepper, Column *column, double years, Faul
     charge(&stepper->clock.light, &since);
     int code = carry_day(stepper, column, years, fault);
     charge(&stepper->clock.chemistry, &since);
-    if (code) return code;
+    if (code)
+        return code;
     for (size_t i = 0; i < field; i++) {
         double air = model->air.number_density[i % padded];
         stepper->mean[i] = stepper->day->sum_y[i] / DAY_SECONDS / air;
-        if (lit_time > 0.0) stepper->daylight[i] = stepper->day->sum_lit[i] / lit_time / air;
+        if (lit_time > 0.0)
+            stepper->daylight[i] = stepper->day->sum_lit[i] / lit_time / air;
     }
     stepper->daylight_known = lit_time > 0.0;
+    count_negatives(model, column);
     column->days++;
     return 0;
 }
 
-static int advance_means(Stepper *stepper, Column *column, double step, double years, Fault *fault) {
+static int advance_means(Stepper *stepper, Column *column, double step, double years, Fault *fault)
+{
     const Model *model = stepper->model;
     size_t field = (size_t)model->mechanism->solved * (size_t)model->grid.padded;
     double since = omp_get_wtime();
     int code = mixing_prepare(stepper->mixing, 0, step, fault);
-    if (code) return code;
+    if (code)
+        return code;
     memcpy(stepper->mean, column->x, field * sizeof(double));
     refresh_coefficients(stepper, column);
     refresh_light(stepper, column);
     charge(&stepper->clock.light, &since);
     code = refresh_factors(stepper, column, fault);
     charge(&stepper->clock.factors, &since);
-    if (!code) code = chemistry(stepper, column, 0.5 * step, 0, fault);
+    if (!code)
+        code = chemistry(stepper, column, 0.5 * step, 0, fault);
     charge(&stepper->clock.chemistry, &since);
-    if (code) return code;
+    if (code)
+        return code;
     mixing_set_ground(model, column, column->time + 0.5 * years);
     mixing_step(stepper->mixing, 0, column);
     charge(&stepper->clock.transport, &since);
     code = chemistry(stepper, column, 0.5 * step, 1, fault);
     charge(&stepper->clock.chemistry, &since);
-    if (code) return code;
+    if (code)
+        return code;
     mixing_set_ground(model, column, column->time + years);
-    for (size_t i = 0; i < field; i++) stepper->mean[i] = 0.5 * (stepper->mean[i] + column->x[i]);
+    for (size_t i = 0; i < field; i++)
+        stepper->mean[i] = 0.5 * (stepper->mean[i] + column->x[i]);
     return 0;
 }
 
-int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, Fault *fault) {
+int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, Fault *fault)
+{
     double years = frozen ? 0.0 : step / YEAR_SECONDS;
-    int code = stepper->model->settings.day == DAY_EXPLICIT ? advance_explicit(stepper, column, years, fault)
-                                                            : advance_means(stepper, column, step, years, fault);
-    if (code) return code;
+    int code = stepper->model->settings.day == DAY_EXPLICIT
+                   ? advance_explicit(stepper, column, years, fault)
+                   : advance_means(stepper, column, step, years, fault);
+    if (code)
+        return code;
     column->time += years;
-    count_negatives(stepper->model, column);
     column->outer_steps++;
     return 0;
 }
 
-const double *stepper_mean(const Stepper *stepper) { return stepper->mean; }
-const Light *stepper_light(const Stepper *stepper) { return stepper->light; }
-const Day *stepper_day(const Stepper *stepper) { return stepper->day; }
-StepClock stepper_clock(const Stepper *stepper) { return stepper->clock; }
-const double *stepper_coefficients(const Stepper *stepper) { return stepper->coefficient; }
+const double *stepper_mean(const Stepper *stepper)
+{
+    return stepper->mean;
+}
+const Light *stepper_light(const Stepper *stepper)
+{
+    return stepper->light;
+}
+const Day *stepper_day(const Stepper *stepper)
+{
+    return stepper->day;
+}
+StepClock stepper_clock(const Stepper *stepper)
+{
+    return stepper->clock;
+}
+const double *stepper_coefficients(const Stepper *stepper)
+{
+    return stepper->coefficient;
+}

@@ -6,14 +6,16 @@
 #include "../input/constants.h"
 
 /* Earth-sun distance: (mean distance / distance)^2, Spencer (1971, Search 2, 172), good to 1e-4. */
-static double earth_sun_factor(double day_of_year) {
+static double earth_sun_factor(double day_of_year)
+{
     double angle = 2.0 * PI * (day_of_year - 1.0) / 365.0;
     return 1.000110 + 0.034221 * cos(angle) + 0.001280 * sin(angle) + 0.000719 * cos(2.0 * angle) +
            0.000077 * sin(2.0 * angle);
 }
 
 /* Solar declination, radians, Spencer (1971), good to 0.035 degrees. */
-static double declination(double day_of_year) {
+static double declination(double day_of_year)
+{
     double angle = 2.0 * PI * (day_of_year - 1.0) / 365.0;
     return 0.006918 - 0.399912 * cos(angle) + 0.070257 * sin(angle) - 0.006758 * cos(2.0 * angle) +
            0.000907 * sin(2.0 * angle) - 0.002697 * cos(3.0 * angle) + 0.001480 * sin(3.0 * angle);
@@ -24,7 +26,8 @@ typedef struct {
     double constant, swing; /* latitude: cosine = constant - swing cos(2 pi t / day) */
 } Path;
 
-static double path_cosine(const Path *path, double time) {
+static double path_cosine(const Path *path, double time)
+{
     if (path->global) {
         double value = (time - 0.25 * DAY_SECONDS) / (0.25 * DAY_SECONDS);
         return value < 0.0 ? 0.0 : value > 1.0 ? 1.0 : value;
@@ -33,13 +36,15 @@ static double path_cosine(const Path *path, double time) {
 }
 
 /* Nodes from low to high: quadratic crowding towards 0, where rates fall steeply. */
-static void place_nodes(Sun *sun, double low, double high, int refine) {
+static void place_nodes(Sun *sun, double low, double high, int refine)
+{
     int above = refine == 2 ? 20 : 14, below = 0;
     sun->nodes = 0;
     if (low < 0.0) {
         below = refine == 2 ? 7 : 5;
         double top = high < 0.0 ? high : 0.0;
-        for (int i = 0; i < below; i++) sun->cosine[sun->nodes++] = low + (top - low) * i / below;
+        for (int i = 0; i < below; i++)
+            sun->cosine[sun->nodes++] = low + (top - low) * i / below;
         if (high <= 0.0) {
             sun->cosine[sun->nodes++] = high;
             return;
@@ -52,7 +57,8 @@ static void place_nodes(Sun *sun, double low, double high, int refine) {
     }
 }
 
-void sun_make(Sun *sun, const Settings *settings, int refine) {
+void sun_make(Sun *sun, const Settings *settings, int refine)
+{
     *sun = (Sun){.earth_sun = 1.0};
     Path path = {.global = settings->sun == SUN_GLOBAL};
     double noon = 0.5 * DAY_SECONDS, rise = 0.25 * DAY_SECONDS, low = 0.0;
@@ -64,7 +70,8 @@ void sun_make(Sun *sun, const Settings *settings, int refine) {
         low = path.constant - path.swing;
         rise = 0.0;
         if (low < SUN_TWILIGHT) {
-            if (path.constant + path.swing <= SUN_TWILIGHT) return; /* polar night */
+            if (path.constant + path.swing <= SUN_TWILIGHT)
+                return; /* polar night */
             rise = DAY_SECONDS / (2.0 * PI) * acos((path.constant - SUN_TWILIGHT) / path.swing);
             low = SUN_TWILIGHT;
         }
@@ -74,17 +81,21 @@ void sun_make(Sun *sun, const Settings *settings, int refine) {
         /* crowd at sunrise; a real sunrise passes twilight first and needs an even spread */
         sun->time[i] = rise + (noon - rise) * (path.global ? pow(s, 1.6) : s);
         sun->knot[i] = path_cosine(&path, sun->time[i]);
-        if (i) sun->middle[i - 1] = path_cosine(&path, 0.5 * (sun->time[i - 1] + sun->time[i]));
+        if (i)
+            sun->middle[i - 1] = path_cosine(&path, 0.5 * (sun->time[i - 1] + sun->time[i]));
     }
     double high = path.global ? 1.0 : path.constant + path.swing;
-    if (high - low < 1e-6) high = low + 1e-6; /* the sun at a pole keeps its height */
+    if (high - low < 1e-6)
+        high = low + 1e-6; /* the sun at a pole keeps its height */
     place_nodes(sun, low, high, refine);
 }
 
 /* Slopes of the monotone cubic. */
-static void slopes(int n, const double *x, const double *y, double *m) {
+static void slopes(int n, const double *x, const double *y, double *m)
+{
     double chord[SUN_NODES];
-    for (int i = 0; i + 1 < n; i++) chord[i] = (y[i + 1] - y[i]) / (x[i + 1] - x[i]);
+    for (int i = 0; i + 1 < n; i++)
+        chord[i] = (y[i + 1] - y[i]) / (x[i + 1] - x[i]);
     for (int i = 1; i + 1 < n; i++) {
         if (chord[i - 1] * chord[i] <= 0.0) {
             m[i] = 0.0;
@@ -106,13 +117,17 @@ static void slopes(int n, const double *x, const double *y, double *m) {
     }
 }
 
-static double cubic(const double *x, const double *y, const double *m, int i, double at) {
+static double cubic(const double *x, const double *y, const double *m, int i, double at)
+{
     double h = x[i + 1] - x[i], t = (at - x[i]) / h, u = 1.0 - t;
-    return y[i] * u * u * (1.0 + 2.0 * t) + y[i + 1] * t * t * (3.0 - 2.0 * t) + h * t * u * (m[i] * u - m[i + 1] * t);
+    return y[i] * u * u * (1.0 + 2.0 * t) + y[i + 1] * t * t * (3.0 - 2.0 * t) +
+           h * t * u * (m[i] * u - m[i + 1] * t);
 }
 
-double sun_spread(const Sun *sun, const double *table, int node_stride, double *knot, int knot_stride) {
-    /* A rate below this dissociates nothing within the age of the Earth; it only keeps the logarithm finite. */
+double sun_spread(const Sun *sun, const double *table, int node_stride, double *knot, int knot_stride)
+{
+    /* A rate below this dissociates nothing within the age of the Earth; it only keeps the logarithm finite.
+     */
     const double tiny = 1e-60;
     double y[SUN_NODES], m[SUN_NODES];
     int n = sun->nodes, at = 0, lit = 0;
@@ -122,7 +137,8 @@ double sun_spread(const Sun *sun, const double *table, int node_stride, double *
         y[i] = log(value + tiny);
     }
     if (!lit) {
-        for (int i = 0; i < SUN_KNOTS; i++) knot[(size_t)i * (size_t)knot_stride] = 0.0;
+        for (int i = 0; i < SUN_KNOTS; i++)
+            knot[(size_t)i * (size_t)knot_stride] = 0.0;
         return 0.0;
     }
     slopes(n, sun->cosine, y, m);
@@ -130,11 +146,13 @@ double sun_spread(const Sun *sun, const double *table, int node_stride, double *
     for (int i = 0; i < SUN_KNOTS; i++) {
         if (i) {
             double middle = sun->middle[i - 1];
-            while (at + 2 < n && sun->cosine[at + 1] < middle) at++;
+            while (at + 2 < n && sun->cosine[at + 1] < middle)
+                at++;
             middle = exp(cubic(sun->cosine, y, m, at, middle));
             exact += middle * (4.0 / 6.0) * (sun->time[i] - sun->time[i - 1]);
         }
-        while (at + 2 < n && sun->cosine[at + 1] < sun->knot[i]) at++;
+        while (at + 2 < n && sun->cosine[at + 1] < sun->knot[i])
+            at++;
         double value = exp(cubic(sun->cosine, y, m, at, sun->knot[i]));
         if (i) {
             double length = sun->time[i] - sun->time[i - 1];
@@ -144,6 +162,7 @@ double sun_spread(const Sun *sun, const double *table, int node_stride, double *
         knot[(size_t)i * (size_t)knot_stride] = last = value;
     }
     double scale = straight > 0.0 ? exact / straight : 1.0;
-    for (int i = 0; i < SUN_KNOTS; i++) knot[(size_t)i * (size_t)knot_stride] *= scale;
+    for (int i = 0; i < SUN_KNOTS; i++)
+        knot[(size_t)i * (size_t)knot_stride] *= scale;
     return 2.0 * exact / DAY_SECONDS;
 }

@@ -1,12 +1,13 @@
 /* sun: the path of the sun through one day, and photolysis rates along it.
  *
- * The global sun is a day of 12 h whose cosine of the zenith angle rises linearly from 0 to 1 and falls back, then 12 h
- * of dark: the mean of a rate over it is half its integral over the cosine, the true global mean. A latitude's sun
- * follows the hour angle, with twilight to 11.5 degrees below the horizon.
+ * The global sun is a day of 12 h whose cosine of the zenith angle rises linearly from 0 to 1 and falls back,
+ * then 12 h of dark: the mean of a rate over it is half its integral over the cosine, the true global mean. A
+ * latitude's sun follows the hour angle, with twilight to 11.5 degrees below the horizon.
  *
- * Photolysis is computed at a few cosines (nodes). Between them log J is interpolated by the monotone cubic of Fritsch
- * and Carlson (1980) onto the knots, times from sunrise to noon that crowd at sunrise; the afternoon mirrors them. Between
- * knots J is linear in time, scaled for each reaction and layer so that its day mean is that of the interpolant.
+ * Photolysis is computed at a few cosines (nodes). Between them log J is interpolated by the monotone cubic
+ * of Fritsch and Carlson (1980) onto the knots, times from sunrise to noon that crowd at sunrise; the
+ * afternoon mirrors them. Between knots J is linear in time, scaled for each reaction and layer so that its
+ * day mean is that of the interpolant.
  */
 #ifndef SKYMEND_SUN_H
 #define SKYMEND_SUN_H
@@ -14,17 +15,17 @@
 #include "../input/fault.h"
 #include "../input/settings.h"
 
-#define SUN_KNOTS 21    /* morning knots, sunrise and noon included */
-#define SUN_NODES 28    /* at most */
+#define SUN_KNOTS 21        /* morning knots, sunrise and noon included */
+#define SUN_NODES 28        /* at most */
 #define SUN_TWILIGHT (-0.2) /* cosine below which a real sun gives no light worth counting */
 
 typedef struct {
-    int nodes;                     /* 0: the sun does not rise */
-    double cosine[SUN_NODES];      /* [nodes] ascending */
-    double time[SUN_KNOTS];        /* s after midnight, time[SUN_KNOTS - 1] = noon */
-    double knot[SUN_KNOTS];        /* cosine at the knots */
-    double middle[SUN_KNOTS - 1];  /* cosine half-way (in time) between knots, for the quadrature */
-    double earth_sun;              /* flux relative to that at 1 au */
+    int nodes;                    /* 0: the sun does not rise */
+    double cosine[SUN_NODES];     /* [nodes] ascending */
+    double time[SUN_KNOTS];       /* s after midnight, time[SUN_KNOTS - 1] = noon */
+    double knot[SUN_KNOTS];       /* cosine at the knots */
+    double middle[SUN_KNOTS - 1]; /* cosine half-way (in time) between knots, for the quadrature */
+    double earth_sun;             /* flux relative to that at 1 au */
 } Sun;
 
 /* refine = 1: as used; 2: nodes twice as dense (tests of the interpolation). */

@@ -39,7 +39,8 @@ HELD = "short-lived bromine - constant from memory"
 
 BASELINE_HEADER = """\
 # title: baseline schedule of source gases 1955-2100
-# quantity: mole fraction in dry air at the surface; global mean at mid-year; unit in each row
+# quantity: mole fraction in dry air at the surface; global mean at mid-year
+# unit: in each row
 # source: CFCs, HCFCs, halons, CCl4, CH3CCl3, CH3Br, CH3Cl: WMO/UNEP Scientific Assessment of Ozone Depletion 2022, chapter 7 baseline; observed to about 2022, projection after
 # source: CH4, N2O, CO2 to 2024: Indicators of Global Climate Change (Forster et al., Earth Syst. Sci. Data), licence CC-BY-4.0; figures unchanged
 # source: CH4, N2O, CO2 after 2024: SSP2-4.5 after Meinshausen et al., Geosci. Model Dev. 13, 3571-3605, 2020
@@ -51,7 +52,8 @@ BASELINE_HEADER = """\
 
 DEMO_HEADER = """\
 # title: INVENTED demonstration schedule
-# quantity: mole fraction in dry air at the surface; global mean at mid-year; unit in each row
+# quantity: mole fraction in dry air at the surface; global mean at mid-year
+# unit: in each row
 # warning: INVENTED. It describes no forecast, plan, country or company. It shows what a schedule looks like and what a delayed phase-out would do.
 # source: the project's baseline schedule, altered by invented amounts after 2025
 # basis: invented: CFC-11 and CFC-12 leak until 2045 (up to 40 and 30 ppt more, then decaying with lifetimes of 52 and 102 years); HCFC-22 phased out 10 years later; CCl4 held at its 2025 value until 2050, then decaying with a lifetime of 44 years; halon-1301 up to 0.6 ppt more

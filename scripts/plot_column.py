@@ -178,8 +178,9 @@ def draw(data, benchmark_year, quantity, path):
     plot_column(lower, data, benchmark_year)
     edges = interval_edges(data["time"])
     lower.set_xlim(edges[0], edges[-1])
+    lower.ticklabel_format(axis="y", useOffset=False)
     upper.set_title(data["title"])
-    figure.supxlabel(f"{data['source']}: one near-global column without polar winter or ozone hole; a planning figure. "
+    figure.supxlabel(f"{data['source']}: one near-global column without polar winter, ozone hole or change of temperature; a planning figure. "
                      "Defer to the competent authority.", fontsize=7, color="0.35")
     figure.savefig(path, dpi=150)
     plt.close(figure)

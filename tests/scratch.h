@@ -41,8 +41,7 @@ static inline int remove_folder(void **state)
 }
 
 /* Write bytes to name in the test's folder; path: [300]. */
-static inline void write_bytes(void **state, const char *name, const char *bytes, size_t size,
-                               char *path)
+static inline void write_bytes(void **state, const char *name, const char *bytes, size_t size, char *path)
 {
     snprintf(path, 300, "%s/%s", (char *)*state, name);
     FILE *out = fopen(path, "wb");

@@ -1,5 +1,6 @@
-/* Tests of the explicit day and the diurnal factors (model/pack, model/day): what a pack carries in and out, what a day
- * integrates, and that a run with the factors is the mean of explicit days. The built-in case on layers of 2 km. */
+/* Tests of the explicit day and the diurnal factors (model/pack, model/day): what a pack carries in and out,
+ * what a day integrates, and that a run with the factors is the mean of explicit days. The built-in case on
+ * layers of 2 km. */
 #define _XOPEN_SOURCE 700
 #include "scratch.h"
 
@@ -14,11 +15,14 @@ typedef struct {
     Stepper *stepper;
 } Run;
 
-static void ok(int code, const Fault *fault) {
-    if (code) fail_msg("fault %d: %s", code, fault->text);
+static void ok(int code, const Fault *fault)
+{
+    if (code)
+        fail_msg("fault %d: %s", code, fault->text);
 }
 
-static Settings coarse(void) {
+static Settings coarse(void)
+{
     Settings settings;
     settings_default(&settings, data_dir());
     settings.spacing_km = 2.0;
@@ -27,7 +31,8 @@ static Settings coarse(void) {
     return settings;
 }
 
-static Run start(const Settings *settings) {
+static Run start(const Settings *settings)
+{
     Run run;
     Fault fault = {0};
     ok(model_make(&run.model, settings, &fault), &fault);
@@ -36,36 +41,45 @@ static Run start(const Settings *settings) {
     return run;
 }
 
-static void end(Run *run) {
+static void end(Run *run)
+{
     stepper_free(run->stepper);
     column_free(run->column);
     model_free(run->model);
 }
 
-static void advance(Run *run, double days, int steps) {
+static void advance(Run *run, double days, int steps)
+{
     Fault fault = {0};
-    for (int i = 0; i < steps; i++) ok(stepper_advance(run->stepper, run->column, days * DAY_SECONDS, 1, &fault), &fault);
+    for (int i = 0; i < steps; i++)
+        ok(stepper_advance(run->stepper, run->column, days * DAY_SECONDS, 1, &fault), &fault);
 }
 
-static size_t field_size(const Run *run) {
+static size_t field_size(const Run *run)
+{
     return (size_t)run->model->mechanism->solved * (size_t)run->model->grid.padded;
 }
 
-static void copy_state(Run *to, const Run *from) {
+static void copy_state(Run *to, const Run *from)
+{
     assert_int_equal(field_size(to), field_size(from));
     memcpy(to->column->x, from->column->x, field_size(from) * sizeof(double));
 }
 
-static int solved(const Run *run, const char *name) {
+static int solved(const Run *run, const char *name)
+{
     int s = mechanism_solved(run->model->mechanism, name);
-    if (s < 0) fail_msg("no species %s", name);
+    if (s < 0)
+        fail_msg("no species %s", name);
     return s;
 }
 
-static int reaction(const Run *run, const char *equation) {
+static int reaction(const Run *run, const char *equation)
+{
     const Mechanism *mechanism = run->model->mechanism;
     for (int r = 0; r < mechanism->reactions; r++)
-        if (!strncmp(mechanism->reaction[r].equation, equation, strlen(equation))) return r;
+        if (!strncmp(mechanism->reaction[r].equation, equation, strlen(equation)))
+            return r;
     fail_msg("no reaction %s", equation);
     return -1;
 }
@@ -74,7 +88,8 @@ static int reaction(const Run *run, const char *equation) {
 
 static Run spun;
 
-static int spin(void **state) {
+static int spin(void **state)
+{
     (void)state;
     Settings settings = coarse();
     spun = start(&settings);
@@ -82,17 +97,20 @@ static int spin(void **state) {
     return 0;
 }
 
-static int drop(void **state) {
+static int drop(void **state)
+{
     (void)state;
     end(&spun);
     return 0;
 }
 
-static double *carried_day(PackWork *work, int first, double relative, double absolute) {
+static double *carried_day(PackWork *work, int first, double relative, double absolute)
+{
     const Model *model = spun.model;
     const Kernel *kernel = model->kernel;
     pack_load(work, model, first, spun.column->x);
-    pack_rates(work, model, first, stepper_coefficients(spun.stepper), stepper_light(spun.stepper)->mean, NULL);
+    pack_rates(work, model, first, stepper_coefficients(spun.stepper), stepper_light(spun.stepper)->mean,
+               NULL);
     size_t size = (size_t)kernel->species * PACK * sizeof(double);
     double *before = malloc(size), step = 0.0;
     assert_non_null(before);
@@ -103,14 +121,16 @@ static double *carried_day(PackWork *work, int first, double relative, double ab
     SolverCounts counts = {0};
     int where;
     for (int part = 0; part < PACK_DAY_PARTS; part++)
-        assert_int_equal(pack_part(work, stepper_light(spun.stepper), first, part, &tolerance, &step, &counts, &where), 0);
+        assert_int_equal(
+            pack_part(work, stepper_light(spun.stepper), first, part, &tolerance, &step, &counts, &where), 0);
     assert_true(counts.steps > 60 && step > 0.0);
     return before;
 }
 
 /* ---- packs ---- */
 
-static void test_load_and_store(void **state) {
+static void test_load_and_store(void **state)
+{
     (void)state;
     const Model *model = spun.model;
     int padded = model->grid.padded, n = model->mechanism->solved;
@@ -118,18 +138,21 @@ static void test_load_and_store(void **state) {
     Fault fault = {0};
     ok(pack_make(&work, model, &fault), &fault);
     size_t bytes = field_size(&spun) * sizeof(double);
-    double *x = malloc(bytes), *lists = calloc((size_t)(MODEL_HELD_MOST + n + model->kernel->tallies), sizeof(double));
+    double *x = malloc(bytes),
+           *lists = calloc((size_t)(MODEL_HELD_MOST + n + model->kernel->tallies), sizeof(double));
     assert_non_null(x);
     assert_non_null(lists);
     memcpy(x, spun.column->x, bytes);
-    PackLedger ledger = {.exchanged = lists, .received = lists + MODEL_HELD_MOST, .washed = lists + MODEL_HELD_MOST + n};
+    PackLedger ledger = {
+        .exchanged = lists, .received = lists + MODEL_HELD_MOST, .washed = lists + MODEL_HELD_MOST + n};
     for (int first = 0; first < padded; first += PACK) {
         pack_load(work, model, first, x);
         for (int s = 0; s < n; s++)
             for (int l = 0; l < PACK; l++)
                 assert_true(work->y[s * PACK + l] ==
                             x[FIELD(padded, s, first + l)] * model->air.number_density[first + l]);
-        for (int s = n; s < model->kernel->species; s++) assert_true(work->y[s * PACK] == 0.0);
+        for (int s = n; s < model->kernel->species; s++)
+            assert_true(work->y[s * PACK] == 0.0);
         for (int h = 0; h < work->held; h++)
             for (int l = 0; l < PACK; l++) {
                 double is_free = work->held_free[h * PACK + l];
@@ -143,13 +166,17 @@ static void test_load_and_store(void **state) {
         }
         for (int s = 0; first == 0 && s < n; s++)
             assert_true(fabs(ledger.received[s]) <= 1e-15 * work->y[s * PACK] * model->grid.depth[0]);
-        for (int t = 0; t < model->kernel->tallies; t++) assert_true(ledger.washed[t] == 0.0);
-        for (int c = 0; c < model->kernel->counters; c++) assert_true(ledger.escaped[c] == 0.0);
+        for (int t = 0; t < model->kernel->tallies; t++)
+            assert_true(ledger.washed[t] == 0.0);
+        for (int c = 0; c < model->kernel->counters; c++)
+            assert_true(ledger.escaped[c] == 0.0);
     }
-    for (size_t i = 0; i < field_size(&spun); i++) assert_true(fabs(x[i] - spun.column->x[i]) <= 1e-15 * fabs(x[i]));
+    for (size_t i = 0; i < field_size(&spun); i++)
+        assert_true(fabs(x[i] - spun.column->x[i]) <= 1e-15 * fabs(x[i]));
 
     /* held and ground values come back whatever the chemistry made of them, and the difference is counted */
-    int h = model->held - 1, held = model->held_species[h], n2o = solved(&spun, "N2O"), o3 = solved(&spun, "O3");
+    int h = model->held - 1, held = model->held_species[h], n2o = solved(&spun, "N2O"),
+        o3 = solved(&spun, "O3");
     assert_true(h >= 0);
     pack_load(work, model, 0, x);
     work->y[held * PACK + 2] -= 1e6;
@@ -166,7 +193,8 @@ static void test_load_and_store(void **state) {
     pack_free(work);
 }
 
-static double lane_atoms(const Model *model, const double *x, const char *symbol, int layer) {
+static double lane_atoms(const Model *model, const double *x, const char *symbol, int layer)
+{
     int element = mechanism_element(model->mechanism, symbol);
     double sum = 0.0;
     for (int s = 0; s < model->mechanism->solved; s++)
@@ -175,7 +203,8 @@ static double lane_atoms(const Model *model, const double *x, const char *symbol
 }
 
 /* Round-off of the solver is put right; a defect that is no round-off stays for the ledger to show. */
-static void test_round_off_is_put_back(void **state) {
+static void test_round_off_is_put_back(void **state)
+{
     (void)state;
     const Model *model = spun.model;
     int n = model->mechanism->solved, first = 2 * PACK, layer = first + 3;
@@ -186,7 +215,8 @@ static void test_round_off_is_put_back(void **state) {
     double *lists = calloc((size_t)(MODEL_HELD_MOST + n + model->kernel->tallies), sizeof(double));
     assert_non_null(x);
     assert_non_null(lists);
-    PackLedger ledger = {.exchanged = lists, .received = lists + MODEL_HELD_MOST, .washed = lists + MODEL_HELD_MOST + n};
+    PackLedger ledger = {
+        .exchanged = lists, .received = lists + MODEL_HELD_MOST, .washed = lists + MODEL_HELD_MOST + n};
     int clo = solved(&spun, "ClO");
     static const double defect[] = {1e-12, -3e-11, 1e-8, -1e-6};
     for (size_t i = 0; i < sizeof defect / sizeof defect[0]; i++) {
@@ -209,7 +239,8 @@ static void test_round_off_is_put_back(void **state) {
     pack_free(work);
 }
 
-static void test_pack_rates(void **state) {
+static void test_pack_rates(void **state)
+{
     (void)state;
     const Model *model = spun.model;
     const Mechanism *mechanism = model->mechanism;
@@ -226,7 +257,8 @@ static void test_pack_rates(void **state) {
                 int lit = r >= mechanism->photolysis_first && r < mechanism->surface_first;
                 double want = lit ? light->mean[FIELD(padded, r - mechanism->photolysis_first, first + l)]
                                   : k[FIELD(padded, r, first + l)];
-                if (with) want *= factor[FIELD(padded, r, first + l)];
+                if (with)
+                    want *= factor[FIELD(padded, r, first + l)];
                 assert_true(work->k[r * PACK + l] == want);
             }
     }
@@ -235,7 +267,8 @@ static void test_pack_rates(void **state) {
 
 /* ---- the day ---- */
 
-static void test_parts_of_the_day(void **state) {
+static void test_parts_of_the_day(void **state)
+{
     (void)state;
     for (int place = 0; place < 4; place++) { /* globe, mid-latitude, polar day, polar night */
         Settings settings = coarse();
@@ -252,7 +285,8 @@ static void test_parts_of_the_day(void **state) {
             double length = pack_part_length(light, part);
             assert_true(length >= 0.0 && length == pack_part_length(light, PACK_DAY_PARTS - 1 - part));
             sum += length;
-            if (pack_part_lit(part)) lit += length;
+            if (pack_part_lit(part))
+                lit += length;
         }
         check_near(sum, DAY_SECONDS, 1e-12);
         assert_true(fabs(lit - pack_lit_time(light)) < 1e-6);
@@ -262,8 +296,10 @@ static void test_parts_of_the_day(void **state) {
     }
 }
 
-/* What changed is the sum of what happened: the integrals of the rates give the change of every species, free or held. */
-static void test_sums_explain_the_change(void **state) {
+/* What changed is the sum of what happened: the integrals of the rates give the change of every species, free
+ * or held. */
+static void test_sums_explain_the_change(void **state)
+{
     (void)state;
     const Kernel *kernel = spun.model->kernel;
     PackWork *work;
@@ -275,7 +311,8 @@ static void test_sums_explain_the_change(void **state) {
             for (int l = 0; l < PACK; l++) {
                 double net = 0.0, gross = 0.0;
                 for (int e = kernel->source_first[s]; e < kernel->source_first[s + 1]; e++) {
-                    double part = kernel->source_weight[e] * work->sum_w[kernel->source_reaction[e] * PACK + l];
+                    double part =
+                        kernel->source_weight[e] * work->sum_w[kernel->source_reaction[e] * PACK + l];
                     net += part;
                     gross += fabs(part);
                 }
@@ -290,10 +327,13 @@ static void test_sums_explain_the_change(void **state) {
     pack_free(work);
 }
 
-/* The day's means at the tolerance in use against those at a thousandth of it, for gases with the steepest course. */
-static void test_means_at_tight_tolerance(void **state) {
+/* The day's means at the tolerance in use against those at a thousandth of it, for gases with the steepest
+ * course. */
+static void test_means_at_tight_tolerance(void **state)
+{
     (void)state;
-    static const char *const gases[] = {"O3", "O", "OH", "HO2", "NO", "NO2", "NO3", "N2O5", "Cl", "ClO", "ClONO2", "BrO"};
+    static const char *const gases[] = {"O3",  "O",    "OH", "HO2", "NO",     "NO2",
+                                        "NO3", "N2O5", "Cl", "ClO", "ClONO2", "BrO"};
     PackWork *loose, *tight;
     Fault fault = {0};
     ok(pack_make(&loose, spun.model, &fault), &fault);
@@ -306,7 +346,8 @@ static void test_means_at_tight_tolerance(void **state) {
             for (int l = 0; l < PACK; l++) {
                 size_t at = (size_t)solved(&spun, gases[g]) * PACK + (size_t)l;
                 double mean = tight->sum_y[at] / DAY_SECONDS;
-                if (mean < 1e5) continue; /* a thousand times the absolute tolerance */
+                if (mean < 1e5)
+                    continue; /* a thousand times the absolute tolerance */
                 worst = fmax(worst, fabs(loose->sum_y[at] / tight->sum_y[at] - 1.0));
             }
     }
@@ -317,7 +358,8 @@ static void test_means_at_tight_tolerance(void **state) {
 }
 
 /* A gas that hardly changes over the day sees the mean of the light: events = mean rate x density x day. */
-static void test_day_sees_the_mean_light(void **state) {
+static void test_day_sees_the_mean_light(void **state)
+{
     (void)state;
     static const char *const photolyses[] = {"CFC-11 + hv", "CFC-12 + hv", "N2O + hv", "CH3CCl3 + hv"};
     const Light *light = stepper_light(spun.stepper);
@@ -336,7 +378,8 @@ static void test_day_sees_the_mean_light(void **state) {
     pack_free(work);
 }
 
-static void test_night_only(void **state) {
+static void test_night_only(void **state)
+{
     (void)state;
     Settings settings = coarse();
     settings.day = DAY_EXPLICIT;
@@ -346,7 +389,8 @@ static void test_night_only(void **state) {
     Run run = start(&settings);
     copy_state(&run, &spun);
     advance(&run, 1.0, 5);
-    int padded = run.model->grid.padded, o = solved(&run, "O"), no3 = solved(&run, "NO3"), o3 = solved(&run, "O3");
+    int padded = run.model->grid.padded, o = solved(&run, "O"), no3 = solved(&run, "NO3"),
+        o3 = solved(&run, "O3");
     const double *mean = stepper_mean(run.stepper);
     for (int l = 8; l < 20; l++) { /* 16 to 40 km: no light, no atomic oxygen; ozone stays; NO3 is there */
         assert_true(fabs(mean[FIELD(padded, o, l)]) * run.model->air.number_density[l] < 1.0);
@@ -354,18 +398,22 @@ static void test_night_only(void **state) {
     }
     assert_true(mean[FIELD(padded, no3, 17)] > spun.column->x[FIELD(padded, no3, 17)]);
     for (int j = 0; j < stepper_light(run.stepper)->reactions; j++)
-        for (int l = 0; l < padded; l++) assert_true(stepper_light(run.stepper)->mean[FIELD(padded, j, l)] == 0.0);
+        for (int l = 0; l < padded; l++)
+            assert_true(stepper_light(run.stepper)->mean[FIELD(padded, j, l)] == 0.0);
     end(&run);
 }
 
 /* ---- the factors ---- */
 
-static double factor_at(const char *equation, double km) {
+static double factor_at(const char *equation, double km)
+{
     int layer = (int)(km / 2.0);
-    return stepper_day(spun.stepper)->factor[FIELD(spun.model->grid.padded, reaction(&spun, equation), layer)];
+    return stepper_day(spun.stepper)
+        ->factor[FIELD(spun.model->grid.padded, reaction(&spun, equation), layer)];
 }
 
-static void test_factors_make_sense(void **state) {
+static void test_factors_make_sense(void **state)
+{
     (void)state;
     const Day *day = stepper_day(spun.stepper);
     const Mechanism *mechanism = spun.model->mechanism;
@@ -378,7 +426,8 @@ static void test_factors_make_sense(void **state) {
         assert_true(fabs(factor_at("N2O + hv", km) - 1.0) < 2e-3);
         assert_true(fabs(factor_at("O(1D) + N2O", km) - 1.0) < 2e-3);
     }
-    /* Both only by day, of which the global sun has 12 h: at least the 24 h over 12 h that a constant day would give. */
+    /* Both only by day, of which the global sun has 12 h: at least the 24 h over 12 h that a constant day
+     * would give. */
     assert_true(factor_at("OH + HO2", 31.0) > 2.0 && factor_at("OH + HO2", 31.0) < 6.0);
     /* ClO lasts the night up there, O does not */
     assert_true(factor_at("ClO + O ", 39.0) > 1.05 && factor_at("ClO + O ", 39.0) < 2.0);
@@ -390,7 +439,8 @@ static void test_factors_make_sense(void **state) {
 }
 
 /* A settled state is the mean of its own day: explicit days from its midnight have the run's means. */
-static void test_factors_are_consistent(void **state) {
+static void test_factors_are_consistent(void **state)
+{
     (void)state;
     static const char *const gases[] = {"O3", "NO2", "ClO", "HNO3", "OH", "ClONO2"};
     Settings settings = coarse();
@@ -400,24 +450,30 @@ static void test_factors_are_consistent(void **state) {
     day_midnight(stepper_day(spun.stepper), spun.column->x, run.column->x);
     advance(&run, 1.0, 3);
     int padded = run.model->grid.padded;
-    /* higher up, HNO3 lives for about a day on what diffusion brings: there the step of the run, not its factors, decides */
+    /* higher up, HNO3 lives for about a day on what diffusion brings: there the step of the run, not its
+     * factors, decides */
     for (size_t g = 0; g < sizeof gases / sizeof gases[0]; g++) {
         double worst = 0.0, where = 0.0;
         int s = solved(&run, gases[g]);
         for (int l = 8; l < (g ? 18 : 30); l++) { /* 16 to 36 km, ozone to 60 km */
-            double apart = stepper_mean(run.stepper)[FIELD(padded, s, l)] / spun.column->x[FIELD(padded, s, l)] - 1.0;
-            if (fabs(apart) <= worst) continue;
+            double apart =
+                stepper_mean(run.stepper)[FIELD(padded, s, l)] / spun.column->x[FIELD(padded, s, l)] - 1.0;
+            if (fabs(apart) <= worst)
+                continue;
             worst = fabs(apart);
             where = 1e-5 * run.model->grid.middle[l];
         }
-        print_message("   %s: the day's mean %.1f %% from the run's at worst, at %.0f km\n", gases[g], 100.0 * worst, where);
+        print_message("   %s: the day's mean %.1f %% from the run's at worst, at %.0f km\n", gases[g],
+                      100.0 * worst, where);
         assert_true(worst < (g ? 0.05 : 0.02));
     }
     end(&run);
 }
 
-/* What day_take makes of a made-up day: one reaction's rate twice the product of the means, one species gone at midnight. */
-static void test_take_by_hand(void **state) {
+/* What day_take makes of a made-up day: one reaction's rate twice the product of the means, one species gone
+ * at midnight. */
+static void test_take_by_hand(void **state)
+{
     (void)state;
     const Model *model = spun.model;
     Day *day;
@@ -451,14 +507,16 @@ static void test_take_by_hand(void **state) {
     day_free(day);
 }
 
-static void test_first_time_and_stale(void **state) {
+static void test_first_time_and_stale(void **state)
+{
     (void)state;
     Settings settings = coarse();
     Run run = start(&settings);
     const Day *day = stepper_day(run.stepper);
     int padded = run.model->grid.padded;
     assert_true(day_stale(day, run.column->x)); /* not made yet */
-    for (size_t i = 0; i < (size_t)run.model->mechanism->reactions * (size_t)padded; i++) assert_true(day->factor[i] == 1.0);
+    for (size_t i = 0; i < (size_t)run.model->mechanism->reactions * (size_t)padded; i++)
+        assert_true(day->factor[i] == 1.0);
     advance(&run, 1.0, 1);
     assert_int_equal(run.column->factor_refreshes, 1);
     assert_int_equal(run.column->days, DAY_COLD); /* the first time runs freely */
@@ -470,7 +528,8 @@ static void test_first_time_and_stale(void **state) {
     assert_non_null(x);
     memcpy(x, day->reference, field_size(&spun) * sizeof(double));
     assert_false(day_stale(day, x));
-    size_t no2 = FIELD(spun.model->grid.padded, solved(&spun, "NO2"), 15), hcl = FIELD(spun.model->grid.padded, solved(&spun, "HCl"), 15);
+    size_t no2 = FIELD(spun.model->grid.padded, solved(&spun, "NO2"), 15),
+           hcl = FIELD(spun.model->grid.padded, solved(&spun, "HCl"), 15);
     double threshold = spun.model->settings.refresh_state, kept = x[no2];
     assert_true(fabs(day->ratio[no2] - 1.0) > 0.05 && fabs(day->ratio[hcl] - 1.0) < 0.05);
     x[no2] = kept * (1.0 + 0.98 * threshold);
@@ -485,11 +544,13 @@ static void test_first_time_and_stale(void **state) {
     free(x);
 }
 
-static void test_fault_names_place(void **state) {
+static void test_fault_names_place(void **state)
+{
     (void)state;
     Fault fault = {0};
     int where = 3 * spun.model->kernel->species + solved(&spun, "ClO");
-    assert_int_equal(pack_fault(spun.model, PACK, SOLVER_TOO_MANY_STEPS, where, 1987.25, &fault), FAULT_NUMERICS);
+    assert_int_equal(pack_fault(spun.model, PACK, SOLVER_TOO_MANY_STEPS, where, 1987.25, &fault),
+                     FAULT_NUMERICS);
     assert_non_null(strstr(fault.text, "1987.25"));
     assert_non_null(strstr(fault.text, "23.00 km")); /* layer 8 + 3 of 2 km */
     assert_non_null(strstr(fault.text, "ClO"));
@@ -499,36 +560,44 @@ static void test_fault_names_place(void **state) {
     fault = (Fault){0};
     ok(pack_make(&work, spun.model, &fault), &fault);
     pack_load(work, spun.model, PACK, spun.column->x);
-    pack_rates(work, spun.model, PACK, stepper_coefficients(spun.stepper), stepper_light(spun.stepper)->mean, NULL);
+    pack_rates(work, spun.model, PACK, stepper_coefficients(spun.stepper), stepper_light(spun.stepper)->mean,
+               NULL);
     Tolerance hopeless = {1e-6, 1e-2, 2};
     SolverCounts counts = {0};
     double step = 0.0;
     int at_noon = PACK_DAY_PARTS / 2 - 1;
-    assert_int_equal(pack_part(work, stepper_light(spun.stepper), PACK, at_noon, &hopeless, &step, &counts, &where),
-                     SOLVER_TOO_MANY_STEPS);
+    assert_int_equal(
+        pack_part(work, stepper_light(spun.stepper), PACK, at_noon, &hopeless, &step, &counts, &where),
+        SOLVER_TOO_MANY_STEPS);
     assert_in_range(where, 0, PACK * spun.model->kernel->species - 1);
-    assert_int_equal(pack_fault(spun.model, PACK, SOLVER_TOO_MANY_STEPS, where, 2003.5, &fault), FAULT_NUMERICS);
+    assert_int_equal(pack_fault(spun.model, PACK, SOLVER_TOO_MANY_STEPS, where, 2003.5, &fault),
+                     FAULT_NUMERICS);
     assert_non_null(strstr(fault.text, "too many steps"));
     pack_free(work);
 }
 
 /* ---- explicit days against factors ---- */
 
-static double worst_ozone(const Run *means, const Run *days, double from_km, double to_km) {
+static double worst_ozone(const Run *means, const Run *days, double from_km, double to_km)
+{
     double worst = 0.0;
     int padded = means->model->grid.padded, o3 = solved(means, "O3");
     for (int l = 0; l < means->model->grid.layers; l++) {
         double km = 1e-5 * means->model->grid.middle[l];
-        double apart = stepper_mean(days->stepper)[FIELD(padded, o3, l)] / means->column->x[FIELD(padded, o3, l)] - 1.0;
-        if (fabs(apart) > 0.02) print_message("   %4.1f km: explicit day %+.1f %% from factors\n", km, 100.0 * apart);
-        if (km >= from_km && km <= to_km) worst = fmax(worst, fabs(apart));
+        double apart =
+            stepper_mean(days->stepper)[FIELD(padded, o3, l)] / means->column->x[FIELD(padded, o3, l)] - 1.0;
+        if (fabs(apart) > 0.02)
+            print_message("   %4.1f km: explicit day %+.1f %% from factors\n", km, 100.0 * apart);
+        if (km >= from_km && km <= to_km)
+            worst = fmax(worst, fabs(apart));
     }
     return worst;
 }
 
-/* With next to no mixing the two differ by nothing but the factors themselves. The lowest layer gives ozone to the ground,
- * and at the top a day is too short for balance. */
-static void test_explicit_agrees_without_mixing(void **state) {
+/* With next to no mixing the two differ by nothing but the factors themselves. The lowest layer gives ozone
+ * to the ground, and at the top a day is too short for balance. */
+static void test_explicit_agrees_without_mixing(void **state)
+{
     char path[300];
     write_file(state, "still.csv", "# source: test\naltitude_km,eddy_cm2_s-1\n0,1\n90,1\n", path);
     Settings settings = coarse();
@@ -549,7 +618,8 @@ static void test_explicit_agrees_without_mixing(void **state) {
 }
 
 /* A year at steady boundary values from one settled state: 2 % in ozone at every layer. */
-static void test_explicit_year_agrees(void **state) {
+static void test_explicit_year_agrees(void **state)
+{
     (void)state;
     Settings settings = coarse();
     Run means = start(&settings);
@@ -564,17 +634,20 @@ static void test_explicit_year_agrees(void **state) {
     double worst = worst_ozone(&means, &days, 0.0, 74.0), top = worst_ozone(&means, &days, 74.0, 90.0);
     double du = column_ozone_du(means.model, means.column->x);
     double du_days = column_ozone_du(days.model, stepper_mean(days.stepper));
-    print_message("a year of explicit days and of factors: %.2f and %.2f DU, worst layer %.1f %%\n", du_days, du, 100.0 * worst);
+    print_message("a year of explicit days and of factors: %.2f and %.2f DU, worst layer %.1f %%\n", du_days,
+                  du, 100.0 * worst);
     assert_true(fabs(du_days / du - 1.0) < 0.005);
     assert_true(worst < 0.02);
-    /* Above 74 km eddy diffusion crosses a layer within some 11 h, as fast as ozone itself turns over, and no splitting with
-     * steps of days resolves that. With outer steps of 0.1 day the two agree within 1 % up to 78 km. */
+    /* Above 74 km eddy diffusion crosses a layer within some 11 h, as fast as ozone itself turns over, and no
+     * splitting with steps of days resolves that. With outer steps of 0.1 day the two agree within 1 % up to
+     * 78 km. */
     assert_true(top < 0.08);
     end(&means);
     end(&days);
 }
 
-int main(void) {
+int main(void)
+{
     omp_set_num_threads(1); /* one core serves as well, and waiting threads would take the others */
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(test_load_and_store),

@@ -37,8 +37,7 @@ static void fault_survives_long_text(void **state)
 static void fault_finds_the_nearest_word(void **state)
 {
     (void)state;
-    static const char *const words[] = {"CFC-11",     "CFC-12", "HCFC-22",
-                                        "spacing_km", "top_km", "O3"};
+    static const char *const words[] = {"CFC-11", "CFC-12", "HCFC-22", "spacing_km", "top_km", "O3"};
     size_t n = sizeof words / sizeof words[0];
     assert_string_equal(fault_nearest("cfc-11", words, n), "CFC-11");
     assert_string_equal(fault_nearest("CFC_12", words, n), "CFC-12");
@@ -215,11 +214,9 @@ static void files_are_located(void **state)
     char deep[300];
     write_file(state, "data/deep.csv", "z\n1\n", deep);
     Fault fault = {0};
-    assert_int_equal(table_locate("test", "here.csv", *state, data, found, sizeof found, &fault),
-                     0);
+    assert_int_equal(table_locate("test", "here.csv", *state, data, found, sizeof found, &fault), 0);
     assert_string_equal(found, here);
-    assert_int_equal(table_locate("test", "deep.csv", *state, data, found, sizeof found, &fault),
-                     0);
+    assert_int_equal(table_locate("test", "deep.csv", *state, data, found, sizeof found, &fault), 0);
     assert_string_equal(found, deep);
     assert_int_equal(table_locate("test", here, "", "", found, sizeof found, &fault), 0);
     assert_string_equal(found, here);
@@ -277,8 +274,7 @@ static void schedule_refuses_bad_rows(void **state)
     } cases[] = {
         {COLUMN_LINE, ":1: ", "no rows"},
         {"year,gas,kind,amount,unit\n1960,A,abundance,1,ppt\n", ":1: ", "no column line"},
-        {"year,gas,kind,amuont,unit,line\n1960,A,abundance,1,ppt,x\n",
-         ":1: ", "did you mean amount"},
+        {"year,gas,kind,amuont,unit,line\n1960,A,abundance,1,ppt,x\n", ":1: ", "did you mean amount"},
         {"year,gas,kind,amount,unit,unit\n1960,A,abundance,1,ppt,x\n", ":1: ", "two columns"},
         {COLUMN_LINE "1960,A,emission,1,ppt,x\n", ":2: ", "emission"},
         {COLUMN_LINE "1960,A,abundanse,1,ppt,x\n", ":2: ", "did you mean abundance"},
@@ -292,13 +288,10 @@ static void schedule_refuses_bad_rows(void **state)
         {COLUMN_LINE "60,A,abundance,1,ppt,x\n", ":2: ", "whole year"},
         {COLUMN_LINE "1960,,abundance,1,ppt,x\n", ":2: ", "gas is empty"},
         {COLUMN_LINE "1960,A,abundance,1,ppt,\n", ":2: ", "line is empty"},
-        {COLUMN_LINE "1960,a-name-with-far-more-than-31-letters,abundance,1,ppt,x\n",
-         ":2: ", "shorten"},
-        {COLUMN_LINE
-         "1960,A,abundance,1,ppt,x\n1961,A,abundance,1,ppt,x\n1960,A,abundance,2,ppt,x\n",
+        {COLUMN_LINE "1960,a-name-with-far-more-than-31-letters,abundance,1,ppt,x\n", ":2: ", "shorten"},
+        {COLUMN_LINE "1960,A,abundance,1,ppt,x\n1961,A,abundance,1,ppt,x\n1960,A,abundance,2,ppt,x\n",
          ":4: ", "year 1960 twice, first on line 2"},
-        {COLUMN_LINE "1960,A,abundance,1,ppt,x\n1962,A,abundance,1,ppt,x\n",
-         ":3: ", "lacks the year 1961"},
+        {COLUMN_LINE "1960,A,abundance,1,ppt,x\n1962,A,abundance,1,ppt,x\n", ":3: ", "lacks the year 1961"},
         {COLUMN_LINE "1960,A,abundance,1,ppt,x\n1965,A,abundance,1,ppt,x\n",
          ":3: ", "lacks the years 1961 to 1964"},
         {COLUMN_LINE "1960,A,abundance,1\n", ":2: ", "4 cells"},
@@ -343,22 +336,19 @@ static void baseline_holds_the_published_figures(void **state)
     char path[500];
     Schedule schedule;
     Fault fault = {0};
-    assert_int_equal(table_locate("schedule", "baseline-schedule.csv", "", data_dir(), path,
-                                  sizeof path, &fault),
-                     0);
+    assert_int_equal(
+        table_locate("schedule", "baseline-schedule.csv", "", data_dir(), path, sizeof path, &fault), 0);
     if (schedule_read(&schedule, path, &fault))
         fail_msg("%s", fault.text);
     assert_int_equal(schedule.gases, 21);
     assert_int_equal(schedule_covers(&schedule, 1955, 2100, &fault), 0);
     for (size_t p = 0; p < sizeof published / sizeof published[0]; p++)
-        check_near(shipped(&schedule, published[p].gas, published[p].year), published[p].amount,
-                   1e-14);
+        check_near(shipped(&schedule, published[p].gas, published[p].year), published[p].amount, 1e-14);
     /* the pathway joins the observations without a jump: a step no larger than 1 % a year */
     static const char *const joined[] = {"CO2", "CH4", "N2O"};
     for (int g = 0; g < 3; g++)
         for (int year = 2020; year < 2100; year++)
-            check_near(shipped(&schedule, joined[g], year + 1), shipped(&schedule, joined[g], year),
-                       0.01);
+            check_near(shipped(&schedule, joined[g], year + 1), shipped(&schedule, joined[g], year), 0.01);
     schedule_free(&schedule);
 }
 

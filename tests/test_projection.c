@@ -1,5 +1,6 @@
-/* Tests of the column through the years (model/column, model/step, model/projection): what goes in and out is counted, the
- * splitting converges, threads change nothing, and chlorine destroys ozone. Built-in case on coarse layers. */
+/* Tests of the column through the years (model/column, model/step, model/projection): what goes in and out is
+ * counted, the splitting converges, threads change nothing, and chlorine destroys ozone. Built-in case on
+ * coarse layers. */
 #define _XOPEN_SOURCE 700
 #include "scratch.h"
 
@@ -14,11 +15,14 @@ typedef struct {
     Stepper *stepper;
 } Run;
 
-static void ok(int code, const Fault *fault) {
-    if (code) fail_msg("fault %d: %s", code, fault->text);
+static void ok(int code, const Fault *fault)
+{
+    if (code)
+        fail_msg("fault %d: %s", code, fault->text);
 }
 
-static Settings coarse(double spacing_km, int first_year) {
+static Settings coarse(double spacing_km, int first_year)
+{
     Settings settings;
     settings_default(&settings, data_dir());
     settings.spacing_km = spacing_km;
@@ -27,7 +31,8 @@ static Settings coarse(double spacing_km, int first_year) {
     return settings;
 }
 
-static Run start(const Settings *settings, int threads) {
+static Run start(const Settings *settings, int threads)
+{
     Run run;
     Fault fault = {0};
     ok(model_make(&run.model, settings, &fault), &fault);
@@ -36,33 +41,45 @@ static Run start(const Settings *settings, int threads) {
     return run;
 }
 
-static void end(Run *run) {
+static void end(Run *run)
+{
     stepper_free(run->stepper);
     column_free(run->column);
     model_free(run->model);
 }
 
-static void advance(Run *run, double days, long steps, int frozen) {
+static void advance(Run *run, double days, long steps, int frozen)
+{
     Fault fault = {0};
     for (long i = 0; i < steps; i++)
         ok(stepper_advance(run->stepper, run->column, days * DAY_SECONDS, frozen, &fault), &fault);
 }
 
-static size_t field_size(const Model *model) { return (size_t)model->mechanism->solved * (size_t)model->grid.padded; }
+static size_t field_size(const Model *model)
+{
+    return (size_t)model->mechanism->solved * (size_t)model->grid.padded;
+}
 
-static int solved(const Model *model, const char *name) {
+static int solved(const Model *model, const char *name)
+{
     int s = mechanism_solved(model->mechanism, name);
-    if (s < 0) fail_msg("no species %s", name);
+    if (s < 0)
+        fail_msg("no species %s", name);
     return s;
 }
 
-static double at(const Run *run, const char *name, int layer) {
+static double at(const Run *run, const char *name, int layer)
+{
     return run->column->x[FIELD(run->model->grid.padded, solved(run->model, name), layer)];
 }
 
-static double du(const Run *run) { return column_ozone_du(run->model, run->column->x); }
+static double du(const Run *run)
+{
+    return column_ozone_du(run->model, run->column->x);
+}
 
-static Run copy_of(const Run *from, const Settings *settings, int threads) {
+static Run copy_of(const Run *from, const Settings *settings, int threads)
+{
     Run run = start(settings, threads);
     assert_int_equal(field_size(run.model), field_size(from->model));
     memcpy(run.column->x, from->column->x, field_size(from->model) * sizeof(double));
@@ -74,15 +91,18 @@ static Run copy_of(const Run *from, const Settings *settings, int threads) {
 
 static const char *const accounted[] = {"Cl", "Br", "N", "H"};
 
-static void check_closure(const Run *run, const char *what) {
+static void check_closure(const Run *run, const char *what)
+{
     for (size_t i = 0; i < 4; i++) {
         int element = mechanism_element(run->model->mechanism, accounted[i]);
         double closure = column_closure(run->model, run->column, element);
         double moved = column_ledger_atoms(run->model, run->column, element) /
                        column_atoms(run->model, run->column->x, element);
         print_message("   %s, %s: closed to %.1e, %+.1e of it moved\n", what, accounted[i], closure, moved);
-        if (!(fabs(closure) < 1e-10)) fail_msg("%s: %s is closed to %.2e only", what, accounted[i], closure);
-        if (!(fabs(moved) > 1e-7)) fail_msg("%s: hardly any %s came or went, the test shows nothing", what, accounted[i]);
+        if (!(fabs(closure) < 1e-10))
+            fail_msg("%s: %s is closed to %.2e only", what, accounted[i], closure);
+        if (!(fabs(moved) > 1e-7))
+            fail_msg("%s: hardly any %s came or went, the test shows nothing", what, accounted[i]);
     }
     const SolverCounts *counts = &run->column->counts;
     if (!(counts->most_negative >= -run->model->settings.absolute_tolerance_cm3))
@@ -90,34 +110,41 @@ static void check_closure(const Run *run, const char *what) {
     assert_true((counts->negatives == 0) == (counts->most_negative == 0.0));
 }
 
-static void test_closure(void **state) {
+static void test_closure(void **state)
+{
     (void)state;
     static const struct {
         const char *name;
         int day;
         double days;
         long steps;
-    } modes[] = {{"factors", DAY_FACTORS, 365.25 / 24, 48}, {"means", DAY_MEAN, 365.25 / 24, 96}, {"explicit days", DAY_EXPLICIT, 1.0, 60}};
+    } modes[] = {{"factors", DAY_FACTORS, 365.25 / 24, 48},
+                 {"means", DAY_MEAN, 365.25 / 24, 96},
+                 {"explicit days", DAY_EXPLICIT, 1.0, 60}};
     for (size_t i = 0; i < sizeof modes / sizeof modes[0]; i++) {
         Settings settings = coarse(2.0, 1985);
         settings.last_year = 1989;
         settings.day = modes[i].day;
-        Run run = start(&settings, 1); /* from the initial profiles: radicals from nothing, everything moves */
+        Run run =
+            start(&settings, 1); /* from the initial profiles: radicals from nothing, everything moves */
         advance(&run, modes[i].days, modes[i].steps, 0);
         check_closure(&run, modes[i].name);
         end(&run);
     }
 }
 
-/* The ledger is not the difference of the contents in other words: it does not see a molecule put in by hand, and a ledger
- * entry that nothing stands behind shows. */
-static void test_closure_can_fail(void **state) {
+/* The ledger is not the difference of the contents in other words: it does not see a molecule put in by hand,
+ * and a ledger entry that nothing stands behind shows. */
+static void test_closure_can_fail(void **state)
+{
     (void)state;
     Settings settings = coarse(4.0, 1985);
     Run run = start(&settings, 1);
     advance(&run, 15.0, 4, 0);
-    int element = mechanism_element(run.model->mechanism, "Cl"), clo = solved(run.model, "ClO"), padded = run.model->grid.padded;
-    double atoms = column_atoms(run.model, run.column->x, element), cell = run.model->air.number_density[5] * run.model->grid.depth[5];
+    int element = mechanism_element(run.model->mechanism, "Cl"), clo = solved(run.model, "ClO"),
+        padded = run.model->grid.padded;
+    double atoms = column_atoms(run.model, run.column->x, element),
+           cell = run.model->air.number_density[5] * run.model->grid.depth[5];
     assert_true(fabs(column_closure(run.model, run.column, element)) < 1e-10);
     run.column->x[FIELD(padded, clo, 5)] += 1e-8 * atoms / cell;
     check_near(column_closure(run.model, run.column, element), 1e-8, 1e-2);
@@ -137,7 +164,8 @@ static void test_closure_can_fail(void **state) {
 
 /* ---- ground and held species ---- */
 
-static void test_ground_and_held(void **state) {
+static void test_ground_and_held(void **state)
+{
     (void)state;
     Settings settings = coarse(2.0, 1985);
     Run run = start(&settings, 1);
@@ -155,7 +183,8 @@ static void test_ground_and_held(void **state) {
     assert_true(at(&run, "CO", 0) == 90e-9 && at(&run, "H2", 0) == 530e-9); /* built-in bounds */
     /* the ground takes ozone, HCl and HNO3 up, and lets the CFCs in */
     assert_true(run.column->received[solved(model, "O3")] < 0.0);
-    assert_true(run.column->received[solved(model, "HCl")] < 0.0 && run.column->received[solved(model, "HNO3")] < 0.0);
+    assert_true(run.column->received[solved(model, "HCl")] < 0.0 &&
+                run.column->received[solved(model, "HNO3")] < 0.0);
     assert_true(run.column->received[solved(model, "CFC-12")] > 0.0);
     assert_true(run.column->washed[solved(model, "HCl")] > 0.0);
     assert_true(run.column->washed[solved(model, "CFC-12")] == 0.0);
@@ -165,8 +194,10 @@ static void test_ground_and_held(void **state) {
         int s = model->held_species[h], any = 0;
         for (int l = 0; l < model->grid.layers; l++) {
             size_t i = FIELD(model->grid.padded, h, l);
-            assert_true((model->held_free[i] == 0.0) == (1e-5 * model->grid.middle[l] < settings.tropopause_km));
-            if (model->held_free[i] != 0.0) continue;
+            assert_true((model->held_free[i] == 0.0) ==
+                        (1e-5 * model->grid.middle[l] < settings.tropopause_km));
+            if (model->held_free[i] != 0.0)
+                continue;
             any++;
             assert_true(model->held_fraction[i] > 0.0);
             assert_true(run.column->x[FIELD(model->grid.padded, s, l)] == model->held_fraction[i]);
@@ -181,15 +212,18 @@ static void test_ground_and_held(void **state) {
     end(&run);
 }
 
-/* Deposition alone: a gas that nothing else touches leaves through the ground, and the ledger says how much. */
-static void test_deposition_is_counted(void **state) {
+/* Deposition alone: a gas that nothing else touches leaves through the ground, and the ledger says how much.
+ */
+static void test_deposition_is_counted(void **state)
+{
     (void)state;
     Settings settings = coarse(2.0, 1985);
     Run run = start(&settings, 1);
     Settings closed = settings;
     closed.bounds = 0;
     for (int b = 0; b < settings.bounds; b++)
-        if (strcmp(settings.bound[b].species, "O3")) closed.bound[closed.bounds++] = settings.bound[b];
+        if (strcmp(settings.bound[b].species, "O3"))
+            closed.bound[closed.bounds++] = settings.bound[b];
     assert_int_equal(closed.bounds, settings.bounds - 1);
     Run shut = start(&closed, 1);
     assert_int_equal(shut.model->surface_kind[solved(shut.model, "O3")], SURFACE_CLOSED);
@@ -208,13 +242,15 @@ static void test_deposition_is_counted(void **state) {
 
 /* ---- faults of the case ---- */
 
-static void expect_fault(const Settings *settings, const char *piece, const char *other) {
+static void expect_fault(const Settings *settings, const char *piece, const char *other)
+{
     Model *model = (Model *)1;
     Fault fault = {0};
     if (!model_make(&model, settings, &fault)) {
         Column *column = NULL;
         int code = column_make(&column, model, &fault);
-        if (!code) fail_msg("no fault about %s", piece);
+        if (!code)
+            fail_msg("no fault about %s", piece);
         assert_null(column);
         model_free(model);
     } else {
@@ -223,14 +259,30 @@ static void expect_fault(const Settings *settings, const char *piece, const char
     check_fault(&fault, piece, other, NULL);
 }
 
-static void test_faults_of_the_case(void **state) {
+static void test_faults_of_the_case(void **state)
+{
     char path[300];
     Settings settings = coarse(4.0, 1985), bad = settings;
-    write_file(state, "schedule.csv", "# source: test\nyear,gas,kind,amount,unit,line\n1985,CFC-99,abundance,1,ppt,x\n", path);
+    write_file(state, "schedule.csv",
+               "# source: test\nyear,gas,kind,amount,unit,line\n1985,CFC-99,abundance,1,ppt,x\n", path);
     snprintf(bad.schedule_file, sizeof bad.schedule_file, "%s", path);
     expect_fault(&bad, path, "CFC-99");
 
-    write_file(state, "short.csv", "# source: test\nyear,gas,kind,amount,unit,line\n1980,N2O,abundance,300,ppb,x\n", path);
+    bad = settings;
+    write_file(state, "wet.csv",
+               "# source: test\nyear,gas,kind,amount,unit,line\n1985,H2O,abundance,1000,ppm,x\n", path);
+    snprintf(bad.schedule_file, sizeof bad.schedule_file, "%s", path);
+    expect_fault(&bad, path, "held up to the tropopause");
+
+    bad = settings; /* nothing to hold below the tropopause */
+    bad.edges = 5;
+    for (int e = 0; e < bad.edges; e++)
+        bad.edge_km[e] = e ? 20.0 + 10.0 * e : 0.0;
+    expect_fault(&bad, "lowest layer", "surface.tropopause_km");
+
+    bad = settings;
+    write_file(state, "short.csv",
+               "# source: test\nyear,gas,kind,amount,unit,line\n1980,N2O,abundance,300,ppb,x\n", path);
     snprintf(bad.schedule_file, sizeof bad.schedule_file, "%s", path);
     expect_fault(&bad, path, "N2O");
 
@@ -240,13 +292,15 @@ static void test_faults_of_the_case(void **state) {
 
     bad = settings;
     snprintf(bad.case_path, sizeof bad.case_path, "mine.cfg");
+    bad.bounds_given = 1;
     snprintf(bad.bound[0].species, sizeof bad.bound[0].species, "CFC-11");
     expect_fault(&bad, "mine.cfg", "CFC-11");
     snprintf(bad.bound[0].species, sizeof bad.bound[0].species, "XeF6");
     expect_fault(&bad, "mine.cfg", "XeF6");
 
     bad = settings;
-    write_file(state, "aerosol.csv", "# source: test\naltitude_km,surface_um2_cm-3,effective_radius_um\n0,1,0.1\n40,1,0.1\n", path);
+    write_file(state, "aerosol.csv",
+               "# source: test\naltitude_km,surface_um2_cm-3,effective_radius_um\n0,1,0.1\n40,1,0.1\n", path);
     snprintf(bad.aerosol_file, sizeof bad.aerosol_file, "%s", path);
     expect_fault(&bad, path, "0 to 40 km");
 
@@ -256,7 +310,8 @@ static void test_faults_of_the_case(void **state) {
     expect_fault(&bad, path, "tropospheric water");
 
     bad = settings;
-    write_file(state, "initial.csv", "# source: test\naltitude_km,O3,Unobtainium\n0,1e-8,0\n90,1e-7,0\n", path);
+    write_file(state, "initial.csv", "# source: test\naltitude_km,O3,Unobtainium\n0,1e-8,0\n90,1e-7,0\n",
+               path);
     snprintf(bad.initial_file, sizeof bad.initial_file, "%s", path);
     expect_fault(&bad, path, "Unobtainium");
 
@@ -268,14 +323,18 @@ static void test_faults_of_the_case(void **state) {
 
 /* ---- splitting ---- */
 
-/* Slow gases after 60 days at steps h, h/2, h/4, h/8, from one settled state, with everything that is made afresh now and then
- * held: mean light, no aerosol, photolysis never refreshed. Then the splitting is all that differs. */
-static void test_splitting_is_second_order(void **state) {
+/* Slow gases after 60 days at steps h, h/2, h/4, h/8, from one settled state, with everything that is made
+ * afresh now and then held: mean light, no aerosol, photolysis never refreshed. Then the splitting is all
+ * that differs. */
+static void test_splitting_is_second_order(void **state)
+{
     static const char *const gases[] = {"N2O", "CFC-12", "CFC-11", "CH4", "O3"};
     enum { GASES = 5, LEVELS = 4 };
     char path[300];
-    write_file(state, "clear.csv",
-               "# source: test\naltitude_km,surface_um2_cm-3,effective_radius_um\n0,1e-12,0.1\n90,1e-12,0.1\n", path);
+    write_file(
+        state, "clear.csv",
+        "# source: test\naltitude_km,surface_um2_cm-3,effective_radius_um\n0,1e-12,0.1\n90,1e-12,0.1\n",
+        path);
     Settings settings = coarse(2.0, 1990);
     snprintf(settings.aerosol_file, sizeof settings.aerosol_file, "%s", path);
     settings.day = DAY_MEAN;
@@ -300,21 +359,25 @@ static void test_splitting_is_second_order(void **state) {
         int s = solved(from.model, gases[g]);
         for (int l = 10; l < 23; l++) /* 20 to 46 km */
             for (int i = 0; i + 1 < LEVELS; i++) {
-                double coarse_x = x[i][FIELD(from.model->grid.padded, s, l)], fine_x = x[i + 1][FIELD(from.model->grid.padded, s, l)];
+                double coarse_x = x[i][FIELD(from.model->grid.padded, s, l)],
+                       fine_x = x[i + 1][FIELD(from.model->grid.padded, s, l)];
                 apart[i] += fabs(coarse_x - fine_x);
             }
         double first = log2(apart[0] / apart[1]), second = log2(apart[1] / apart[2]);
         print_message("   %s: order %.2f, then %.2f\n", gases[g], first, second);
-        if (strcmp(gases[g], "O3")) assert_true(second > 1.5 && second < 2.5);
+        if (strcmp(gases[g], "O3"))
+            assert_true(second > 1.5 && second < 2.5);
         assert_true(apart[1] < apart[0] && apart[2] < apart[1]);
     }
-    for (int i = 0; i < LEVELS; i++) free(x[i]);
+    for (int i = 0; i < LEVELS; i++)
+        free(x[i]);
     end(&from);
 }
 
-/* Halving the default step on the default layers moves the column by less than 0.1 DU. What is made afresh now and then is
- * made afresh often, so that its thresholds do not hide what the step does. */
-static void test_default_step(void **state) {
+/* Halving the default step on the default layers moves the column by less than 0.1 DU. What is made afresh
+ * now and then is made afresh often, so that its thresholds do not hide what the step does. */
+static void test_default_step(void **state)
+{
     (void)state;
     Settings settings = coarse(1.0, 1990);
     settings.refresh_column = 5e-4;
@@ -325,7 +388,8 @@ static void test_default_step(void **state) {
     advance(&whole, settings.outer_step_days, lround(3.0 * 365.25 / settings.outer_step_days), 0);
     advance(&half, finer.outer_step_days, lround(3.0 * 365.25 / finer.outer_step_days), 0);
     double moved = du(&half) - du(&whole);
-    print_message("   three years: %.3f DU, half the step %.3f DU, moved by %.3f\n", du(&whole), du(&half), moved);
+    print_message("   three years: %.3f DU, half the step %.3f DU, moved by %.3f\n", du(&whole), du(&half),
+                  moved);
     assert_true(fabs(moved) < 0.1);
     end(&whole);
     end(&half);
@@ -333,7 +397,8 @@ static void test_default_step(void **state) {
 
 /* ---- threads ---- */
 
-static void test_threads_change_nothing(void **state) {
+static void test_threads_change_nothing(void **state)
+{
     (void)state;
     for (int day = DAY_MEAN; day <= DAY_EXPLICIT; day++) {
         Settings settings = coarse(2.0, 1985);
@@ -342,7 +407,8 @@ static void test_threads_change_nothing(void **state) {
         double days = day == DAY_EXPLICIT ? 1.0 : 15.0;
         advance(&one, days, 6, 0);
         advance(&two, days, 6, 0);
-        size_t bytes = field_size(one.model) * sizeof(double), list = (size_t)one.model->mechanism->solved * sizeof(double);
+        size_t bytes = field_size(one.model) * sizeof(double),
+               list = (size_t)one.model->mechanism->solved * sizeof(double);
         assert_memory_equal(one.column->x, two.column->x, bytes);
         assert_memory_equal(stepper_mean(one.stepper), stepper_mean(two.stepper), bytes);
         assert_memory_equal(one.column->received, two.column->received, list);
@@ -356,7 +422,8 @@ static void test_threads_change_nothing(void **state) {
 
 /* ---- when light is made afresh ---- */
 
-static void test_light_stale(void **state) {
+static void test_light_stale(void **state)
+{
     (void)state;
     Settings settings = coarse(2.0, 1985);
     Run run = start(&settings, 1);
@@ -377,13 +444,16 @@ static void test_light_stale(void **state) {
 
 /* ---- layers that fill no pack ---- */
 
-static void test_layers_that_fill_no_pack(void **state) {
+static void test_layers_that_fill_no_pack(void **state)
+{
     (void)state;
     Settings settings = coarse(2.0, 1985), uneven = settings;
     /* 35 layers: 2 km as in the even grid up to 60 km, 4 km above: 3 lanes of padding */
     uneven.edges = 0;
-    for (int i = 0; i <= 30; i++) uneven.edge_km[uneven.edges++] = 2.0 * i;
-    for (int i = 1; i <= 5; i++) uneven.edge_km[uneven.edges++] = 60.0 + 4.0 * i;
+    for (int i = 0; i <= 30; i++)
+        uneven.edge_km[uneven.edges++] = 2.0 * i;
+    for (int i = 1; i <= 5; i++)
+        uneven.edge_km[uneven.edges++] = 60.0 + 4.0 * i;
     uneven.top_km = 80.0;
     Run even = start(&settings, 1), other = start(&uneven, 1);
     assert_int_equal(other.model->grid.layers, 35);
@@ -392,9 +462,12 @@ static void test_layers_that_fill_no_pack(void **state) {
     advance(&other, 365.25 / 24, 24, 0);
     print_message("   even layers %.3f DU, uneven %.3f DU\n", du(&even), du(&other));
     assert_true(fabs(du(&even) - du(&other)) < 0.3);
-    for (int l = 8; l < 25; l++) check_near(at(&other, "O3", l), at(&even, "O3", l), 0.02);
-    for (int s = 0; s < other.model->mechanism->solved; s++) /* padding follows the top layer within its own step */
-        for (int l = 35; l < 40; l++) assert_true(isfinite(other.column->x[FIELD(40, s, l)]));
+    for (int l = 8; l < 25; l++)
+        check_near(at(&other, "O3", l), at(&even, "O3", l), 0.02);
+    for (int s = 0; s < other.model->mechanism->solved;
+         s++) /* padding follows the top layer within its own step */
+        for (int l = 35; l < 40; l++)
+            assert_true(isfinite(other.column->x[FIELD(40, s, l)]));
     check_closure(&other, "uneven layers");
     end(&even);
     end(&other);
@@ -402,9 +475,11 @@ static void test_layers_that_fill_no_pack(void **state) {
     /* 27 layers of their own, nothing like the even ones: runs and gives nearly the same column */
     settings.day = uneven.day = DAY_MEAN;
     uneven.edges = 0;
-    for (int i = 0; i <= 20; i++) uneven.edge_km[uneven.edges++] = 2.0 * i; /* to 40 km */
+    for (int i = 0; i <= 20; i++)
+        uneven.edge_km[uneven.edges++] = 2.0 * i; /* to 40 km */
     static const double above[] = {43, 47, 52, 58, 65, 72, 80};
-    for (int i = 0; i < 7; i++) uneven.edge_km[uneven.edges++] = above[i];
+    for (int i = 0; i < 7; i++)
+        uneven.edge_km[uneven.edges++] = above[i];
     even = start(&settings, 1);
     other = start(&uneven, 1);
     assert_int_equal(other.model->grid.layers, 27);
@@ -432,7 +507,8 @@ typedef struct {
     double worst;
 } Notes;
 
-static int on_record(void *context, const Record *record, Fault *fault) {
+static int on_record(void *context, const Record *record, Fault *fault)
+{
     (void)fault;
     Notes *notes = context;
     const Model *model = notes->run->model;
@@ -448,25 +524,31 @@ static int on_record(void *context, const Record *record, Fault *fault) {
     memset(notes->sum, 0, size * sizeof(double));
     notes->in_interval = 0;
     notes->last_end = record->time_end;
-    if (!notes->records++) notes->first_column = record->ozone_column;
+    if (!notes->records++)
+        notes->first_column = record->ozone_column;
     notes->last_column = record->ozone_column;
-    if (notes->records == notes->stop_after) notes->stop = 1;
+    if (notes->records == notes->stop_after)
+        notes->stop = 1;
     return 0;
 }
 
-static void on_progress(void *context, const Progress *progress) {
+static void on_progress(void *context, const Progress *progress)
+{
     Notes *notes = context;
     assert_true(progress->share >= notes->share && progress->share <= 1.0 + 1e-12);
     notes->share = progress->share;
     notes->spinning += progress->spinning_up;
     notes->steps++;
-    if (progress->spinning_up) return;
+    if (progress->spinning_up)
+        return;
     const double *mean = stepper_mean(notes->run->stepper);
-    for (size_t i = 0; i < field_size(notes->run->model); i++) notes->sum[i] += mean[i];
+    for (size_t i = 0; i < field_size(notes->run->model); i++)
+        notes->sum[i] += mean[i];
     notes->in_interval++;
 }
 
-static Notes watch(const Run *run, Watcher *watcher) {
+static Notes watch(const Run *run, Watcher *watcher)
+{
     Notes notes = {.run = run, .last_end = run->model->settings.first_year};
     notes.sum = calloc(field_size(run->model), sizeof(double));
     assert_non_null(notes.sum);
@@ -474,7 +556,8 @@ static Notes watch(const Run *run, Watcher *watcher) {
     return notes;
 }
 
-static void test_records(void **state) {
+static void test_records(void **state)
+{
     (void)state;
     Settings settings = coarse(4.0, 1985);
     settings.last_year = 1986;
@@ -500,7 +583,8 @@ static void test_records(void **state) {
     end(&run);
 }
 
-static void test_interruption(void **state) {
+static void test_interruption(void **state)
+{
     (void)state;
     Settings settings = coarse(4.0, 1985);
     settings.last_year = 1990;
@@ -533,7 +617,8 @@ static void test_interruption(void **state) {
 }
 
 /* A year of explicit days has 365 or 366 of them, four years 1461. */
-static void test_explicit_days_fill_the_years(void **state) {
+static void test_explicit_days_fill_the_years(void **state)
+{
     (void)state;
     Settings settings = coarse(5.0, 1985);
     settings.day = DAY_EXPLICIT;
@@ -560,23 +645,30 @@ typedef struct {
     int first;
 } Series;
 
-static int keep_column(void *context, const Record *record, Fault *fault) {
+static int keep_column(void *context, const Record *record, Fault *fault)
+{
     (void)fault;
     Series *series = context;
     series->column[(int)record->time_start - series->first] = record->ozone_column;
     return 0;
 }
 
-static double in_year(const Series *series, int year) { return series->column[year - series->first]; }
+static double in_year(const Series *series, int year)
+{
+    return series->column[year - series->first];
+}
 
-static int lowest_year(const Series *series, int first, int last) {
+static int lowest_year(const Series *series, int first, int last)
+{
     int lowest = first;
     for (int year = first; year <= last; year++)
-        if (in_year(series, year) < in_year(series, lowest)) lowest = year;
+        if (in_year(series, year) < in_year(series, lowest))
+            lowest = year;
     return lowest;
 }
 
-static void project(Settings *settings, Series *series, const char *what) {
+static void project(Settings *settings, Series *series, const char *what)
+{
     Run run = start(settings, 1);
     Watcher watcher = {.record = keep_column, .context = series};
     Fault fault = {0};
@@ -591,7 +683,8 @@ static void project(Settings *settings, Series *series, const char *what) {
 }
 
 /* The built-in schedule with N2O, CH4 and CO2 of 1960 throughout: only halogens differ between its years. */
-static void write_halogens_only(void **state, char *path) {
+static void write_halogens_only(void **state, char *path)
+{
     char from[400], line[400], kept[3][40] = {"", "", ""};
     static const char *const constant[] = {"N2O", "CH4", "CO2"};
     snprintf(from, sizeof from, "%s/baseline-schedule.csv", data_dir());
@@ -603,21 +696,26 @@ static void write_halogens_only(void **state, char *path) {
             char year[8], gas[32], amount[40], rest[300];
             int which = 3;
             if (sscanf(line, "%4[0-9],%31[^,],abundance,%39[^,],%299[^\n]", year, gas, amount, rest) == 4)
-                for (which = 0; which < 3 && strcmp(gas, constant[which]); which++) continue;
-            if (which < 3 && !strcmp(year, "1960")) strcpy(kept[which], amount);
+                for (which = 0; which < 3 && strcmp(gas, constant[which]); which++)
+                    continue;
+            if (which < 3 && !strcmp(year, "1960"))
+                strcpy(kept[which], amount);
             if (out && which < 3)
                 fprintf(out, "%s,%s,abundance,%s,%s\n", year, gas, kept[which], rest);
             else if (out)
                 fputs(line, out);
         }
         fclose(in);
-        if (out) assert_int_equal(fclose(out), 0);
+        if (out)
+            assert_int_equal(fclose(out), 0);
     }
-    for (int i = 0; i < 3; i++) assert_true(kept[i][0] != '\0');
+    for (int i = 0; i < 3; i++)
+        assert_true(kept[i][0] != '\0');
 }
 
 /* More chlorine, less ozone, and back: nothing but the halogens changes. */
-static void test_chlorine_destroys_ozone(void **state) {
+static void test_chlorine_destroys_ozone(void **state)
+{
     char path[300];
     write_halogens_only(state, path);
     Settings settings = coarse(2.5, 1955);
@@ -640,7 +738,8 @@ static void test_chlorine_destroys_ozone(void **state) {
 }
 
 /* The whole schedule on a coarse case: falls from 1960 to the late 1990s and recovers. */
-static void test_baseline_falls_and_recovers(void **state) {
+static void test_baseline_falls_and_recovers(void **state)
+{
     (void)state;
     Settings settings = coarse(4.0, 1955);
     settings.last_year = 2080;
@@ -657,7 +756,8 @@ static void test_baseline_falls_and_recovers(void **state) {
     assert_true(late > low + 0.2 * (start_column - low));
 }
 
-int main(void) {
+int main(void)
+{
     omp_set_num_threads(1); /* one core serves as well, and waiting threads would take the others */
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(test_closure),

@@ -121,8 +121,7 @@ static void settings_refuses_a_bad_case(void **state)
         {"numerics = { relative_tolerance = 1e999; };", ":1: ", "between"},
         {"years = { first = 4294969251; };", ":1: ", "too large"},
         {"years = { first = 99999999999999999999999; };", ":1: ", "too large"},
-        {"years = { first = 1955L; last = 9223372036854775807L; };",
-         ":1: ", "between 1750 and 2500"},
+        {"years = { first = 1955L; last = 9223372036854775807L; };", ":1: ", "between 1750 and 2500"},
         {"years = { first = 0xfffffffff; };", ":1: ", "too large"},
         {"years = { first = 2000;\n last = 1990; };", ":2: ", "comes before"},
         {"\nyears = { last = 1940; };", ":2: ", "comes before"},
@@ -141,27 +140,22 @@ static void settings_refuses_a_bad_case(void **state)
         {"grid = { top_km = 80; ", ":1: ", "bracket"},
         {"title = \"x\n", ": ", "syntax error"},
         {"years = { first = ; };", ":1: ", "syntax error"},
-        {BOUND("species = \"O3\"; kind = \"fixd\"; mole_fraction = 1e-8;"),
-         ":1: ", "did you mean fixed"},
+        {BOUND("species = \"O3\"; kind = \"fixd\"; mole_fraction = 1e-8;"), ":1: ", "did you mean fixed"},
         {BOUND("species = \"O3\"; kind = \"fixed\";"), ":1: ", "has no mole_fraction"},
-        {BOUND("species = \"O3\"; kind = \"fixed\"; velocity_cm_s = 0.1;"),
-         ":1: ", "does not go with"},
-        {BOUND("species = \"O3\"; kind = \"fixed\"; mole_fraction = 2;"),
-         ":1: ", "between 0 and 1"},
-        {BOUND("species = \"O3\"; kind = \"deposition\"; velocity_cm_s = -1;"),
-         ":1: ", "between 0 and 10"},
-        {BOUND("species = \"\"; kind = \"deposition\"; velocity_cm_s = 1;"),
-         ":1: ", "species is empty"},
+        {BOUND("species = \"O3\"; kind = \"fixed\"; velocity_cm_s = 0.1;"), ":1: ", "does not go with"},
+        {BOUND("species = \"O3\"; kind = \"fixed\"; mole_fraction = 2;"), ":1: ", "between 0 and 1"},
+        {BOUND("species = \"O3\"; kind = \"deposition\"; velocity_cm_s = -1;"), ":1: ", "between 0 and 10"},
+        {BOUND("species = \"\"; kind = \"deposition\"; velocity_cm_s = 1;"), ":1: ", "species is empty"},
         {BOUND("kind = \"deposition\"; velocity_cm_s = 1;"), ":1: ", "has no species"},
         {BOUND("species = \"O3\"; velocity_cm_s = 1;"), ":1: ", "has no kind"},
         {BOUND("species = \"O3\"; knid = \"fixed\";"), ":1: ", "did you mean kind?"},
-        {BOUND("species = \"a-name-of-far-more-than-31-letters-x\"; kind = \"fixed\";"),
-         ":1: ", "fit"},
+        {BOUND("species = \"a-name-of-far-more-than-31-letters-x\"; kind = \"fixed\";"), ":1: ", "fit"},
         {"surface = { bounds = (1); };", ":1: ", "write groups"},
         {"surface = { bounds = 1; };", ":1: ", "round brackets"},
         {"surface = { bounds = ({species = \"O3\"; kind = \"fixed\"; mole_fraction = 0;},\n"
          "{species = \"O3\"; kind = \"fixed\"; mole_fraction = 0;}); };",
          ":2: ", "names O3 twice"},
+        {"day = { mode = \"explicit\"; };\noutput = { per_year = 366; };", ":2: ", "at most 365"},
         {"\n@include \"none.cfg\"\n", ":2: ", "cannot be opened"},
         {"@include \"/etc/hostname\"\n", ":1: ", "@include"},
         {"@include \"../outside-of-it.cfg\"\n", ":1: ", "@include"},
@@ -186,8 +180,7 @@ static void settings_keeps_to_its_folder(void **state)
     assert_int_equal(mkdir(inner, 0700), 0);
     snprintf(link_path, sizeof link_path, "%s/case/link.cfg", (char *)*state);
     assert_int_equal(symlink(outside, link_path), 0);
-    static const char *const texts[] = {"@include \"../outside.cfg\"\n",
-                                        "\t@include  \"link.cfg\"\n"};
+    static const char *const texts[] = {"@include \"../outside.cfg\"\n", "\t@include  \"link.cfg\"\n"};
     for (int t = 0; t < 2; t++) {
         Settings settings;
         Fault fault = {0};
@@ -294,9 +287,9 @@ static void settings_table_is_sound(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        WITH_FOLDER(settings_prints_what_it_reads),    WITH_FOLDER(settings_takes_a_case),
-        WITH_FOLDER(settings_refuses_a_bad_case),      WITH_FOLDER(settings_keeps_to_its_folder),
-        WITH_FOLDER(settings_refuses_what_is_no_case), cmocka_unit_test(settings_table_is_sound),
+        WITH_FOLDER(settings_prints_what_it_reads),       WITH_FOLDER(settings_takes_a_case),
+        WITH_FOLDER(settings_refuses_a_bad_case),         WITH_FOLDER(settings_keeps_to_its_folder),
+        WITH_FOLDER(settings_refuses_what_is_no_case),    cmocka_unit_test(settings_table_is_sound),
         cmocka_unit_test(settings_defaults_fit_the_data),
     };
     return cmocka_run_group_tests_name("settings", tests, NULL, NULL);

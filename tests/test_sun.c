@@ -1,5 +1,5 @@
-/* Tests of the sun's path through the day and of photolysis rates along it (model/sun), against integrals by a fine
- * Simpson rule and against the sun of the Astronomical Almanac. */
+/* Tests of the sun's path through the day and of photolysis rates along it (model/sun), against integrals by
+ * a fine Simpson rule and against the sun of the Astronomical Almanac. */
 #include <math.h>
 #include <setjmp.h>
 #include <stdarg.h>
@@ -15,14 +15,16 @@
 
 static const double degree = PI / 180.0;
 
-static Settings global_case(void) {
+static Settings global_case(void)
+{
     Settings settings;
     settings_default(&settings, "input/data");
     assert_int_equal(settings.sun, SUN_GLOBAL);
     return settings;
 }
 
-static Settings place(double latitude, double day) {
+static Settings place(double latitude, double day)
+{
     Settings settings = global_case();
     settings.sun = SUN_LATITUDE;
     settings.latitude_deg = latitude;
@@ -34,19 +36,32 @@ static Settings place(double latitude, double day) {
 
 typedef double Rate(double cosine, double depth);
 
-static double constant(double cosine, double depth) { return (void)cosine, depth; }
-static double beam(double cosine, double depth) { return cosine > 0.0 ? exp(-depth / cosine) : 0.0; }
-static double exponential(double cosine, double depth) { return exp(depth * cosine); }
+static double constant(double cosine, double depth)
+{
+    return (void)cosine, depth;
+}
+static double beam(double cosine, double depth)
+{
+    return cosine > 0.0 ? exp(-depth / cosine) : 0.0;
+}
+static double exponential(double cosine, double depth)
+{
+    return exp(depth * cosine);
+}
 /* Light through a shell: the slant factor is 1 overhead, 18 at the horizon, 70 at the end of twilight. */
-static double shell(double cosine, double depth) {
+static double shell(double cosine, double depth)
+{
     return exp(-depth * 2.0 / (cosine + sqrt(cosine * cosine + 0.012)));
 }
 
-static void sample(const Sun *sun, Rate *rate, double depth, double *table, int stride) {
-    for (int i = 0; i < sun->nodes; i++) table[i * stride] = rate(sun->cosine[i], depth);
+static void sample(const Sun *sun, Rate *rate, double depth, double *table, int stride)
+{
+    for (int i = 0; i < sun->nodes; i++)
+        table[i * stride] = rate(sun->cosine[i], depth);
 }
 
-static double spread(const Settings *settings, int refine, Rate *rate, double depth, double *knot) {
+static double spread(const Settings *settings, int refine, Rate *rate, double depth, double *knot)
+{
     Sun sun;
     double table[SUN_NODES];
     sun_make(&sun, settings, refine);
@@ -55,7 +70,8 @@ static double spread(const Settings *settings, int refine, Rate *rate, double de
 }
 
 /* Half the integral over the cosine from 0 to 1: the mean over the globe, half of which is dark. */
-static double global_mean(Rate *rate, double depth) {
+static double global_mean(Rate *rate, double depth)
+{
     enum { PARTS = 20000 };
     double sum = 0.0;
     for (int i = 0; i <= PARTS; i++)
@@ -63,25 +79,34 @@ static double global_mean(Rate *rate, double depth) {
     return 0.5 * sum / (3.0 * PARTS);
 }
 
-/* Mean over the day of a place with declination delta (radians), dark below SUN_TWILIGHT: over half the day, midnight to
- * noon, whose other half mirrors it. */
-static double place_mean(Rate *rate, double depth, double latitude, double delta) {
+/* Mean over the day of a place with declination delta (radians), dark below SUN_TWILIGHT: over half the day,
+ * midnight to noon, whose other half mirrors it. */
+static double place_mean(Rate *rate, double depth, double latitude, double delta)
+{
     enum { PARTS = 20000 };
     double constant_part = sin(latitude) * sin(delta), swing = cos(latitude) * cos(delta), sum = 0.0;
     double lowest = constant_part - swing, rise = 0.0;
-    if (lowest < SUN_TWILIGHT) rise = acos((constant_part - SUN_TWILIGHT) / swing);
+    if (lowest < SUN_TWILIGHT)
+        rise = acos((constant_part - SUN_TWILIGHT) / swing);
     for (int i = 0; i <= PARTS; i++) {
         double angle = rise + (PI - rise) * i / PARTS;
-        sum += (i == 0 || i == PARTS ? 1.0 : i % 2 ? 4.0 : 2.0) * rate(constant_part - swing * cos(angle), depth);
+        sum += (i == 0 || i == PARTS ? 1.0
+                : i % 2              ? 4.0
+                                     : 2.0) *
+               rate(constant_part - swing * cos(angle), depth);
     }
     return sum / (3.0 * PARTS) * (PI - rise) / PI;
 }
 
-static double relative(double got, double want) { return fabs(got / want - 1.0); }
+static double relative(double got, double want)
+{
+    return fabs(got / want - 1.0);
+}
 
 /* ---- the global sun ---- */
 
-static void test_global_path(void **state) {
+static void test_global_path(void **state)
+{
     (void)state;
     Settings settings = global_case();
     for (int refine = 1; refine <= 2; refine++) {
@@ -89,13 +114,16 @@ static void test_global_path(void **state) {
         sun_make(&sun, &settings, refine);
         assert_in_range(sun.nodes, 8, SUN_NODES);
         assert_true(sun.cosine[0] == 0.0 && fabs(sun.cosine[sun.nodes - 1] - 1.0) < 1e-15);
-        for (int i = 1; i < sun.nodes; i++) assert_true(sun.cosine[i] > sun.cosine[i - 1]);
+        for (int i = 1; i < sun.nodes; i++)
+            assert_true(sun.cosine[i] > sun.cosine[i - 1]);
         assert_true(sun.earth_sun == 1.0);
-        assert_true(fabs(sun.time[0] - 6.0 * 3600.0) < 1e-9 && fabs(sun.time[SUN_KNOTS - 1] - 12.0 * 3600.0) < 1e-9);
+        assert_true(fabs(sun.time[0] - 6.0 * 3600.0) < 1e-9 &&
+                    fabs(sun.time[SUN_KNOTS - 1] - 12.0 * 3600.0) < 1e-9);
         for (int i = 0; i < SUN_KNOTS; i++) {
             /* the cosine rises linearly from 0 at six to 1 at noon */
             assert_true(fabs(sun.knot[i] - (sun.time[i] / 3600.0 - 6.0) / 6.0) < 1e-14);
-            if (!i) continue;
+            if (!i)
+                continue;
             assert_true(sun.time[i] > sun.time[i - 1]);
             assert_true(fabs(sun.middle[i - 1] - 0.5 * (sun.knot[i - 1] + sun.knot[i])) < 1e-14);
         }
@@ -109,13 +137,15 @@ static void test_global_path(void **state) {
     assert_memory_equal(&a, &b, sizeof a);
 }
 
-static void test_global_mean(void **state) {
+static void test_global_mean(void **state)
+{
     (void)state;
     Settings settings = global_case();
     double knot[SUN_KNOTS];
     /* Constant light: half the day is dark. A missing half or an extra cosine shows here at once. */
     assert_true(relative(spread(&settings, 1, constant, 3e-5, knot), 1.5e-5) < 1e-12);
-    /* The logarithm is linear in the cosine, so the interpolant is exact and Simpson's rule is all the error. */
+    /* The logarithm is linear in the cosine, so the interpolant is exact and Simpson's rule is all the error.
+     */
     assert_true(relative(spread(&settings, 1, exponential, 1.0, knot), 0.5 * (exp(1.0) - 1.0)) < 1e-6);
     assert_true(relative(spread(&settings, 1, exponential, 4.0, knot), 0.5 * (exp(4.0) - 1.0) / 4.0) < 1e-5);
     /* beam: exp(-tau / mu), the limit of a flat atmosphere, whose logarithm is infinite at the horizon */
@@ -130,37 +160,45 @@ static void test_global_mean(void **state) {
         double want = global_mean(smooth[i].rate, smooth[i].depth);
         double coarse = relative(spread(&settings, 1, smooth[i].rate, smooth[i].depth, knot), want);
         double fine = relative(spread(&settings, 2, smooth[i].rate, smooth[i].depth, knot), want);
-        print_message("%s, depth %5.2f: error %.1e, twice as dense %.1e\n", smooth[i].rate == shell ? "shell" : "beam",
-                      smooth[i].depth, coarse, fine);
+        print_message("%s, depth %5.2f: error %.1e, twice as dense %.1e\n",
+                      smooth[i].rate == shell ? "shell" : "beam", smooth[i].depth, coarse, fine);
         assert_true(coarse < smooth[i].near);
         assert_true(fine < fmax(0.5 * coarse, 1e-5)); /* it is the interpolation, and it converges */
     }
-    /* the closed form of one of them: half of E2(1), Abramowitz and Stegun 1964, table 5.1 with E2 = exp(-1) - E1(1) */
+    /* the closed form of one of them: half of E2(1), Abramowitz and Stegun 1964, table 5.1 with E2 = exp(-1)
+     * - E1(1) */
     assert_true(relative(global_mean(beam, 1.0), 0.5 * (exp(-1.0) - 0.219383934395520)) < 1e-6);
 }
 
-/* What the chemistry integrates, linear between knots, must have the mean that goes with it, and be near the rate itself. */
-static void check_knots(const Settings *settings, Rate *rate, double depth, double near) {
+/* What the chemistry integrates, linear between knots, must have the mean that goes with it, and be near the
+ * rate itself. */
+static void check_knots(const Settings *settings, Rate *rate, double depth, double near)
+{
     Sun sun;
     double table[SUN_NODES], knot[SUN_KNOTS], sum = 0.0, top = 0.0;
     sun_make(&sun, settings, 1);
     sample(&sun, rate, depth, table, 1);
     double mean = sun_spread(&sun, table, 1, knot, 1);
-    for (int i = 1; i < SUN_KNOTS; i++) sum += 0.5 * (knot[i] + knot[i - 1]) * (sun.time[i] - sun.time[i - 1]);
+    for (int i = 1; i < SUN_KNOTS; i++)
+        sum += 0.5 * (knot[i] + knot[i - 1]) * (sun.time[i] - sun.time[i - 1]);
     assert_true(relative(2.0 * sum / DAY_SECONDS, mean) < 1e-13);
-    for (int i = 0; i < SUN_KNOTS; i++) top = fmax(top, knot[i]);
+    for (int i = 0; i < SUN_KNOTS; i++)
+        top = fmax(top, knot[i]);
     for (int i = 0; i < SUN_KNOTS; i++)
         if (fabs(knot[i] - rate(sun.knot[i], depth)) > near * top)
             fail_msg("knot %d: got %g, want %g", i, knot[i], rate(sun.knot[i], depth));
 }
 
-static void test_knots_carry_the_mean(void **state) {
+static void test_knots_carry_the_mean(void **state)
+{
     (void)state;
     Settings settings = global_case();
     check_knots(&settings, constant, 1.0, 1e-12);
     check_knots(&settings, exponential, 2.0, 2e-3);
-    for (double depth = 0.03; depth < 1.0; depth *= 3.0) check_knots(&settings, shell, depth, 1e-2);
-    /* a rate of the minutes around noon: straight lines between the knots make it broad, and the scaling lower */
+    for (double depth = 0.03; depth < 1.0; depth *= 3.0)
+        check_knots(&settings, shell, depth, 1e-2);
+    /* a rate of the minutes around noon: straight lines between the knots make it broad, and the scaling
+     * lower */
     check_knots(&settings, shell, 3.0, 3e-2);
     check_knots(&settings, shell, 10.0, 2e-1);
     for (double latitude = -80.0; latitude <= 80.0; latitude += 20.0)
@@ -168,14 +206,17 @@ static void test_knots_carry_the_mean(void **state) {
             settings = place(latitude, day);
             Sun sun;
             sun_make(&sun, &settings, 1);
-            if (!sun.nodes) continue;
+            if (!sun.nodes)
+                continue;
             check_knots(&settings, exponential, 2.0, 2e-2);
             check_knots(&settings, shell, 0.3, 3e-2);
         }
 }
 
-/* Rates that rise with the sun stay rising: the interpolant does not overshoot, whatever the jumps between nodes. */
-static void test_monotone_and_positive(void **state) {
+/* Rates that rise with the sun stay rising: the interpolant does not overshoot, whatever the jumps between
+ * nodes. */
+static void test_monotone_and_positive(void **state)
+{
     (void)state;
     Settings settings = global_case();
     Sun sun;
@@ -189,39 +230,51 @@ static void test_monotone_and_positive(void **state) {
         }
         double mean = sun_spread(&sun, table, 1, knot, 1);
         assert_true(mean > 0.0 && mean <= 0.5 * table[sun.nodes - 1] * (1.0 + 1e-12));
-        for (int i = 1; i < SUN_KNOTS; i++) assert_true(knot[i] >= knot[i - 1] * (1.0 - 1e-12));
+        for (int i = 1; i < SUN_KNOTS; i++)
+            assert_true(knot[i] >= knot[i - 1] * (1.0 - 1e-12));
     }
 }
 
-static void test_zero_rates_and_strides(void **state) {
+static void test_zero_rates_and_strides(void **state)
+{
     (void)state;
     enum { STRIDE = 7 };
     Settings settings = global_case();
     Sun sun;
     sun_make(&sun, &settings, 1);
     double table[SUN_NODES * STRIDE], knot[SUN_KNOTS * STRIDE], plain[SUN_NODES], plain_knot[SUN_KNOTS];
-    for (int i = 0; i < SUN_NODES * STRIDE; i++) table[i] = -1e30; /* must not be looked at */
-    for (int i = 0; i < SUN_KNOTS * STRIDE; i++) knot[i] = 5.0;
-    for (int i = 0; i < sun.nodes; i++) plain[i] = table[i * STRIDE] = shell(sun.cosine[i], 1.0);
+    for (int i = 0; i < SUN_NODES * STRIDE; i++)
+        table[i] = -1e30; /* must not be looked at */
+    for (int i = 0; i < SUN_KNOTS * STRIDE; i++)
+        knot[i] = 5.0;
+    for (int i = 0; i < sun.nodes; i++)
+        plain[i] = table[i * STRIDE] = shell(sun.cosine[i], 1.0);
     double a = sun_spread(&sun, plain, 1, plain_knot, 1), b = sun_spread(&sun, table, STRIDE, knot, STRIDE);
     assert_true(a == b);
-    for (int i = 0; i < SUN_KNOTS * STRIDE; i++) assert_true(knot[i] == (i % STRIDE ? 5.0 : plain_knot[i / STRIDE]));
+    for (int i = 0; i < SUN_KNOTS * STRIDE; i++)
+        assert_true(knot[i] == (i % STRIDE ? 5.0 : plain_knot[i / STRIDE]));
 
-    for (int i = 0; i < sun.nodes; i++) plain[i] = 0.0;
+    for (int i = 0; i < sun.nodes; i++)
+        plain[i] = 0.0;
     assert_true(sun_spread(&sun, plain, 1, plain_knot, 1) == 0.0);
-    for (int i = 0; i < SUN_KNOTS; i++) assert_true(plain_knot[i] == 0.0);
+    for (int i = 0; i < SUN_KNOTS; i++)
+        assert_true(plain_knot[i] == 0.0);
 
     /* dark at low sun, lit at noon: finite, and nothing where the nodes say nothing */
-    for (int i = 0; i < sun.nodes; i++) plain[i] = sun.cosine[i] > 0.5 ? 1e-6 : 0.0;
+    for (int i = 0; i < sun.nodes; i++)
+        plain[i] = sun.cosine[i] > 0.5 ? 1e-6 : 0.0;
     double mean = sun_spread(&sun, plain, 1, plain_knot, 1);
     assert_true(mean > 0.0 && mean <= 0.5e-6);
-    for (int i = 0; i < SUN_KNOTS; i++) assert_true(isfinite(plain_knot[i]) && (sun.knot[i] > 0.3 || plain_knot[i] < 1e-50));
+    for (int i = 0; i < SUN_KNOTS; i++)
+        assert_true(isfinite(plain_knot[i]) && (sun.knot[i] > 0.3 || plain_knot[i] < 1e-50));
 }
 
 /* ---- the sun of a latitude ---- */
 
-/* Declination by what the program shows of it: at 60 degrees north the noon sun stands at 90 - 60 + declination. */
-static double shown_declination(double day) {
+/* Declination by what the program shows of it: at 60 degrees north the noon sun stands at 90 - 60 +
+ * declination. */
+static double shown_declination(double day)
+{
     Settings settings = place(60.0, day);
     Sun sun;
     sun_make(&sun, &settings, 1);
@@ -229,9 +282,10 @@ static double shown_declination(double day) {
     return 60.0 - acos(sun.knot[SUN_KNOTS - 1]) / degree;
 }
 
-/* Low-precision sun of the Astronomical Almanac (page C5 of recent volumes, from memory; good to 0.01 degrees between 1950
- * and 2050) at noon of a day of a year; distance in au. */
-static double almanac(int year, double day, double *distance) {
+/* Low-precision sun of the Astronomical Almanac (page C5 of recent volumes, from memory; good to 0.01 degrees
+ * between 1950 and 2050) at noon of a day of a year; distance in au. */
+static double almanac(int year, double day, double *distance)
+{
     /* days since J2000 = 2000 January 1, 12 h; years 1950..2050 */
     double d = 365.0 * (year - 2000) + floor((year - 2000 + 3) / 4.0) + day - 1.0;
     double g = (357.529 + 0.98560028 * d) * degree, l = (280.459 + 0.98564736 * d) * degree;
@@ -240,7 +294,8 @@ static double almanac(int year, double day, double *distance) {
     return asin(sin((23.439 - 3.6e-7 * d) * degree) * sin(lambda)) / degree;
 }
 
-static void test_declination(void **state) {
+static void test_declination(void **state)
+{
     (void)state;
     /* solstices: the obliquity of the ecliptic, 23.44 degrees; Spencer's series is good to 0.035 */
     assert_true(fabs(shown_declination(172.0) - 23.44) < 0.035);
@@ -248,8 +303,8 @@ static void test_declination(void **state) {
     /* equinoxes: 20 or 21 March, 22 or 23 September */
     assert_true(shown_declination(79.0) < 0.0 && shown_declination(81.0) > 0.0);
     assert_true(shown_declination(265.0) > 0.0 && shown_declination(267.0) < 0.0);
-    /* The series has one calendar, the sun's drifts by up to a day (0.4 degrees at the equinoxes) between leap years; they
-     * agree at noon of a leap year, within the 0.035 degrees that Spencer gives. */
+    /* The series has one calendar, the sun's drifts by up to a day (0.4 degrees at the equinoxes) between
+     * leap years; they agree at noon of a leap year, within the 0.035 degrees that Spencer gives. */
     for (double day = 1.0; day <= 365.0; day += 1.0) {
         double distance, want = almanac(1952, day, &distance);
         if (fabs(shown_declination(day) - want) > 0.035)
@@ -257,7 +312,8 @@ static void test_declination(void **state) {
     }
 }
 
-static void test_earth_sun(void **state) {
+static void test_earth_sun(void **state)
+{
     (void)state;
     double mean = 0.0;
     for (double day = 1.0; day <= 365.0; day += 1.0) {
@@ -280,18 +336,21 @@ static void test_earth_sun(void **state) {
     assert_true(fabs(far.earth_sun - 0.9674) < 1e-3);  /* aphelion 1.0167 au */
 }
 
-static void test_noon_and_day_length(void **state) {
+static void test_noon_and_day_length(void **state)
+{
     (void)state;
     for (double latitude = -85.0; latitude <= 85.0; latitude += 10.0)
         for (double day = 1.0; day < 366.0; day += 26.0) {
             Settings settings = place(latitude, day);
             Sun sun;
             sun_make(&sun, &settings, 1);
-            if (!sun.nodes) continue;
+            if (!sun.nodes)
+                continue;
             double delta = shown_declination(day) * degree, phi = latitude * degree;
             assert_true(fabs(sun.knot[SUN_KNOTS - 1] - cos(phi - delta)) < 1e-9);
             assert_true(fabs(sun.time[SUN_KNOTS - 1] - 43200.0) < 1e-9);
-            for (int i = 1; i < sun.nodes; i++) assert_true(sun.cosine[i] > sun.cosine[i - 1]);
+            for (int i = 1; i < sun.nodes; i++)
+                assert_true(sun.cosine[i] > sun.cosine[i - 1]);
             assert_true(sun.cosine[0] <= sun.knot[0] + 1e-9);
             assert_true(sun.cosine[sun.nodes - 1] >= sun.knot[SUN_KNOTS - 1] - 1e-9);
             /* the hour angle at every knot */
@@ -299,7 +358,8 @@ static void test_noon_and_day_length(void **state) {
                 double hour = 2.0 * PI * (sun.time[i] / DAY_SECONDS - 0.5);
                 double want = sin(phi) * sin(delta) + cos(phi) * cos(delta) * cos(hour);
                 assert_true(fabs(sun.knot[i] - want) < 1e-9);
-                if (i) assert_true(sun.time[i] > sun.time[i - 1]);
+                if (i)
+                    assert_true(sun.time[i] > sun.time[i - 1]);
             }
             /* light begins where the cosine is that of the end of twilight, or at midnight */
             if (sun.time[0] > 0.0)
@@ -307,7 +367,8 @@ static void test_noon_and_day_length(void **state) {
             else
                 assert_true(sun.knot[0] >= SUN_TWILIGHT);
         }
-    /* On the equator at the equinox the sun rises at six through the vertical: twilight of 11.54 degrees takes 46.1 min. */
+    /* On the equator at the equinox the sun rises at six through the vertical: twilight of 11.54 degrees
+     * takes 46.1 min. */
     Settings settings = place(0.0, 80.0);
     Sun sun;
     sun_make(&sun, &settings, 1);
@@ -316,20 +377,24 @@ static void test_noon_and_day_length(void **state) {
     /* Twilight included, midsummer at 50 north is light for 16 h 22 min (geometric) and its twilights. */
     settings = place(50.0, 172.0);
     sun_make(&sun, &settings, 1);
-    double half = acos((SUN_TWILIGHT - sin(50.0 * degree) * sin(23.44 * degree)) / (cos(50.0 * degree) * cos(23.44 * degree)));
+    double half = acos((SUN_TWILIGHT - sin(50.0 * degree) * sin(23.44 * degree)) /
+                       (cos(50.0 * degree) * cos(23.44 * degree)));
     assert_true(fabs(2.0 * (43200.0 - sun.time[0]) - half / PI * DAY_SECONDS) < 60.0);
 }
 
-static void test_polar_day_and_night(void **state) {
+static void test_polar_day_and_night(void **state)
+{
     (void)state;
     Settings settings = place(85.0, 355.0); /* noon sun 18 degrees below the horizon */
     Sun sun;
     sun_make(&sun, &settings, 1);
     assert_int_equal(sun.nodes, 0);
     double knot[SUN_KNOTS];
-    for (int i = 0; i < SUN_KNOTS; i++) knot[i] = 7.0;
+    for (int i = 0; i < SUN_KNOTS; i++)
+        knot[i] = 7.0;
     assert_true(sun_spread(&sun, NULL, 1, knot, 1) == 0.0);
-    for (int i = 0; i < SUN_KNOTS; i++) assert_true(knot[i] == 0.0);
+    for (int i = 0; i < SUN_KNOTS; i++)
+        assert_true(knot[i] == 0.0);
 
     settings = place(72.0, 355.0); /* noon 5 degrees below: a few hours of twilight, no sun */
     sun_make(&sun, &settings, 1);
@@ -343,11 +408,13 @@ static void test_polar_day_and_night(void **state) {
         settings.latitude_deg *= 90.0 / 80.0;
         double at_pole = spread(&settings, 1, shell, 0.3, knot), height = sin(23.44 * degree);
         assert_true(relative(at_pole, shell(height, 0.3)) < 5e-3);
-        for (int i = 0; i < SUN_KNOTS; i++) assert_true(relative(knot[i], at_pole) < 1e-4);
+        for (int i = 0; i < SUN_KNOTS; i++)
+            assert_true(relative(knot[i], at_pole) < 1e-4);
     }
 }
 
-static void test_place_mean(void **state) {
+static void test_place_mean(void **state)
+{
     (void)state;
     static const double depths[] = {0.03, 0.3, 1.0, 3.0};
     double worst = 0.0, worst_fine = 0.0, worst_dim = 0.0;
@@ -357,8 +424,10 @@ static void test_place_mean(void **state) {
             double knot[SUN_KNOTS], delta = shown_declination(day) * degree;
             Sun sun;
             sun_make(&sun, &settings, 1);
-            if (!sun.nodes) continue;
-            double light = place_mean(shell, 0.0, latitude * degree, delta); /* share of the day that is light */
+            if (!sun.nodes)
+                continue;
+            double light =
+                place_mean(shell, 0.0, latitude * degree, delta); /* share of the day that is light */
             assert_true(relative(spread(&settings, 1, constant, 2.0, knot), 2.0 * light) < 1e-9);
             for (size_t i = 0; i < sizeof depths / sizeof depths[0]; i++) {
                 double want = place_mean(shell, depths[i], latitude * degree, delta);
@@ -372,14 +441,15 @@ static void test_place_mean(void **state) {
                 }
             }
         }
-    print_message("day means at latitudes: worst error %.1e, nodes twice as dense %.1e; twilight days %.1e\n", worst,
-                  worst_fine, worst_dim);
+    print_message("day means at latitudes: worst error %.1e, nodes twice as dense %.1e; twilight days %.1e\n",
+                  worst, worst_fine, worst_dim);
     assert_true(worst < 5e-3);
     assert_true(worst_fine < 0.4 * worst);
     assert_true(worst_dim < 2e-2);
 }
 
-int main(void) {
+int main(void)
+{
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(test_global_path),
         cmocka_unit_test(test_global_mean),

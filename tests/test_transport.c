@@ -96,7 +96,8 @@ static Column column_uneven(void)
     double edge[64], z = 0.0;
     int edges = 0;
     memset(&c, 0, sizeof c);
-    for (; z < 79.0; z += 0.4 + 0.035 * z + 0.3 * (edges % 3 == 1)) edge[edges++] = z;
+    for (; z < 79.0; z += 0.4 + 0.035 * z + 0.3 * (edges % 3 == 1))
+        edge[edges++] = z;
     edge[edges++] = 80.0;
     assert_int_equal(grid_make(&c.grid, 0.0, 0.0, edge, edges, &fault), 0);
     assert_int_equal(air_standard(&c.air, &c.grid, &fault), 0);
@@ -181,8 +182,7 @@ static void test_grid_faults(void **state)
     for (size_t b = 0; b < sizeof bad / sizeof bad[0]; b++) {
         Fault fault = {0};
         Grid grid;
-        assert_int_equal(grid_make(&grid, bad[b].top, bad[b].spacing, NULL, 0, &fault),
-                         FAULT_INPUT);
+        assert_int_equal(grid_make(&grid, bad[b].top, bad[b].spacing, NULL, 0, &fault), FAULT_INPUT);
         assert_null(grid.edge);
         assert_non_null(strstr(fault.text, "grid"));
     }
@@ -240,8 +240,7 @@ static void test_standard_hydrostatic(void **state)
         air_standard_at(z - h, &unused, &under);
         double slope = log(over / under) / (2e3 * h);
         double gravity = 9.80665 * pow(6356.766 / (6356.766 + z), 2.0);
-        check_near("d ln p / dz over balance", slope / (-28.9644 * gravity / (8314.32 * t)), 1.0,
-                   1e-8);
+        check_near("d ln p / dz over balance", slope / (-28.9644 * gravity / (8314.32 * t)), 1.0, 1e-8);
     }
     /* The weight of the standard atmosphere's air: the whole column carries the ground pressure.
      * With g falling by 2.6 % to 80 km the column is p0 / (m g0) and a little more. */
@@ -254,15 +253,15 @@ static void test_standard_hydrostatic(void **state)
     for (int i = 0; i < grid.layers; i++) {
         double gravity = 9.80665 * pow(6356.766 / (6356.766 + grid.middle[i] / KM), 2.0);
         weight += 1e4 * molecule * gravity * air.number_density[i] * grid.depth[i];
-        check_near("ideal gas", air.number_density[i] * 1e6 * BOLTZMANN * air.temperature[i],
-                   air.pressure[i], 1e-12 * air.pressure[i]);
+        check_near("ideal gas", air.number_density[i] * 1e6 * BOLTZMANN * air.temperature[i], air.pressure[i],
+                   1e-12 * air.pressure[i]);
     }
     weight += 1e4 * molecule * 9.80665 * pow(6356.766 / 6436.766, 2.0) * air.column_above_top;
     double top_kelvin, top_pascal;
     air_standard_at(80.0, &top_kelvin, &top_pascal);
     double top_gravity = 9.80665 * pow(6356.766 / 6436.766, 2.0);
-    check_near("weight above the top", 1e4 * molecule * top_gravity * air.column_above_top,
-               top_pascal, 1e-4 * top_pascal);
+    check_near("weight above the top", 1e4 * molecule * top_gravity * air.column_above_top, top_pascal,
+               1e-4 * top_pascal);
     check_near("weight of the column, Pa", weight, 101325.0, 1e-4 * 101325.0);
     /* Loschmidt-like figure of the standard: 2.5470e25 m-3 at the ground (published, from memory).
      */
@@ -307,7 +306,8 @@ static void test_air_file(void **state)
              99000.0, 290.25 - 4.5 * 7.7, 99000.0 * exp(-7.7 / 7.3), 290.25 - 4.5 * 21.0,
              99000.0 * exp(-21.0 / 7.3));
     const char *path = write_file(text);
-    if (air_from_file(&air, &grid, path, &fault)) fail_msg("%s", fault.text);
+    if (air_from_file(&air, &grid, path, &fault))
+        fail_msg("%s", fault.text);
     remove(path);
     assert_string_equal(air.source, "a made-up sounding");
     for (int i = 0; i < grid.layers; i++) {
@@ -329,15 +329,15 @@ static void test_air_file(void **state)
         {"altitude_km,temperature_K,pressure_Pa\n0,290,1013\n25,220,25\n", "hPa"},
         {"altitude_km,temperature_K,pressure_Pa\n0,15,1e5\n25,-50,3000\n", "temperature_K"},
         {"altitude_km,temperature_K\n0,290\n25,220\n", "pressure_Pa"},
-        {"altitude_km,temperature_K,pressure_Pa\n0,290,1e5\n30,240,1e3\n25,220,3e3\n",
-         "altitude_km"},
+        {"altitude_km,temperature_K,pressure_Pa\n0,290,1e5\n30,240,1e3\n25,220,3e3\n", "altitude_km"},
     };
     for (size_t b = 0; b < sizeof bad / sizeof bad[0]; b++) {
         Fault each = {0};
         path = write_file(bad[b].rows);
         assert_int_equal(air_from_file(&air, &grid, path, &each), FAULT_INPUT);
         remove(path);
-        if (!strstr(each.text, bad[b].word)) fail_msg("%s: no '%s'", each.text, bad[b].word);
+        if (!strstr(each.text, bad[b].word))
+            fail_msg("%s: no '%s'", each.text, bad[b].word);
         assert_null(air.temperature);
     }
     grid_free(&grid);
@@ -355,8 +355,8 @@ static void test_eddy_file(void **state)
     assert_int_equal(grid_make(&grid, 20.0, 2.0, NULL, 0, &fault), 0);
     /* log K is linear in altitude with one kink at 7 km: closed form on both sides. */
     char text[256];
-    snprintf(text, sizeof text, "altitude_km,eddy_cm2_s-1\n2,2e5\n7,%.17g\n18,%.17g\n",
-             2e5 * exp(-5.0 / 2.1), 2e5 * exp(-5.0 / 2.1) * exp(11.0 / 6.3));
+    snprintf(text, sizeof text, "altitude_km,eddy_cm2_s-1\n2,2e5\n7,%.17g\n18,%.17g\n", 2e5 * exp(-5.0 / 2.1),
+             2e5 * exp(-5.0 / 2.1) * exp(11.0 / 6.3));
     const char *path = write_file(text);
     if (diffusion_read_eddy(eddy, &grid, path, source, sizeof source, &fault))
         fail_msg("%s", fault.text);
@@ -364,8 +364,7 @@ static void test_eddy_file(void **state)
     remove(path);
     for (int e = 1; e < 10; e++) {
         double z = 2.0 * e;
-        expected =
-            z < 7.0 ? 2e5 * exp(-(z - 2.0) / 2.1) : 2e5 * exp(-5.0 / 2.1) * exp((z - 7.0) / 6.3);
+        expected = z < 7.0 ? 2e5 * exp(-(z - 2.0) / 2.1) : 2e5 * exp(-5.0 / 2.1) * exp((z - 7.0) / 6.3);
         check_near("K", eddy[e], expected, 1e-13 * expected);
     }
     assert_true(eddy[0] == 0.0 && eddy[10] == 0.0);
@@ -376,8 +375,7 @@ static void test_eddy_file(void **state)
     for (size_t b = 0; b < sizeof bad / sizeof bad[0]; b++) {
         Fault each = {0};
         path = write_file(bad[b]);
-        assert_int_equal(diffusion_read_eddy(eddy, &grid, path, source, sizeof source, &each),
-                         FAULT_INPUT);
+        assert_int_equal(diffusion_read_eddy(eddy, &grid, path, source, sizeof source, &each), FAULT_INPUT);
         remove(path);
     }
     grid_free(&grid);
@@ -406,16 +404,15 @@ static void test_discrete_modes(void **state)
     for (int a = 0; a < 3; a++) {
         double value = -4.0 * 5e4 / (dz * dz) * pow(sin(0.5 * mode[a] * PI / n), 2.0);
         for (int b = 0; b < 3; b++) {
-            for (int i = 0; i < n; i++) x[i] = 1.0 + 0.5 * cos(mode[a] * PI * (i + 0.5) / n);
+            for (int i = 0; i < n; i++)
+                x[i] = 1.0 + 0.5 * cos(mode[a] * PI * (i + 0.5) / n);
             diffusion_tendency(c.diffusion, x, slope);
             for (int i = 0; i < n; i++)
-                check_near("tendency", slope[i], value * (x[i] - 1.0),
-                           1e-13 * 4.0 * 5e4 / (dz * dz));
+                check_near("tendency", slope[i], value * (x[i] - 1.0), 1e-13 * 4.0 * 5e4 / (dz * dz));
             assert_true(run(&c, GROUND_CLOSED, 0.0, step[b], 1, x) == 0.0);
             for (int i = 0; i < n; i++)
                 check_near("mode after a step", x[i],
-                           1.0 + 0.5 * growth(value * step[b]) * cos(mode[a] * PI * (i + 0.5) / n),
-                           1e-13);
+                           1.0 + 0.5 * growth(value * step[b]) * cos(mode[a] * PI * (i + 0.5) / n), 1e-13);
         }
     }
     free(x);
@@ -428,7 +425,8 @@ static double mode_error(int layers, double stretch, int m, double time, int ste
 {
     Column c = column_ideal(60.0, layers, INFINITY, 5e4, stretch);
     double *x = array(c.grid.padded), wave = m * PI / (60.0 * KM), worst = 0.0;
-    for (int i = 0; i < layers; i++) x[i] = 1.0 + 0.5 * cos(wave * c.grid.middle[i]);
+    for (int i = 0; i < layers; i++)
+        x[i] = 1.0 + 0.5 * cos(wave * c.grid.middle[i]);
     run(&c, GROUND_CLOSED, 0.0, time / steps, steps, x);
     for (int i = 0; i < layers; i++) {
         double exact = 1.0 + 0.5 * exp(-5e4 * wave * wave * time) * cos(wave * c.grid.middle[i]);
@@ -450,12 +448,10 @@ static void test_order(void **state)
 {
     (void)state;
     double time = 1.0 / (5e4 * pow(2.0 * PI / (60.0 * KM), 2.0)); /* one e-folding of mode 2 */
-    check_order("even layers", mode_error(20, 0.0, 2, time, 400), mode_error(40, 0.0, 2, time, 400),
+    check_order("even layers", mode_error(20, 0.0, 2, time, 400), mode_error(40, 0.0, 2, time, 400), 2);
+    check_order("even layers, finer", mode_error(40, 0.0, 2, time, 400), mode_error(80, 0.0, 2, time, 400),
                 2);
-    check_order("even layers, finer", mode_error(40, 0.0, 2, time, 400),
-                mode_error(80, 0.0, 2, time, 400), 2);
-    check_order("stretched layers", mode_error(20, 0.6, 2, time, 400),
-                mode_error(40, 0.6, 2, time, 400), 2);
+    check_order("stretched layers", mode_error(20, 0.6, 2, time, 400), mode_error(40, 0.6, 2, time, 400), 2);
     check_order("stretched layers, finer", mode_error(40, 0.6, 2, time, 400),
                 mode_error(80, 0.6, 2, time, 400), 2);
 
@@ -468,7 +464,8 @@ static void test_order(void **state)
     for (int r = 0; r < 3; r++) {
         int steps = 8 << r;
         error[r] = 0.0;
-        for (int i = 0; i < n; i++) x[i] = cos(2.0 * PI * (i + 0.5) / n);
+        for (int i = 0; i < n; i++)
+            x[i] = cos(2.0 * PI * (i + 0.5) / n);
         run(&c, GROUND_CLOSED, 0.0, 2.0 / -value / steps, steps, x);
         for (int i = 0; i < n; i++)
             error[r] = fmax(error[r], fabs(x[i] - exp(-2.0) * cos(2.0 * PI * (i + 0.5) / n)));
@@ -502,11 +499,11 @@ static double decay_error(int layers, int kind, double velocity)
     Column c = column_ideal(TOP_KM, layers, SCALE_KM, eddy, 0.0);
     /* What is held is the lowest layer's middle: that is where the mode has its node. */
     double origin = kind == GROUND_FIXED ? c.grid.middle[0] : 0.0, far = TOP_KM * KM - origin;
-    double low = 1e-3 / far, high = PI / far, a = kind == GROUND_FIXED ? 0.0 : 1.0, b = 1.0,
-           k = 0.0;
+    double low = 1e-3 / far, high = PI / far, a = kind == GROUND_FIXED ? 0.0 : 1.0, b = 1.0, k = 0.0;
     for (int bisect = 0; bisect < 200; bisect++) {
         k = 0.5 * (low + high);
-        if (kind == GROUND_DEPOSITION) b = (velocity / eddy - half) / k; /* K X' = v X at 0 */
+        if (kind == GROUND_DEPOSITION)
+            b = (velocity / eddy - half) / k; /* K X' = v X at 0 */
         if (mode_slope(a, b, k, far) > 0.0)
             low = k;
         else
@@ -524,7 +521,8 @@ static double decay_error(int layers, int kind, double velocity)
         double exact = base + exp(-1.0) * mode_value(a, b, k, c.grid.middle[i] - origin);
         worst = fmax(worst, fabs(x[i] - exact) / size);
     }
-    if (kind == GROUND_FIXED) assert_true(x[0] == held + mode_value(a, b, k, 0.0));
+    if (kind == GROUND_FIXED)
+        assert_true(x[0] == held + mode_value(a, b, k, 0.0));
     free(x);
     column_free(&c);
     return worst;
@@ -551,8 +549,10 @@ static double steady_error(int layers, int kind, double velocity)
     Column c = column_ideal(TOP_KM, layers, SCALE_KM, eddy, 0.0);
     double *x = array(c.grid.padded), z0 = c.grid.middle[0], made = 0.0, received = 0.0;
     int first = kind == GROUND_FIXED;
-    if (first) x[0] = held;
-    for (int i = first; i < layers; i++) made += source * c.air.number_density[i] * c.grid.depth[i];
+    if (first)
+        x[0] = held;
+    for (int i = first; i < layers; i++)
+        made += source * c.air.number_density[i] * c.grid.depth[i];
 
     /* Days first to get near, hours to shrink the splitting error of the source (2e-6 here). */
     const double step[] = {10 * DAY_SECONDS, 3600.0};
@@ -562,23 +562,26 @@ static double steady_error(int layers, int kind, double velocity)
         double *work = malloc(diffusion_work(factor, 1) * sizeof *work);
         assert_non_null(work);
         for (int s = 0; s < steps[r]; s++) {
-            for (int i = first; i < layers; i++) x[i] += 0.5 * step[r] * source;
+            for (int i = first; i < layers; i++)
+                x[i] += 0.5 * step[r] * source;
             diffusion_step(factor, x, 1, &received, work);
-            for (int i = first; i < layers; i++) x[i] += 0.5 * step[r] * source;
+            for (int i = first; i < layers; i++)
+                x[i] += 0.5 * step[r] * source;
         }
         free(work);
         diffusion_factor_free(factor);
     }
     /* Steady: what is made leaves through the ground, and deposition is v N_0 X_0. */
     check_near("received over made", -received / (made * 3600.0), 1.0, 1e-6);
-    if (!first) check_near("v N X", velocity * c.air.number_density[0] * x[0] / made, 1.0, 1e-3);
+    if (!first)
+        check_near("v N X", velocity * c.air.number_density[0] * x[0] / made, 1.0, 1e-3);
 
     double worst = 0.0, ground = held;
-    if (!first) ground = source * h * exp(z0 / h) * (1.0 - exp(-top / h)) / velocity;
+    if (!first)
+        ground = source * h * exp(z0 / h) * (1.0 - exp(-top / h)) / velocity;
     for (int i = 0; i < layers; i++) {
         double z = c.grid.middle[i];
-        double exact =
-            ground + source * h / eddy * (z - z0 - h * (exp((z - top) / h) - exp((z0 - top) / h)));
+        double exact = ground + source * h / eddy * (z - z0 - h * (exp((z - top) / h) - exp((z0 - top) / h)));
         worst = fmax(worst, fabs(x[i] - exact));
     }
     worst /= x[layers - 1];
@@ -614,16 +617,21 @@ static void test_long_step(void **state)
     }
     double before = column_mass(&c, x), mean = before / air;
     run(&c, GROUND_CLOSED, 0.0, 1e16, 1, x);
-    for (int i = 0; i < c.grid.layers; i++) check_near("well mixed", x[i], mean, 1e-7 * mean);
+    for (int i = 0; i < c.grid.layers; i++)
+        check_near("well mixed", x[i], mean, 1e-7 * mean);
     check_near("mass", column_mass(&c, x) / before, 1.0, 2e-15);
 
-    for (int i = 0; i < c.grid.layers; i++) x[i] = random_unit();
+    for (int i = 0; i < c.grid.layers; i++)
+        x[i] = random_unit();
     run(&c, GROUND_DEPOSITION, 0.5, 1e16, 1, x);
-    for (int i = 0; i < c.grid.layers; i++) check_near("all deposited", x[i], 0.0, 1e-6);
-    for (int i = 0; i < c.grid.layers; i++) x[i] = random_unit();
+    for (int i = 0; i < c.grid.layers; i++)
+        check_near("all deposited", x[i], 0.0, 1e-6);
+    for (int i = 0; i < c.grid.layers; i++)
+        x[i] = random_unit();
     double held = x[0];
     run(&c, GROUND_FIXED, 0.0, 1e16, 1, x);
-    for (int i = 0; i < c.grid.layers; i++) check_near("all as held", x[i], held, 1e-6);
+    for (int i = 0; i < c.grid.layers; i++)
+        check_near("all as held", x[i], held, 1e-6);
     free(x);
     column_free(&c);
 }
@@ -636,10 +644,12 @@ static void test_uniform(void **state)
     const double step[] = {900.0, 1e7};
     for (int a = 0; a < 4; a++) {
         double *x = array(c.grid.padded);
-        for (int i = 0; i < c.grid.layers; i++) x[i] = 3.7e-7;
+        for (int i = 0; i < c.grid.layers; i++)
+            x[i] = 3.7e-7;
         double received = run(&c, kind[a & 1], 0.0, step[a >> 1], 10000, x);
         assert_true(received == 0.0);
-        for (int i = 0; i < c.grid.layers; i++) assert_true(x[i] == 3.7e-7);
+        for (int i = 0; i < c.grid.layers; i++)
+            assert_true(x[i] == 3.7e-7);
         free(x);
     }
     column_free(&c);
@@ -652,7 +662,8 @@ static void test_closed_century(void **state)
     Column c = column_uneven();
     double *x = array(c.grid.padded);
     for (int start = 0; start < 5; start++) {
-        for (int i = 0; i < c.grid.layers; i++) x[i] = pow(10.0, -12.0 + 6.0 * random_unit());
+        for (int i = 0; i < c.grid.layers; i++)
+            x[i] = pow(10.0, -12.0 + 6.0 * random_unit());
         double before = column_mass(&c, x);
         run(&c, GROUND_CLOSED, 0.0, 15 * DAY_SECONDS, 2435, x);
         double drift = column_mass(&c, x) / before - 1.0;
@@ -672,28 +683,31 @@ static void test_budget(void **state)
     for (int trial = 0; trial < 400; trial++) {
         int kind = trial % 3;
         double velocity = 2.0 * random_unit(), step = pow(10.0, 1.0 + 12.0 * random_unit());
-        for (int i = 0; i < c.grid.layers; i++) x[i] = pow(10.0, -12.0 + 6.0 * random_unit());
+        for (int i = 0; i < c.grid.layers; i++)
+            x[i] = pow(10.0, -12.0 + 6.0 * random_unit());
         double before = column_mass(&c, x), held = x[0];
         double received = run(&c, kind, velocity, step, 1, x);
-        worst =
-            fmax(worst, fabs(column_mass(&c, x) - before - received) / (before + fabs(received)));
-        if (kind == GROUND_FIXED) assert_true(x[0] == held);
-        if (kind == GROUND_CLOSED) assert_true(received == 0.0);
-        if (kind == GROUND_DEPOSITION) assert_true(received < 0.0);
+        worst = fmax(worst, fabs(column_mass(&c, x) - before - received) / (before + fabs(received)));
+        if (kind == GROUND_FIXED)
+            assert_true(x[0] == held);
+        if (kind == GROUND_CLOSED)
+            assert_true(received == 0.0);
+        if (kind == GROUND_DEPOSITION)
+            assert_true(received < 0.0);
     }
     print_message("           worst budget gap %.1e\n", worst);
     assert_true(worst < 2e-15);
 
     /* The same quantity from the flux: -v N_0 times the time integral of X_0 (trapezoids). */
     double received = 0.0, integral = 0.0;
-    for (int i = 0; i < c.grid.layers; i++) x[i] = random_unit();
+    for (int i = 0; i < c.grid.layers; i++)
+        x[i] = random_unit();
     for (int s = 0; s < 500; s++) {
         double start = x[0];
         received += run(&c, GROUND_DEPOSITION, 1.3, 20.0, 1, x);
         integral += 20.0 * 0.5 * (start + x[0]);
     }
-    check_near("received over flux", received / (-1.3 * c.air.number_density[0] * integral), 1.0,
-               1e-6);
+    check_near("received over flux", received / (-1.3 * c.air.number_density[0] * integral), 1.0, 1e-6);
     free(x);
     column_free(&c);
 }
@@ -719,10 +733,8 @@ static void test_linear_and_batch(void **state)
         memcpy(alone, x + padded, padded * sizeof *alone);
         diffusion_step(factor, x, 3, received, work);
         for (int i = 0; i < c.grid.layers; i++)
-            check_near("a x + b y", x[2 * padded + (size_t)i], a * x[i] + b * x[padded + (size_t)i],
-                       2e-14);
-        check_near("received of a x + b y", received[2], a * received[0] + b * received[1],
-                   1e-14 * 2e25);
+            check_near("a x + b y", x[2 * padded + (size_t)i], a * x[i] + b * x[padded + (size_t)i], 2e-14);
+        check_near("received of a x + b y", received[2], a * received[0] + b * received[1], 1e-14 * 2e25);
         for (size_t i = (size_t)c.grid.layers; i < padded; i++)
             assert_true(x[i] == 7.0 && isnan(x[padded + i]) && x[2 * padded + i] == 9.0);
         /* Neighbours in the batch change nothing. */
@@ -734,6 +746,41 @@ static void test_linear_and_batch(void **state)
         free(alone);
         free(work);
         diffusion_factor_free(factor);
+    }
+    column_free(&c);
+}
+
+/* The column from a held layer up is the whole column with everything below held too; of one layer alone,
+ * nothing moves. */
+static void test_above(void **state)
+{
+    (void)state;
+    Column c = column_uneven();
+    int layers = c.grid.layers, first[] = {0, 5, layers - 1};
+    double step = 5.0 * 86400.0, cell = 0.0;
+    for (int f = 0; f < 3; f++) {
+        Fault fault = {0};
+        Diffusion *above = NULL;
+        DiffusionFactor *factor = NULL;
+        assert_int_equal(diffusion_make_above(&above, &c.grid, &c.air, c.eddy, first[f], &fault), 0);
+        assert_int_equal(diffusion_factor(&factor, above, GROUND_FIXED, 0.0, step, &fault), 0);
+        double *x = array(c.grid.padded), *work = array((int)diffusion_work(factor, 1)), received = NAN,
+               change = 0.0;
+        x[first[f]] = 1e-6;
+        diffusion_step(factor, x + first[f], 1, &received, work);
+        assert_true(x[first[f]] == 1e-6);
+        for (int i = 0; i < layers; i++) {
+            cell = c.air.number_density[i] * c.grid.depth[i];
+            assert_true(i >= first[f] || x[i] == 0.0);
+            if (i != first[f])
+                change += cell * x[i];
+        }
+        check_near("received over change", received, change, 1e-12 * change);
+        assert_true(first[f] == layers - 1 ? received == 0.0 : received > 0.0 && x[first[f] + 1] > 0.0);
+        free(x);
+        free(work);
+        diffusion_factor_free(factor);
+        diffusion_free(above);
     }
     column_free(&c);
 }
@@ -785,7 +832,8 @@ int main(void)
         cmocka_unit_test(test_exponential_decay),  cmocka_unit_test(test_exponential_steady),
         cmocka_unit_test(test_long_step),          cmocka_unit_test(test_uniform),
         cmocka_unit_test(test_closed_century),     cmocka_unit_test(test_budget),
-        cmocka_unit_test(test_linear_and_batch),   cmocka_unit_test(test_diffusion_faults),
+        cmocka_unit_test(test_linear_and_batch),   cmocka_unit_test(test_above),
+        cmocka_unit_test(test_diffusion_faults),
     };
     return cmocka_run_group_tests_name("transport", tests, NULL, NULL);
 }

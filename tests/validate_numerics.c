@@ -11,9 +11,9 @@
 
 /* ---- limits of the defaults, set by hand and not fitted to a run ---- */
 
-/* Factors against explicit days, relative ozone by layer and column: a tenth of the 20 % that constant mean light costs at
- * 40 km. Up to RESOLVED_KM: above, eddy diffusion crosses a layer in some 11 h, as fast as ozone turns over, which no
- * splitting with steps of days resolves. */
+/* Factors against explicit days, relative ozone by layer and column: a tenth of the 20 % that constant mean
+ * light costs at 40 km. Up to RESOLVED_KM: above, eddy diffusion crosses a layer in some 11 h, as fast as
+ * ozone turns over, which no splitting with steps of days resolves. */
 static const double DAY_LAYER_PERCENT = 2.0, DAY_COLUMN_DU = 0.5, RESOLVED_KM = 74.0;
 /* Each other error: a thirtieth of the smallest change an analyst reads off, 1 % of the column. */
 static const double SMALL_DU = 0.1;
@@ -99,8 +99,7 @@ static int day_rows(const Run *baseline, NumericRow *rows, int *count, Fault *fa
                               "explicit days against factors, a year: O3, largest of a layer", "%", INFINITY);
         row->value = error.layer;
         snprintf(row->note, ROW_NOTE, "at %g km", error.layer_km);
-        row =
-            add(rows, count, when[i].strato, "the same up to RESOLVED_KM", "%", DAY_LAYER_PERCENT);
+        row = add(rows, count, when[i].strato, "the same up to RESOLVED_KM", "%", DAY_LAYER_PERCENT);
         row->value = error.strato;
         snprintf(row->note, ROW_NOTE, "at %g km; 15 20 25 30 40 50 km: %+.2f %+.2f %+.2f %+.2f %+.2f %+.2f",
                  error.strato_km, error.at[0], error.at[1], error.at[2], error.at[3], error.at[4],

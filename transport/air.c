@@ -45,9 +45,11 @@ enum { US76_WEIGHTS = sizeof us76_weight_ratio / sizeof us76_weight_ratio[0] };
 static double weight_ratio(double altitude_km)
 {
     double place = (altitude_km - US76_WEIGHT_BASE_KM) / US76_WEIGHT_STEP_KM;
-    if (place <= 0.0) return 1.0;
+    if (place <= 0.0)
+        return 1.0;
     int below = (int)place;
-    if (below > US76_WEIGHTS - 2) below = US76_WEIGHTS - 2;
+    if (below > US76_WEIGHTS - 2)
+        below = US76_WEIGHTS - 2;
     double part = place - below;
     return (1.0 - part) * us76_weight_ratio[below] + part * us76_weight_ratio[below + 1];
 }
@@ -55,7 +57,8 @@ static double weight_ratio(double altitude_km)
 void air_standard_at(double altitude_km, double *temperature, double *pressure)
 {
     *temperature = *pressure = NAN;
-    if (!(altitude_km >= 0.0 && altitude_km <= US76_TOP_KM)) return;
+    if (!(altitude_km >= 0.0 && altitude_km <= US76_TOP_KM))
+        return;
 
     /* M g0 / R in K per geopotential km: what the temperature gradient is compared with. */
     const double weight = 1000.0 * US76_GRAVITY * US76_MOLAR_MASS / US76_GAS_CONSTANT;
@@ -94,8 +97,7 @@ static int make_arrays(Air *air, const Grid *grid, Fault *fault)
 }
 
 /* One altitude (km) of whichever profile; profile is the function's own. */
-typedef void (*ProfileAt)(const void *profile, double altitude_km, double *temperature,
-                          double *pressure);
+typedef void (*ProfileAt)(const void *profile, double altitude_km, double *temperature, double *pressure);
 
 static void fill_air(Air *air, const Grid *grid, ProfileAt at, const void *profile)
 {
@@ -120,8 +122,7 @@ static void fill_air(Air *air, const Grid *grid, ProfileAt at, const void *profi
     air->column_above_top = air->edge_density[grid->layers] * 100.0 * height_m;
 }
 
-static void standard_profile(const void *profile, double altitude_km, double *temperature,
-                             double *pressure)
+static void standard_profile(const void *profile, double altitude_km, double *temperature, double *pressure)
 {
     (void)profile;
     air_standard_at(altitude_km, temperature, pressure);
@@ -136,7 +137,8 @@ int air_standard(Air *air, const Grid *grid, Fault *fault)
                          "air: the grid reaches %g km and the standard atmosphere is defined to "
                          "%g km; lower the top or give an air profile of your own",
                          top_km, US76_TOP_KM);
-    if (make_arrays(air, grid, fault)) return fault->code;
+    if (make_arrays(air, grid, fault))
+        return fault->code;
     fill_air(air, grid, standard_profile, NULL);
     snprintf(air->source, sizeof air->source, "U.S. Standard Atmosphere, 1976 (NOAA-S/T 76-1562)");
     return 0;
@@ -147,8 +149,7 @@ typedef struct {
     size_t rows;
 } TableProfile;
 
-static void table_profile(const void *profile, double altitude_km, double *temperature,
-                          double *pressure)
+static void table_profile(const void *profile, double altitude_km, double *temperature, double *pressure)
 {
     const TableProfile *own = profile;
     *temperature = table_linear(own->altitude, own->temperature, own->rows, altitude_km);
@@ -159,8 +160,7 @@ static void table_profile(const void *profile, double altitude_km, double *tempe
 static int check_profile(TableProfile *own, const Table *table, const Grid *grid, Fault *fault)
 {
     size_t z = 0, t = 0, p = 0;
-    if (table_column(table, "altitude_km", &z, fault) ||
-        table_column(table, "temperature_K", &t, fault) ||
+    if (table_column(table, "altitude_km", &z, fault) || table_column(table, "temperature_K", &t, fault) ||
         table_column(table, "pressure_Pa", &p, fault) || table_require_increasing(table, z, fault))
         return fault->code;
     /* Wide enough for any season and place below 100 km, narrow enough to catch degrees Celsius. */
@@ -168,15 +168,14 @@ static int check_profile(TableProfile *own, const Table *table, const Grid *grid
         table_require_range(table, p, 1e-6, 1.2e5, fault))
         return fault->code;
 
-    *own = (TableProfile){table_values(table, z), table_values(table, t), table_values(table, p),
-                          table->rows};
+    *own =
+        (TableProfile){table_values(table, z), table_values(table, t), table_values(table, p), table->rows};
     for (size_t r = 1; r < own->rows; r++)
         if (!(own->pressure[r] < own->pressure[r - 1]))
-            return fault_at(
-                fault, table->path, table->line[r],
-                "pressure_Pa is %g and does not fall from %g in the row before; pressure "
-                "must fall with altitude",
-                own->pressure[r], own->pressure[r - 1]);
+            return fault_at(fault, table->path, table->line[r],
+                            "pressure_Pa is %g and does not fall from %g in the row before; pressure "
+                            "must fall with altitude",
+                            own->pressure[r], own->pressure[r - 1]);
 
     double top_km = grid->edge[grid->layers] / CM_PER_KM;
     if (own->rows < 2 || own->altitude[0] > COVER_TOLERANCE_KM ||
@@ -190,8 +189,7 @@ static int check_profile(TableProfile *own, const Table *table, const Grid *grid
     double ground = table_loglinear(own->altitude, own->pressure, own->rows, 0.0);
     if (ground < 3e4)
         return fault_at(fault, table->path, table->line[0],
-                        "the pressure at the ground is %g Pa, below 30000; is the column in hPa?",
-                        ground);
+                        "the pressure at the ground is %g Pa, below 30000; is the column in hPa?", ground);
     return 0;
 }
 
@@ -200,7 +198,8 @@ int air_from_file(Air *air, const Grid *grid, const char *path, Fault *fault)
     memset(air, 0, sizeof *air);
     Table table = {0};
     TableProfile own = {0};
-    if (table_read(&table, path, fault)) return fault->code;
+    if (table_read(&table, path, fault))
+        return fault->code;
     if (!check_profile(&own, &table, grid, fault) && !make_arrays(air, grid, fault)) {
         fill_air(air, grid, table_profile, &own);
         if (!table_header(&table, "source", air->source, sizeof air->source))
@@ -212,7 +211,8 @@ int air_from_file(Air *air, const Grid *grid, const char *path, Fault *fault)
 
 void air_free(Air *air)
 {
-    if (!air) return;
+    if (!air)
+        return;
     free(air->temperature);
     free(air->pressure);
     free(air->number_density);

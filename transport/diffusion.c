@@ -40,12 +40,11 @@ struct DiffusionFactor {
     double step;          /* s */
     double deposit;       /* v N_0, molecules cm-2 s-1; 0 unless GROUND_DEPOSITION */
     double budget_weight; /* sum(M) + gamma h v N_0: the budget's answer to a uniform shift of q */
-    double *lower, *diagonal, *upper, *upper2; /* LAPACK dgttrf factors: [n-1], [n], [n-1], [n-2] */
+    double *lower, *diagonal, *upper, *upper2; /* LAPACK dgttrf factors: n-1, n, n-1, n-2 used */
     lapack_int *pivot;                         /* [layers] */
 };
 
-int diffusion_make(Diffusion **made, const Grid *grid, const Air *air, const double *eddy,
-                   Fault *fault)
+int diffusion_make(Diffusion **made, const Grid *grid, const Air *air, const double *eddy, Fault *fault)
 {
     *made = NULL;
     int layers = grid->layers;
@@ -57,7 +56,8 @@ int diffusion_make(Diffusion **made, const Grid *grid, const Air *air, const dou
                              grid->edge[e] / CM_PER_KM, eddy[e]);
 
     Diffusion *diffusion = calloc(1, sizeof *diffusion);
-    if (!diffusion) return fault_memory(fault, "the diffusion operator");
+    if (!diffusion)
+        return fault_memory(fault, "the diffusion operator");
     diffusion->mass = malloc((size_t)layers * sizeof(double));
     diffusion->conductance = calloc((size_t)layers + 1, sizeof(double));
     if (!diffusion->mass || !diffusion->conductance) {
@@ -67,10 +67,10 @@ int diffusion_make(Diffusion **made, const Grid *grid, const Air *air, const dou
     diffusion->layers = layers;
     diffusion->padded = grid->padded;
     diffusion->ground_density = air->number_density[0];
-    for (int i = 0; i < layers; i++) diffusion->mass[i] = air->number_density[i] * grid->depth[i];
+    for (int i = 0; i < layers; i++)
+        diffusion->mass[i] = air->number_density[i] * grid->depth[i];
     for (int e = 1; e < layers; e++)
-        diffusion->conductance[e] =
-            eddy[e] * air->edge_density[e] / (grid->middle[e] - grid->middle[e - 1]);
+        diffusion->conductance[e] = eddy[e] * air->edge_density[e] / (grid->middle[e] - grid->middle[e - 1]);
     *made = diffusion;
     return 0;
 }
@@ -91,7 +91,8 @@ int diffusion_make_above(Diffusion **made, const Grid *grid, const Air *air, con
 
 void diffusion_free(Diffusion *diffusion)
 {
-    if (!diffusion) return;
+    if (!diffusion)
+        return;
     free(diffusion->mass);
     free(diffusion->conductance);
     free(diffusion);
@@ -100,8 +101,7 @@ void diffusion_free(Diffusion *diffusion)
 static int fill_eddy(double *eddy, const Grid *grid, const Table *table, Fault *fault)
 {
     size_t z = 0, k = 0;
-    if (table_column(table, "altitude_km", &z, fault) ||
-        table_column(table, "eddy_cm2_s-1", &k, fault) ||
+    if (table_column(table, "altitude_km", &z, fault) || table_column(table, "eddy_cm2_s-1", &k, fault) ||
         table_require_increasing(table, z, fault) || table_require_range(table, k, 1.0, 1e9, fault))
         return fault->code;
 
@@ -110,11 +110,10 @@ static int fill_eddy(double *eddy, const Grid *grid, const Table *table, Fault *
     double first = grid->edge[1] / CM_PER_KM, last = grid->edge[grid->layers - 1] / CM_PER_KM;
     if (rows < 2 || altitude[0] > first + COVER_TOLERANCE_KM ||
         altitude[rows - 1] < last - COVER_TOLERANCE_KM)
-        return fault_at(
-            fault, table->path, 0,
-            "the eddy coefficient must cover the edges between layers, %g to %g km; the "
-            "table has %zu rows from %g to %g km",
-            first, last, rows, rows ? altitude[0] : NAN, rows ? altitude[rows - 1] : NAN);
+        return fault_at(fault, table->path, 0,
+                        "the eddy coefficient must cover the edges between layers, %g to %g km; the "
+                        "table has %zu rows from %g to %g km",
+                        first, last, rows, rows ? altitude[0] : NAN, rows ? altitude[rows - 1] : NAN);
     for (int e = 1; e < grid->layers; e++)
         eddy[e] = table_loglinear(altitude, value, rows, grid->edge[e] / CM_PER_KM);
     eddy[0] = eddy[grid->layers] = 0.0; /* nothing diffuses through the ends */
@@ -125,7 +124,8 @@ int diffusion_read_eddy(double *eddy, const Grid *grid, const char *path, char *
                         Fault *fault)
 {
     Table table = {0};
-    if (table_read(&table, path, fault)) return fault->code;
+    if (table_read(&table, path, fault))
+        return fault->code;
     int code = fill_eddy(eddy, grid, &table, fault);
     if (!code && !table_header(&table, "source", source, size) && size > 0) {
         strncpy(source, path, size - 1);
@@ -140,8 +140,7 @@ static int check_step(int kind, double velocity, double step, Fault *fault)
     if (kind != GROUND_CLOSED && kind != GROUND_FIXED && kind != GROUND_DEPOSITION)
         return fault_set(fault, FAULT_INPUT, "diffusion: there is no ground condition %d", kind);
     if (!(isfinite(step) && step > 0.0))
-        return fault_set(fault, FAULT_INPUT, "diffusion: the step is %g s; it must be positive",
-                         step);
+        return fault_set(fault, FAULT_INPUT, "diffusion: the step is %g s; it must be positive", step);
     if (kind == GROUND_DEPOSITION && !(isfinite(velocity) && velocity >= 0.0))
         return fault_set(fault, FAULT_INPUT,
                          "diffusion: the deposition velocity is %g cm s-1; it must not be negative",
@@ -160,28 +159,32 @@ static void assemble(DiffusionFactor *factor)
     for (int i = 0; i < layers; i++) {
         factor->diagonal[i] = diffusion->mass[i] + reach * (conductance[i] + conductance[i + 1]);
         factor->budget_weight += diffusion->mass[i];
-        if (i + 1 < layers) factor->lower[i] = factor->upper[i] = -reach * conductance[i + 1];
+        if (i + 1 < layers)
+            factor->lower[i] = factor->upper[i] = -reach * conductance[i + 1];
     }
     factor->diagonal[0] += reach * factor->deposit;
     /* A held layer has the increment 0: its own row says so, and no other row sees it. */
-    if (factor->kind == GROUND_FIXED) factor->lower[0] = factor->upper[0] = 0.0;
+    if (factor->kind == GROUND_FIXED)
+        factor->lower[0] = factor->upper[0] = 0.0;
 }
 
 int diffusion_factor(DiffusionFactor **made, const Diffusion *diffusion, int kind, double velocity,
                      double step, Fault *fault)
 {
     *made = NULL;
-    if (check_step(kind, velocity, step, fault)) return fault->code;
+    if (check_step(kind, velocity, step, fault))
+        return fault->code;
     DiffusionFactor *factor = calloc(1, sizeof *factor);
-    if (!factor) return fault_memory(fault, "the diffusion factorisation");
+    if (!factor)
+        return fault_memory(fault, "the diffusion factorisation");
     size_t n = (size_t)diffusion->layers;
-    factor->lower = malloc((n - 1) * sizeof(double));
+    /* all of length n: the part above a high tropopause may be a single layer, which has no neighbours */
+    factor->lower = malloc(n * sizeof(double));
     factor->diagonal = malloc(n * sizeof(double));
-    factor->upper = malloc((n - 1) * sizeof(double));
-    factor->upper2 = malloc((n - 2) * sizeof(double));
+    factor->upper = malloc(n * sizeof(double));
+    factor->upper2 = malloc(n * sizeof(double));
     factor->pivot = malloc(n * sizeof(lapack_int));
-    if (!factor->lower || !factor->diagonal || !factor->upper || !factor->upper2 ||
-        !factor->pivot) {
+    if (!factor->lower || !factor->diagonal || !factor->upper || !factor->upper2 || !factor->pivot) {
         diffusion_factor_free(factor);
         return fault_memory(fault, "the diffusion factorisation");
     }
@@ -191,8 +194,8 @@ int diffusion_factor(DiffusionFactor **made, const Diffusion *diffusion, int kin
     factor->deposit = kind == GROUND_DEPOSITION ? velocity * diffusion->ground_density : 0.0;
     assemble(factor);
 
-    lapack_int info = LAPACKE_dgttrf_work((lapack_int)n, factor->lower, factor->diagonal,
-                                          factor->upper, factor->upper2, factor->pivot);
+    lapack_int info = LAPACKE_dgttrf_work((lapack_int)n, factor->lower, factor->diagonal, factor->upper,
+                                          factor->upper2, factor->pivot);
     /* Dominance makes the matrix regular; only a density that is no number gets here. */
     if (info != 0 || !isfinite(factor->budget_weight) || !isfinite(factor->diagonal[n - 1])) {
         diffusion_factor_free(factor);
@@ -207,7 +210,8 @@ int diffusion_factor(DiffusionFactor **made, const Diffusion *diffusion, int kin
 
 void diffusion_factor_free(DiffusionFactor *factor)
 {
-    if (!factor) return;
+    if (!factor)
+        return;
     free(factor->lower);
     free(factor->diagonal);
     free(factor->upper);
@@ -237,19 +241,23 @@ static double fill_stage(const DiffusionFactor *factor, const double *x, double 
     flux_differences(factor->diffusion, factor->step, x, right);
     double gain = -factor->step * factor->deposit * x[0];
     right[0] += gain;
-    if (factor->kind == GROUND_FIXED) right[0] = 0.0;
+    if (factor->kind == GROUND_FIXED)
+        right[0] = 0.0;
     return gain;
 }
 
 /* Shift q uniformly so that the sum of rows of (M - gamma h L) q = h L x holds; see the head. */
 static void restore_budget(const DiffusionFactor *factor, double gain, double *q)
 {
-    if (factor->kind == GROUND_FIXED) return; /* the uniform vector is no near-null vector there */
+    if (factor->kind == GROUND_FIXED)
+        return; /* the uniform vector is no near-null vector there */
     const Diffusion *diffusion = factor->diffusion;
     double sum = GAMMA * factor->step * factor->deposit * q[0];
-    for (int i = 0; i < diffusion->layers; i++) sum += diffusion->mass[i] * q[i];
+    for (int i = 0; i < diffusion->layers; i++)
+        sum += diffusion->mass[i] * q[i];
     double shift = (gain - sum) / factor->budget_weight;
-    for (int i = 0; i < diffusion->layers; i++) q[i] += shift;
+    for (int i = 0; i < diffusion->layers; i++)
+        q[i] += shift;
 }
 
 /* q: right sides in, increments out, for all species at once; gain: [count] from fill_stage. */
@@ -257,10 +265,10 @@ static void solve_stage(const DiffusionFactor *factor, double *q, int count, con
 {
     const Diffusion *diffusion = factor->diffusion;
     size_t padded = (size_t)diffusion->padded;
-    LAPACKE_dgttrs_work(LAPACK_COL_MAJOR, 'N', diffusion->layers, count, factor->lower,
-                        factor->diagonal, factor->upper, factor->upper2, factor->pivot, q,
-                        diffusion->padded);
-    for (int s = 0; s < count; s++) restore_budget(factor, gain[s], q + (size_t)s * padded);
+    LAPACKE_dgttrs_work(LAPACK_COL_MAJOR, 'N', diffusion->layers, count, factor->lower, factor->diagonal,
+                        factor->upper, factor->upper2, factor->pivot, q, diffusion->padded);
+    for (int s = 0; s < count; s++)
+        restore_budget(factor, gain[s], q + (size_t)s * padded);
 }
 
 size_t diffusion_work(const DiffusionFactor *factor, int count)
@@ -269,8 +277,7 @@ size_t diffusion_work(const DiffusionFactor *factor, int count)
     return (2 * (size_t)count + 1) * (size_t)factor->diffusion->padded;
 }
 
-void diffusion_step(const DiffusionFactor *factor, double *x, int count, double *received,
-                    double *work)
+void diffusion_step(const DiffusionFactor *factor, double *x, int count, double *received, double *work)
 {
     const Diffusion *diffusion = factor->diffusion;
     size_t padded = (size_t)diffusion->padded, species = (size_t)count;
@@ -284,7 +291,8 @@ void diffusion_step(const DiffusionFactor *factor, double *x, int count, double 
 
     for (size_t s = 0; s < species; s++) {
         const double *state = x + s * padded, *first = q1 + s * padded;
-        for (int i = 0; i < layers; i++) stage[i] = state[i] + (1.0 - GAMMA) * first[i];
+        for (int i = 0; i < layers; i++)
+            stage[i] = state[i] + (1.0 - GAMMA) * first[i];
         gain[s] = fill_stage(factor, stage, q2 + s * padded);
     }
     solve_stage(factor, q2, count, gain);
@@ -305,5 +313,6 @@ void diffusion_step(const DiffusionFactor *factor, double *x, int count, double 
 void diffusion_tendency(const Diffusion *diffusion, const double *x, double *dxdt)
 {
     flux_differences(diffusion, 1.0, x, dxdt);
-    for (int i = 0; i < diffusion->layers; i++) dxdt[i] /= diffusion->mass[i];
+    for (int i = 0; i < diffusion->layers; i++)
+        dxdt[i] /= diffusion->mass[i];
 }

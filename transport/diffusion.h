@@ -20,14 +20,13 @@
 
 enum GroundKind { GROUND_CLOSED, GROUND_FIXED, GROUND_DEPOSITION };
 
-typedef struct Diffusion Diffusion; /* the operator for one grid, air, K: fixed after making */
+typedef struct Diffusion Diffusion;             /* the operator for one grid, air, K: fixed after making */
 typedef struct DiffusionFactor DiffusionFactor; /* for one step length and ground condition */
 
 /* eddy: [layers + 1] eddy diffusion coefficient at edges, cm2 s-1 (entries 0 and layers are not
  * looked at); FAULT_INPUT if one is negative or no number. Grid, air and eddy are copied from.
  * Owner: caller, diffusion_free. */
-int diffusion_make(Diffusion **made, const Grid *grid, const Air *air, const double *eddy,
-                   Fault *fault);
+int diffusion_make(Diffusion **made, const Grid *grid, const Air *air, const double *eddy, Fault *fault);
 /* The same for the part of the column from layer first up, its layers renumbered from 0: for species that are
  * prescribed below, whose fixed value then stands in layer first (GROUND_FIXED). */
 int diffusion_make_above(Diffusion **made, const Grid *grid, const Air *air, const double *eddy, int first,
@@ -56,8 +55,7 @@ void diffusion_factor_free(DiffusionFactor *factor); /* accepts NULL */
  *            for the scheme: sum(N dz X) after = before + received, to round-off.
  *   work     [diffusion_work(factor, count)] doubles, overwritten
  * No allocation, no error. Padding lanes are left as they are. Arrays must not overlap. */
-void diffusion_step(const DiffusionFactor *factor, double *x, int count, double *received,
-                    double *work);
+void diffusion_step(const DiffusionFactor *factor, double *x, int count, double *received, double *work);
 size_t diffusion_work(const DiffusionFactor *factor, int count);
 
 /* dX/dt = A x of the operator itself, ground closed, for tests and budgets: mole fraction s-1.

@@ -14,7 +14,8 @@ enum { LAYERS_LEAST = 4, LAYERS_MOST = 511 };
 
 static int check_layers(double layers, Fault *fault)
 {
-    if (layers >= LAYERS_LEAST && layers <= LAYERS_MOST) return 0;
+    if (layers >= LAYERS_LEAST && layers <= LAYERS_MOST)
+        return 0;
     return fault_set(fault, FAULT_INPUT,
                      "grid: %.0f layers asked for, between %d and %d can be used; change the top, "
                      "the spacing or the list of edges",
@@ -24,13 +25,12 @@ static int check_layers(double layers, Fault *fault)
 static int count_uniform(int *layers, double top_km, double spacing_km, Fault *fault)
 {
     if (!(isfinite(top_km) && top_km > 0.0))
-        return fault_set(fault, FAULT_INPUT, "grid: the top is %g km; give a positive altitude",
-                         top_km);
+        return fault_set(fault, FAULT_INPUT, "grid: the top is %g km; give a positive altitude", top_km);
     if (!(isfinite(spacing_km) && spacing_km > 0.0))
-        return fault_set(fault, FAULT_INPUT, "grid: the spacing is %g km; give a positive depth",
-                         spacing_km);
+        return fault_set(fault, FAULT_INPUT, "grid: the spacing is %g km; give a positive depth", spacing_km);
     double exact = top_km / spacing_km, whole = round(exact);
-    if (check_layers(whole, fault)) return fault->code;
+    if (check_layers(whole, fault))
+        return fault->code;
     if (fabs(exact - whole) > WHOLE_TOLERANCE)
         return fault_set(fault, FAULT_INPUT,
                          "grid: a top of %g km is %g layers of %g km; make it a whole number, for "
@@ -42,25 +42,24 @@ static int count_uniform(int *layers, double top_km, double spacing_km, Fault *f
 
 static int check_edges(const double *edge_km, int edges, Fault *fault)
 {
-    if (check_layers((double)edges - 1.0, fault)) return fault->code;
+    if (check_layers((double)edges - 1.0, fault))
+        return fault->code;
     if (edge_km[0] != 0.0)
-        return fault_set(fault, FAULT_INPUT,
-                         "grid: the first edge is %g km; it must be 0, the ground", edge_km[0]);
+        return fault_set(fault, FAULT_INPUT, "grid: the first edge is %g km; it must be 0, the ground",
+                         edge_km[0]);
     for (int e = 1; e < edges; e++)
         if (!(isfinite(edge_km[e]) && edge_km[e] > edge_km[e - 1]))
             return fault_set(fault, FAULT_INPUT,
-                             "grid: edge %d is %g km and follows %g km; edges must ascend", e + 1,
-                             edge_km[e], edge_km[e - 1]);
+                             "grid: edge %d is %g km and follows %g km; edges must ascend", e + 1, edge_km[e],
+                             edge_km[e - 1]);
     return 0;
 }
 
-int grid_make(Grid *grid, double top_km, double spacing_km, const double *edge_km, int edges,
-              Fault *fault)
+int grid_make(Grid *grid, double top_km, double spacing_km, const double *edge_km, int edges, Fault *fault)
 {
     memset(grid, 0, sizeof *grid);
     int own = edges > 0, layers = edges - 1;
-    if (own ? check_edges(edge_km, edges, fault)
-            : count_uniform(&layers, top_km, spacing_km, fault))
+    if (own ? check_edges(edge_km, edges, fault) : count_uniform(&layers, top_km, spacing_km, fault))
         return fault->code;
 
     int padded = PACK_ROUND(layers);
@@ -88,7 +87,8 @@ int grid_make(Grid *grid, double top_km, double spacing_km, const double *edge_k
 
 void grid_free(Grid *grid)
 {
-    if (!grid) return;
+    if (!grid)
+        return;
     free(grid->edge);
     free(grid->middle);
     free(grid->depth);
