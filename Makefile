@@ -109,7 +109,7 @@ install: program
 	cp -R input/data/. $(DESTDIR)$(PREFIX)/share/skymend/
 
 clean:
-	rm -rf $(BUILD)
+	rm -rf $(BUILD) build-clang build-sanitized
 
 %.d: ;
 -include $(OBJECTS:.o=.d) $(TESTS:=.d)

@@ -3,7 +3,7 @@
 
     tests/check_chemistry.py [TEST_CHEMISTRY]
 
-Has the program test_chemistry (default: tests/test_chemistry beside $SKYMEND) write one layer's
+Has the program test_chemistry (default: tests/test_chemistry beside $SKYMEND) write five layers'
 reactions as equations with their coefficients, reads the equations itself, integrates them with
 SciPy's Radau at relative tolerance 1e-9 and compares noon and midnight. Prints "ok NAME" or
 "not ok NAME" per check; exit status 1 when one is not ok.
@@ -22,6 +22,7 @@ from scipy.integrate import solve_ivp
 ASKED = 1e-6  # relative tolerance of the solver in write_case of test_chemistry.c
 BOUND = 100 * ASKED  # ten times asked, times some e-folds of what decays after dusk
 SMALL = 1.0  # cm-3: 100 times the solver's absolute tolerance
+LANES = {0: 15, 2: 25, 4: 35, 5: 45, 7: 60}  # lane of the pack in test_chemistry.c: altitude, km
 FIXED = {"M", "O2", "N2", "hv"}  # no rows of the state: folded into the coefficient
 UNFOLLOWED = {"Fx", "CH3OH", "(washout)"}  # products without a row
 
@@ -113,19 +114,22 @@ def compare(what, chemistry, got, want):
 def main(arguments):
     beside = os.path.join(os.path.dirname(os.environ.get("SKYMEND", "")), "tests", "test_chemistry")
     program = arguments[0] if arguments else beside
-    with tempfile.TemporaryDirectory(dir=os.environ.get("TEST_DIR")) as folder:
-        subprocess.run([os.path.abspath(program)], check=True, timeout=600,
-                       env={**os.environ, "SKYMEND_CHEMISTRY_CASE": folder})
-        chemistry = Chemistry(folder)
-    half = len(chemistry.time) // 2
-    noon = chemistry.integrate(chemistry.start, 0, half)
-    midnight = chemistry.integrate(noon, half, len(chemistry.time))
-    good = compare("chemistry at noon", chemistry, chemistry.noon, noon)
-    good &= compare("chemistry at midnight", chemistry, chemistry.midnight, midnight)
-    changed = np.abs(chemistry.noon - chemistry.start) > 0.1 * (np.abs(chemistry.start) + 1.0)
-    enough = changed.sum() > 15  # else the comparison says little
-    print(f"{'ok' if enough else 'not ok'} something happened ({changed.sum()} species changed by a tenth)")
-    return 0 if good and enough else 1
+    good = True
+    for lane, altitude in LANES.items():
+        with tempfile.TemporaryDirectory(dir=os.environ.get("TEST_DIR")) as folder:
+            subprocess.run([os.path.abspath(program)], check=True, timeout=600,
+                           env={**os.environ, "SKYMEND_CHEMISTRY_CASE": folder, "SKYMEND_CHEMISTRY_LANE": str(lane)})
+            chemistry = Chemistry(folder)
+        half = len(chemistry.time) // 2
+        noon = chemistry.integrate(chemistry.start, 0, half)
+        midnight = chemistry.integrate(noon, half, len(chemistry.time))
+        good &= compare(f"{altitude} km, chemistry at noon", chemistry, chemistry.noon, noon)
+        good &= compare(f"{altitude} km, chemistry at midnight", chemistry, chemistry.midnight, midnight)
+        changed = np.abs(chemistry.noon - chemistry.start) > 0.1 * (np.abs(chemistry.start) + 1.0)
+        enough = changed.sum() > 15  # else the comparison says little
+        print(f"{'ok' if enough else 'not ok'} {altitude} km, something happened ({changed.sum()} species changed by a tenth)")
+        good &= enough
+    return 0 if good else 1
 
 
 if __name__ == "__main__":

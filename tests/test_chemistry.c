@@ -216,11 +216,10 @@ static void test_lanes_are_apart(void **state)
 /* Write reactions.csv (id, equation, coefficient at every knot of the day; first line: the knots' times in s,
  * a knot listed twice where light goes on or off) and states.csv (species, start, noon, midnight by the
  * solver) of the layer in lane 2. Returns 0 or 1. */
-static int write_case(World *world, const char *folder)
+static int write_case(World *world, const char *folder, int lane)
 {
     const ChemistryCase *c = &world->c;
     const Mechanism *m = c->mechanism;
-    enum { LANE = 2 };
     char path[500];
     snprintf(path, sizeof path, "%s/reactions.csv", folder);
     FILE *out = fopen(path, "w");
@@ -237,7 +236,7 @@ static int write_case(World *world, const char *folder)
         fprintf(out, "%s;%s", m->reaction[r].id, m->reaction[r].equation);
         for (int segment = 0; segment < CASE_SEGMENTS; segment++)
             for (int end = 0; end < 2; end++)
-                fprintf(out, ";%.17g", case_coefficient(c, r, test_layer[LANE], segment, end));
+                fprintf(out, ";%.17g", case_coefficient(c, r, test_layer[lane], segment, end));
         fputc('\n', out);
     }
     int failed = fclose(out);
@@ -259,7 +258,7 @@ static int write_case(World *world, const char *folder)
     if (out) {
         fprintf(out, "species;start;noon;midnight\n");
         for (int s = 0; s < m->solved; s++) {
-            int at = s * PACK + LANE;
+            int at = s * PACK + lane;
             fprintf(out, "%s;%.17g;%.17g;%.17g\n", mechanism_name(m, s), start[at], noon[at], y[at]);
         }
         failed |= fclose(out);
@@ -282,7 +281,8 @@ int main(void)
             fprintf(stderr, "%s\n", fault.text);
             return 1;
         }
-        int failed = write_case(&world, folder);
+        const char *lane = getenv("SKYMEND_CHEMISTRY_LANE"); /* of the pack's eight layers */
+        int failed = write_case(&world, folder, lane && *lane >= '0' && *lane < '0' + PACK ? *lane - '0' : 2);
         case_free(&world.c);
         solver_work_free(world.work);
         return failed;
