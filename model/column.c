@@ -155,7 +155,7 @@ static int read_troposphere(Model *model, Fault *fault)
 
 /* ---- ground conditions ---- */
 
-static int is_held(const Model *model, int solved)
+int model_holds(const Model *model, int solved)
 {
     for (int h = 0; h < model->held; h++)
         if (model->held_species[h] == solved)
@@ -179,7 +179,7 @@ static int set_ground(Model *model, Fault *fault)
                 fault, model->schedule.path, model->schedule.first_line[g],
                 "gas %s is not an active species of mechanism %s; correct the name or add the species", gas,
                 mechanism->path);
-        if (is_held(model, s))
+        if (model_holds(model, s))
             return fault_at(
                 fault, model->schedule.path, model->schedule.first_line[g],
                 "gas %s is also held up to the tropopause by a table of the case; remove one of the two",
@@ -207,7 +207,7 @@ static int set_ground(Model *model, Fault *fault)
             return fault_at(fault, file, bound->line,
                             "surface.bounds names %s, which the schedule %s carries; keep one of the two",
                             bound->species, model->schedule.path);
-        if (is_held(model, s))
+        if (model_holds(model, s))
             return fault_at(
                 fault, file, bound->line,
                 "surface.bounds names %s, which a table holds up to the tropopause; remove one of the two",

@@ -75,6 +75,8 @@ typedef struct {
 /* Build the model a case describes: reads every table. Owner: caller. */
 int model_make(Model **made, const Settings *settings, Fault *fault);
 void model_free(Model *model);
+/* 1 when a table of the case prescribes solved species s below the tropopause. */
+int model_holds(const Model *model, int solved);
 
 /* A column at the initial profiles with the surface values of the run's first year. */
 int column_make(Column **made, const Model *model, Fault *fault);

@@ -16,9 +16,9 @@
 
 #include "light.h"
 
-#define DAY_SETTLED 0.005/* relative change of factors between days at which the day counts as repeating */
-#define DAY_MOST 15      /* days tried */
-#define DAY_COLD 10      /* days of the first time */
+#define DAY_SETTLED 0.005 /* relative change of factors between days at which the day counts as repeating */
+#define DAY_MOST 15       /* days tried */
+#define DAY_COLD 10       /* days of the first time */
 
 typedef struct {
     const Model *model;

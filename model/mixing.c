@@ -24,14 +24,6 @@ struct Mixing {
     int held_top;               /* highest layer that is prescribed */
 };
 
-static int is_held(const Model *model, int solved)
-{
-    for (int h = 0; h < model->held; h++)
-        if (model->held_species[h] == solved)
-            return 1;
-    return 0;
-}
-
 static void list_grounds(Mixing *mixing)
 {
     const Model *model = mixing->model;
@@ -39,7 +31,7 @@ static void list_grounds(Mixing *mixing)
         mixing->ground_of[s] = -1;
         if (!model->mechanism->item[model->mechanism->solved_item[s]].transport)
             continue;
-        Ground ground = {.kind = GROUND_CLOSED, .held = is_held(model, s)};
+        Ground ground = {.kind = GROUND_CLOSED, .held = model_holds(model, s)};
         if (ground.held || model->surface_kind[s] == SURFACE_SCHEDULE ||
             model->surface_kind[s] == SURFACE_FIXED)
             ground.kind = GROUND_FIXED;

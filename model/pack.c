@@ -133,12 +133,8 @@ static void restore_atoms(PackWork *work, const Model *model)
 
 static int kept_by_ground(const Model *model, int s)
 {
-    if (model->surface_kind[s] != SURFACE_SCHEDULE && model->surface_kind[s] != SURFACE_FIXED)
-        return 0;
-    for (int h = 0; h < model->held; h++)
-        if (model->held_species[h] == s)
-            return 0; /* already prescribed up to the tropopause */
-    return 1;
+    int kind = model->surface_kind[s];
+    return (kind == SURFACE_SCHEDULE || kind == SURFACE_FIXED) && !model_holds(model, s);
 }
 
 void pack_load(PackWork *work, const Model *model, int first, const double *x)

@@ -2,24 +2,9 @@
  * what a day integrates, and that a run with the factors is the mean of explicit days. The built-in case on
  * layers of 2 km. */
 #define _XOPEN_SOURCE 700
-#include "scratch.h"
+#include "run.h"
 
 #include <omp.h>
-
-#include "../input/constants.h"
-#include "../model/step.h"
-
-typedef struct {
-    Model *model;
-    Column *column;
-    Stepper *stepper;
-} Run;
-
-static void ok(int code, const Fault *fault)
-{
-    if (code)
-        fail_msg("fault %d: %s", code, fault->text);
-}
 
 static Settings coarse(void)
 {
@@ -31,39 +16,10 @@ static Settings coarse(void)
     return settings;
 }
 
-static Run start(const Settings *settings)
-{
-    Run run;
-    Fault fault = {0};
-    ok(model_make(&run.model, settings, &fault), &fault);
-    ok(column_make(&run.column, run.model, &fault), &fault);
-    ok(stepper_make(&run.stepper, run.model, 1, &fault), &fault);
-    return run;
-}
-
-static void end(Run *run)
-{
-    stepper_free(run->stepper);
-    column_free(run->column);
-    model_free(run->model);
-}
-
-static void advance(Run *run, double days, int steps)
-{
-    Fault fault = {0};
-    for (int i = 0; i < steps; i++)
-        ok(stepper_advance(run->stepper, run->column, days * DAY_SECONDS, 1, &fault), &fault);
-}
-
-static size_t field_size(const Run *run)
-{
-    return (size_t)run->model->mechanism->solved * (size_t)run->model->grid.padded;
-}
-
 static void copy_state(Run *to, const Run *from)
 {
-    assert_int_equal(field_size(to), field_size(from));
-    memcpy(to->column->x, from->column->x, field_size(from) * sizeof(double));
+    assert_int_equal(field_size(to->model), field_size(from->model));
+    memcpy(to->column->x, from->column->x, field_size(from->model) * sizeof(double));
 }
 
 static int solved(const Run *run, const char *name)
@@ -92,8 +48,8 @@ static int spin(void **state)
 {
     (void)state;
     Settings settings = coarse();
-    spun = start(&settings);
-    advance(&spun, settings.outer_step_days, (int)lround(3.0 * 365.25 / settings.outer_step_days));
+    spun = start(&settings, 1);
+    advance(&spun, settings.outer_step_days, (int)lround(3.0 * 365.25 / settings.outer_step_days), 1);
     return 0;
 }
 
@@ -137,7 +93,7 @@ static void test_load_and_store(void **state)
     PackWork *work;
     Fault fault = {0};
     ok(pack_make(&work, model, &fault), &fault);
-    size_t bytes = field_size(&spun) * sizeof(double);
+    size_t bytes = field_size(spun.model) * sizeof(double);
     double *x = malloc(bytes),
            *lists = calloc((size_t)(MODEL_HELD_MOST + n + model->kernel->tallies), sizeof(double));
     assert_non_null(x);
@@ -171,7 +127,7 @@ static void test_load_and_store(void **state)
         for (int c = 0; c < model->kernel->counters; c++)
             assert_true(ledger.escaped[c] == 0.0);
     }
-    for (size_t i = 0; i < field_size(&spun); i++)
+    for (size_t i = 0; i < field_size(spun.model); i++)
         assert_true(fabs(x[i] - spun.column->x[i]) <= 1e-15 * fabs(x[i]));
 
     /* held and ground values come back whatever the chemistry made of them, and the difference is counted */
@@ -211,7 +167,7 @@ static void test_round_off_is_put_back(void **state)
     PackWork *work;
     Fault fault = {0};
     ok(pack_make(&work, model, &fault), &fault);
-    double *x = malloc(field_size(&spun) * sizeof(double));
+    double *x = malloc(field_size(spun.model) * sizeof(double));
     double *lists = calloc((size_t)(MODEL_HELD_MOST + n + model->kernel->tallies), sizeof(double));
     assert_non_null(x);
     assert_non_null(lists);
@@ -220,7 +176,7 @@ static void test_round_off_is_put_back(void **state)
     int clo = solved(&spun, "ClO");
     static const double defect[] = {1e-12, -3e-11, 1e-8, -1e-6};
     for (size_t i = 0; i < sizeof defect / sizeof defect[0]; i++) {
-        memcpy(x, spun.column->x, field_size(&spun) * sizeof(double));
+        memcpy(x, spun.column->x, field_size(spun.model) * sizeof(double));
         double before = lane_atoms(model, x, "Cl", layer), hydrogen = lane_atoms(model, x, "H", layer);
         pack_load(work, model, first, x);
         work->y[clo * PACK + 3] += defect[i] * before * model->air.number_density[layer];
@@ -386,9 +342,9 @@ static void test_night_only(void **state)
     settings.sun = SUN_LATITUDE;
     settings.latitude_deg = 88.0;
     settings.day_of_year = 355.0;
-    Run run = start(&settings);
+    Run run = start(&settings, 1);
     copy_state(&run, &spun);
-    advance(&run, 1.0, 5);
+    advance(&run, 1.0, 5, 1);
     int padded = run.model->grid.padded, o = solved(&run, "O"), no3 = solved(&run, "NO3"),
         o3 = solved(&run, "O3");
     const double *mean = stepper_mean(run.stepper);
@@ -446,9 +402,9 @@ static void test_factors_are_consistent(void **state)
     Settings settings = coarse();
     settings.day = DAY_EXPLICIT;
     settings.refresh_column = 1e-4; /* the first light knows the ozone of midnight only */
-    Run run = start(&settings);
+    Run run = start(&settings, 1);
     day_midnight(stepper_day(spun.stepper), spun.column->x, run.column->x);
-    advance(&run, 1.0, 3);
+    advance(&run, 1.0, 3, 1);
     int padded = run.model->grid.padded;
     /* higher up, HNO3 lives for about a day on what diffusion brings: there the step of the run, not its
      * factors, decides */
@@ -482,7 +438,7 @@ static void test_take_by_hand(void **state)
     int padded = model->grid.padded, r = reaction(&spun, "ClO + O "), layer = 15;
     int clo = solved(&spun, "ClO"), o = solved(&spun, "O");
     const double *k = stepper_coefficients(spun.stepper);
-    double *end_x = calloc(field_size(&spun), sizeof(double));
+    double *end_x = calloc(field_size(spun.model), sizeof(double));
     assert_non_null(end_x);
     day_clear(day);
     day->sum_y[FIELD(padded, clo, layer)] = 1e7 * DAY_SECONDS;
@@ -511,22 +467,22 @@ static void test_first_time_and_stale(void **state)
 {
     (void)state;
     Settings settings = coarse();
-    Run run = start(&settings);
+    Run run = start(&settings, 1);
     const Day *day = stepper_day(run.stepper);
     int padded = run.model->grid.padded;
     assert_true(day_stale(day, run.column->x)); /* not made yet */
     for (size_t i = 0; i < (size_t)run.model->mechanism->reactions * (size_t)padded; i++)
         assert_true(day->factor[i] == 1.0);
-    advance(&run, 1.0, 1);
+    advance(&run, 1.0, 1, 1);
     assert_int_equal(run.column->factor_refreshes, 1);
     assert_int_equal(run.column->days, DAY_COLD); /* the first time runs freely */
     end(&run);
 
     /* moves of what has a diurnal course count, from refresh_state on; others do not */
     day = stepper_day(spun.stepper);
-    double *x = malloc(field_size(&spun) * sizeof(double));
+    double *x = malloc(field_size(spun.model) * sizeof(double));
     assert_non_null(x);
-    memcpy(x, day->reference, field_size(&spun) * sizeof(double));
+    memcpy(x, day->reference, field_size(spun.model) * sizeof(double));
     assert_false(day_stale(day, x));
     size_t no2 = FIELD(spun.model->grid.padded, solved(&spun, "NO2"), 15),
            hcl = FIELD(spun.model->grid.padded, solved(&spun, "HCl"), 15);
@@ -603,13 +559,13 @@ static void test_explicit_agrees_without_mixing(void **state)
     Settings settings = coarse();
     snprintf(settings.eddy_file, sizeof settings.eddy_file, "%s", path);
     settings.outer_step_days = 1.0;
-    Run means = start(&settings);
+    Run means = start(&settings, 1);
     settings.day = DAY_EXPLICIT;
-    Run days = start(&settings);
+    Run days = start(&settings, 1);
     copy_state(&means, &spun);
     copy_state(&days, &spun);
-    advance(&means, 1.0, 60);
-    advance(&days, 1.0, 60);
+    advance(&means, 1.0, 60, 1);
+    advance(&days, 1.0, 60, 1);
     double worst = worst_ozone(&means, &days, 2.0, 74.0);
     print_message("explicit day and factors without mixing: ozone %.2f %% apart\n", 100.0 * worst);
     assert_true(worst < 0.005);
@@ -622,15 +578,15 @@ static void test_explicit_year_agrees(void **state)
 {
     (void)state;
     Settings settings = coarse();
-    Run means = start(&settings);
+    Run means = start(&settings, 1);
     copy_state(&means, &spun);
-    advance(&means, settings.outer_step_days, (int)lround(7.0 * 365.25 / settings.outer_step_days));
+    advance(&means, settings.outer_step_days, (int)lround(7.0 * 365.25 / settings.outer_step_days), 1);
     settings.day = DAY_EXPLICIT;
-    Run days = start(&settings);
+    Run days = start(&settings, 1);
     copy_state(&days, &means);
     long steps = lround(365.0 / settings.outer_step_days);
-    advance(&means, 365.0 / (double)steps, (int)steps);
-    advance(&days, 1.0, 365);
+    advance(&means, 365.0 / (double)steps, (int)steps, 1);
+    advance(&days, 1.0, 365, 1);
     double worst = worst_ozone(&means, &days, 0.0, 74.0), top = worst_ozone(&means, &days, 74.0, 90.0);
     double du = column_ozone_du(means.model, means.column->x);
     double du_days = column_ozone_du(days.model, stepper_mean(days.stepper));

@@ -2,24 +2,11 @@
  * counted, the splitting converges, threads change nothing, and chlorine destroys ozone. Built-in case on
  * coarse layers. */
 #define _XOPEN_SOURCE 700
-#include "scratch.h"
+#include "run.h"
 
 #include <omp.h>
 
-#include "../input/constants.h"
 #include "../model/projection.h"
-
-typedef struct {
-    Model *model;
-    Column *column;
-    Stepper *stepper;
-} Run;
-
-static void ok(int code, const Fault *fault)
-{
-    if (code)
-        fail_msg("fault %d: %s", code, fault->text);
-}
 
 static Settings coarse(double spacing_km, int first_year)
 {
@@ -29,35 +16,6 @@ static Settings coarse(double spacing_km, int first_year)
     settings.first_year = settings.last_year = first_year;
     settings.spinup_years = 0.0;
     return settings;
-}
-
-static Run start(const Settings *settings, int threads)
-{
-    Run run;
-    Fault fault = {0};
-    ok(model_make(&run.model, settings, &fault), &fault);
-    ok(column_make(&run.column, run.model, &fault), &fault);
-    ok(stepper_make(&run.stepper, run.model, threads, &fault), &fault);
-    return run;
-}
-
-static void end(Run *run)
-{
-    stepper_free(run->stepper);
-    column_free(run->column);
-    model_free(run->model);
-}
-
-static void advance(Run *run, double days, long steps, int frozen)
-{
-    Fault fault = {0};
-    for (long i = 0; i < steps; i++)
-        ok(stepper_advance(run->stepper, run->column, days * DAY_SECONDS, frozen, &fault), &fault);
-}
-
-static size_t field_size(const Model *model)
-{
-    return (size_t)model->mechanism->solved * (size_t)model->grid.padded;
 }
 
 static int solved(const Model *model, const char *name)

@@ -9,7 +9,7 @@
 
 #include "../input/constants.h"
 
-/* ---- limits of the defaults, set by hand and not fitted to a run ---- */
+/* ---- limits of the defaults, set by hand; RESOLVED_KM after seeing where the two ways part ---- */
 
 /* Factors against explicit days, relative ozone by layer and column: a tenth of the 20 % that constant mean
  * light costs at 40 km. Up to RESOLVED_KM: above, eddy diffusion crosses a layer in some 11 h, as fast as
