@@ -42,6 +42,11 @@ typedef struct {
     const double *held_free;  /* [held][PACK] 1 where free, 0 where held */
     const double *held_value; /* [held][PACK] value where held, 0 where free */
     double *tally;            /* [tallies][PACK] events added, cm-3; may be NULL */
+    /* Chemical turnover at the start of the last step, or both NULL: gross production cm-3 s-1 (of a gas that
+     * reacts with itself up to twice that) and loss frequency s-1, [species][PACK] out */
+    double *production, *loss;
+    const double *source; /* [species][PACK] what comes from outside at a constant rate (below zero: goes),
+                             cm-3 s-1, or NULL: nothing */
     /* Time integrals added: of y as the rates see it and of the rates, of order 3 and consistent with the
      * step: what a row changes by is the sum of its sources' integrals, to round-off. Both or none NULL. */
     double *sum_y; /* [species][PACK] cm-3 s */

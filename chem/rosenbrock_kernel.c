@@ -392,6 +392,14 @@ static void add_tallies(const Kernel *kernel, PackProblem *problem, const Solver
     }
 }
 
+/* f plus what comes from outside. */
+static void add_source(const Kernel *kernel, const PackProblem *problem, double *restrict f)
+{
+    const double *restrict source = problem->source;
+    for (int i = 0; source && i < kernel->species * PACK; i++)
+        f[i] += source[i];
+}
+
 /* stage = f and w = rates of work->stage_u, which is made seen first, with coefficients k. */
 static void stage_tendency(const Kernel *kernel, SolverWork *work, const PackProblem *problem, const Vec *k,
                            double *w, double *stage)
@@ -399,6 +407,7 @@ static void stage_tendency(const Kernel *kernel, SolverWork *work, const PackPro
     see(problem, work, (Vec *)work->stage_u);
     evaluate_rates(kernel, k, (const Vec *)work->stage_u, (Vec *)w);
     gather_sources(kernel, (const Vec *)w, (Vec *)stage);
+    add_source(kernel, problem, stage);
 }
 
 /* One attempted step of length h from y, for which prepare_step was run. Leaves the candidate in work->next
@@ -450,12 +459,31 @@ static void prepare_step(const Kernel *kernel, SolverWork *work, const PackProbl
     see(problem, work, (Vec *)work->u);
     evaluate_rates(kernel, k, u, (Vec *)work->w);
     gather_sources(kernel, (const Vec *)work->w, (Vec *)work->f);
+    add_source(kernel, problem, work->f);
     evaluate_jacobian(kernel, k, u, problem->held ? (const Vec *)work->free : NULL, (Vec *)work->d,
                       (Vec *)work->jacobian);
     if (problem->k_slope)
         gather_slope(kernel, work, (const Vec *)problem->k_slope, u, (Vec *)work->w3, (Vec *)work->slope);
     else
         memset(work->slope, 0, (size_t)kernel->species * PACK * sizeof *work->slope);
+}
+
+/* Turnover from what prepare_step made last: loss frequency is the diagonal of the Jacobian, production what
+ * the tendency is above it. y: state it was made for, still in work->u where it is not held. */
+static void give_turnover(const Kernel *kernel, const SolverWork *work, PackProblem *problem)
+{
+    if (!problem->loss)
+        return;
+    for (int i = 0; i < kernel->species; i++) {
+        int s = kernel->order_of[i];
+        const double *diagonal = work->jacobian + PACK * (size_t)kernel->diagonal[i];
+        for (int l = 0; l < PACK; l++) {
+            size_t at = (size_t)s * PACK + (size_t)l;
+            double outside = problem->source ? problem->source[at] : 0.0;
+            problem->loss[at] = -diagonal[l];
+            problem->production[at] = work->f[at] - outside - diagonal[l] * work->u[at];
+        }
+    }
 }
 
 static void count_negatives(const Kernel *kernel, const double *y, const double *is_free,
@@ -530,6 +558,7 @@ int JOIN(solver_advance_, SOLVER_SUFFIX)(const Kernel *kernel, SolverWork *work,
         elapsed = last ? duration : elapsed + tried;
     }
     problem->step = next_step;
+    give_turnover(kernel, work, problem);
     count_negatives(kernel, y, work->free, counts);
     return SOLVER_DONE;
 }

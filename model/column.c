@@ -409,12 +409,14 @@ int column_make(Column **made, const Model *model, Fault *fault)
     if (!column)
         return fault_memory(fault, "column");
     column->x = aligned_alloc(64, solved * padded * sizeof(double));
+    column->balance = calloc(solved * padded, sizeof(double));
     column->received = calloc(solved, sizeof(double));
     column->exchanged = calloc(solved, sizeof(double));
     column->washed = calloc(solved, sizeof(double));
     column->escaped = calloc(MECHANISM_ELEMENTS, sizeof(double));
     int code = 0;
-    if (!column->x || !column->received || !column->exchanged || !column->washed || !column->escaped)
+    if (!column->x || !column->balance || !column->received || !column->exchanged || !column->washed ||
+        !column->escaped)
         code = fault_memory(fault, "column");
     column->time = model->settings.first_year;
     if (!code)
@@ -433,6 +435,7 @@ void column_free(Column *column)
     if (!column)
         return;
     free(column->x);
+    free(column->balance);
     free(column->received);
     free(column->exchanged);
     free(column->washed);

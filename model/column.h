@@ -58,6 +58,9 @@ typedef struct {
     double *x;   /* [solved][padded] mole fraction, mol mol-1 (daily mean under factors, midnight in explicit
                     days) */
     double time; /* decimal years of 365.25 days; 1980.0 = start of 1980 */
+    double
+        *balance; /* [solved][padded] mole fraction s-1: the part of the transport that the chemistry of a run
+                     of means sees, so that the two halves of a step need not undo each other (step.h) */
 
     /* ledger per solved species, molecules cm-2 since the start of the run */
     double *received;  /* through the ground by transport, incl. what keeping the surface value supplied */

@@ -137,7 +137,7 @@ int mixing_prepare(Mixing *mixing, int slot, double step, Fault *fault)
     return 0;
 }
 
-void mixing_step(Mixing *mixing, int slot, Column *column)
+void mixing_step(Mixing *mixing, int slot, Column *column, const double *sink)
 {
     const Model *model = mixing->model;
     int solved = model->mechanism->solved, padded = model->grid.padded, layers = model->grid.layers;
@@ -147,8 +147,9 @@ void mixing_step(Mixing *mixing, int slot, Column *column)
         if (mixing->ground_of[s] < 0)
             continue;
         const Ground *ground = &mixing->ground[mixing->ground_of[s]];
+        int first = ground->held ? mixing->held_top : 0;
         double *x = column->x + FIELD(padded, s, 0);
-        diffusion_step(ground->factor[slot], x + (ground->held ? mixing->held_top : 0), 1,
+        diffusion_step(ground->factor[slot], x + first, sink ? sink + FIELD(padded, s, first) : NULL, 1,
                        &mixing->received[s], mixing->work[omp_get_thread_num()]);
         for (int l = layers; l < padded; l++)
             x[l] = x[layers - 1];
@@ -156,6 +157,21 @@ void mixing_step(Mixing *mixing, int slot, Column *column)
     for (int s = 0; s < solved; s++) {
         int held = mixing->ground_of[s] >= 0 && mixing->ground[mixing->ground_of[s]].held;
         *(held ? &column->exchanged[s] : &column->received[s]) += mixing->received[s];
+    }
+}
+
+void mixing_mask(const Mixing *mixing, double *rate)
+{
+    const Model *model = mixing->model;
+    int padded = model->grid.padded;
+    for (int s = 0; s < model->mechanism->solved; s++) {
+        int kept = padded; /* layers from the ground up that transport leaves alone */
+        if (mixing->ground_of[s] >= 0) {
+            const Ground *ground = &mixing->ground[mixing->ground_of[s]];
+            kept = ground->held ? mixing->held_top + 1 : ground->kind == GROUND_FIXED;
+        }
+        for (int l = 0; l < kept; l++)
+            rate[FIELD(padded, s, l)] = 0.0;
     }
 }
 

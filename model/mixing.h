@@ -20,8 +20,13 @@ void mixing_free(Mixing *mixing);
 
 /* Make slot ready for steps of a length in s; nothing is done when it is. */
 int mixing_prepare(Mixing *mixing, int slot, double step, Fault *fault);
-/* One step of the length slot is ready for. Padding lanes repeat the top layer afterwards. */
-void mixing_step(Mixing *mixing, int slot, Column *column);
+/* One step of the length slot is ready for. sink: as in diffusion_step, [solved][padded], or NULL. Padding
+ * lanes repeat the top layer afterwards. */
+void mixing_step(Mixing *mixing, int slot, Column *column, const double *sink);
+/* Set rate [solved][padded] to 0 where transport does not change a mole fraction: of species that are not
+ * carried, in layers where they are prescribed, and in the lowest layer of those the ground keeps at a value.
+ */
+void mixing_mask(const Mixing *mixing, double *rate);
 
 /* Give the lowest layer its scheduled (at decimal year time) or fixed values; what that adds has come through
  * the ground. */

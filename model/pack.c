@@ -45,10 +45,10 @@ int pack_make(PackWork **made, const Model *model, Fault *fault)
     struct {
         double **array;
         size_t rows;
-    } part[] = {
-        {&work->y, species},         {&work->k, reactions},        {&work->slope, reactions},
-        {&work->sum_y, species},     {&work->sum_w, reactions},    {&work->tally, tallies},
-        {&work->held_free, species}, {&work->held_value, species}, {&work->atoms, MECHANISM_ELEMENTS}};
+    } part[] = {{&work->y, species},         {&work->k, reactions},        {&work->slope, reactions},
+                {&work->sum_y, species},     {&work->sum_w, reactions},    {&work->tally, tallies},
+                {&work->held_free, species}, {&work->held_value, species}, {&work->atoms, MECHANISM_ELEMENTS},
+                {&work->source, species},    {&work->production, species}, {&work->loss, species}};
     size_t rows = 0, parts = sizeof part / sizeof part[0];
     for (size_t i = 0; i < parts; i++)
         rows += part[i].rows;
@@ -177,6 +177,21 @@ void pack_load(PackWork *work, const Model *model, int first, const double *x)
             count_atoms(work, model, e, work->atoms + e * PACK);
 }
 
+void pack_source(PackWork *work, const Model *model, int first, const double *balance, double duration)
+{
+    int padded = model->grid.padded, solved = model->mechanism->solved;
+    int rows = model->kernel->species + model->kernel->tallies;
+    const double *air = model->air.number_density + first;
+    for (int s = 0; s < solved; s++)
+        for (int l = 0; l < PACK; l++)
+            work->source[s * PACK + l] = balance[FIELD(padded, s, first + l)] * air[l];
+    for (int e = 0; e < model->mechanism->elements; e++)
+        for (int c = 0; c < work->carriers[e] && work->carrier[e * rows + c] < solved; c++)
+            for (int l = 0; l < PACK; l++)
+                work->atoms[e * PACK + l] += work->carried[e * rows + c] *
+                                             work->source[work->carrier[e * rows + c] * PACK + l] * duration;
+}
+
 void pack_rates(PackWork *work, const Model *model, int first, const double *coefficient,
                 const double *mean_light, const double *factor)
 {
@@ -240,6 +255,17 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
         for (int l = 0; l < lanes; l++)
             ledger->escaped[c] += work->y[(solved + c) * PACK + l] * depth[l];
     }
+}
+
+void pack_turnover(const PackWork *work, const Model *model, int first, double *made, double *lost)
+{
+    const double *air = model->air.number_density + first;
+    for (int s = 0; s < model->mechanism->solved; s++)
+        for (int l = 0; l < PACK; l++) {
+            size_t at = FIELD(model->grid.padded, s, first + l);
+            made[at] = work->production[s * PACK + l] / air[l];
+            lost[at] = work->loss[s * PACK + l] * work->y[s * PACK + l] / air[l];
+        }
 }
 
 int pack_fault(const Model *model, int first, int result, int where, double time, Fault *fault)

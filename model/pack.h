@@ -19,6 +19,8 @@ typedef struct {
     double *sum_y;                  /* [kernel species][PACK] cm-3 s */
     double *sum_w;                  /* [reactions][PACK] cm-3 */
     double *tally;                  /* [tallies][PACK] cm-3 */
+    double *source;                 /* [kernel species][PACK] cm-3 s-1 */
+    double *production, *loss;      /* [kernel species][PACK] cm-3 s-1, s-1: as of PackProblem */
     double *held_free, *held_value; /* [held][PACK] */
     double *atoms;                  /* [elements][PACK] atoms cm-3 at loading */
     int *carriers; /* [elements] rows (species, then counters, then tallies) that hold an element; 0 for O and
@@ -45,6 +47,11 @@ void pack_free(PackWork *work);
 /* y = x N, held lanes (for gases kept by the ground: at their x of the lowest layer) and empty counters and
  * tallies of the pack that starts at layer first. */
 void pack_load(PackWork *work, const Model *model, int first, const double *x);
+/* source = balance N [solved][padded], for a call that lasts duration s. To come after pack_load. */
+void pack_source(PackWork *work, const Model *model, int first, const double *balance, double duration);
+/* What the last call's chemistry made and lost at its end, mole fraction s-1: rows of fields
+ * [solved][padded]. */
+void pack_turnover(const PackWork *work, const Model *model, int first, double *made, double *lost);
 /* k = coefficient, photolysis rows from mean light [photolysis][padded], times factor [reactions][padded]
  * (NULL: 1). */
 void pack_rates(PackWork *work, const Model *model, int first, const double *coefficient,
@@ -58,14 +65,14 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
 /* FAULT_NUMERICS for a solver that failed in the pack that starts at layer first, naming altitude and
  * species. */
 int pack_fault(const Model *model, int first, int result, int where, double time, Fault *fault);
-/* The solver's problem over this pack; sums = 1 asks for time integrals. slope is not set. */
+/* The solver's problem over this pack; sums = 1 asks for time integrals. slope and source are not set. */
 PackProblem pack_problem(const PackWork *work, int sums, double step);
 
 /* A day goes in PACK_DAY_PARTS parts: PACK_NIGHT_PARTS of the night to sunrise, PACK_MORNING_PARTS of the
  * morning, and their mirror images about noon. Length of a part, s: the same for a part and its image; 0
  * where there is no night. */
-#define PACK_NIGHT_PARTS 2
-#define PACK_MORNING_PARTS 2
+#define PACK_NIGHT_PARTS 4
+#define PACK_MORNING_PARTS 4
 #define PACK_DAY_PARTS (2 * (PACK_NIGHT_PARTS + PACK_MORNING_PARTS))
 double pack_part_length(const Light *light, int part);
 int pack_part_lit(int part);

@@ -12,6 +12,10 @@
 
 _Static_assert(1 + PACK_DAY_PARTS / 2 <= MIXING_SLOTS, "a slot for each length of a part of the day");
 
+/* Share of a species' production that its balance may take. Of ozone and atomic oxygen, which photolysis
+ * turns over within minutes, transport takes far less anywhere. */
+static const double BALANCE_SHARE = 0.5;
+
 typedef struct {
     int result, where; /* of the solver */
     SolverCounts counts;
@@ -36,6 +40,10 @@ struct Stepper {
     double *coefficient; /* [reactions][padded] */
     double *density;     /* [solved][padded] work */
     double *mean;        /* [solved][padded] */
+    int balances;        /* species with a balance */
+    int *balanced;       /* [balances] which */
+    double *turn;        /* [balances][padded] running sum for the balance of a step */
+    double *made, *lost; /* [solved][padded] by the chemistry at the end of a step, mole fraction s-1 */
     double *daylight;    /* [solved][padded] explicit days: mean of the last day while the sun was up */
     int daylight_known;
     StepClock clock;
@@ -58,10 +66,14 @@ static int allocate(Stepper *stepper, Fault *fault)
     stepper->coefficient = calloc((size_t)model->mechanism->reactions * padded, sizeof(double));
     stepper->density = calloc(solved * padded, sizeof(double));
     stepper->mean = calloc(solved * padded, sizeof(double));
+    stepper->balanced = calloc(solved, sizeof(int));
+    stepper->turn = calloc(solved * padded, sizeof(double));
+    stepper->made = calloc(solved * padded, sizeof(double));
+    stepper->lost = calloc(solved * padded, sizeof(double));
     stepper->daylight = calloc(solved * padded, sizeof(double));
     if (!stepper->work || !stepper->outcome || !stepper->order || !stepper->ledgers || !stepper->half_step ||
         !stepper->part_step || !stepper->coefficient || !stepper->density || !stepper->mean ||
-        !stepper->daylight)
+        !stepper->balanced || !stepper->turn || !stepper->made || !stepper->lost || !stepper->daylight)
         return fault_memory(fault, "stepper");
     for (size_t i = 0; i < (2 + PACK_DAY_PARTS) * packs; i++)
         stepper->order[i] = (int)(i % packs);
@@ -74,6 +86,22 @@ static int allocate(Stepper *stepper, Fault *fault)
     for (size_t t = 0; !code && t < threads; t++)
         code = pack_make(&stepper->work[t], model, fault);
     return code;
+}
+
+/* Which species have a balance: those carried whose atoms are O and H only. Of the other elements the
+ * chemistry keeps the sum over a family, whose members, each with a steady sink, would be emptied when the
+ * family is. */
+static void list_balanced(Stepper *stepper)
+{
+    const Mechanism *mechanism = stepper->model->mechanism;
+    for (int s = 0; s < mechanism->solved; s++) {
+        int other = !mechanism->item[mechanism->solved_item[s]].transport;
+        for (int e = 0; e < mechanism->elements; e++)
+            if (strcmp(mechanism->element[e], "O") && strcmp(mechanism->element[e], "H"))
+                other |= mechanism_atoms(mechanism, s, e) != 0;
+        if (!other)
+            stepper->balanced[stepper->balances++] = s;
+    }
 }
 
 int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault)
@@ -98,6 +126,7 @@ int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault)
         stepper_free(stepper);
         return code;
     }
+    list_balanced(stepper);
     const Air *air = &model->air;
     /* water enters HO2 + HO2 only and is renewed at every step */
     rates_thermal(model->mechanism, model->grid.padded, air->temperature, air->number_density,
@@ -126,6 +155,10 @@ void stepper_free(Stepper *stepper)
     free(stepper->coefficient);
     free(stepper->density);
     free(stepper->mean);
+    free(stepper->balanced);
+    free(stepper->turn);
+    free(stepper->made);
+    free(stepper->lost);
     free(stepper->daylight);
     free(stepper);
 }
@@ -233,13 +266,19 @@ static int chemistry(Stepper *stepper, Column *column, double step, int half, Fa
         double *first_step = &stepper->half_step[half * stepper->packs + p];
         outcome->counts = (SolverCounts){0};
         pack_load(work, model, p * PACK, column->x);
+        pack_source(work, model, p * PACK, column->balance, step);
         pack_rates(work, model, p * PACK, stepper->coefficient, stepper->light->mean, factor);
         PackProblem problem = pack_problem(work, 0, *first_step);
+        problem.source = work->source;
+        problem.production = work->production;
+        problem.loss = work->loss;
         outcome->result = solver_advance(model->kernel, work->solver, &problem, step, &tolerance,
                                          &outcome->counts, &outcome->where);
         *first_step = problem.first;
-        if (!outcome->result)
-            pack_store(work, model, p * PACK, column->x, &outcome->ledger);
+        if (outcome->result)
+            continue;
+        pack_turnover(work, model, p * PACK, stepper->made, stepper->lost);
+        pack_store(work, model, p * PACK, column->x, &outcome->ledger);
     }
     arrange(stepper, order);
     return settle_packs(stepper, column, fault);
@@ -307,11 +346,11 @@ static int carry_day(Stepper *stepper, Column *column, double years, Fault *faul
             return code;
         mixing_set_ground(stepper->model, column,
                           column->time + (elapsed + 0.5 * length) / DAY_SECONDS * years);
-        mixing_step(stepper->mixing, slot, column);
+        mixing_step(stepper->mixing, slot, column, NULL);
         code = carry_part(stepper, column, part, fault);
         if (code)
             return code;
-        mixing_step(stepper->mixing, slot, column);
+        mixing_step(stepper->mixing, slot, column, NULL);
         elapsed += length;
     }
     mixing_set_ground(stepper->model, column, column->time + years);
@@ -395,6 +434,40 @@ static int advance_explicit(Stepper *stepper, Column *column, double years, Faul
     return 0;
 }
 
+/* turn += weight x, rows of balanced species. */
+static void add_turn(Stepper *stepper, const Column *column, double weight)
+{
+    int padded = stepper->model->grid.padded;
+    for (int i = 0; i < stepper->balances; i++) {
+        double *turn = stepper->turn + FIELD(padded, i, 0);
+        const double *x = column->x + FIELD(padded, stepper->balanced[i], 0);
+        for (int l = 0; l < padded; l++)
+            turn[l] += weight * x[l];
+    }
+}
+
+/* The balance of the next step. With x0 .. x3 the states before, between and after the parts of this one, the
+ * chemistry has worked at the mean rate (x1 - x0 + x3 - x2)/h - b and the transport at (x2 - x1)/h + b; the
+ * new b is half the second less the first, and turn = x0 - 2 x1 + 2 x2 - x3. What the chemistry must give may
+ * not exceed BALANCE_SHARE of what it makes, what it must take not what it loses: in balance b is loss less
+ * production, and a column on its way there could be driven below zero. */
+static void rebalance(Stepper *stepper, Column *column, double step)
+{
+    int padded = stepper->model->grid.padded;
+    for (int i = 0; i < stepper->balances; i++)
+        for (int l = 0; l < padded; l++) {
+            size_t at = FIELD(padded, stepper->balanced[i], l);
+            double b = column->balance[at] + stepper->turn[FIELD(padded, i, l)] / (2.0 * step);
+            double least = -BALANCE_SHARE * stepper->made[at], most = stepper->lost[at];
+            if (b < 0.0)
+                b = least > 0.0 ? 0.0 : b < least ? least : b;
+            else
+                b = most < 0.0 ? 0.0 : b > most ? most : b;
+            column->balance[at] = b;
+        }
+    mixing_mask(stepper->mixing, column->balance);
+}
+
 static int advance_means(Stepper *stepper, Column *column, double step, double years, Fault *fault)
 {
     const Model *model = stepper->model;
@@ -409,18 +482,24 @@ static int advance_means(Stepper *stepper, Column *column, double step, double y
     charge(&stepper->clock.light, &since);
     code = refresh_factors(stepper, column, fault);
     charge(&stepper->clock.factors, &since);
+    memset(stepper->turn, 0, (size_t)stepper->balances * (size_t)model->grid.padded * sizeof(double));
+    add_turn(stepper, column, 1.0);
     if (!code)
         code = chemistry(stepper, column, 0.5 * step, 0, fault);
     charge(&stepper->clock.chemistry, &since);
     if (code)
         return code;
+    add_turn(stepper, column, -2.0);
     mixing_set_ground(model, column, column->time + 0.5 * years);
-    mixing_step(stepper->mixing, 0, column);
+    mixing_step(stepper->mixing, 0, column, column->balance);
+    add_turn(stepper, column, 2.0);
     charge(&stepper->clock.transport, &since);
     code = chemistry(stepper, column, 0.5 * step, 1, fault);
     charge(&stepper->clock.chemistry, &since);
     if (code)
         return code;
+    add_turn(stepper, column, -1.0);
+    rebalance(stepper, column, step);
     mixing_set_ground(model, column, column->time + years);
     for (size_t i = 0; i < field; i++)
         stepper->mean[i] = 0.5 * (stepper->mean[i] + column->x[i]);

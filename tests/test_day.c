@@ -573,7 +573,8 @@ static void test_explicit_agrees_without_mixing(void **state)
     end(&days);
 }
 
-/* A year at steady boundary values from one settled state: 2 % in ozone at every layer. */
+/* A year at steady boundary values from one settled state: 1 % in ozone at every layer, 0.3 DU in the column.
+ */
 static void test_explicit_year_agrees(void **state)
 {
     (void)state;
@@ -587,17 +588,13 @@ static void test_explicit_year_agrees(void **state)
     long steps = lround(365.0 / settings.outer_step_days);
     advance(&means, 365.0 / (double)steps, (int)steps, 1);
     advance(&days, 1.0, 365, 1);
-    double worst = worst_ozone(&means, &days, 0.0, 74.0), top = worst_ozone(&means, &days, 74.0, 90.0);
+    double worst = worst_ozone(&means, &days, 0.0, 90.0);
     double du = column_ozone_du(means.model, means.column->x);
     double du_days = column_ozone_du(days.model, stepper_mean(days.stepper));
     print_message("a year of explicit days and of factors: %.2f and %.2f DU, worst layer %.1f %%\n", du_days,
                   du, 100.0 * worst);
-    assert_true(fabs(du_days / du - 1.0) < 0.005);
-    assert_true(worst < 0.02);
-    /* Above 74 km eddy diffusion crosses a layer within some 11 h, as fast as ozone itself turns over, and no
-     * splitting with steps of days resolves that. With outer steps of 0.1 day the two agree within 1 % up to
-     * 78 km. */
-    assert_true(top < 0.08);
+    assert_true(fabs(du_days - du) < 0.3);
+    assert_true(worst < 0.01);
     end(&means);
     end(&days);
 }

@@ -59,6 +59,42 @@ static void test_second_order_with_slope(void **state)
     bench_free(&bench);
 }
 
+/* A source besides a decay: y = s/k + (y0 - s/k) exp(-k t), a sink likewise; and the turnover that is
+ * reported is that of the chemistry alone. */
+static void test_source_from_outside(void **state)
+{
+    (void)state;
+    Bench bench = bench_make(sketch_mechanism(2, decay, 1, 0));
+    bench.tolerance = (Tolerance){1e-8, 1e-12, 100000};
+    double *source = field(2), *production = field(2), *loss = field(2), t = 1.713;
+    for (int l = 0; l < PACK; l++) {
+        bench.y[l] = 3.0 + l;
+        bench.y[PACK + l] = 50.0;
+        bench.k[l] = 0.4 + 0.1 * l;
+        source[l] = 0.7 - 0.1 * l;
+        source[PACK + l] = -2.0;
+    }
+    bench.problem.source = source;
+    bench.problem.production = production;
+    bench.problem.loss = loss;
+    assert_int_equal(bench_run(&bench, t), SOLVER_DONE);
+    for (int l = 0; l < PACK; l++) {
+        double steady = source[l] / bench.k[l], want = steady + (3.0 + l - steady) * exp(-bench.k[l] * t);
+        check_near("decay with a source", bench.y[l], want, 2e-7 * (3.0 + l));
+        /* what has come and gone in all is exact: a linear invariant */
+        check_near("sum", bench.y[l] + bench.y[PACK + l], 53.0 + l + t * (source[l] - 2.0), 1e-13 * 60.0);
+        check_near("loss frequency", loss[l], bench.k[l], 1e-12);
+        check_near("production of nothing", production[l], 0.0, 1e-12);
+        /* at the start of the last step, whose length the solver chose */
+        assert_true(production[PACK + l] > 0.9 * bench.k[l] * bench.y[l]);
+        check_near("no loss", loss[PACK + l], 0.0, 1e-12);
+    }
+    free(source);
+    free(production);
+    free(loss);
+    bench_free(&bench);
+}
+
 /* A slope that starts from nothing must act within the very first step: y = exp(-s t^2 / 2). Only reactions
  * inside the range may see their slope: the second decay's is outside it. */
 static void test_slope_from_zero_and_range(void **state)
@@ -584,6 +620,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(test_linear_chain),
         cmocka_unit_test(test_second_order_with_slope),
+        cmocka_unit_test(test_source_from_outside),
         cmocka_unit_test(test_slope_from_zero_and_range),
         cmocka_unit_test(test_robertson),
         cmocka_unit_test(test_order_smooth),

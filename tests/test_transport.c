@@ -140,7 +140,7 @@ static double run(const Column *c, int kind, double velocity, double step, int s
     double *work = malloc(diffusion_work(factor, 1) * sizeof *work), received, sum = 0.0;
     assert_non_null(work);
     for (int s = 0; s < steps; s++) {
-        diffusion_step(factor, x, 1, &received, work);
+        diffusion_step(factor, x, NULL, 1, &received, work);
         sum += received;
     }
     free(work);
@@ -564,7 +564,7 @@ static double steady_error(int layers, int kind, double velocity)
         for (int s = 0; s < steps[r]; s++) {
             for (int i = first; i < layers; i++)
                 x[i] += 0.5 * step[r] * source;
-            diffusion_step(factor, x, 1, &received, work);
+            diffusion_step(factor, x, NULL, 1, &received, work);
             for (int i = first; i < layers; i++)
                 x[i] += 0.5 * step[r] * source;
         }
@@ -731,17 +731,17 @@ static void test_linear_and_batch(void **state)
             x[2 * padded + i] = padding ? 9.0 : a * x[i] + b * x[padded + i];
         }
         memcpy(alone, x + padded, padded * sizeof *alone);
-        diffusion_step(factor, x, 3, received, work);
+        diffusion_step(factor, x, NULL, 3, received, work);
         for (int i = 0; i < c.grid.layers; i++)
             check_near("a x + b y", x[2 * padded + (size_t)i], a * x[i] + b * x[padded + (size_t)i], 2e-14);
         check_near("received of a x + b y", received[2], a * received[0] + b * received[1], 1e-14 * 2e25);
         for (size_t i = (size_t)c.grid.layers; i < padded; i++)
             assert_true(x[i] == 7.0 && isnan(x[padded + i]) && x[2 * padded + i] == 9.0);
         /* Neighbours in the batch change nothing. */
-        diffusion_step(factor, alone, 1, &one, work);
+        diffusion_step(factor, alone, NULL, 1, &one, work);
         for (int i = 0; i < c.grid.layers; i++)
             check_near("alone", alone[i], x[padded + (size_t)i], 1e-15);
-        diffusion_step(factor, NULL, 0, NULL, work);
+        diffusion_step(factor, NULL, NULL, 0, NULL, work);
         free(x);
         free(alone);
         free(work);
@@ -767,7 +767,7 @@ static void test_above(void **state)
         double *x = array(c.grid.padded), *work = array((int)diffusion_work(factor, 1)), received = NAN,
                change = 0.0;
         x[first[f]] = 1e-6;
-        diffusion_step(factor, x + first[f], 1, &received, work);
+        diffusion_step(factor, x + first[f], NULL, 1, &received, work);
         assert_true(x[first[f]] == 1e-6);
         for (int i = 0; i < layers; i++) {
             cell = c.air.number_density[i] * c.grid.depth[i];

@@ -8,13 +8,14 @@
 #include <string.h>
 
 #include "../input/constants.h"
+#include "../model/projection.h"
 
-/* ---- limits of the defaults, set by hand; RESOLVED_KM after seeing where the two ways part ---- */
+/* ---- limits of the defaults ---- */
 
-/* Factors against explicit days, relative ozone by layer and column: a tenth of the 20 % that constant mean
- * light costs at 40 km. Up to RESOLVED_KM: above, eddy diffusion crosses a layer in some 11 h, as fast as
- * ozone turns over, which no splitting with steps of days resolves. */
-static const double DAY_LAYER_PERCENT = 2.0, DAY_COLUMN_DU = 0.5, RESOLVED_KM = 74.0;
+/* Factors against explicit days, ozone: percent in any layer, DU in the column. */
+static const double DAY_LAYER_PERCENT = 1.0, DAY_COLUMN_DU = 0.3;
+/* Refreshing less often may move the change from 1980 to 2000 by this share. */
+static const double REFRESH_SHARE = 0.01;
 /* Each other error: a thirtieth of the smallest change an analyst reads off, 1 % of the column. */
 static const double SMALL_DU = 0.1;
 
@@ -29,10 +30,9 @@ static NumericRow *add(NumericRow *rows, int *count, const char *id, const char 
 /* ---- the day ---- */
 
 typedef struct {
-    double layer, layer_km;   /* largest relative difference of ozone, percent, and where */
-    double strato, strato_km; /* the same up to RESOLVED_KM */
-    double column;            /* DU, explicit less factors */
-    double at[6];             /* percent, explicit less factors, at 15, 20, 25, 30, 40, 50 km */
+    double layer, layer_km; /* largest relative difference of ozone, percent, and where */
+    double column;          /* DU, explicit less factors */
+    double at[6];           /* percent, explicit less factors, at 15, 20, 25, 30, 40, 50 km */
 } DayError;
 
 static void compare_days(const Model *model, const double *factors, const double *explicit_days,
@@ -53,28 +53,26 @@ static void compare_days(const Model *model, const double *factors, const double
             error->layer = fabs(percent);
             error->layer_km = here;
         }
-        if (here > RESOLVED_KM || fabs(percent) <= error->strato)
-            continue;
-        error->strato = fabs(percent);
-        error->strato_km = here;
     }
 }
 
-/* Both ways from the same state, a year under the values of mid-year. Ozone below some 25 km lives longer
- * than that: there the difference is a year's worth of error, above it is the whole. */
+/* A year with factors under the values of mid-year, then both ways from there for another. Ozone below some
+ * 25 km lives longer than that: there the difference is a year's worth of error, above it is the whole. */
 static int measure_day(const Run *baseline, int year, DayError *error, Fault *fault)
 {
     Settings settings = baseline->model->settings;
     Model *model = NULL;
     Steady factors = {0}, days = {0};
-    const double *start = run_fields(baseline, year);
+    Watcher nobody = {0};
     fprintf(stderr, "explicit days of %d\n", year);
-    int code = steady_make(&factors, baseline->model, start, year + 0.5, 1.0, fault);
+    int code = steady_make(&factors, baseline->model, run_fields(baseline, year), year + 0.5, 1.0, fault);
     settings.day = DAY_EXPLICIT;
     if (!code)
         code = model_make(&model, &settings, fault);
     if (!code)
-        code = steady_make(&days, model, start, year + 0.5, 1.0, fault);
+        code = steady_make(&days, model, factors.column->x, year + 0.5, 1.0, fault);
+    if (!code)
+        code = projection_spin_up(baseline->model, factors.stepper, factors.column, 1.0, 1.0, &nobody, fault);
     if (!code)
         compare_days(model, stepper_mean(factors.stepper), stepper_mean(days.stepper), error);
     steady_free(&factors);
@@ -87,22 +85,22 @@ static int day_rows(const Run *baseline, NumericRow *rows, int *count, Fault *fa
 {
     static const struct {
         int year;
-        const char *layer, *strato, *column;
-    } when[] = {{1980, "day-1980-layer", "day-1980-stratosphere", "day-1980-column"},
-                {2000, "day-2000-layer", "day-2000-stratosphere", "day-2000-column"}};
-    double column[2] = {0};
-    for (int i = 0; i < 2; i++) {
+        const char *layer, *column;
+    } when[] = {{1960, "day-1960-layer", "day-1960-column"},
+                {1980, "day-1980-layer", "day-1980-column"},
+                {2000, "day-2000-layer", "day-2000-column"},
+                {2060, "day-2060-layer", "day-2060-column"}};
+    double column[4] = {0};
+    for (int i = 0; i < 4; i++) {
         DayError error;
         if (measure_day(baseline, when[i].year, &error, fault))
             return fault->code;
-        NumericRow *row = add(rows, count, when[i].layer,
-                              "explicit days against factors, a year: O3, largest of a layer", "%", INFINITY);
+        NumericRow *row =
+            add(rows, count, when[i].layer, "explicit days against factors, a year: O3, largest of a layer",
+                "%", DAY_LAYER_PERCENT);
         row->value = error.layer;
-        snprintf(row->note, ROW_NOTE, "at %g km", error.layer_km);
-        row = add(rows, count, when[i].strato, "the same up to RESOLVED_KM", "%", DAY_LAYER_PERCENT);
-        row->value = error.strato;
         snprintf(row->note, ROW_NOTE, "at %g km; 15 20 25 30 40 50 km: %+.2f %+.2f %+.2f %+.2f %+.2f %+.2f",
-                 error.strato_km, error.at[0], error.at[1], error.at[2], error.at[3], error.at[4],
+                 error.layer_km, error.at[0], error.at[1], error.at[2], error.at[3], error.at[4],
                  error.at[5]);
         row = add(rows, count, when[i].column, "the same for the column", "DU", DAY_COLUMN_DU);
         row->value = fabs(error.column);
@@ -111,7 +109,7 @@ static int day_rows(const Run *baseline, NumericRow *rows, int *count, Fault *fa
     }
     NumericRow *row =
         add(rows, count, "day-1980-2000", "its share in the change from 1980 to 2000", "DU", SMALL_DU);
-    row->value = fabs(column[1] - column[0]);
+    row->value = fabs(column[2] - column[1]);
     return 0;
 }
 
@@ -209,10 +207,11 @@ static int refresh_row(const Run *baseline, int of_state, NumericRow *rows, int 
         return fault->code;
     double change = run_column(baseline, 2000, 2000) - run_column(baseline, 1980, 1980);
     double fine_change = run_column(&fine, 2000, 2000) - run_column(&fine, 1980, 1980);
-    NumericRow *row = of_state ? add(rows, count, "refresh-state", "refresh_state a fifth: change 1980-2000",
-                                     "DU", SMALL_DU)
-                               : add(rows, count, "refresh-column",
-                                     "refresh_column a quarter: change 1980-2000", "DU", SMALL_DU);
+    NumericRow *row = of_state
+                          ? add(rows, count, "refresh-state", "refresh_state a fifth: change 1980-2000", "DU",
+                                REFRESH_SHARE * fabs(change))
+                          : add(rows, count, "refresh-column", "refresh_column a quarter: change 1980-2000",
+                                "DU", REFRESH_SHARE * fabs(change));
     row->value = fabs(fine_change - change);
     snprintf(row->note, ROW_NOTE, "%+.3f against %+.3f DU; %ld refreshes", fine_change, change,
              of_state ? fine.factor_refreshes : fine.photolysis_refreshes);

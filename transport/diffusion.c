@@ -234,13 +234,19 @@ static void flux_differences(const Diffusion *diffusion, double scale, const dou
     out[last] = -below;
 }
 
-/* Right side h L x of a stage for one species; returns what deposition adds to the column (<= 0 for
- * x >= 0): the sum of the right side's rows. */
-static double fill_stage(const DiffusionFactor *factor, const double *x, double *right)
+/* Right side h (L x - M sink) of a stage for one species; returns what deposition and sink add to the column:
+ * the sum of the right side's rows. sink may be NULL. */
+static double fill_stage(const DiffusionFactor *factor, const double *x, const double *sink, double *right)
 {
-    flux_differences(factor->diffusion, factor->step, x, right);
+    const Diffusion *diffusion = factor->diffusion;
+    flux_differences(diffusion, factor->step, x, right);
     double gain = -factor->step * factor->deposit * x[0];
     right[0] += gain;
+    for (int i = 0; sink && i < diffusion->layers; i++) {
+        double taken = factor->step * diffusion->mass[i] * sink[i];
+        right[i] -= taken;
+        gain -= taken;
+    }
     if (factor->kind == GROUND_FIXED)
         right[0] = 0.0;
     return gain;
@@ -277,7 +283,8 @@ size_t diffusion_work(const DiffusionFactor *factor, int count)
     return (2 * (size_t)count + 1) * (size_t)factor->diffusion->padded;
 }
 
-void diffusion_step(const DiffusionFactor *factor, double *x, int count, double *received, double *work)
+void diffusion_step(const DiffusionFactor *factor, double *x, const double *sink, int count, double *received,
+                    double *work)
 {
     const Diffusion *diffusion = factor->diffusion;
     size_t padded = (size_t)diffusion->padded, species = (size_t)count;
@@ -286,14 +293,14 @@ void diffusion_step(const DiffusionFactor *factor, double *x, int count, double 
     double *gain = received; /* of the stage at hand, until the end */
 
     for (size_t s = 0; s < species; s++)
-        gain[s] = fill_stage(factor, x + s * padded, q1 + s * padded);
+        gain[s] = fill_stage(factor, x + s * padded, sink ? sink + s * padded : NULL, q1 + s * padded);
     solve_stage(factor, q1, count, gain);
 
     for (size_t s = 0; s < species; s++) {
         const double *state = x + s * padded, *first = q1 + s * padded;
         for (int i = 0; i < layers; i++)
             stage[i] = state[i] + (1.0 - GAMMA) * first[i];
-        gain[s] = fill_stage(factor, stage, q2 + s * padded);
+        gain[s] = fill_stage(factor, stage, sink ? sink + s * padded : NULL, q2 + s * padded);
     }
     solve_stage(factor, q2, count, gain);
 
@@ -305,6 +312,8 @@ void diffusion_step(const DiffusionFactor *factor, double *x, int count, double 
             change += diffusion->mass[i] * (after - state[i]);
             state[i] = after;
         }
+        for (int i = factor->kind == GROUND_FIXED; sink && i < layers; i++)
+            change += factor->step * diffusion->mass[i] * sink[s * padded + (size_t)i];
         /* Summed from what was stored, not from the fluxes, so the caller's books close. */
         received[s] = factor->kind == GROUND_CLOSED ? 0.0 : change;
     }

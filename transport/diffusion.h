@@ -50,12 +50,15 @@ void diffusion_factor_free(DiffusionFactor *factor); /* accepts NULL */
 
 /* Advance count species by the factor's step.
  *   x        [count][padded] mole fractions in place; GROUND_FIXED keeps x[.][0] as on entry
+ *   sink     [count][padded] what is taken away all along at a constant rate, mole fraction s-1 (below zero:
+ *            given), or NULL: nothing; GROUND_FIXED does not look at sink[.][0]
  *   received [count] out: molecules cm-2 that entered the column through the ground during the step
  *            (negative: deposited; GROUND_FIXED: what holding the value let in; closed: 0). Exact
- *            for the scheme: sum(N dz X) after = before + received, to round-off.
+ *            for the scheme: sum(N dz X) after = before + received - step sum(N dz sink), to round-off.
  *   work     [diffusion_work(factor, count)] doubles, overwritten
  * No allocation, no error. Padding lanes are left as they are. Arrays must not overlap. */
-void diffusion_step(const DiffusionFactor *factor, double *x, int count, double *received, double *work);
+void diffusion_step(const DiffusionFactor *factor, double *x, const double *sink, int count, double *received,
+                    double *work);
 size_t diffusion_work(const DiffusionFactor *factor, int count);
 
 /* dX/dt = A x of the operator itself, ground closed, for tests and budgets: mole fraction s-1.
