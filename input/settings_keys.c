@@ -108,7 +108,7 @@ static const SettingKey keys[] = {
 _Static_assert(sizeof keys / sizeof keys[0] <= SETTINGS_MOST_KEYS, "raise SETTINGS_MOST_KEYS");
 
 /* Boundaries of gases that no schedule carries. Mole fractions in mol mol-1, velocities in cm s-1.
- * basis of all: from memory. CH2Br2 and CHBr3 are in the baseline schedule. */
+ * basis of all: from memory. CH2Br2, CHBr3, CH2Cl2, CHCl3 are in the baseline schedule. */
 static const StandardBound standard_bounds[] = {
     {"O3", BOUND_DEPOSITION, 0.1,
      "0.3-0.5 cm/s over land, 0.03-0.05 over sea by area; takes up about 950 Tg a year at 35 ppb, "

@@ -4,8 +4,8 @@
     scripts/make_baseline_schedule.py REFERENCE_FOLDER [--output FOLDER]
 
 REFERENCE_FOLDER holds ods-surface-abundance-1955-2100.csv (16 gases, ppt) and
-global-annual-abundance-1750-2024.csv (CO2 in ppm, CH4 and N2O in ppb). Figures of the tables go over
-digit for digit. CH4, N2O and CO2 after 2024 follow a middle pathway through the decade values below.
+global-annual-abundance-1750-2024.csv (CO2 in ppm, CH4 and N2O in ppb, CH2Cl2 and CHCl3 in ppt). Figures
+of the tables go over digit for digit. CH4, N2O and CO2 after 2024 follow a middle pathway through the decade values below.
 The demonstration schedule alters some gases after 2025 by invented amounts.
 """
 import argparse
@@ -30,12 +30,16 @@ PATHWAY = {
 # Short-lived bromine gases, held constant: global means at the marine surface, WMO/UNEP 2018 and
 # 2022, from memory.
 CONSTANT = {"CH2Br2": "0.9", "CHBr3": "1.1"}
+# Short-lived chlorine gases: annual means to LAST_OBSERVED, held at that year's value afterwards. They live
+# months and no agreement limits them, so a later course would be a guess either way (WMO/UNEP 2022, chapter 1).
+SHORT_LIVED = ("CH2Cl2", "CHCl3")
 
 OBSERVED_ODS = "WMO 2022 baseline - observed"
 PROJECTED_ODS = "WMO 2022 baseline - projection"
 OBSERVED = "annual means - observed"
 PROJECTED = "SSP2-4.5 - decade values from memory"
 HELD = "short-lived bromine - constant from memory"
+KEPT = "short-lived chlorine - 2024 value kept"
 
 BASELINE_HEADER = """\
 # title: baseline schedule of source gases 1955-2100
@@ -44,6 +48,7 @@ BASELINE_HEADER = """\
 # source: CFCs, HCFCs, halons, CCl4, CH3CCl3, CH3Br, CH3Cl: WMO/UNEP Scientific Assessment of Ozone Depletion 2022, chapter 7 baseline; observed to about 2022, projection after
 # source: CH4, N2O, CO2 to 2024: Indicators of Global Climate Change (Forster et al., Earth Syst. Sci. Data), licence CC-BY-4.0; figures unchanged
 # source: CH4, N2O, CO2 after 2024: SSP2-4.5 after Meinshausen et al., Geosci. Model Dev. 13, 3571-3605, 2020
+# source: CH2Cl2, CHCl3 to 2024: Indicators of Global Climate Change, as CH4; kept at the 2024 value afterwards, a choice: no agreement limits them
 # source: CH2Br2, CHBr3: WMO/UNEP 2018 and 2022, chapter 1; global mean at the sea surface
 # basis: tables as published; SSP2-4.5 decade values from memory, about 1 % (CO2, N2O) and 3 % (CH4); CH2Br2 and CHBr3 from memory, about 20 %
 # method: between the 2020-2024 observations and the decade values a monotone cubic (Fritsch and Carlson 1980), so the join at 2024 is smooth
@@ -93,6 +98,10 @@ def baseline_rows(ods, means):
             rows.append((year, gas, "abundance", amount, unit, OBSERVED if observed else PROJECTED))
     for gas, amount in CONSTANT.items():
         rows += [(year, gas, "abundance", amount, "ppt", HELD) for year in years]
+    for gas in SHORT_LIVED:
+        for year in years:
+            label = OBSERVED if year <= LAST_OBSERVED else KEPT
+            rows.append((year, gas, "abundance", means[gas][min(year, LAST_OBSERVED)], "ppt", label))
     return rows
 
 
