@@ -34,7 +34,10 @@ enum SurfaceModel {
     SURFACE_CLONO2_H2O,
     SURFACE_CLONO2_HCL,
     SURFACE_HOCL_HCL,
-    SURFACE_BRONO2_H2O
+    SURFACE_BRONO2_H2O,
+    SURFACE_N2O5_H2O,
+    SURFACE_NAT_H2O, /* on nitric acid trihydrate, constant probability */
+    SURFACE_NAT_HCL
 };
 enum PhotolysisSpecial { SPECIAL_NONE, SPECIAL_O2, SPECIAL_O2_O1D, SPECIAL_NO };
 
@@ -80,7 +83,7 @@ typedef struct {
 
     /* surface: first reactant is the one taken up */
     int surface_model; /* enum SurfaceModel */
-    double gamma;      /* SURFACE_CONSTANT */
+    double gamma;      /* SURFACE_CONSTANT, SURFACE_NAT_H2O, SURFACE_NAT_HCL */
 
     double f,
         g; /* published uncertainty factor at 298 K and its temperature term (K); f = 0 when none is given */

@@ -367,18 +367,23 @@ static int read_photolysis(const Reading *reading, const config_setting_t *group
 
 /* ---- surface ---- */
 
-/* The models by enum SurfaceModel: the two reactants they hold for, and whether the second sets the rate. */
+/* The models by enum SurfaceModel: the two reactants they hold for (NULL: any), whether the second sets the
+ * rate, whether the probability stands in the file, and what the surface is made of beside water. */
 static const struct {
     const char *word, *first, *second;
-    int second_order;
+    int second_order, gamma;
+    const char *surface;
 } models[] = {
-    [SURFACE_CONSTANT] = {"constant", NULL, NULL, 0},
-    [SURFACE_CLONO2_H2O] = {"ClONO2+H2O", "ClONO2", "H2O", 0},
-    [SURFACE_CLONO2_HCL] = {"ClONO2+HCl", "ClONO2", "HCl", 1},
-    [SURFACE_HOCL_HCL] = {"HOCl+HCl", "HOCl", "HCl", 1},
-    [SURFACE_BRONO2_H2O] = {"BrONO2+H2O", "BrONO2", "H2O", 0},
+    [SURFACE_CONSTANT] = {"constant", NULL, NULL, 0, 1, NULL},
+    [SURFACE_CLONO2_H2O] = {"ClONO2+H2O", "ClONO2", "H2O", 0, 0, NULL},
+    [SURFACE_CLONO2_HCL] = {"ClONO2+HCl", "ClONO2", "HCl", 1, 0, NULL},
+    [SURFACE_HOCL_HCL] = {"HOCl+HCl", "HOCl", "HCl", 1, 0, NULL},
+    [SURFACE_BRONO2_H2O] = {"BrONO2+H2O", "BrONO2", "H2O", 0, 0, NULL},
+    [SURFACE_N2O5_H2O] = {"N2O5+H2O", "N2O5", "H2O", 0, 0, NULL},
+    [SURFACE_NAT_H2O] = {"NAT+H2O", NULL, "H2O", 0, 1, "HNO3"},
+    [SURFACE_NAT_HCL] = {"NAT+HCl", NULL, "HCl", 1, 1, "HNO3"},
 };
-enum { MODELS = 5 };
+enum { MODELS = sizeof models / sizeof *models };
 
 static int check_model(const Reading *reading, const config_setting_t *group, const char *label,
                        const Equation *equation, const Reaction *reaction)
@@ -395,24 +400,25 @@ static int check_model(const Reading *reading, const config_setting_t *group, co
         (terms == 2 && equation->left.term[1].count != 1.0))
         return reading_fault(reading, eq, "%s: a surface reaction has one or two reactants, one of each",
                              label);
-    if (model == SURFACE_CONSTANT) {
-        if (!gamma)
-            return reading_fault(reading, group, "%s: gamma is missing; model constant needs it", label);
+    if (models[model].gamma && !gamma)
+        return reading_fault(reading, group, "%s: gamma is missing; model %s needs it", label,
+                             models[model].word);
+    if (model == SURFACE_CONSTANT)
         return 0;
-    }
-    if (gamma)
+    if (gamma && !models[model].gamma)
         return reading_fault(reading, gamma,
                              "%s: model %s does not use gamma; remove it or write model constant", label,
                              models[model].word);
-    if (terms != 2 || strcmp(first->name, models[model].first) != 0 ||
+    if (terms != 2 || (models[model].first && strcmp(first->name, models[model].first) != 0) ||
         strcmp(mechanism->item[equation->left.term[1].species].name, models[model].second) != 0)
         return reading_fault(reading, eq,
                              "%s: model %s is for %s + %s -> ...; change the model or the equation", label,
-                             models[model].word, models[model].first, models[model].second);
+                             models[model].word, models[model].first ? models[model].first : "a gas",
+                             models[model].second);
     /* water sets the droplets' strength */
-    const char *needed[] = {models[model].second, "H2O"};
-    for (int i = 0; i < 2; i++)
-        if (mechanism_solved(mechanism, needed[i]) < 0)
+    const char *needed[] = {models[model].second, "H2O", models[model].surface};
+    for (int i = 0; i < 3; i++)
+        if (needed[i] && mechanism_solved(mechanism, needed[i]) < 0)
             return reading_fault(reading, group, "%s: model %s needs %s as an active species; add it", label,
                                  models[model].word, needed[i]);
     return 0;

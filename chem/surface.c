@@ -1,4 +1,4 @@
-/* surface: uptake on sulfuric acid droplets, see surface.h.
+/* surface: uptake on sulfuric acid droplets and cold solid particles, see surface.h.
  *
  * Composition: Tabazadeh, A., et al. (1997), Geophys. Res. Lett. 24, 1931, molality against water activity.
  *
@@ -6,6 +6,9 @@
  * JPL 19-5 section 5: accommodation, bulk reaction within a diffusion length, surface reaction, HCl supply.
  *
  * BrONO2: Hanson, D. R. (2003), J. Geophys. Res. 108, 4239, the fit given by JPL 19-5 section 5.
+ *
+ * N2O5: JPL 19-5 section 5, fit to Robinson, G. N., et al. (1997), J. Geophys. Res. 102, 3583, Hallquist, M., et
+ * al. (2000), J. Phys. Chem. A 104, 3984, and others.
  *
  * Every number of these fits is typed from memory: compare with the papers before relying on the last digit.
  * The fits were made for 185 to 260 K and some 40 to 80 percent of acid. They are evaluated beyond, where
@@ -18,6 +21,7 @@
 #include <math.h>
 
 #include "../input/constants.h"
+#include "nat.h"
 
 #define HPA_PER_ATM 1013.25
 #define LITRE_ATM 0.082 /* gas constant as used by Shi et al., l atm mol-1 K-1 */
@@ -179,6 +183,17 @@ static double brono2_probability(const Droplet *droplet)
     return 1.0 / (1.0 / 0.80 + 1.0 / (0.11 + exp(29.2 - 0.40 * droplet->percent)));
 }
 
+/* ln gamma is a quadratic in 1/T whose coefficients are cubics in the acid's percentage; made for 180 to 300 K
+ * and 0 to 95 percent or so, without limit of size: the droplets are as good as flat for N2O5. */
+static double n2o5_probability(const Droplet *droplet)
+{
+    double w = droplet->percent, x = 1.0 / droplet->temperature;
+    double k0 = -25.5265 + w * (-0.133188 + w * (0.00930846 - 9.0194e-5 * w));
+    double k1 = 9283.76 + w * (115.345 + w * (-5.19258 + 0.0483464 * w));
+    double k2 = -851801.0 + w * (-22191.2 + w * (766.916 - 6.85427 * w));
+    return exp(k0 + x * (k1 + x * k2));
+}
+
 static double probability_of(const Reaction *reaction, const Droplet *droplet, double hcl_hpa,
                              double clono2_hpa)
 {
@@ -187,6 +202,7 @@ static double probability_of(const Reaction *reaction, const Droplet *droplet, d
     case SURFACE_CLONO2_HCL: return clono2_uptake(droplet, hcl_hpa, clono2_hpa).with_hcl;
     case SURFACE_HOCL_HCL: return hocl_probability(droplet, hcl_hpa, clono2_hpa);
     case SURFACE_BRONO2_H2O: return brono2_probability(droplet);
+    case SURFACE_N2O5_H2O: return n2o5_probability(droplet);
     default: return reaction->gamma;
     }
 }
@@ -211,33 +227,53 @@ static double density_at(const double *density, int padded, int s, int i, double
     return s < 0 ? least : fmax(density[(size_t)s * (size_t)padded + (size_t)i], least);
 }
 
+static int on_nat(const Reaction *reaction)
+{
+    return reaction->surface_model == SURFACE_NAT_H2O || reaction->surface_model == SURFACE_NAT_HCL;
+}
+
+/* cm s-1 from J and g */
+static double mean_speed(const Mechanism *mechanism, int solved, double temperature)
+{
+    double molar_mass = mechanism->item[mechanism->solved_item[solved]].molar_mass;
+    return 100.0 * sqrt(8.0 * GAS_CONSTANT * temperature / (PI * 1e-3 * molar_mass));
+}
+
+/* Share of an uptake by gamma that the flow of the partner to the surface allows, every collision of which
+ * counts: the form of Shi et al. (2001) for the droplets. */
+static double supply(double gamma, double speed, double density, double partner_speed, double partner_density)
+{
+    return 1.0 / (1.0 + gamma * speed * density / (partner_speed * partner_density));
+}
+
 void surface_rates(const Mechanism *mechanism, int padded, const double *temperature, const double *air,
                    const double *area, const double *radius, const double *density, double *coefficient)
 {
     (void)air; /* pressures follow from densities; kept for a gas-phase diffusion correction */
     int water = mechanism_solved(mechanism, "H2O"), hcl = mechanism_solved(mechanism, "HCl");
-    int clono2 = mechanism_solved(mechanism, "ClONO2");
+    int clono2 = mechanism_solved(mechanism, "ClONO2"), hno3 = mechanism_solved(mechanism, "HNO3");
     for (int i = 0; i < padded; i++) {
         double t = temperature[i];
-        int covered = area[i] > 0.0;
+        double water_hpa = pressure_hpa(density_at(density, padded, water, i, ABSENT_CM3), t);
+        double hcl_hpa = pressure_hpa(density_at(density, padded, hcl, i, ABSENT_CM3), t);
+        double clono2_hpa = pressure_hpa(density_at(density, padded, clono2, i, 0.0), t);
+        double solid = nat_area(t, water_hpa, pressure_hpa(density_at(density, padded, hno3, i, 0.0), t));
         Droplet droplet = {0};
-        double hcl_hpa = 0.0, clono2_hpa = 0.0;
-        if (covered) {
-            droplet = make_droplet(t, pressure_hpa(density_at(density, padded, water, i, ABSENT_CM3), t),
-                                   radius[i]);
-            hcl_hpa = pressure_hpa(density_at(density, padded, hcl, i, ABSENT_CM3), t);
-            clono2_hpa = pressure_hpa(density_at(density, padded, clono2, i, 0.0), t);
-        }
+        if (area[i] > 0.0)
+            droplet = make_droplet(t, water_hpa, radius[i]);
         for (int r = mechanism->surface_first; r < mechanism->washout_first; r++) {
             const Reaction *reaction = &mechanism->reaction[r];
             double *k = coefficient + (size_t)r * (size_t)padded + i;
+            double here = on_nat(reaction) ? solid : area[i];
             *k = 0.0;
-            if (!covered)
+            if (!(here > 0.0))
                 continue;
-            double molar_mass = mechanism->item[mechanism->solved_item[reaction->reactant[0]]].molar_mass;
-            /* cm s-1 from J and g */
-            double speed = 100.0 * sqrt(8.0 * GAS_CONSTANT * t / (PI * 1e-3 * molar_mass));
-            *k = 0.25 * probability_of(reaction, &droplet, hcl_hpa, clono2_hpa) * speed * area[i];
+            double gamma = probability_of(reaction, &droplet, hcl_hpa, clono2_hpa);
+            double speed = mean_speed(mechanism, reaction->reactant[0], t);
+            if (reaction->surface_model == SURFACE_NAT_HCL)
+                gamma *= supply(gamma, speed, density_at(density, padded, reaction->reactant[0], i, 0.0),
+                                mean_speed(mechanism, hcl, t), density_at(density, padded, hcl, i, ABSENT_CM3));
+            *k = 0.25 * gamma * speed * here;
             if (reaction->reactants == 2)
                 *k /= density_at(density, padded, reaction->reactant[1], i, ABSENT_CM3);
         }

@@ -32,7 +32,9 @@ PHOTOLYSIS_KEYS = {"id", "eq", "xs", "yield", "yield_minus", "phi", "special", "
                    "basis", "note"}
 SURFACE_KEYS = {"id", "eq", "model", "gamma", "f", "source", "basis", "note"}
 SPECIES_KEYS = {"name", "formula", "role", "share", "transport", "washout", "note"}
-SURFACE_MODELS = {"constant", "ClONO2+H2O", "ClONO2+HCl", "HOCl+HCl", "BrONO2+H2O"}
+SURFACE_MODELS = {"constant", "ClONO2+H2O", "ClONO2+HCl", "HOCl+HCl", "BrONO2+H2O", "N2O5+H2O",
+                  "NAT+H2O", "NAT+HCl"}
+SURFACE_GAMMA = {"constant", "NAT+H2O", "NAT+HCl"}  # models whose probability stands in the file
 SPECIALS = {"O2", "O2-O1D", "NO"}
 
 
