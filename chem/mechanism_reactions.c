@@ -411,10 +411,9 @@ static int check_model(const Reading *reading, const config_setting_t *group, co
                              models[model].word);
     if (terms != 2 || (models[model].first && strcmp(first->name, models[model].first) != 0) ||
         strcmp(mechanism->item[equation->left.term[1].species].name, models[model].second) != 0)
-        return reading_fault(reading, eq,
-                             "%s: model %s is for %s + %s -> ...; change the model or the equation", label,
-                             models[model].word, models[model].first ? models[model].first : "a gas",
-                             models[model].second);
+        return reading_fault(
+            reading, eq, "%s: model %s is for %s + %s -> ...; change the model or the equation", label,
+            models[model].word, models[model].first ? models[model].first : "a gas", models[model].second);
     /* water sets the droplets' strength */
     const char *needed[] = {models[model].second, "H2O", models[model].surface};
     for (int i = 0; i < 3; i++)

@@ -1,5 +1,6 @@
-/* nat: nitric acid trihydrate, see nat.h. The vapour pressure: Hanson, D., and K. Mauersberger (1988), Geophys.
- * Res. Lett. 15, 855, typed from memory; it gives the published threshold of some 196 K at 50 hPa. */
+/* nat: nitric acid trihydrate, see nat.h. The vapour pressure: Hanson, D., and K. Mauersberger (1988),
+ * Geophys. Res. Lett. 15, 855, typed from memory; it gives the published threshold of some 196 K at 50 hPa.
+ */
 #include "nat.h"
 
 #include <math.h>

@@ -7,8 +7,8 @@
  *
  * BrONO2: Hanson, D. R. (2003), J. Geophys. Res. 108, 4239, the fit given by JPL 19-5 section 5.
  *
- * N2O5: JPL 19-5 section 5, fit to Robinson, G. N., et al. (1997), J. Geophys. Res. 102, 3583, Hallquist, M., et
- * al. (2000), J. Phys. Chem. A 104, 3984, and others.
+ * N2O5: JPL 19-5 section 5, fit to Robinson, G. N., et al. (1997), J. Geophys. Res. 102, 3583, Hallquist, M.,
+ * et al. (2000), J. Phys. Chem. A 104, 3984, and others.
  *
  * Every number of these fits is typed from memory: compare with the papers before relying on the last digit.
  * The fits were made for 185 to 260 K and some 40 to 80 percent of acid. They are evaluated beyond, where
@@ -183,8 +183,8 @@ static double brono2_probability(const Droplet *droplet)
     return 1.0 / (1.0 / 0.80 + 1.0 / (0.11 + exp(29.2 - 0.40 * droplet->percent)));
 }
 
-/* ln gamma is a quadratic in 1/T whose coefficients are cubics in the acid's percentage; made for 180 to 300 K
- * and 0 to 95 percent or so, without limit of size: the droplets are as good as flat for N2O5. */
+/* ln gamma is a quadratic in 1/T whose coefficients are cubics in the acid's percentage; made for 180 to 300
+ * K and 0 to 95 percent or so, without limit of size: the droplets are as good as flat for N2O5. */
 static double n2o5_probability(const Droplet *droplet)
 {
     double w = droplet->percent, x = 1.0 / droplet->temperature;
@@ -271,8 +271,9 @@ void surface_rates(const Mechanism *mechanism, int padded, const double *tempera
             double gamma = probability_of(reaction, &droplet, hcl_hpa, clono2_hpa);
             double speed = mean_speed(mechanism, reaction->reactant[0], t);
             if (reaction->surface_model == SURFACE_NAT_HCL)
-                gamma *= supply(gamma, speed, density_at(density, padded, reaction->reactant[0], i, 0.0),
-                                mean_speed(mechanism, hcl, t), density_at(density, padded, hcl, i, ABSENT_CM3));
+                gamma *=
+                    supply(gamma, speed, density_at(density, padded, reaction->reactant[0], i, 0.0),
+                           mean_speed(mechanism, hcl, t), density_at(density, padded, hcl, i, ABSENT_CM3));
             *k = 0.25 * gamma * speed * here;
             if (reaction->reactants == 2)
                 *k /= density_at(density, padded, reaction->reactant[1], i, ABSENT_CM3);

@@ -390,6 +390,8 @@ def main(arguments):
                 check_photolysis(entry, options["--tables"], bad)
             elif entry.get("model") not in SURFACE_MODELS or set(entry) - SURFACE_KEYS - {""}:
                 bad.add(entry, "unknown model or key")
+            elif ("gamma" in entry) != (entry["model"] in SURFACE_GAMMA):
+                bad.add(entry, "gamma missing or not used by its model")
     check_shares(thermal, sides_of, "branch", bad)
     check_shares(photolysis, sides_of, "phi", bad)
     for key in keys - cited:

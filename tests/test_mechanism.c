@@ -160,7 +160,9 @@ static void reactants_and_changes_follow_the_notation(void **state)
 
     r = named(m, "het-N2O5-H2O"); /* water is consumed but sets no rate */
     assert_int_equal(r->reactants, 1);
-    assert_true(change_of(m, "het-N2O5-H2O", "H2O") == -1.0 && r->gamma == 0.1);
+    assert_true(change_of(m, "het-N2O5-H2O", "H2O") == -1.0 && r->gamma == 0.0);
+    r = named(m, "nat-ClONO2-HCl"); /* the probability stands in the file, and HCl sets the rate */
+    assert_true(r->reactants == 2 && r->gamma == 0.2 && r->surface_model == SURFACE_NAT_HCL);
     r = named(m, "het-ClONO2-HCl");
     assert_int_equal(r->reactants, 2);
     assert_int_equal(r->reactant[0], mechanism_solved(m, "ClONO2"));
@@ -511,7 +513,7 @@ static const Slip slips[] = {
      {"H2O2", "washot", "did you mean washout?"}},
     {OZONE, OZONE " brnch = 1.0;", 0, {"O+O3", "brnch", "did you mean branch?"}},
     {"phi = 1.0; f = 2.0;", "phi = 1.0; phy = 2.0;", 0, {"J-HO2", "phy", "phi"}},
-    {"gamma = 0.1;", "gamma = 0.1; radius = 1.0;", 0, {"het-N2O5-H2O", "unknown key radius", "gamma"}},
+    {"gamma = 0.1;", "gamma = 0.1; radius = 1.0;", 0, {"nat-HOCl-HCl", "unknown key radius", "gamma"}},
     /* wrong types */
     {"A = 8.0e-12;", "A = \"8.0e-12\";", 0, {"O+O3: A is text", "number"}},
     {"formula = \"H2O2\";", "formula = 34.0;", 0, {"H2O2: formula", "text in double quotes"}},

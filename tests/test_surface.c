@@ -4,6 +4,7 @@
 #define _XOPEN_SOURCE 700 /* scratch.h */
 #include "scratch.h"
 
+#include "../chem/nat.h"
 #include "../chem/surface.h"
 #include "../input/constants.h"
 
@@ -82,29 +83,119 @@ static void probabilities_are_of_published_size(void **state)
     /* 0.8 below 70 percent of acid, a tenth above 83 (Hanson 2003, from memory) */
     check_near(surface_probability(m, bromine, 200.0, water, 0.0, 0.0, radius), 0.8, 0.02);
     check_near(surface_probability(m, bromine, 250.0, water, 0.0, 0.0, radius), 0.1, 0.05);
-    assert_true(surface_probability(m, index_of(m, "het-N2O5-H2O"), 220.0, water, hcl, clono2, radius) ==
-                0.1);
+    /* N2O5: about 0.1, 0.05 to 0.2 in all laboratories from 190 to 230 K (JPL 19-5, section 5, from memory)
+     */
+    for (double t = 190.0; t <= 230.0; t += 2.0) {
+        double gamma = surface_probability(m, index_of(m, "het-N2O5-H2O"), t, water, hcl, clono2, radius);
+        assert_true(gamma > 0.05 && gamma < 0.2);
+    }
+    mechanism_free(m);
+}
+
+/* Chlorine is set free in the cold: probabilities at 50 hPa with 5 ppm of water, 1 ppb of HCl, 0.5 ppb of
+ * ClONO2. ClONO2 + HCl: some 0.5 at 190 K, 0.03 at 195, 1e-3 at 200, below 1e-5 at 210; HOCl + HCl: 0.2,
+ * 0.02, 1e-3, 1e-5 (figures of Shi et al. 2001 read to half a decade, from memory). Hydrolysis changes by a
+ * factor of 30. */
+static void chlorine_is_activated_in_the_cold(void **state)
+{
+    (void)state;
+    static const struct {
+        double temperature, clono2, hocl;
+    } published[] = {{190.0, 0.5, 0.2}, {195.0, 0.03, 0.02}, {200.0, 1e-3, 1e-3}, {210.0, 5e-6, 1e-5}};
+    Mechanism *m = read_default();
+    double water = 5e-6 * 50.0, hcl = 1e-9 * 50.0, clono2 = 0.5e-9 * 50.0, radius = 1.7e-5;
+    for (int i = 0; i < 4; i++) {
+        double t = published[i].temperature;
+        double by_hcl = surface_probability(m, index_of(m, "het-ClONO2-HCl"), t, water, hcl, clono2, radius);
+        double hocl = surface_probability(m, index_of(m, "het-HOCl-HCl"), t, water, hcl, clono2, radius);
+        assert_true(fabs(log10(by_hcl / published[i].clono2)) < 0.5);
+        assert_true(fabs(log10(hocl / published[i].hocl)) < 0.5);
+    }
+    mechanism_free(m);
+}
+
+/* Hanson and Mauersberger (1988): with 5 ppm of water and 10 ppb of HNO3 at 50 hPa the solid forms below
+ * 195.7 K (often quoted as 195 to 196 K, from memory). The pressures are those of a separate program (NumPy).
+ */
+static void nat_forms_in_the_cold(void **state)
+{
+    (void)state;
+    static const double vapour[][2] = {
+        {190.0, 7.37438e-9}, {195.0, 2.93816e-7}, {196.0, 6.00799e-7}, {200.0, 9.80671e-6}};
+    double water = 5e-6 * 50.0, acid = 10e-9 * 50.0;
+    for (int i = 0; i < 4; i++)
+        check_near(nat_vapour_hpa(vapour[i][0], water), vapour[i][1], 1e-5);
+    assert_true(nat_area(196.0, water, acid) == 0.0 && nat_area(195.4, water, acid) > 0.0);
+    assert_true(nat_area(190.0, water, 0.0) == 0.0);
+    /* more water or more acid shift the threshold upward */
+    assert_true(nat_area(196.0, 1.3 * water, acid) > 0.0 && nat_area(196.0, water, 1.3 * acid) > 0.0);
+    /* all of 10 ppb at 185 K: 1.957e10 molecules of 117.06 / 1.62 / 6.022e23 cm3 on spheres of 1 um: 3 V / r,
+     * by hand; the vapour over the solid is 0.05 % of it */
+    check_near(nat_area(185.0, water, acid), 7.05e-8, 3e-3);
+}
+
+/* On the solid at 192 K: gamma c A / 4 of the first gas where HCl is plentiful, and no more than the
+ * collisions of HCl where it is scarce. Nothing without HNO3 or in warmer air. */
+static void nat_coefficients_are_uptake_rates(void **state)
+{
+    (void)state;
+    Mechanism *m = read_default();
+    double temperature[PACK], air[PACK], area[PACK] = {0.0}, radius[PACK];
+    double *density = calloc((size_t)m->solved * PACK, sizeof *density);
+    double *k = calloc((size_t)m->reactions * PACK, sizeof *k);
+    assert_true(density && k);
+    int hcl = mechanism_solved(m, "HCl"), clono2 = mechanism_solved(m, "ClONO2");
+    for (int i = 0; i < PACK; i++) {
+        temperature[i] = i == 1 ? 197.0 : 192.0;
+        air[i] = 5000.0 / (1.380649e-23 * temperature[i]) * 1e-6; /* 50 hPa */
+        radius[i] = 1e-5;
+        density[mechanism_solved(m, "H2O") * PACK + i] = 5e-6 * air[i];
+        density[mechanism_solved(m, "HNO3") * PACK + i] = i == 2 ? -1e3 : 10e-9 * air[i];
+        density[hcl * PACK + i] = i == 3 ? -1e3 : i == 4 ? 1e-6 * air[i] : 1e-9 * air[i];
+        density[clono2 * PACK + i] = 0.5e-9 * air[i];
+    }
+    surface_rates(m, PACK, temperature, air, area, radius, density, k);
+    double solid = nat_area(192.0, 5e-6 * 50.0, 10e-9 * 50.0);
+    int by_hcl = index_of(m, "nat-ClONO2-HCl"), by_water = index_of(m, "nat-ClONO2-H2O");
+    for (int r = m->surface_first; r < m->washout_first; r++) {
+        int here = m->reaction[r].surface_model == SURFACE_NAT_H2O ||
+                   m->reaction[r].surface_model == SURFACE_NAT_HCL;
+        assert_int_equal(k[r * PACK] > 0.0, here); /* no sulfate in this air */
+        assert_true(k[r * PACK + 1] == 0.0 && k[r * PACK + 2] == 0.0);
+    }
+    /* speeds 1474 T^1/2 of ClONO2 and 1474 / 0.612 T^1/2 of HCl (Shi et al. 2001), to their three digits */
+    double speed = 1474.0 * sqrt(192.0), hcl_speed = speed / 0.612;
+    check_near(k[by_water * PACK], 0.25 * 0.004 * speed * solid, 2e-3);
+    check_near(k[by_hcl * PACK + 4] * 1e-6 * air[0], 0.25 * 0.2 * speed * solid, 3e-3);
+    check_near(k[by_hcl * PACK] * 1e-9 * air[0], 0.25 * 0.2 * speed * solid / (1.0 + 0.2 * 0.612 * 0.5),
+               3e-3);
+    check_near(k[by_hcl * PACK + 3] * density[clono2 * PACK + 3], 0.25 * hcl_speed * solid, 3e-3);
+    /* ClONO2 is gone within hours (Solomon 1999, Rev. Geophys. 37, 275, from memory: hours to a day) */
+    double hours = 1.0 / (k[by_hcl * PACK] * 1e-9 * air[0]) / 3600.0;
+    assert_true(hours > 1.0 && hours < 24.0);
+    free(density);
+    free(k);
     mechanism_free(m);
 }
 
 /* The same formulas evaluated by a separate program (NumPy), written apart from surface.c: columns are
  * temperature K; pressures of water, HCl, ClONO2 hPa; radius cm; then percent and the probabilities of ClONO2
- * + H2O, ClONO2 + HCl, HOCl + HCl. */
+ * + H2O, ClONO2 + HCl, HOCl + HCl, N2O5 + H2O. */
 static void probabilities_match_another_evaluation(void **state)
 {
     (void)state;
-    static const double points[][9] = {
-        {192, 2.5e-4, 5e-8, 2.5e-8, 1e-5, 47.1643, 1.37120e-2, 3.54906e-1, 9.11702e-2},
-        {197, 2.5e-4, 5e-8, 5.0e-7, 2e-5, 55.5804, 6.80497e-3, 4.88834e-3, 8.13052e-3},
-        {205, 2.5e-4, 5e-8, 2.5e-8, 1e-5, 64.5172, 8.96589e-4, 3.16810e-5, 4.53917e-5},
-        {218, 1.5e-4, 2e-8, 1.0e-8, 5e-6, 75.2736, 4.67392e-5, 1.46885e-8, 1.55006e-8},
+    static const double points[][10] = {
+        {192, 2.5e-4, 5e-8, 2.5e-8, 1e-5, 47.1643, 1.37120e-2, 3.54906e-1, 9.11702e-2, 0.095623},
+        {197, 2.5e-4, 5e-8, 5.0e-7, 2e-5, 55.5804, 6.80497e-3, 4.88834e-3, 8.13052e-3, 0.101481},
+        {205, 2.5e-4, 5e-8, 2.5e-8, 1e-5, 64.5172, 8.96589e-4, 3.16810e-5, 4.53917e-5, 0.101912},
+        {218, 1.5e-4, 2e-8, 1.0e-8, 5e-6, 75.2736, 4.67392e-5, 1.46885e-8, 1.55006e-8, 0.0917769},
     };
-    static const char *const ids[] = {"het-ClONO2-H2O", "het-ClONO2-HCl", "het-HOCl-HCl"};
+    static const char *const ids[] = {"het-ClONO2-H2O", "het-ClONO2-HCl", "het-HOCl-HCl", "het-N2O5-H2O"};
     Mechanism *m = read_default();
     for (int i = 0; i < 4; i++) {
         const double *p = points[i];
         check_near(surface_acid_percent(p[0], p[1]), p[5], 1e-5);
-        for (int r = 0; r < 3; r++)
+        for (int r = 0; r < 4; r++)
             check_near(surface_probability(m, index_of(m, ids[r]), p[0], p[1], p[2], p[3], p[4]), p[6 + r],
                        1e-5);
     }
@@ -116,7 +207,7 @@ static void probabilities_have_their_limits(void **state)
     (void)state;
     Mechanism *m = read_default();
     int by_water = index_of(m, "het-ClONO2-H2O"), by_hcl = index_of(m, "het-ClONO2-HCl");
-    int hocl = index_of(m, "het-HOCl-HCl");
+    int hocl = index_of(m, "het-HOCl-HCl"), n2o5 = index_of(m, "het-N2O5-H2O");
     /* from the mesopause to the ground, dust-dry to saturated, small to large: a probability, never more */
     double hot[] = {180.0, 187.0, 198.0, 220.0, 250.0, 270.0, 298.0};
     for (int t = 0; t < 7; t++)
@@ -126,7 +217,9 @@ static void probabilities_have_their_limits(void **state)
                     double a = surface_probability(m, by_water, hot[t], water, hcl, 1e-8, radius);
                     double b = surface_probability(m, by_hcl, hot[t], water, hcl, 1e-8, radius);
                     double c = surface_probability(m, hocl, hot[t], water, hcl, 1e-8, radius);
+                    double d = surface_probability(m, n2o5, hot[t], water, hcl, 1e-8, radius);
                     assert_true(a >= 0.0 && b >= 0.0 && c >= 0.0 && a + b <= 1.0 + 1e-12 && c <= 1.0);
+                    assert_true(d > 0.0 && d < 1.0);
                 }
     double water = 5e-6 * 50.0;
     /* a small droplet reacts through its volume: proportional to radius; a large one through its skin: not at
@@ -180,6 +273,10 @@ static void surface_coefficients_are_uptake_rates(void **state)
                 continue;
             }
             assert_true(isfinite(here) && here >= 0.0);
+            if (strncmp(m->reaction[r].id, "nat-", 4) == 0) {
+                assert_true(here == 0.0); /* no HNO3 */
+                continue;
+            }
             if (i != 5) /* without water there is no solvent, and nothing dissolves to react */
                 assert_int_equal(here == 0.0, area[i] == 0.0);
             if (i > 2)
@@ -213,6 +310,9 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(acid_strength_is_that_of_the_stratosphere),
         cmocka_unit_test(probabilities_are_of_published_size),
+        cmocka_unit_test(chlorine_is_activated_in_the_cold),
+        cmocka_unit_test(nat_forms_in_the_cold),
+        cmocka_unit_test(nat_coefficients_are_uptake_rates),
         cmocka_unit_test(probabilities_match_another_evaluation),
         cmocka_unit_test(probabilities_have_their_limits),
         cmocka_unit_test(surface_coefficients_are_uptake_rates),
