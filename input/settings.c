@@ -394,6 +394,11 @@ static int check_together(Reading *reading)
                  settings->outputs_per_year);
         return clash(reading, "output", "per_year", "", text);
     }
+    if (settings->moments != MOMENTS_NONE && settings->day == DAY_MEAN)
+        return clash(
+            reading, "output", "moments", "",
+            "output.moments asks for values by time of day, which day.mode = \"mean\" has not; take day.mode "
+            "= \"factors\" or \"explicit\", or output.moments = \"none\"");
     return check_files(reading);
 }
 

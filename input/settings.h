@@ -19,6 +19,7 @@
 #define SETTINGS_MAX_BOUNDS 64
 
 enum DayMode { DAY_MEAN, DAY_FACTORS, DAY_EXPLICIT };
+enum MomentsOut { MOMENTS_NONE, MOMENTS_ALL };
 enum SunMode { SUN_GLOBAL, SUN_LATITUDE };
 enum BoundKind { BOUND_FIXED, BOUND_DEPOSITION };
 
@@ -85,6 +86,7 @@ typedef struct {
 
     /* output */
     int outputs_per_year; /* number of equal intervals per year, each record is the mean over its interval */
+    int moments;          /* enum MomentsOut: mole fractions by time of day as well */
 } Settings;
 
 /* The built-in baseline. data_dir is copied; it must be shorter than SETTINGS_PATH. */

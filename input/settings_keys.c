@@ -2,6 +2,7 @@
 #include "settings_keys.h"
 
 static const char *const sun_choices[] = {"global", "latitude", NULL};
+static const char *const moments_choices[] = {"none", "all", NULL};
 static const char *const day_choices[] = {"mean", "factors", "explicit", NULL};
 
 const char *const bound_kinds[] = {"fixed", "deposition", NULL};
@@ -103,6 +104,10 @@ static const SettingKey keys[] = {
 
     WHOLE("output", "per_year", outputs_per_year, 1, 1, 366, "",
           "equal intervals per year; each record is the mean over its interval"),
+    CHOICE("output", "moments", moments, MOMENTS_NONE, moments_choices,
+           "all: mole fractions at midnight, sunrise, noon and sunset as well, for every gas but those kept "
+           "at a "
+           "value at the ground; needs day.mode factors or explicit"),
 };
 
 _Static_assert(sizeof keys / sizeof keys[0] <= SETTINGS_MOST_KEYS, "raise SETTINGS_MOST_KEYS");

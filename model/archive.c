@@ -26,6 +26,7 @@
 
 #include "archive_layout.h"
 #include "calendar.h"
+#include "moments.h"
 
 #define CM_PER_KM 1e5
 
@@ -92,6 +93,7 @@ static void archive_free(Archive *archive)
     free(archive->path);
     free(archive->current);
     free(archive->out.fraction);
+    free(archive->out.course);
     free(archive);
 }
 
@@ -143,7 +145,8 @@ int archive_create(Archive **made, const Model *model, const char *path, int ove
         archive_free(archive);
         return fault->code;
     }
-    size_t bytes = SUMMARY_BYTES + (size_t)model->mechanism->solved * INDEX_BYTES;
+    size_t variables = (size_t)model->mechanism->solved * (model->settings.moments == MOMENTS_NONE ? 1 : 2);
+    size_t bytes = SUMMARY_BYTES + variables * INDEX_BYTES;
     int status = NC_NOERR;
     if (!reserve_space(archive, bytes, fault))
         status = nc_create(archive->current, NC_NETCDF4 | NC_CLOBBER, &archive->out.file);
@@ -207,6 +210,21 @@ static int check_record(const Archive *archive, const Record *record, Fault *fau
                     "year %.2f, %.2f km: the mole fraction of %s is %g; the record is not written",
                     record->time, model->grid.middle[i] / CM_PER_KM, mechanism_name(model->mechanism, s), x);
         }
+    size_t all = record->moments ? MOMENTS * (size_t)model->mechanism->solved : 0;
+    for (size_t row = 0; row < all; row++)
+        for (int i = 0; i < model->grid.layers; i++) {
+            double x = record->moments[FIELD(model->grid.padded, row, i)];
+            if (!isfinite(x))
+                return fault_set(fault, FAULT_NUMERICS,
+                                 "year %.2f, %.2f km: the mole fraction of %s at %s is %g; the record is not "
+                                 "written",
+                                 record->time, model->grid.middle[i] / CM_PER_KM,
+                                 mechanism_name(model->mechanism, (int)row % model->mechanism->solved),
+                                 moment_name(&model->settings, (int)row / model->mechanism->solved), x);
+        }
+    if ((archive->out.course != NULL) != (record->moments != NULL))
+        return fault_set(fault, FAULT_NUMERICS, "%s: record %zu %s values by time of day", archive->path,
+                         archive->records + 1, record->moments ? "holds unasked" : "lacks");
     if (!isfinite(record->ozone_column))
         return fault_set(fault, FAULT_NUMERICS,
                          "year %.2f: the ozone column (O3, whole column) is %g; the record is "
@@ -227,6 +245,10 @@ static int put_record(Archive *archive, const Record *record, Fault *fault)
                                              record->x + FIELD(model->grid.padded, s, 0)),
                           mechanism_name(model->mechanism, s), fault))
             return fault->code;
+    if (record->moments && layout_put_moments(&archive->out, archive->records, record->moments, fault)) {
+        archive->broken = 1;
+        return fault->code;
+    }
     if (library_fault(
             archive,
             nc_put_vara_double(archive->out.file, archive->out.column, start, one, &record->ozone_column),
@@ -256,6 +278,9 @@ int archive_append(Archive *archive, const Record *record, Fault *fault)
     const Model *model = archive->out.model;
     size_t variables = (size_t)model->mechanism->solved + 3;
     size_t bytes = 2 * variables * (size_t)model->grid.layers * sizeof(double) + variables * INDEX_BYTES;
+    if (record->moments)
+        bytes += (size_t)model->mechanism->solved *
+                 (2 * MOMENTS * (size_t)model->grid.layers * sizeof(double) + INDEX_BYTES);
     if (archive->broken)
         return fault_set(fault, FAULT_OUTPUT, "%s: an earlier write failed, nothing can be added",
                          archive->path);

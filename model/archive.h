@@ -15,6 +15,8 @@ typedef struct {
     double time, time_start, time_end; /* decimal years; written as days since 1950-01-01, see calendar.h */
     const double *x;                   /* [solved][padded] mean mole fractions over the interval */
     double ozone_column;               /* DU, mean over the interval */
+    const double *moments; /* [MOMENTS][solved][padded] means over the interval of the mole fractions by time
+                              of day (moments.h) when the case asks for them, else NULL */
 } Record;
 
 /* command_line goes into history. Fault FAULT_OUTPUT (exit 4) when the path cannot be written, FAULT_INPUT

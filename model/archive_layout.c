@@ -355,7 +355,7 @@ int layout_define(Layout *out, const char *command_line, Fault *fault)
         status = nc_def_dim(out->file, "nv", 2, &dim.bound);
     if (layout_fault(out->path, status, "the dimensions", fault) || put_global(out, command_line, fault) ||
         define_series(out, &dim, fault) || put_altitude(out, &dim, fault) || put_profiles(out, &dim, fault) ||
-        define_species(out, &dim, fault))
+        define_species(out, &dim, fault) || layout_moments(out, dim.time, dim.altitude, fault))
         return fault->code;
     status = nc_enddef(out->file);
     if (status == NC_NOERR)

@@ -16,11 +16,19 @@ typedef struct {
     int file;                      /* NetCDF id */
     int time, time_bounds, column; /* variable ids, set by layout_define */
     int *fraction;                 /* [solved] variable ids, set by layout_define */
+    int *course; /* [solved] variable ids of the mole fractions by time of day, -1 for a species without; NULL
+                    when the case does not ask for them. Set by layout_moments; owner: archive */
 } Layout;
 
 /* Define everything in a new file and write what does not change with time. FAULT_INPUT when two species
  * would have the same variable name, or when SOURCE_DATE_EPOCH is no number. */
 int layout_define(Layout *out, const char *command_line, Fault *fault);
+/* The same for the mole fractions by time of day, NAME_course(time, local_time, altitude); before
+ * layout_define ends the definitions. time, altitude: dimension ids. FAULT_INPUT when the case's sun has no
+ * rise or set. In archive_moments.c. */
+int layout_moments(Layout *out, int time, int altitude, Fault *fault);
+/* Write record number `record` of them: moments as in Record. */
+int layout_put_moments(const Layout *out, size_t record, const double *moments, Fault *fault);
 /* Counts of the run and the ledger of Cl, Br, N, H (atoms cm-2) as global attributes. */
 int layout_summary(const Layout *out, const Column *column, Fault *fault);
 /* A NetCDF status as a fault (0 when it is none): "path: cannot write what: ...". */

@@ -9,6 +9,7 @@
 
 #include "../input/constants.h"
 #include "../input/table.h"
+#include "moments.h"
 
 /* ---- tables of the case ---- */
 
@@ -309,7 +310,10 @@ int model_make(Model **made, const Settings *settings, Fault *fault)
         return fault_memory(fault, "model");
     model->settings = *settings;
     char path[SETTINGS_PATH];
-    int code = make_grid_and_air(model, fault);
+    double hours[MOMENTS];
+    int code = settings->moments == MOMENTS_NONE ? 0 : moments_hours(settings, hours, fault);
+    if (!code)
+        code = make_grid_and_air(model, fault);
     if (!code)
         code = make_chemistry(model, fault);
     if (!code)

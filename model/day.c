@@ -10,9 +10,6 @@
 /* A reaction matters for convergence when it is this share of the loss of one of its reactants, and faster
  * than this, cm-3 s-1: in a year it then turns over 3e5 cm-3, of ozone's 1e10 and more. */
 static const double SHARE_THAT_MATTERS = 0.01, RATE_THAT_MATTERS = 0.01;
-/* Mean number density, cm-3, below which a reactant is as good as absent and its factors stay 1: one molecule
- * in 10 l. */
-static const double ABSENT = 1e-4;
 /* Species whose midnight value is within this of the mean have no diurnal course worth watching. */
 static const double FLAT = 0.05;
 /* Mole fraction below which no change is worth watching: a tenth of a part per trillion destroys no ozone to
@@ -108,7 +105,7 @@ static void take_ratios(Day *day, const double *end, double lit_time)
             size_t at = FIELD(padded, s, l);
             double mean = day->sum_y[at] / DAY_SECONDS,
                    midnight = end[at] * day->model->air.number_density[l];
-            int there = mean > ABSENT;
+            int there = mean > DAY_ABSENT;
             /* a value below zero is within the solver's tolerance of zero, and a ratio cannot say more than
              * that */
             day->ratio[at] = there ? fmax(0.0, midnight) / mean : 1.0;
@@ -137,7 +134,7 @@ static double take_factors(Day *day, const Light *light, int layer, const double
         for (int i = 0; i < kernel->order[r]; i++) {
             int s = kernel->reactant[3 * r + i];
             double y = day->sum_y[FIELD(padded, s, layer)] / DAY_SECONDS;
-            absent |= !(y > ABSENT);
+            absent |= !(y > DAY_ABSENT);
             mean *= y;
             matters |= rate > SHARE_THAT_MATTERS * day->loss[s] && rate > RATE_THAT_MATTERS;
         }

@@ -19,6 +19,9 @@
 #define DAY_SETTLED 0.005 /* relative change of factors between days at which the day counts as repeating */
 #define DAY_MOST 15       /* days tried */
 #define DAY_COLD 10       /* days of the first time */
+/* Mean number density, cm-3, below which a species is as good as absent, its factors and ratios 1: one
+ * molecule in 10 l. */
+#define DAY_ABSENT 1e-4
 
 typedef struct {
     const Model *model;

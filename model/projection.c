@@ -57,15 +57,40 @@ int projection_spin_up(const Model *model, Stepper *stepper, Column *column, dou
     return 0;
 }
 
-/* One output interval: advance and average. */
-static int run_interval(const Model *model, Stepper *stepper, Column *column, double start, double end,
-                        double share_before, double share_after, double *sum, const Watcher *watcher,
-                        Fault *fault)
+/* Sums over an output interval. */
+typedef struct {
+    size_t field;    /* solved * padded */
+    double *x;       /* [field] */
+    double *moments; /* [MOMENTS][field]; NULL when the case does not ask for them */
+    double *now;     /* [MOMENTS][field] work */
+    double *block;
+} Sums;
+
+static int sums_make(Sums *sums, const Model *model, Fault *fault)
 {
     size_t field = (size_t)model->mechanism->solved * (size_t)model->grid.padded;
-    double step;
+    int moments = model->settings.moments != MOMENTS_NONE;
+    *sums =
+        (Sums){.field = field, .block = malloc((1 + (moments ? 2 * MOMENTS : 0)) * field * sizeof(double))};
+    if (!sums->block)
+        return fault_memory(fault, "means of an interval");
+    sums->x = sums->block;
+    sums->moments = moments ? sums->block + field : NULL;
+    sums->now = moments ? sums->moments + MOMENTS * field : NULL;
+    return 0;
+}
+
+/* One output interval: advance and average. */
+static int run_interval(const Model *model, Stepper *stepper, Column *column, double start, double end,
+                        double share_before, double share_after, Sums *sums, const Watcher *watcher,
+                        Fault *fault)
+{
+    size_t field = sums->field;
+    double step, *sum = sums->x;
     long steps = plan_steps(model, start, end - start, &step);
     memset(sum, 0, field * sizeof(double));
+    if (sums->moments)
+        memset(sums->moments, 0, MOMENTS * field * sizeof(double));
     for (long i = 0; i < steps; i++) {
         int code = stepper_advance(stepper, column, step, 0, fault);
         if (code)
@@ -73,6 +98,10 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
         const double *mean = stepper_mean(stepper);
         for (size_t j = 0; j < field; j++)
             sum[j] += mean[j];
+        if (sums->moments)
+            stepper_moments(stepper, sums->now);
+        for (size_t j = 0; sums->moments && j < MOMENTS * field; j++)
+            sums->moments[j] += sums->now[j];
         tell(model, column, watcher, 0,
              share_before + (share_after - share_before) * (double)(i + 1) / (double)steps);
         if (stopped(watcher))
@@ -82,20 +111,21 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
     }
     for (size_t j = 0; j < field; j++)
         sum[j] /= (double)steps;
+    for (size_t j = 0; sums->moments && j < MOMENTS * field; j++)
+        sums->moments[j] /= (double)steps;
     column->time = end; /* no drift from adding steps */
     if (!watcher->record)
         return 0;
-    Record record = {0.5 * (start + end), start, end, sum, column_ozone_du(model, sum)};
+    Record record = {0.5 * (start + end), start, end, sum, column_ozone_du(model, sum), sums->moments};
     return watcher->record(watcher->context, &record, fault);
 }
 
 int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher, Fault *fault)
 {
     const Settings *settings = &model->settings;
-    size_t field = (size_t)model->mechanism->solved * (size_t)model->grid.padded;
-    double *sum = malloc(field * sizeof(double));
-    if (!sum)
-        return fault_memory(fault, "means of an interval");
+    Sums sums;
+    if (sums_make(&sums, model, fault))
+        return fault->code;
     int years = settings->last_year - settings->first_year + 1, per_year = settings->outputs_per_year;
     double whole = settings->spinup_years + years, spin_share = settings->spinup_years / whole;
     int code = projection_spin_up(model, stepper, column, settings->spinup_years, spin_share, watcher, fault);
@@ -106,8 +136,8 @@ int projection_run(const Model *model, Stepper *stepper, Column *column, const W
                end = settings->first_year + (double)(i + 1) / per_year;
         double before = spin_share + (1.0 - spin_share) * (double)i / (double)intervals;
         double after = spin_share + (1.0 - spin_share) * (double)(i + 1) / (double)intervals;
-        code = run_interval(model, stepper, column, start, end, before, after, sum, watcher, fault);
+        code = run_interval(model, stepper, column, start, end, before, after, &sums, watcher, fault);
     }
-    free(sum);
+    free(sums.block);
     return code;
 }

@@ -29,6 +29,7 @@ struct Stepper {
                        images */
     Light *light;
     Day *day;
+    Moments *moments;
     Column *sample;       /* the column of the explicit days that give the factors; its ledger is nobody's */
     PackWork **work;      /* [threads] */
     PackOutcome *outcome; /* [packs] */
@@ -121,6 +122,8 @@ int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault)
     if (!code)
         code = day_make(&stepper->day, model, fault);
     if (!code)
+        code = moments_make(&stepper->moments, model, fault);
+    if (!code)
         code = column_make(&stepper->sample, model, fault);
     if (code) {
         stepper_free(stepper);
@@ -145,6 +148,7 @@ void stepper_free(Stepper *stepper)
     mixing_free(stepper->mixing);
     light_free(stepper->light);
     day_free(stepper->day);
+    moments_free(stepper->moments);
     column_free(stepper->sample);
     free(stepper->work);
     free(stepper->outcome);
@@ -339,6 +343,7 @@ static int carry_day(Stepper *stepper, Column *column, double years, Fault *faul
     for (int part = 0; part < PACK_DAY_PARTS; part++) {
         double length = pack_part_length(stepper->light, part);
         int slot = 1 + (part < PACK_DAY_PARTS / 2 ? part : PACK_DAY_PARTS - 1 - part);
+        moments_see(stepper->moments, part, column->x);
         if (!(length > 0.0))
             continue;
         int code = mixing_prepare(stepper->mixing, slot, 0.5 * length, fault);
@@ -353,6 +358,7 @@ static int carry_day(Stepper *stepper, Column *column, double years, Fault *faul
         mixing_step(stepper->mixing, slot, column, NULL);
         elapsed += length;
     }
+    moments_see(stepper->moments, PACK_DAY_PARTS, column->x);
     mixing_set_ground(stepper->model, column, column->time + years);
     return 0;
 }
@@ -530,6 +536,10 @@ const Light *stepper_light(const Stepper *stepper)
 const Day *stepper_day(const Stepper *stepper)
 {
     return stepper->day;
+}
+void stepper_moments(const Stepper *stepper, double *out)
+{
+    moments_values(stepper->moments, stepper->day, stepper->mean, out);
 }
 StepClock stepper_clock(const Stepper *stepper)
 {

@@ -16,6 +16,7 @@
 #define SKYMEND_STEP_H
 
 #include "day.h"
+#include "moments.h"
 #include "pack.h"
 
 /* Time spent by part, s, for the bench. */
@@ -37,6 +38,9 @@ int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, F
 const double *stepper_mean(const Stepper *stepper);
 const Light *stepper_light(const Stepper *stepper);
 const Day *stepper_day(const Stepper *stepper);
+/* Mole fractions by time of day that belong to stepper_mean; day.mode other than DAY_MEAN. out
+ * [MOMENTS][solved][padded]. */
+void stepper_moments(const Stepper *stepper, double *out);
 StepClock stepper_clock(const Stepper *stepper);
 /* Rate coefficients of the last step without factors, [reactions][padded]; photolysis rows hold day means
  * (Light.mean). */
