@@ -1,12 +1,12 @@
-/* skymend check, skymend answers, skymend sunlight: looking without running. */
+/* skymend check, skymend answers: looking without running. */
 #include <getopt.h>
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
 
 #include "answers.h"
+#include "column.h"
 #include "commands.h"
-#include "light.h"
 
 typedef struct {
     const char *verb;
@@ -19,7 +19,7 @@ typedef struct {
     double number;
 } Look;
 
-/* All three verbs take one file, at most one number and one flag. */
+/* Both verbs take one file, at most one number and one flag. */
 static int read_look(Look *look, int argc, char **argv, Fault *fault)
 {
     struct option options[4] = {{"help", no_argument, NULL, 'h'}};
@@ -143,117 +143,5 @@ int command_answers(int argc, char **argv)
                          look.number);
     if (!code && !look.help)
         code = run_answers(&look, &fault);
-    return code ? report_fault(&fault) : 0;
-}
-
-/* ---- sunlight ---- */
-
-/* light: day means; NULL: rate [photolysis][padded] of one sun. */
-static void print_sunlight(const Model *model, const Column *column, const Light *light, const double *rate,
-                           const Look *look)
-{
-    const Mechanism *mechanism = model->mechanism;
-    int padded = model->grid.padded, photolysis = mechanism->surface_first - mechanism->photolysis_first;
-    printf("# quantity: photolysis rates\n# unit: altitude_km km; the rest s-1\n");
-    if (look->given)
-        printf("# sun: cosine of the zenith angle at the ground %g, 1 au\n", look->number);
-    else
-        printf("# sun: mean over 24 h of the %s sun of the case\n",
-               model->settings.sun == SUN_GLOBAL ? "global" : "latitude's");
-    printf("# state: the case's initial profiles, ozone column %.1f DU, surface albedo %g\n",
-           column_ozone_du(model, column->x), model->settings.surface_albedo);
-    printf("altitude_km");
-    for (int r = 0; r < photolysis; r++)
-        printf(",%s", mechanism->reaction[mechanism->photolysis_first + r].id);
-    printf("\n");
-    for (int l = 0; l < model->grid.layers; l++) {
-        printf("%g", 1e-5 * model->grid.middle[l]);
-        for (int r = 0; r < photolysis; r++)
-            printf(",%.4e", light ? light_mean_rate(light, r, l) : rate[FIELD(padded, r, l)]);
-        printf("\n");
-    }
-}
-
-/* Rates under one sun. */
-static int one_sun(const Model *model, const Column *column, double cosine, double **rate, Fault *fault)
-{
-    int padded = model->grid.padded, layers = model->grid.layers;
-    size_t field =
-        (size_t)(model->mechanism->surface_first - model->mechanism->photolysis_first) * (size_t)padded;
-    double *edge_km = malloc(((size_t)layers + 1) * sizeof(double)),
-           *density = calloc(3 * (size_t)padded, sizeof(double));
-    Photolysis *photolysis = NULL;
-    *rate = calloc(field, sizeof(double));
-    int code = *rate && edge_km && density ? 0 : fault_memory(fault, "photolysis rates");
-    if (!code) {
-        static const char *const absorber[] = {"O3", "NO2", "NO"};
-        for (int i = 0; i <= layers; i++)
-            edge_km[i] = 1e-5 * model->grid.edge[i];
-        for (int a = 0; a < 3; a++) {
-            int s = mechanism_solved(model->mechanism, absorber[a]);
-            for (int l = 0; s >= 0 && l < padded; l++)
-                density[a * padded + l] = column->x[FIELD(padded, s, l)] * model->air.number_density[l];
-        }
-        code =
-            photolysis_make(&photolysis, model->mechanism, model->spectra, layers, padded, edge_km,
-                            model->air.temperature, model->air.number_density, model->grid.depth,
-                            model->air.column_above_top, &cosine, 1, model->settings.surface_albedo, fault);
-    }
-    if (!code)
-        photolysis_rates(photolysis, density, density + padded, density + 2 * padded, 1.0, *rate);
-    photolysis_free(photolysis);
-    free(edge_km);
-    free(density);
-    return code;
-}
-
-static int run_sunlight(const Look *look, Fault *fault)
-{
-    Settings *settings = malloc(sizeof *settings);
-    Model *model = NULL;
-    Column *column = NULL;
-    Light *light = NULL;
-    double *rate = NULL;
-    if (!settings)
-        return fault_memory(fault, "settings");
-    int code = load_case(settings, look->operand, fault);
-    if (!code)
-        code = model_make(&model, settings, fault);
-    if (!code)
-        code = column_make(&column, model, fault);
-    if (!code && look->given)
-        code = one_sun(model, column, look->number, &rate, fault);
-    if (!code && !look->given)
-        code = light_make(&light, model, 1, fault);
-    if (!code && light)
-        light_refresh(light, column->x, NULL);
-    if (!code)
-        print_sunlight(model, column, light, rate, look);
-    free(rate);
-    light_free(light);
-    column_free(column);
-    model_free(model);
-    free(settings);
-    return code;
-}
-
-int command_sunlight(int argc, char **argv)
-{
-    Look look = {
-        .verb = "sunlight",
-        .number_option = "cosine",
-        .low = -0.2,
-        .high = 1.0,
-        .usage =
-            "usage: skymend sunlight [CASE.cfg] [--cosine C]\n\n"
-            "Photolysis rates by altitude for a case's initial profiles and sun, as CSV on standard output.\n"
-            "Clear-sky planning figures; no guide to personal exposure.\n\n"
-            "      --cosine C  one sun at this cosine of the zenith angle (-0.2 to 1; below 0 it is under\n"
-            "                  the horizon) instead of the mean over the day\n"
-            "  -h, --help      this text\n"};
-    Fault fault = {0};
-    int code = read_look(&look, argc, argv, &fault);
-    if (!code && !look.help)
-        code = run_sunlight(&look, &fault);
     return code ? report_fault(&fault) : 0;
 }

@@ -299,6 +299,48 @@ well "keys"
 truth "keys name spacing_km" grep -q spacing_km output
 run "$SKYMEND" sunlight good.cfg --cosine 0.5
 well "sunlight of the coarse case"
+for moment in noon sunrise sunset midnight; do
+    run "$SKYMEND" sunlight good.cfg --moment "$moment"
+    well "sunlight at $moment"
+    truth "sunlight at $moment says so" grep -q "^# sun: $moment of the global sun" output
+done
+# the global sun stands overhead at noon and on the horizon at sunrise
+rates() { grep -v '^#' output >"$1"; }
+run "$SKYMEND" sunlight good.cfg --moment noon
+rates noon
+run "$SKYMEND" sunlight good.cfg --cosine 1
+rates overhead
+truth "noon is the sun overhead" cmp -s noon overhead
+run "$SKYMEND" sunlight good.cfg --moment sunrise
+rates sunrise
+run "$SKYMEND" sunlight good.cfg --cosine 0
+rates horizon
+truth "sunrise is the sun on the horizon" cmp -s sunrise horizon
+run "$SKYMEND" sunlight good.cfg --moment midnight
+rates midnight
+truth "no light at midnight" awk -F, 'NR > 1 { for (i = 2; i <= NF; i++) if ($i != 0) exit 1 }' midnight
+printf 'sun: { kind = "latitude"; latitude_deg = 80.0; day_of_year = 172.0; };\n' | cat good.cfg - >polar.cfg
+run "$SKYMEND" sunlight polar.cfg --moment midnight
+rates midnight
+truth "midnight sun" awk -F, 'NR > 1 && $3 <= 0 { exit 1 }' midnight
+run "$SKYMEND" sunlight polar.cfg --moment sunset
+expect "no sunset in the polar day" 2 sunset
+run "$SKYMEND" sunlight good.cfg --moment nooon
+expect "moment misspelt" 2 "did you mean noon"
+run "$SKYMEND" sunlight good.cfg --moment noon --cosine 1
+expect "moment and cosine" 2 cosine
+run "$SKYMEND" sunlight good.cfg --state out.nc
+expect "state without its year" 2 -- --year
+run "$SKYMEND" sunlight good.cfg --state none.nc --year 2000
+expect "state that is not there" 2 none.nc
+run "$SKYMEND" sunlight good.cfg --state good.cfg --year 2000
+expect "state that is no NetCDF" 2 good.cfg
+printf 'output: { moments = "all"; };\nday: { mode = "mean"; };\n' >moments.cfg
+run "$SKYMEND" check moments.cfg
+expect "moments of a day that is not resolved" 2 moments.cfg:1
+printf 'output: { moments = "all"; };\n' | cat polar.cfg - >moments.cfg
+run "$SKYMEND" check moments.cfg
+expect "moments of a day without sunset" 2 "does not set"
 
 # The files of the example in README.md: the indented block after "`NAME`:" at the end of a line.
 shown() {
