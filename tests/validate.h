@@ -63,6 +63,11 @@ enum RowState { ROW_COMPUTED, ROW_LATER };
 int row_compute(const Evidence *evidence, const char *id, const char *conditions, int *state, double *value,
                 char *note, Fault *fault);
 
+/* ---- validate_moments.c: ratios near noon ---- */
+
+/* The model's value of a row "noon-A/B-KM"; -1 for any other id. note as in row_compute. */
+int row_moments(const Evidence *evidence, const char *id, double *value, char *note, Fault *fault);
+
 /* ---- validate_numerics.c: the size of the numerical errors ---- */
 
 typedef struct {

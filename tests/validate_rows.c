@@ -398,7 +398,8 @@ int row_compute(const Evidence *evidence, const char *id, const char *conditions
         code = oxygen_threshold(&ask, value);
     else if (!strcmp(id, "O3-strong"))
         code = ozone_strong(&ask, value);
-    else if ((code = composition(&ask, value)) == -1)
+    else if ((code = row_moments(evidence, id, value, note_text, fault)) == -1 &&
+             (code = composition(&ask, value)) == -1)
         code = ozone(&ask, value);
     if (code == -1)
         return fault_set(fault, FAULT_INPUT, "row %s: the program does not know how to compute it", id);
