@@ -2,8 +2,9 @@
  *
  * One variable per species with a dimension local_time, and not one per species and moment: a course is then
  * one object to select from (xarray: NO_course.sel(local_time=12)) or to plot, and the file has half as many
- * variables and a quarter as many chunks. The coordinate is in hours, because text coordinates are beyond
- * cdo; what the hours are called stands in its flag_meanings.
+ * variables and a quarter as many chunks. The coordinate is a number, because text coordinates are beyond
+ * cdo; what the hours are called stands in its flag_meanings. Its unit is written "h": xarray turns "hours"
+ * into spans of time.
  */
 #include "archive_layout.h"
 

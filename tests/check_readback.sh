@@ -4,12 +4,18 @@
 # Without a file it has SKYMEND make one from a short coarse case in TEST_DIR.
 # What one tool reads is compared with what another reads, not only looked for. PYTHON names the interpreter.
 set -u
+course=
 
 if [ $# -eq 0 ] && [ -n "${SKYMEND-}" ] && [ -n "${TEST_DIR-}" ]; then
     printf '%s\n' 'years: { first = 1978; last = 1983; };' 'grid: { spacing_km = 4.0; };' \
         'day: { mode = "mean"; };' 'numerics: { spinup_years = 0.5; };' >"$TEST_DIR/readback.cfg"
     "$SKYMEND" project "$TEST_DIR/readback.cfg" -o "$TEST_DIR/readback.nc" --quiet || exit 2
     set -- "$TEST_DIR/readback.nc"
+    # the same gases by time of day
+    printf '%s\n' 'years: { first = 2000; last = 2001; };' 'grid: { spacing_km = 4.0; };' \
+        'numerics: { spinup_years = 0.5; };' 'output: { moments = "all"; };' >"$TEST_DIR/course.cfg"
+    "$SKYMEND" project "$TEST_DIR/course.cfg" -o "$TEST_DIR/course.nc" --quiet || exit 2
+    course=$TEST_DIR/course.nc
 fi
 if [ $# -ne 1 ] || [ ! -r "$1" ]; then
     echo "usage: $0 [FILE.nc] (a readable file)" >&2
@@ -136,6 +142,53 @@ check "ncks values" ncks -H -C -s '%.6f\n' -v ozone_column "$work/last.nc"
 same "last column, nco and xarray" "$(sed -n '/[0-9]/{p;q;}' "$work/out" | tr -d ' ')" "$(figure column)"
 check "ncks metadata" ncks -m -v O3 "$file"
 check "xarray reads what ncks cut" "$python" "$work/read.py" "$work/last.nc"
+
+# ---- the course of the day ----
+if [ -n "$course" ]; then
+    cat >"$work/course.py" <<'PY'
+import sys
+import warnings
+
+import netCDF4  # first: what it warns of on being loaded is no fault of the file
+import numpy as np
+import xarray as xr
+
+assert netCDF4.__version__
+warnings.simplefilter("error")
+with xr.open_dataset(sys.argv[1]) as data:
+    hours = data["local_time"]
+    assert hours.dims == ("local_time",) and (hours.values == [0.0, 6.0, 12.0, 18.0]).all(), hours
+    assert hours.attrs["flag_meanings"] == "midnight sunrise noon sunset" and hours.attrs["units"] == "h"
+    courses = [name for name in data.data_vars if name.endswith("_course")]
+    assert "N2O_course" not in courses and "CFC_11_course" not in courses, "a source gas has no course"
+    for name in courses:
+        course, mean = data[name], data[name[: -len("_course")]]
+        assert course.dims == ("time", "local_time", "altitude"), f"{name}: {course.dims}"
+        assert np.isfinite(course.values).all(), f"{name} has missing or non-finite values"
+        assert course.attrs["units"] == "mol mol-1" and course.attrs["species"] == mean.attrs["species"], name
+        assert course.attrs.get("standard_name") == mean.attrs.get("standard_name"), name
+        assert course.attrs["cell_methods"] == "time: mean local_time: point altitude: mean", name
+    at = {"method": "nearest", "altitude": 32.0}
+    no, mean = data["NO_course"].sel(**at), data["NO"].sel(**at)
+    assert (no.sel(local_time=12) > 1.5 * mean).all(), "NO at noon"
+    assert (abs(no.sel(local_time=0)) < 1e-3 * mean).all(), "NO at midnight"
+    print("courses", len(courses))
+    print("noon", f"{float(data['NO_course'].sel(local_time=12)[-1].max()):.6e}")
+    print("layers", data["altitude"].size)
+PY
+    check "xarray, course of the day" "$python" "$work/course.py" "$course"
+    cp "$work/out" "$work/figures"
+    check "the other checks of xarray on it" "$python" "$work/read.py" "$course"
+    check "cdo sinfon, course of the day" cdo -s sinfon "$course"
+    check "cdo showname" cdo -s showname "$course"
+    same "courses, cdo and xarray" "$(tr -s ' ' '\n' <"$work/out" | grep -c _course)" "$(figure courses)"
+    check "cdo reads a course" cdo -s outputf,%.6e -selgridcell,3 -vertmax -seltimestep,-1 \
+        -selname,NO_course "$course"
+    same "NO at noon, cdo and xarray" "$(tr -d ' \n' <"$work/out")" "$(figure noon)"
+    check "ncks noon" ncks -O -d local_time,12.0 -v NO_course "$course" "$work/noon.nc"
+    check "ncks values of noon" ncks -H -C -s '%.6e\n' -d time,-1 -v NO_course "$work/noon.nc"
+    same "layers at noon, nco and xarray" "$(grep -c '[0-9]' "$work/out")" "$(figure layers)"
+fi
 
 if [ "$failures" -ne 0 ]; then
     echo "$failures checks failed on $file"
