@@ -156,6 +156,8 @@ static void settings_refuses_a_bad_case(void **state)
          "{species = \"O3\"; kind = \"fixed\"; mole_fraction = 0;}); };",
          ":2: ", "names O3 twice"},
         {"day = { mode = \"explicit\"; };\noutput = { per_year = 366; };", ":2: ", "at most 365"},
+        {"day = { mode = \"mean\"; };\noutput = { moments = \"all\"; };", ":2: ", "day.mode = \"mean\""},
+        {"output = { moments = \"al\"; };", ":1: ", "none"},
         {"\n@include \"none.cfg\"\n", ":2: ", "cannot be opened"},
         {"@include \"/etc/hostname\"\n", ":1: ", "@include"},
         {"@include \"../outside-of-it.cfg\"\n", ":1: ", "@include"},
