@@ -24,8 +24,8 @@ typedef struct {
  * would have the same variable name, or when SOURCE_DATE_EPOCH is no number. */
 int layout_define(Layout *out, const char *command_line, Fault *fault);
 /* The same for the mole fractions by time of day, NAME_course(time, local_time, altitude); before
- * layout_define ends the definitions. time, altitude: dimension ids. FAULT_INPUT when the case's sun has no
- * rise or set. In archive_moments.c. */
+ * layout_define ends the definitions. time, altitude: dimension ids. FAULT_INPUT when it is light or dark
+ * for 24 h. In archive_moments.c. */
 int layout_moments(Layout *out, int time, int altitude, Fault *fault);
 /* Write record number `record` of them: moments as in Record. */
 int layout_put_moments(const Layout *out, size_t record, const double *moments, Fault *fault);

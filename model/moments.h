@@ -25,8 +25,8 @@ typedef struct {
 int moments_make(Moments **made, const Model *model, Fault *fault);
 void moments_free(Moments *moments);
 
-/* Local solar time of each moment, h after midnight, ascending: hours [MOMENTS] out. FAULT_INPUT when the sun
- * of the case does not rise or does not set. */
+/* Local solar time of each moment, h after midnight, ascending: hours [MOMENTS] out. FAULT_INPUT when it
+ * is light or dark for 24 h (twilight is light). */
 int moments_hours(const Settings *settings, double *hours, Fault *fault);
 /* "midnight", "sunrise" or "dawn", "noon", "sunset" or "dusk". */
 const char *moment_name(const Settings *settings, int moment);
