@@ -31,13 +31,19 @@ typedef struct {
     int numerics;
 } Request;
 
-static const char published_path[] = "tests/published-values.csv";
-static const char more_path[] = "tests/published-more.csv";
+/* A table of published values with what the model makes of each row. */
+typedef struct {
+    const char *path;
+    Csv csv;
+    Verdict *verdict; /* [csv.rows] */
+} Published;
+
+#define TABLES 2
 static const char reasons_path[] = "tests/validation-reasons.csv";
 
 /* ---- the tables ---- */
 
-/* Columns of published-values.csv by position; read_published checks their names. */
+/* Columns of the published values by position; read_tables checks their names. */
 enum { ID, QUANTITY, CONDITIONS, VALUE, LOW, HIGH, UNIT, SOURCE, BASIS, COLUMNS };
 
 static const char *cell(const Csv *csv, size_t row, int column)
@@ -92,21 +98,21 @@ static const char *find_reason(const Csv *reasons, const char *id)
 
 /* ---- judging ---- */
 
-/* of_first: rows, names included, that published_path holds; the others are of more_path. */
-static int judge(const Csv *published, size_t of_first, const Csv *reasons, const Evidence *evidence,
-                 Verdict *verdicts, Fault *fault)
+static int judge(const Published *table, const Csv *reasons, const Evidence *evidence, Fault *fault)
 {
+    const Csv *published = &table->csv;
     for (size_t row = 1; row < published->rows; row++) {
-        Verdict *v = &verdicts[row];
-        const char *id = cell(published, row, ID), *path = row < of_first ? published_path : more_path;
+        Verdict *v = &table->verdict[row];
+        const char *id = cell(published, row, ID);
         *v = (Verdict){0};
         if (row_compute(evidence, id, cell(published, row, CONDITIONS), &v->state, &v->value, v->note, fault))
             return fault->code;
         v->reason = find_reason(reasons, id);
         if (v->state == ROW_LATER)
             continue;
-        if (csv_number(path, published->line[row], "low", cell(published, row, LOW), &v->low, fault) ||
-            csv_number(path, published->line[row], "high", cell(published, row, HIGH), &v->high, fault))
+        if (csv_number(table->path, published->line[row], "low", cell(published, row, LOW), &v->low, fault) ||
+            csv_number(table->path, published->line[row], "high", cell(published, row, HIGH), &v->high,
+                       fault))
             return fault->code;
         v->inside = v->value >= v->low && v->value <= v->high; /* not a number is out */
     }
@@ -128,26 +134,27 @@ static void value_text(const Verdict *v, char *text, size_t size)
         snprintf(text, size, "none");
 }
 
-/* Returns the number of rows out without a reason. */
-static int print_rows(const Csv *published, const Verdict *verdicts)
+/* Counts in, out, later are added to. */
+static void print_rows(const Published *table, int count[3])
 {
-    int in = 0, out = 0, later = 0, unexplained = 0;
-    printf("%-16s %12s  %22s  %-8s %-5s  %s\n", "row", "Skymend", "published", "unit", "", "how");
-    for (size_t row = 1; row < published->rows; row++) {
-        const Verdict *v = &verdicts[row];
+    for (size_t row = 1; row < table->csv.rows; row++) {
+        const Verdict *v = &table->verdict[row];
         char value[32], range[64];
         value_text(v, value, sizeof value);
-        snprintf(range, sizeof range, "%s..%s", cell(published, row, LOW), cell(published, row, HIGH));
-        printf("%-16s %12s  %22s  %-8s %-5s  %s\n", cell(published, row, ID), value, range,
-               cell(published, row, UNIT), word(v), v->note);
-        in += v->state == ROW_COMPUTED && v->inside;
-        out += v->state == ROW_COMPUTED && !v->inside;
-        later += v->state == ROW_LATER;
+        snprintf(range, sizeof range, "%s..%s", cell(&table->csv, row, LOW), cell(&table->csv, row, HIGH));
+        printf("%-19s %12s  %22s  %-8s %-5s  %s\n", cell(&table->csv, row, ID), value, range,
+               cell(&table->csv, row, UNIT), word(v), v->note);
+        count[v->state == ROW_LATER ? 2 : v->inside ? 0 : 1]++;
     }
-    printf("\n%d in, %d out, %d later\n", in, out, later);
-    for (size_t row = 1; row < published->rows; row++) {
-        const Verdict *v = &verdicts[row];
-        const char *id = cell(published, row, ID);
+}
+
+/* Returns the number of rows out without a reason. */
+static int print_reasons(const Published *table)
+{
+    int unexplained = 0;
+    for (size_t row = 1; row < table->csv.rows; row++) {
+        const Verdict *v = &table->verdict[row];
+        const char *id = cell(&table->csv, row, ID);
         if (v->state == ROW_COMPUTED && !v->inside) {
             printf("out: %s: %s\n", id, v->reason ? v->reason : "NO REASON KNOWN");
             unexplained += !v->reason;
@@ -155,6 +162,19 @@ static int print_rows(const Csv *published, const Verdict *verdicts)
             fprintf(stderr, "%s: %s is not out; its reason may go\n", reasons_path, id);
         }
     }
+    return unexplained;
+}
+
+/* Returns the number of rows out without a reason. */
+static int print_tables(const Published *tables)
+{
+    int count[3] = {0}, unexplained = 0;
+    printf("%-19s %12s  %22s  %-8s %-5s  %s\n", "row", "Skymend", "published", "unit", "", "how");
+    for (int t = 0; t < TABLES; t++)
+        print_rows(&tables[t], count);
+    printf("\n%d in, %d out, %d later\n", count[0], count[1], count[2]);
+    for (int t = 0; t < TABLES; t++)
+        unexplained += print_reasons(&tables[t]);
     return unexplained;
 }
 
@@ -196,15 +216,11 @@ static void quoted(FILE *out, const char *text)
     fputc('"', out);
 }
 
-static int write_csv(const char *path, const Csv *published, const Verdict *verdicts, const NumericRow *rows,
-                     int count, const Csv *reasons, Fault *fault)
+static void write_rows(FILE *out, const Published *table)
 {
-    FILE *out = fopen(path, "w");
-    if (!out)
-        return fault_set(fault, FAULT_OUTPUT, "%s: cannot be written", path);
-    fprintf(out, "id,value,low,high,unit,verdict,note,reason\n");
+    const Csv *published = &table->csv;
     for (size_t row = 1; row < published->rows; row++) {
-        const Verdict *v = &verdicts[row];
+        const Verdict *v = &table->verdict[row];
         fprintf(out, "%s,", cell(published, row, ID));
         if (v->state == ROW_COMPUTED && isfinite(v->value))
             fprintf(out, "%.10g", v->value);
@@ -215,6 +231,17 @@ static int write_csv(const char *path, const Csv *published, const Verdict *verd
         quoted(out, v->state == ROW_COMPUTED && !v->inside && v->reason ? v->reason : "");
         fputc('\n', out);
     }
+}
+
+static int write_csv(const char *path, const Published *tables, const NumericRow *rows, int count,
+                     const Csv *reasons, Fault *fault)
+{
+    FILE *out = fopen(path, "w");
+    if (!out)
+        return fault_set(fault, FAULT_OUTPUT, "%s: cannot be written", path);
+    fprintf(out, "id,value,low,high,unit,verdict,note,reason\n");
+    for (int t = 0; t < TABLES; t++)
+        write_rows(out, &tables[t]);
     for (int i = 0; i < count; i++) {
         const NumericRow *row = &rows[i];
         fprintf(out, "numerics-%s,%.10g,,", row->id, row->value);
@@ -235,17 +262,58 @@ static int write_csv(const char *path, const Csv *published, const Verdict *verd
 
 /* ---- the run ---- */
 
+static int read_tables(Published *tables, Fault *fault)
+{
+    static const char *const names[] = {"id",   "quantity", "conditions", "value", "low",
+                                        "high", "unit",     "source",     "basis"};
+    for (int t = 0; t < TABLES; t++) {
+        if (read_named(&tables[t].csv, tables[t].path, names, COLUMNS, fault))
+            return fault->code;
+        tables[t].verdict = calloc(tables[t].csv.rows, sizeof *tables[t].verdict);
+        if (!tables[t].verdict)
+            return fault_memory(fault, "verdicts");
+    }
+    return 0;
+}
+
+/* Bring the baseline to balance, take its budget, judge every row by run and balance. */
+static int judge_all(const Published *tables, const Csv *reasons, const Run *run, Fault *fault)
+{
+    const Model *model = run->model;
+    const Watcher nobody = {0};
+    size_t padded = (size_t)model->grid.padded;
+    Balance balance = {0};
+    OxBook *book = NULL;
+    double *rate = calloc((size_t)model->mechanism->reactions * padded, sizeof(double));
+    double *term = calloc((BUDGET_TERMS + 1) * padded, sizeof(double));
+    int code = rate && term ? 0 : fault_memory(fault, "rates of reaction");
+    if (!code)
+        code = ox_book_make(&book, model->mechanism, fault);
+    if (!code)
+        code = balance_make(&balance, model, run_fields(run, STEADY_YEAR), STEADY_YEAR + 0.5, STEADY_YEARS, 0,
+                            &nobody, fault);
+    if (!code) {
+        const Evidence evidence = {run, &balance, rate, term};
+        budget_step_rates(model, balance.stepper, balance.column->x, rate);
+        budget_odd_oxygen(book, &model->grid, rate, term, term + BUDGET_TERMS * padded);
+        for (int t = 0; !code && t < TABLES; t++)
+            code = judge(&tables[t], reasons, &evidence, fault);
+    }
+    balance_free(&balance);
+    ox_book_free(book);
+    free(rate);
+    free(term);
+    return code;
+}
+
 static int validate(const Request *request, int *failures, Fault *fault)
 {
-    static const char *const published_names[] = {"id",   "quantity", "conditions", "value", "low",
-                                                  "high", "unit",     "source",     "basis"};
     static const char *const reason_names[] = {"id", "reason"};
     const char *data = getenv("SKYMEND_DATA");
     Settings *settings = malloc(sizeof *settings);
-    Csv published = {0}, more = {0}, reasons = {0};
+    Published tables[TABLES] = {{.path = "tests/published-values.csv"}, {.path = "tests/published-more.csv"}};
+    Csv reasons = {0};
     Run baseline = {0};
-    Steady steady = {0};
-    Verdict *verdicts = NULL;
     NumericRow rows[NUMERIC_MOST];
     int count = 0;
     if (!settings)
@@ -257,27 +325,15 @@ static int validate(const Request *request, int *failures, Fault *fault)
         code = fault_set(fault, FAULT_INPUT, "the case runs from %d to %d; 1964 to %d are needed",
                          settings->first_year, settings->last_year, STEADY_YEAR);
     if (!code)
-        code = read_named(&published, published_path, published_names, COLUMNS, fault);
-    size_t of_first = published.rows;
-    if (!code)
-        code = read_named(&more, more_path, published_names, COLUMNS, fault);
-    if (!code)
-        code = add_rows(&published, &more, fault);
+        code = read_tables(tables, fault);
     if (!code)
         code = read_named(&reasons, reasons_path, reason_names, 2, fault);
-    if (!code && !(verdicts = calloc(published.rows, sizeof *verdicts)))
-        code = fault_memory(fault, "verdicts");
     if (!code)
         code = run_years(&baseline, settings, NULL, "baseline", fault);
     if (!code)
-        code = steady_make(&steady, baseline.model, run_fields(&baseline, STEADY_YEAR), STEADY_YEAR + 0.5,
-                           STEADY_YEARS, fault);
+        code = judge_all(tables, &reasons, &baseline, fault);
     if (!code) {
-        Evidence evidence = {&baseline, &steady};
-        code = judge(&published, of_first, &reasons, &evidence, verdicts, fault);
-    }
-    if (!code) {
-        *failures = print_rows(&published, verdicts);
+        *failures = print_tables(tables);
         fflush(stdout);
     }
     if (!code && request->numerics)
@@ -285,12 +341,12 @@ static int validate(const Request *request, int *failures, Fault *fault)
     if (!code && request->numerics)
         *failures += print_numerics(rows, count, &reasons);
     if (!code && request->csv)
-        code = write_csv(request->csv, &published, verdicts, rows, count, &reasons, fault);
-    steady_free(&steady);
+        code = write_csv(request->csv, tables, rows, count, &reasons, fault);
     run_free(&baseline);
-    free(verdicts);
-    csv_free(&published);
-    csv_free(&more);
+    for (int t = 0; t < TABLES; t++) {
+        csv_free(&tables[t].csv);
+        free(tables[t].verdict);
+    }
     csv_free(&reasons);
     free(settings);
     return code;

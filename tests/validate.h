@@ -1,15 +1,16 @@
 /* validate: what the parts of the validation program share. Private to tests/validate*.c.
  *
  * The program runs the baseline projection, compares what can be compared with tests/published-values.csv and
- * measures the numerical errors that take too long for make test. Results on standard output, progress on
- * standard error. It judges and explains; it adjusts nothing.
+ * tests/published-more.csv and measures the numerical errors that take too long for make test. Results on
+ * standard output, progress on standard error. It judges and explains; it adjusts nothing.
  */
 #ifndef SKYMEND_VALIDATE_H
 #define SKYMEND_VALIDATE_H
 
 #include <stddef.h>
 
-#include "../model/step.h"
+#include "../model/balance.h"
+#include "../model/budget.h"
 
 /* ---- validate_run.c: a run kept in memory ---- */
 
@@ -34,22 +35,13 @@ const double *run_fields(const Run *run, int year);
 /* Mean ozone column of calendar years first..last, DU. */
 double run_column(const Run *run, int first, int last);
 
-/* A column held at the conditions of one time, started from x. */
-typedef struct {
-    Column *column;
-    Stepper *stepper;
-} Steady;
-
-/* Carry model's column from x for years under the schedule of decimal year time. Owner: caller, steady_free.
- * The model must outlive it. */
-int steady_make(Steady *steady, const Model *model, const double *x, double time, double years, Fault *fault);
-void steady_free(Steady *steady);
-
 /* ---- validate_rows.c: the published values ---- */
 
 typedef struct {
-    const Run *run;       /* the baseline, all years */
-    const Steady *steady; /* the same column in balance with the surface values of STEADY_YEAR */
+    const Run *run;         /* the baseline, all years */
+    const Balance *balance; /* the same column in balance with the surface values of STEADY_YEAR */
+    const double *rate;     /* [reactions][padded] rates of reaction of that balance, cm-3 s-1 */
+    const double *term;     /* [BUDGET_TERMS][padded] its budget of odd oxygen, cm-3 s-1 */
 } Evidence;
 
 #define STEADY_YEAR 2000 /* the conditions of the published lifetimes (SPARC Report 6, 2013) */

@@ -62,21 +62,21 @@ static int measure_day(const Run *baseline, int year, DayError *error, Fault *fa
 {
     Settings settings = baseline->model->settings;
     Model *model = NULL;
-    Steady factors = {0}, days = {0};
-    Watcher nobody = {0};
+    Balance factors = {0}, days = {0};
+    const Watcher nobody = {0};
     fprintf(stderr, "explicit days of %d\n", year);
-    int code = steady_make(&factors, baseline->model, run_fields(baseline, year), year + 0.5, 1.0, fault);
+    int code = balance_make(&factors, baseline->model, run_fields(baseline, year), year + 0.5, 1.0, 0, &nobody, fault);
     settings.day = DAY_EXPLICIT;
     if (!code)
         code = model_make(&model, &settings, fault);
     if (!code)
-        code = steady_make(&days, model, factors.column->x, year + 0.5, 1.0, fault);
+        code = balance_make(&days, model, factors.column->x, year + 0.5, 1.0, 0, &nobody, fault);
     if (!code)
         code = projection_spin_up(baseline->model, factors.stepper, factors.column, 1.0, 1.0, &nobody, fault);
     if (!code)
         compare_days(model, stepper_mean(factors.stepper), stepper_mean(days.stepper), error);
-    steady_free(&factors);
-    steady_free(&days);
+    balance_free(&factors);
+    balance_free(&days);
     model_free(model);
     return code;
 }

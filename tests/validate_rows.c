@@ -1,4 +1,4 @@
-/* validate_rows: the model's value of each row of tests/published-values.csv. */
+/* validate_rows: the model's value of each published row. */
 #include "validate.h"
 
 #include <math.h>
@@ -14,7 +14,7 @@
 
 typedef struct {
     const Run *run;
-    const Steady *steady;
+    const Evidence *evidence;
     const Model *model;
     const char *id, *conditions;
     char *note;
@@ -45,16 +45,6 @@ static double layer_km(const Model *model, int layer)
     return 1e-5 * model->grid.middle[layer];
 }
 
-/* Linear in altitude between layer middles. */
-static double at_km(const Model *model, const double *profile, double km)
-{
-    int l = 0;
-    while (l + 2 < model->grid.layers && layer_km(model, l + 1) < km)
-        l++;
-    double share = (km - layer_km(model, l)) / (layer_km(model, l + 1) - layer_km(model, l));
-    return profile[l] + share * (profile[l + 1] - profile[l]);
-}
-
 /* Layer of the largest value from low to high km. */
 static int highest(const Model *model, const double *profile, double low, double high)
 {
@@ -72,23 +62,6 @@ static int solved(const Ask *ask, const char *name, int *index)
 {
     *index = mechanism_solved(ask->model->mechanism, name);
     return *index >= 0 ? 0 : fault_set(ask->fault, FAULT_INPUT, "%s: the mechanism has no %s", ask->id, name);
-}
-
-/* Atoms of an element in reactive or inorganic species: everything solved but what carries carbon and N2O. */
-static void inorganic(const Model *model, const double *x, const char *symbol, double *sum)
-{
-    const Mechanism *mechanism = model->mechanism;
-    int element = mechanism_element(mechanism, symbol), carbon = mechanism_element(mechanism, "C");
-    int nitrous_oxide = mechanism_solved(mechanism, "N2O");
-    for (int l = 0; l < model->grid.layers; l++)
-        sum[l] = 0.0;
-    for (int s = 0; s < mechanism->solved; s++) {
-        int atoms = mechanism_atoms(mechanism, s, element);
-        if (!atoms || mechanism_atoms(mechanism, s, carbon) || s == nitrous_oxide)
-            continue;
-        for (int l = 0; l < model->grid.layers; l++)
-            sum[l] += atoms * x[FIELD(model->grid.padded, s, l)];
-    }
 }
 
 /* Mean over calendar years of one species, [layers]. */
@@ -158,49 +131,107 @@ static int coefficient_298(const Ask *ask, double *value)
 
 /* ---- lifetimes ---- */
 
-/* Loss of a solved species in one layer, cm-3 s-1, under the factors of the steady column. */
-static double loss_rate(const Ask *ask, int species, int layer)
-{
-    const Model *model = ask->model;
-    const Mechanism *mechanism = model->mechanism;
-    const double *coefficient = stepper_coefficients(ask->steady->stepper), *x = ask->steady->column->x;
-    const double *factor =
-        model->settings.day == DAY_FACTORS ? stepper_day(ask->steady->stepper)->factor : NULL;
-    double sum = 0.0;
-    for (int r = 0; r < mechanism->reactions; r++) {
-        const Reaction *reaction = &mechanism->reaction[r];
-        double change = 0.0;
-        for (int c = 0; c < reaction->changes; c++)
-            if (reaction->changed[c] == species)
-                change += reaction->change[c];
-        if (change >= 0.0)
-            continue;
-        size_t at = FIELD(model->grid.padded, r, layer);
-        double rate = coefficient[at] * (factor ? factor[at] : 1.0);
-        for (int i = 0; i < reaction->reactants; i++)
-            rate *=
-                x[FIELD(model->grid.padded, reaction->reactant[i], layer)] * model->air.number_density[layer];
-        sum -= change * rate;
-    }
-    return sum;
-}
-
 static int lifetime(const Ask *ask, double *value)
 {
-    const Model *model = ask->model;
     const char *gas = ask->id + strlen("tau-");
     int species, aloft = strstr(ask->conditions, "stratospheric loss only") != NULL;
+    GasBudget budget;
     if (solved(ask, gas, &species))
         return ask->fault->code;
-    double loss = 0.0, burden = column_burden(model, ask->steady->column->x, species);
-    for (int l = 0; l < model->grid.layers; l++)
-        if (!aloft || layer_km(model, l) >= model->settings.tropopause_km)
-            loss += loss_rate(ask, species, l) * model->grid.depth[l];
-    if (!(loss > 0.0))
+    budget_gas(ask->model, ask->evidence->balance->column->x, ask->evidence->rate, species, &budget);
+    *value = budget_lifetime(&budget, aloft ? budget.aloft : budget.loss, GAS_LOSSES);
+    if (!isfinite(*value))
         return fault_set(ask->fault, FAULT_NUMERICS, "%s: %s is not lost", ask->id, gas);
-    *value = burden / loss / YEAR_SECONDS;
     return note(ask, aloft ? "balance of %g, loss above the tropopause" : "balance of %g, all loss",
                 STEADY_YEAR);
+}
+
+/* ---- relations of long-lived gases in the lower stratosphere ---- */
+
+static int slope(const Ask *ask, double *value)
+{
+    static const struct {
+        const char *id, *gas;
+        int total; /* against gas, where no other gas is named */
+        const char *other;
+        double low, high; /* of gas, mole fraction */
+    } rows[] = {{"slope-NOy-N2O", "N2O", TOTAL_NOY, NULL, 150e-9, 300e-9},
+                {"slope-Cly-N2O", "N2O", TOTAL_CLY, NULL, 150e-9, 300e-9},
+                {"slope-CFC-11-CFC-12", "CFC-12", 0, "CFC-11", 0.85, 0.99}}; /* of its value at the ground */
+    double y[SETTINGS_MAX_EDGES];
+    const double *x = ask->evidence->balance->column->x;
+    int padded = ask->model->grid.padded;
+    for (size_t i = 0; i < sizeof rows / sizeof rows[0]; i++) {
+        int species, other = -1;
+        if (strcmp(ask->id, rows[i].id))
+            continue;
+        if (solved(ask, rows[i].gas, &species) || (rows[i].other && solved(ask, rows[i].other, &other)))
+            return ask->fault->code;
+        const double *against = x + FIELD(padded, species, 0), *of = y;
+        double scale = 1.0, unit = 1.0;
+        if (other >= 0) { /* each relative to its value at the ground */
+            of = x + FIELD(padded, other, 0);
+            unit = against[0];
+            scale = against[0] / of[0];
+        } else {
+            budget_total(ask->model, x, rows[i].total, y);
+        }
+        int layers = budget_slope(ask->model, against, of, rows[i].low * unit, rows[i].high * unit, value);
+        *value *= scale;
+        return note(ask, "balance of 2000, least squares over %g layers", layers);
+    }
+    return -1;
+}
+
+/* ---- loss of odd oxygen by family ---- */
+
+/* The altitude from low to high km at which family one overtakes family two on the way up. */
+static int overtaking(const Ask *ask, int one, int two, double low, double high, double *value)
+{
+    const Model *model = ask->model;
+    const double *a = ask->evidence->term + FIELD(model->grid.padded, one, 0);
+    const double *b = ask->evidence->term + FIELD(model->grid.padded, two, 0);
+    *value = NAN;
+    for (int l = 0; l + 1 < model->grid.layers; l++) {
+        double below = a[l] - b[l], above = a[l + 1] - b[l + 1];
+        if (layer_km(model, l) < low || layer_km(model, l + 1) > high || below > 0.0 || above <= 0.0)
+            continue;
+        double share = below / (below - above);
+        *value = (1.0 - share) * layer_km(model, l) + share * layer_km(model, l + 1);
+        return note(ask, "balance of %g, between layers", STEADY_YEAR);
+    }
+    return plain_note(ask, "there is none");
+}
+
+static int largest_share(const Ask *ask, int family, double low, double high, double *value)
+{
+    const Model *model = ask->model;
+    int padded = model->grid.padded, best = -1;
+    *value = NAN;
+    for (int l = 0; l < model->grid.layers; l++) {
+        double all = 0.0;
+        for (int t = BUDGET_LOSS_FIRST; t < BUDGET_TERMS; t++)
+            all += ask->evidence->term[FIELD(padded, t, l)];
+        double share = 100.0 * ask->evidence->term[FIELD(padded, family, l)] / all;
+        if (layer_km(model, l) < low || layer_km(model, l) > high || (best >= 0 && share <= *value))
+            continue;
+        best = l;
+        *value = share;
+    }
+    return note(ask, "balance of 2000, at %g km", best >= 0 ? layer_km(model, best) : NAN);
+}
+
+static int odd_oxygen(const Ask *ask, double *value)
+{
+    if (!strcmp(ask->id, "loss-NOx-over-HOx"))
+        return overtaking(ask, BUDGET_NOX, BUDGET_HOX, 14.0, 35.0, value);
+    if (!strcmp(ask->id, "loss-HOx-over-NOx"))
+        return overtaking(ask, BUDGET_HOX, BUDGET_NOX, 35.0, 60.0, value);
+    if (!strcmp(ask->id, "loss-NOx-most"))
+        return largest_share(ask, BUDGET_NOX, 20.0, 45.0, value);
+    if (!strcmp(ask->id, "loss-ClOx-most"))
+        return largest_share(ask, BUDGET_CLOX, 30.0, 50.0, value);
+    return -1;
 }
 
 /* ---- ozone ---- */
@@ -271,20 +302,21 @@ static int highest_above(const Ask *ask, const double *profile, double scale, do
 
 static int at_altitude(const Ask *ask, const double *profile, double km, double scale, double *value)
 {
-    *value = scale * at_km(ask->model, profile, km);
+    *value = scale * budget_at_km(ask->model, profile, km);
     return note(ask, "year 2000, %g km", km);
 }
 
 static int composition(const Ask *ask, double *value)
 {
     static const struct {
-        const char *id, *species, *element; /* one of the two */
-        double km;                          /* 0: the largest */
+        const char *id, *species; /* NULL: a total */
+        int total;
+        double km; /* 0: the largest */
         double scale;
-    } rows[] = {{"H2O-50", "H2O", NULL, 50, 1e6},   {"NOy-max", NULL, "N", 0, 1e9},
-                {"HNO3-max", "HNO3", NULL, 0, 1e9}, {"ClO-max", "ClO", NULL, 0, 1e9},
-                {"HCl-50", "HCl", NULL, 50, 1e9},   {"Cly-50", NULL, "Cl", 50, 1e9},
-                {"Bry-30", NULL, "Br", 30, 1e12}};
+    } rows[] = {{"H2O-50", "H2O", 0, 50, 1e6},        {"NOy-max", NULL, TOTAL_NOY, 0, 1e9},
+                {"HNO3-max", "HNO3", 0, 0, 1e9},      {"ClO-max", "ClO", 0, 0, 1e9},
+                {"HCl-50", "HCl", 0, 50, 1e9},        {"Cly-50", NULL, TOTAL_CLY, 50, 1e9},
+                {"Bry-30", NULL, TOTAL_BRY, 30, 1e12}};
     for (size_t i = 0; i < sizeof rows / sizeof rows[0]; i++) {
         if (strcmp(ask->id, rows[i].id))
             continue;
@@ -295,7 +327,7 @@ static int composition(const Ask *ask, double *value)
                 return ask->fault->code;
             mean_profile(ask, species, 2000, 2000, profile);
         } else {
-            inorganic(ask->model, run_fields(ask->run, 2000), rows[i].element, profile);
+            budget_total(ask->model, run_fields(ask->run, 2000), rows[i].total, profile);
         }
         return rows[i].km > 0 ? at_altitude(ask, profile, rows[i].km, rows[i].scale, value)
                               : highest_above(ask, profile, rows[i].scale, value);
@@ -374,7 +406,7 @@ int row_compute(const Evidence *evidence, const char *id, const char *conditions
                 char *note_text, Fault *fault)
 {
     static const char *const later[] = {"odp-", "eesc-", "uv-raf", "uvi-overhead", "uv-bands"};
-    const Ask ask = {evidence->run, evidence->steady, evidence->run->model, id, conditions, note_text, fault};
+    const Ask ask = {evidence->run, evidence, evidence->run->model, id, conditions, note_text, fault};
     note_text[0] = '\0';
     *value = NAN;
     for (size_t i = 0; i < sizeof later / sizeof later[0]; i++)
@@ -390,6 +422,10 @@ int row_compute(const Evidence *evidence, const char *id, const char *conditions
         code = coefficient_298(&ask, value);
     else if (begins(id, "tau-"))
         code = lifetime(&ask, value);
+    else if (begins(id, "slope-"))
+        code = slope(&ask, value);
+    else if (begins(id, "loss-"))
+        code = odd_oxygen(&ask, value);
     else if (!strcmp(id, "return-1980"))
         code = return_year(&ask, value);
     else if (begins(id, "uv-toa-"))

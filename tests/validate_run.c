@@ -1,4 +1,4 @@
-/* validate_run: a projection kept in memory, and a column held at the conditions of one year. */
+/* validate_run: a projection kept in memory. */
 #include "validate.h"
 
 #include <math.h>
@@ -96,30 +96,4 @@ double run_column(const Run *run, int first, int last)
     for (int year = first; year <= last; year++)
         sum += run->column[year - run->first_year];
     return sum / (last - first + 1);
-}
-
-int steady_make(Steady *steady, const Model *model, const double *x, double time, double years, Fault *fault)
-{
-    *steady = (Steady){0};
-    Watcher nobody = {0};
-    int code = column_make(&steady->column, model, fault);
-    if (!code)
-        code = stepper_make(&steady->stepper, model, 0, fault);
-    if (!code) {
-        size_t field = (size_t)model->mechanism->solved * (size_t)model->grid.padded;
-        memcpy(steady->column->x, x, field * sizeof(double));
-        steady->column->time = time;
-        column_open_ledger(model, steady->column);
-        code = projection_spin_up(model, steady->stepper, steady->column, years, 1.0, &nobody, fault);
-    }
-    if (code)
-        steady_free(steady);
-    return code;
-}
-
-void steady_free(Steady *steady)
-{
-    stepper_free(steady->stepper);
-    column_free(steady->column);
-    *steady = (Steady){0};
 }
