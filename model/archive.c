@@ -94,6 +94,9 @@ static void archive_free(Archive *archive)
     free(archive->current);
     free(archive->out.fraction);
     free(archive->out.course);
+    free(archive->out.lifetime);
+    free(archive->out.budget);
+    ox_book_free(archive->out.book);
     free(archive);
 }
 
@@ -131,8 +134,12 @@ int archive_create(Archive **made, const Model *model, const char *path, int ove
     archive->out.file = archive->probe = -1;
     archive->last_end = -INFINITY;
     archive->out.fraction = calloc((size_t)model->mechanism->solved + 1, sizeof *archive->out.fraction);
-    if (!archive->out.fraction)
+    archive->out.lifetime = calloc((size_t)model->mechanism->solved + 1, sizeof *archive->out.lifetime);
+    archive->out.budget = calloc((BUDGET_TERMS + 1) * (size_t)model->grid.padded, sizeof(double));
+    if (!archive->out.fraction || !archive->out.lifetime || !archive->out.budget)
         fault_memory(fault, "the archive");
+    else if (ox_book_possible(model->mechanism, NULL))
+        ox_book_make(&archive->out.book, model->mechanism, fault);
     if (fault->code || choose_path(archive, path, overwrite, fault)) {
         archive_free(archive);
         return fault->code;
@@ -145,7 +152,8 @@ int archive_create(Archive **made, const Model *model, const char *path, int ove
         archive_free(archive);
         return fault->code;
     }
-    size_t variables = (size_t)model->mechanism->solved * (model->settings.moments == MOMENTS_NONE ? 1 : 2);
+    size_t variables = (size_t)model->mechanism->solved * (model->settings.moments == MOMENTS_NONE ? 1 : 2) +
+                       layout_budget_variables(&archive->out);
     size_t bytes = SUMMARY_BYTES + variables * INDEX_BYTES;
     int status = NC_NOERR;
     if (!reserve_space(archive, bytes, fault))
@@ -249,7 +257,9 @@ static int put_record(Archive *archive, const Record *record, Fault *fault)
         archive->broken = 1;
         return fault->code;
     }
-    if (library_fault(
+    if (library_fault(archive, layout_budget_put(&archive->out, archive->records, record), "the budget",
+                      fault) ||
+        library_fault(
             archive,
             nc_put_vara_double(archive->out.file, archive->out.column, start, one, &record->ozone_column),
             "ozone_column", fault) ||
@@ -276,7 +286,7 @@ static int take_place(Archive *archive, Fault *fault)
 int archive_append(Archive *archive, const Record *record, Fault *fault)
 {
     const Model *model = archive->out.model;
-    size_t variables = (size_t)model->mechanism->solved + 3;
+    size_t variables = (size_t)model->mechanism->solved + 3 + layout_budget_variables(&archive->out);
     size_t bytes = 2 * variables * (size_t)model->grid.layers * sizeof(double) + variables * INDEX_BYTES;
     if (record->moments)
         bytes += (size_t)model->mechanism->solved *

@@ -17,6 +17,8 @@ typedef struct {
     double ozone_column;               /* DU, mean over the interval */
     const double *moments; /* [MOMENTS][solved][padded] means over the interval of the mole fractions by time
                               of day (moments.h) when the case asks for them, else NULL */
+    const double *rate; /* [reactions][padded] mean rates of reaction, cm-3 s-1; NULL: the budget is left out
+                           of this record */
 } Record;
 
 /* command_line goes into history. Fault FAULT_OUTPUT (exit 4) when the path cannot be written, FAULT_INPUT

@@ -204,12 +204,8 @@ typedef struct {
     int time, altitude, edge, bound; /* dimension ids */
 } Dimensions;
 
-typedef struct {
-    const char *name, *units, *standard, *longer, *methods; /* NULL: left out */
-} Description;
-
-static int define(const Layout *out, const Description *d, int dimensions, const int *dimension,
-                  const size_t *chunk, int *variable, Fault *fault)
+int layout_variable(const Layout *out, const Description *d, int dimensions, const int *dimension,
+                    const size_t *chunk, int *variable, Fault *fault)
 {
     int status = nc_def_var(out->file, d->name, NC_DOUBLE, dimensions, dimension, variable);
     if (status == NC_NOERR && chunk)
@@ -237,12 +233,12 @@ static int define_series(Layout *out, const Dimensions *dim, Fault *fault)
                                        "ozone column above the ground", "time: mean"};
     const size_t chunk[2] = {TIME_CHUNK, 2};
     const int pair[2] = {dim->time, dim->bound};
-    if (define(out, &time, 1, &dim->time, chunk, &out->time, fault) ||
+    if (layout_variable(out, &time, 1, &dim->time, chunk, &out->time, fault) ||
         put_text(out, out->time, "calendar", "standard", fault) ||
         put_text(out, out->time, "axis", "T", fault) ||
         put_text(out, out->time, "bounds", "time_bnds", fault) ||
-        define(out, &bounds, 2, pair, chunk, &out->time_bounds, fault) ||
-        define(out, &column, 1, &dim->time, chunk, &out->column, fault))
+        layout_variable(out, &bounds, 2, pair, chunk, &out->time_bounds, fault) ||
+        layout_variable(out, &column, 1, &dim->time, chunk, &out->column, fault))
         return fault->code;
     return 0;
 }
@@ -273,7 +269,7 @@ static int define_species(const Layout *out, const Dimensions *dim, Fault *fault
                      species->formula);
         else
             snprintf(longer, sizeof longer, "mole fraction of %s in air", species->name);
-        if (define(out, &d, 2, field, chunk, &out->fraction[s], fault) ||
+        if (layout_variable(out, &d, 2, field, chunk, &out->fraction[s], fault) ||
             put_text(out, out->fraction[s], "species", species->name, fault))
             return fault->code;
     }
@@ -289,7 +285,7 @@ static int put_fixed(const Layout *out, const Description *d, int dimension, con
         return fault_memory(fault, d->name);
     for (int i = 0; i < count; i++)
         scaled[i] = value[i] * scale;
-    if (!define(out, d, 1, &dimension, NULL, variable, fault))
+    if (!layout_variable(out, d, 1, &dimension, NULL, variable, fault))
         layout_fault(out->path, nc_put_var_double(out->file, *variable, scaled), d->name, fault);
     free(scaled);
     return fault->code;
@@ -311,7 +307,7 @@ static int put_altitude(const Layout *out, const Dimensions *dim, Fault *fault)
                   fault) ||
         put_text(out, variable, "positive", "up", fault) || put_text(out, variable, "axis", "Z", fault) ||
         put_text(out, variable, "bounds", "altitude_bnds", fault) ||
-        define(out, &bounds, 2, pair, NULL, &variable, fault))
+        layout_variable(out, &bounds, 2, pair, NULL, &variable, fault))
         return fault->code;
     for (size_t i = 0; i < (size_t)grid->layers; i++) {
         const size_t start[2] = {i, 0}, count[2] = {1, 2};
@@ -355,7 +351,8 @@ int layout_define(Layout *out, const char *command_line, Fault *fault)
         status = nc_def_dim(out->file, "nv", 2, &dim.bound);
     if (layout_fault(out->path, status, "the dimensions", fault) || put_global(out, command_line, fault) ||
         define_series(out, &dim, fault) || put_altitude(out, &dim, fault) || put_profiles(out, &dim, fault) ||
-        define_species(out, &dim, fault) || layout_moments(out, dim.time, dim.altitude, fault))
+        define_species(out, &dim, fault) || layout_moments(out, dim.time, dim.altitude, fault) ||
+        layout_budget_define(out, dim.time, dim.altitude, TIME_CHUNK, fault))
         return fault->code;
     status = nc_enddef(out->file);
     if (status == NC_NOERR)

@@ -7,7 +7,8 @@
 #ifndef SKYMEND_ARCHIVE_LAYOUT_H
 #define SKYMEND_ARCHIVE_LAYOUT_H
 
-#include "column.h"
+#include "archive.h"
+#include "budget.h"
 
 /* An open NetCDF-4 file and the variables that records go to. Everything is borrowed. */
 typedef struct {
@@ -18,7 +19,16 @@ typedef struct {
     int *fraction;                 /* [solved] variable ids, set by layout_define */
     int *course; /* [solved] variable ids of the mole fractions by time of day, -1 for a species without; NULL
                     when the case does not ask for them. Set by layout_moments; owner: archive */
+    OxBook *book;                  /* NULL: the mechanism has no odd oxygen and the file no budget */
+    int term[BUDGET_TERMS + 1];    /* variable ids of the odd-oxygen budget, the net last */
+    int *lifetime;                 /* [solved] variable ids, -1 for a gas that is no source gas */
+    double *budget;                /* [BUDGET_TERMS + 1][padded] work */
 } Layout;
+
+/* A variable with its attributes; NULL: left out. */
+typedef struct {
+    const char *name, *units, *standard, *longer, *methods;
+} Description;
 
 /* Define everything in a new file and write what does not change with time. FAULT_INPUT when two species
  * would have the same variable name, or when SOURCE_DATE_EPOCH is no number. */
@@ -31,7 +41,19 @@ int layout_moments(Layout *out, int time, int altitude, Fault *fault);
 int layout_put_moments(const Layout *out, size_t record, const double *moments, Fault *fault);
 /* Counts of the run and the ledger of Cl, Br, N, H (atoms cm-2) as global attributes. */
 int layout_summary(const Layout *out, const Column *column, Fault *fault);
+/* Define one variable of doubles. chunk [dimensions] or NULL: the library's choice. */
+int layout_variable(const Layout *out, const Description *description, int dimensions, const int *dimension,
+                    const size_t *chunk, int *variable, Fault *fault);
 /* A NetCDF status as a fault (0 when it is none): "path: cannot write what: ...". */
 int layout_fault(const char *path, int status, const char *what, Fault *fault);
+
+/* ---- archive_budget.c: the budget of odd oxygen and the lifetimes ---- */
+
+/* Number of variables layout_budget_define makes. */
+size_t layout_budget_variables(const Layout *out);
+/* Define them (time, altitude: dimension ids); nothing when book is NULL. */
+int layout_budget_define(Layout *out, int time, int altitude, size_t time_chunk, Fault *fault);
+/* Write those of one record; nothing when book or record->rate is NULL. A NetCDF status. */
+int layout_budget_put(const Layout *out, size_t index, const Record *record);
 
 #endif

@@ -28,8 +28,8 @@ static const struct {
 
 const char *budget_term_name(int term)
 {
-    static const char *const names[BUDGET_TERMS] = {"O2 photolysis", "oxidation", "other", "Ox",
-                                                    "HOx",           "NOx",       "ClOx",  "BrOx"};
+    static const char *const names[BUDGET_TERMS] = {"O2 photolysis", "oxidation", "other", "Ox",     "HOx",
+                                                    "NOx",           "ClOx",      "BrOx",  "washout"};
     return names[term];
 }
 
@@ -70,6 +70,11 @@ static int family(const Mechanism *mechanism, const Reaction *reaction)
                                               : BUDGET_OX;
 }
 
+static int loss(const Mechanism *mechanism, const Reaction *reaction)
+{
+    return reaction->kind == REACTION_WASHOUT ? BUDGET_WASHOUT : family(mechanism, reaction);
+}
+
 static int production(const Mechanism *mechanism, const Reaction *reaction, int nitric_oxide)
 {
     if (reaction->special == SPECIAL_O2 || reaction->special == SPECIAL_O2_O1D)
@@ -90,7 +95,7 @@ static void count_reactions(OxBook *book)
         for (int c = 0; c < reaction->changes; c++)
             weight += reaction->change[c] * book->content[reaction->changed[c]];
         book->weight[r] = weight;
-        book->term[r] = weight < 0.0   ? family(mechanism, reaction)
+        book->term[r] = weight < 0.0   ? loss(mechanism, reaction)
                         : weight > 0.0 ? production(mechanism, reaction, nitric_oxide)
                                        : -1;
         if (peroxy < 0 || change_of(reaction, peroxy) == 0.0 ||
@@ -104,16 +109,26 @@ static void count_reactions(OxBook *book)
     }
 }
 
+int ox_book_possible(const Mechanism *mechanism, const char **missing)
+{
+    const char *lacks = "photolysis of O2 (special = \"O2\")";
+    for (int r = 0; r < mechanism->reactions; r++)
+        if (mechanism->reaction[r].special == SPECIAL_O2)
+            lacks = NULL;
+    if (mechanism_solved(mechanism, "O3") < 0)
+        lacks = "active species O3";
+    if (missing)
+        *missing = lacks;
+    return lacks == NULL;
+}
+
 int ox_book_make(OxBook **made, const Mechanism *mechanism, Fault *fault)
 {
     *made = NULL;
-    int oxygen = 0;
-    for (int r = 0; r < mechanism->reactions; r++)
-        oxygen += mechanism->reaction[r].special == SPECIAL_O2;
-    if (mechanism_solved(mechanism, "O3") < 0 || !oxygen)
+    const char *missing;
+    if (!ox_book_possible(mechanism, &missing))
         return fault_at(fault, mechanism->path ? mechanism->path : "mechanism", 0,
-                        "no %s: there is no budget of odd oxygen without; add it",
-                        oxygen ? "active species O3" : "photolysis of O2 (special = \"O2\")");
+                        "no %s: there is no budget of odd oxygen without; add it", missing);
     OxBook *book = calloc(1, sizeof *book);
     if (!book)
         return fault_memory(fault, "the budget of odd oxygen");
@@ -239,20 +254,20 @@ void budget_chain_lengths(const OxBook *book, const Grid *grid, const double *ra
 {
     const Mechanism *mechanism = book->mechanism;
     int padded = grid->padded;
-    for (int f = 0; f < BUDGET_FAMILIES; f++) {
-        double *lost = chain + FIELD(padded, f, 0);
+    for (int t = 0; t < BUDGET_TERMS; t++) {
+        double *lost = chain + FIELD(padded, t, 0);
         memset(lost, 0, (size_t)padded * sizeof(double));
         for (int r = 0; r < mechanism->reactions; r++) {
             double change = 0.0;
             for (size_t i = 0; i < sizeof radicals / sizeof *radicals; i++) {
                 int s = mechanism_solved(mechanism, radicals[i].species);
-                if (s >= 0 && radicals[i].term == BUDGET_LOSS_FIRST + f)
+                if (s >= 0 && radicals[i].term == t)
                     change += radicals[i].count * change_of(&mechanism->reaction[r], s);
             }
             for (int l = 0; change < 0.0 && l < padded; l++)
                 lost[l] -= change * rate[FIELD(padded, r, l)];
         }
         for (int l = 0; l < padded; l++)
-            lost[l] = lost[l] > 0.0 ? 0.5 * term[FIELD(padded, BUDGET_LOSS_FIRST + f, l)] / lost[l] : NAN;
+            lost[l] = lost[l] > 0.0 ? 0.5 * term[FIELD(padded, t, l)] / lost[l] : NAN;
     }
 }

@@ -47,10 +47,10 @@ enum BudgetTerm {
     BUDGET_NOX,
     BUDGET_CLOX,
     BUDGET_BROX,
+    BUDGET_WASHOUT, /* of reservoirs that hold Ox, below the tropopause; no catalytic family */
     BUDGET_TERMS
 };
 #define BUDGET_LOSS_FIRST BUDGET_OX
-#define BUDGET_FAMILIES (BUDGET_TERMS - BUDGET_LOSS_FIRST)
 
 /* "Ox", "HOx", ... of a loss; "O2 photolysis", "oxidation", "other" of a production. */
 const char *budget_term_name(int term);
@@ -67,7 +67,10 @@ typedef struct {
     int *fate_null;             /* [reactions] 1: HO2 + NO */
 } OxBook;
 
-/* FAULT_INPUT naming the mechanism's file when it has no O3 or no photolysis of O2. Owner: caller. */
+/* 1 when a mechanism has what a budget of Ox needs: O3 and the photolysis of O2. Otherwise *missing, where
+ * that is not NULL, says what it lacks. */
+int ox_book_possible(const Mechanism *mechanism, const char **missing);
+/* FAULT_INPUT naming the mechanism's file when it is not possible. Owner: caller. */
 int ox_book_make(OxBook **made, const Mechanism *mechanism, Fault *fault);
 void ox_book_free(OxBook *book);
 
@@ -83,10 +86,10 @@ void budget_step_rates(const Model *model, const Stepper *stepper, const double 
  * and, where HO2 is far from balance or the mole fractions are negative, single terms. */
 void budget_odd_oxygen(const OxBook *book, const Grid *grid, const double *rate, double *term, double *net);
 
-/* Chain lengths [BUDGET_FAMILIES][padded] out: the Ox that a family destroys, in pairs, for each of its
- * radicals that is lost to a reservoir or another family, gross. Radicals: H, OH, HO2; N, NO, NO2, NO3; Cl,
- * ClO, OClO, ClOO, 2 Cl2O2, 2 Cl2, BrCl; Br, BrO, 2 Br2, BrCl. NAN for Ox, which has none, and where no
- * radical is lost. term as from budget_odd_oxygen. */
+/* Chain lengths [BUDGET_TERMS][padded] out: the Ox that a family destroys, in pairs, for each of its radicals
+ * that is lost to a reservoir or another family, gross. Radicals: H, OH, HO2; N, NO, NO2, NO3; Cl, ClO, OClO,
+ * ClOO, 2 Cl2O2, 2 Cl2, BrCl; Br, BrO, 2 Br2, BrCl. NAN in the rows of terms other than HOx, NOx, ClOx, BrOx,
+ * which have none, and where no radical is lost. term as from budget_odd_oxygen. */
 void budget_chain_lengths(const OxBook *book, const Grid *grid, const double *rate, const double *term,
                           double *chain);
 
@@ -100,6 +103,9 @@ const char *budget_total_name(int total); /* "HOx", "NOy", ... */
 int budget_member(const Mechanism *mechanism, int total, int solved);
 /* Sum over the members, mole fraction [layers] out. */
 void budget_total(const Model *model, const double *x, int total, double *sum);
+
+/* Atoms of an element in the active species, cm-2: all, and those in source gases (with carbon, and N2O). */
+void budget_atoms(const Model *model, const double *x, int element, double *all, double *sources);
 
 enum GasLoss {
     LOSS_PHOTOLYSIS,

@@ -38,6 +38,21 @@ void budget_total(const Model *model, const double *x, int total, double *sum)
     }
 }
 
+void budget_atoms(const Model *model, const double *x, int element, double *all, double *sources)
+{
+    const Mechanism *mechanism = model->mechanism;
+    int carbon = mechanism_element(mechanism, "C");
+    *all = *sources = 0.0;
+    for (int s = 0; s < mechanism->solved; s++) {
+        int count = mechanism_atoms(mechanism, s, element);
+        double atoms = count ? count * column_burden(model, x, s) : 0.0;
+        *all += atoms;
+        if ((carbon >= 0 && mechanism_atoms(mechanism, s, carbon)) ||
+            !strcmp(mechanism_name(mechanism, s), "N2O"))
+            *sources += atoms;
+    }
+}
+
 /* ---- lifetimes ---- */
 
 const char *budget_loss_name(int loss)

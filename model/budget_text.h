@@ -12,19 +12,23 @@
 typedef struct {
     const Model *model;
     const OxBook *book;
-    const double *x;            /* [solved][padded] */
-    const double *term, *net;   /* [BUDGET_TERMS][padded], [padded] as from budget_odd_oxygen */
-    const double *chain;        /* [BUDGET_FAMILIES][padded] */
-    const GasBudget *gas;       /* [solved]; those of budget_is_source are shown */
-    double year, years, drift;  /* conditions; years carried and DU moved in the last of them (NAN: unknown) */
-    int altitudes;              /* number of */
-    double km[BUDGET_ALTITUDES]; /* shown in tables and JSON; CSV holds every layer */
+    const double *x;           /* [solved][padded] */
+    const double *term, *net;  /* [BUDGET_TERMS][padded], [padded] as from budget_odd_oxygen */
+    const double *chain;       /* [BUDGET_TERMS][padded] */
+    const GasBudget *gas;      /* [solved]; those of budget_is_source are shown */
+    double year, years, drift; /* conditions; years carried and DU moved in the last of them (NAN: unknown) */
+    int altitudes;             /* number of */
+    double km[BUDGET_ALTITUDES]; /* shown in the tables; CSV and JSON hold every layer */
 } BudgetView;
 
 void budget_print(const BudgetView *view, FILE *out);
 /* The reactions that count, with weight, by family. */
 void budget_print_book(const BudgetView *view, FILE *out);
-/* Tidy: table,name,part,altitude_km,value,unit; altitude_km empty where the value is of the whole column. */
+
+/* ---- budget_files.c ---- */
+
+/* Tidy: table,name,part,altitude_km,value,unit; altitude_km empty where the value is of the whole column,
+ * value empty where there is none. */
 void budget_csv(const BudgetView *view, FILE *out);
 /* RFC 8259; null for what is not a number. */
 void budget_json(const BudgetView *view, FILE *out);

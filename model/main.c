@@ -16,6 +16,7 @@ static const struct {
     {"project", command_project, "run a case through its years; write the file, print the answers"},
     {"check", command_check, "read everything a case names, print the resolved case, run nothing"},
     {"sunlight", command_sunlight, "print photolysis rates by altitude, as CSV"},
+    {"budget", command_budget, "what makes and destroys ozone, by catalytic family; how long gases live"},
     {"answers", command_answers, "print the table of answers of a finished or interrupted file"},
 };
 enum { VERBS = sizeof verbs / sizeof verbs[0] };

@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "../input/constants.h"
+#include "budget.h"
 
 static int stopped(const Watcher *watcher)
 {
@@ -57,51 +58,67 @@ int projection_spin_up(const Model *model, Stepper *stepper, Column *column, dou
     return 0;
 }
 
-/* Sums over an output interval. */
+/* Sums over the steps of an interval, then its means. */
 typedef struct {
-    size_t field;    /* solved * padded */
-    double *x;       /* [field] */
-    double *moments; /* [MOMENTS][field]; NULL when the case does not ask for them */
-    double *now;     /* [MOMENTS][field] work */
+    size_t field, rates, moments; /* numbers in x, in rate, in course */
+    double *x;                    /* [solved][padded] mole fractions */
+    double *rate;                 /* [reactions][padded] rates of reaction, cm-3 s-1 */
+    double *course; /* [MOMENTS][solved][padded] by time of day; NULL when the case does not ask for them */
+    double *step_rate, *step_course; /* those of one step */
     double *block;
-} Sums;
+} Means;
 
-static int sums_make(Sums *sums, const Model *model, Fault *fault)
+static int means_make(Means *means, const Model *model, Fault *fault)
 {
-    size_t field = (size_t)model->mechanism->solved * (size_t)model->grid.padded;
-    int moments = model->settings.moments != MOMENTS_NONE;
-    *sums =
-        (Sums){.field = field, .block = malloc((1 + (moments ? 2 * MOMENTS : 0)) * field * sizeof(double))};
-    if (!sums->block)
+    size_t padded = (size_t)model->grid.padded;
+    means->field = (size_t)model->mechanism->solved * padded;
+    means->rates = (size_t)model->mechanism->reactions * padded;
+    means->moments = model->settings.moments == MOMENTS_NONE ? 0 : MOMENTS * means->field;
+    means->block = malloc((means->field + 2 * means->rates + 2 * means->moments) * sizeof(double));
+    if (!means->block)
         return fault_memory(fault, "means of an interval");
-    sums->x = sums->block;
-    sums->moments = moments ? sums->block + field : NULL;
-    sums->now = moments ? sums->moments + MOMENTS * field : NULL;
+    means->x = means->block;
+    means->rate = means->x + means->field;
+    means->step_rate = means->rate + means->rates;
+    means->course = means->moments ? means->step_rate + means->rates : NULL;
+    means->step_course = means->moments ? means->course + means->moments : NULL;
     return 0;
+}
+
+static void add(double *sum, const double *part, size_t count)
+{
+    for (size_t i = 0; i < count; i++)
+        sum[i] += part[i];
+}
+
+static void divide(double *sum, size_t count, double by)
+{
+    for (size_t i = 0; i < count; i++)
+        sum[i] /= by;
 }
 
 /* One output interval: advance and average. */
 static int run_interval(const Model *model, Stepper *stepper, Column *column, double start, double end,
-                        double share_before, double share_after, Sums *sums, const Watcher *watcher,
+                        double share_before, double share_after, const Means *means, const Watcher *watcher,
                         Fault *fault)
 {
-    size_t field = sums->field;
-    double step, *sum = sums->x;
+    double step;
     long steps = plan_steps(model, start, end - start, &step);
-    memset(sum, 0, field * sizeof(double));
-    if (sums->moments)
-        memset(sums->moments, 0, MOMENTS * field * sizeof(double));
+    memset(means->x, 0, means->field * sizeof(double));
+    memset(means->rate, 0, means->rates * sizeof(double));
+    if (means->course)
+        memset(means->course, 0, means->moments * sizeof(double));
     for (long i = 0; i < steps; i++) {
         int code = stepper_advance(stepper, column, step, 0, fault);
         if (code)
             return code;
         const double *mean = stepper_mean(stepper);
-        for (size_t j = 0; j < field; j++)
-            sum[j] += mean[j];
-        if (sums->moments)
-            stepper_moments(stepper, sums->now);
-        for (size_t j = 0; sums->moments && j < MOMENTS * field; j++)
-            sums->moments[j] += sums->now[j];
+        add(means->x, mean, means->field);
+        budget_step_rates(model, stepper, mean, means->step_rate);
+        add(means->rate, means->step_rate, means->rates);
+        if (means->course)
+            stepper_moments(stepper, means->step_course);
+        add(means->course, means->step_course, means->moments);
         tell(model, column, watcher, 0,
              share_before + (share_after - share_before) * (double)(i + 1) / (double)steps);
         if (stopped(watcher))
@@ -109,22 +126,27 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
                              "interrupted in %.0f; every interval before it is complete",
                              floor(column->time));
     }
-    for (size_t j = 0; j < field; j++)
-        sum[j] /= (double)steps;
-    for (size_t j = 0; sums->moments && j < MOMENTS * field; j++)
-        sums->moments[j] /= (double)steps;
+    divide(means->x, means->field, (double)steps);
+    divide(means->rate, means->rates, (double)steps);
+    divide(means->course, means->moments, (double)steps);
     column->time = end; /* no drift from adding steps */
     if (!watcher->record)
         return 0;
-    Record record = {0.5 * (start + end), start, end, sum, column_ozone_du(model, sum), sums->moments};
+    Record record = {.time = 0.5 * (start + end),
+                     .time_start = start,
+                     .time_end = end,
+                     .x = means->x,
+                     .ozone_column = column_ozone_du(model, means->x),
+                     .moments = means->course,
+                     .rate = means->rate};
     return watcher->record(watcher->context, &record, fault);
 }
 
 int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher, Fault *fault)
 {
     const Settings *settings = &model->settings;
-    Sums sums;
-    if (sums_make(&sums, model, fault))
+    Means means = {0};
+    if (means_make(&means, model, fault))
         return fault->code;
     int years = settings->last_year - settings->first_year + 1, per_year = settings->outputs_per_year;
     double whole = settings->spinup_years + years, spin_share = settings->spinup_years / whole;
@@ -136,8 +158,8 @@ int projection_run(const Model *model, Stepper *stepper, Column *column, const W
                end = settings->first_year + (double)(i + 1) / per_year;
         double before = spin_share + (1.0 - spin_share) * (double)i / (double)intervals;
         double after = spin_share + (1.0 - spin_share) * (double)(i + 1) / (double)intervals;
-        code = run_interval(model, stepper, column, start, end, before, after, &sums, watcher, fault);
+        code = run_interval(model, stepper, column, start, end, before, after, &means, watcher, fault);
     }
-    free(sums.block);
+    free(means.block);
     return code;
 }

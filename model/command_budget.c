@@ -1,0 +1,311 @@
+/* skymend budget: what makes and destroys ozone in one year of a case, and how long the gases live. */
+#include <errno.h>
+#include <getopt.h>
+#include <math.h>
+#include <omp.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <unistd.h>
+
+#include "balance.h"
+#include "budget_text.h"
+#include "commands.h"
+#include "progress.h"
+
+typedef struct {
+    const char *case_path, *csv, *json, *archive;
+    double year, years;
+    int year_given, overwrite, quiet, threads, book, help;
+    int altitudes;
+    double km[BUDGET_ALTITUDES];
+    char command_line[2000];
+} Request;
+
+static void print_help(void)
+{
+    printf(
+        "usage: skymend budget [CASE.cfg] --year Y [options]\n\n"
+        "Brings the column of a case to balance with the surface values of the middle of year Y and prints\n"
+        "what makes and destroys odd oxygen by catalytic family, what the families are made of, and how "
+        "long\n"
+        "the source gases live. Without a case: the built-in baseline.\n\n"
+        "      --year Y          the year whose surface values and light count\n"
+        "      --years N         carry the column for N years to bring it to balance (default 40)\n"
+        "      --at KM[,KM...]   altitudes of the tables (default 15,20,...,60); may be repeated\n"
+        "      --reactions       also print which reaction counts for which family, and its weight\n"
+        "      --csv FILE        everything by layer, in tidy form: table,name,part,altitude_km,value,unit\n"
+        "      --json FILE       the same as JSON\n"
+        "  -o, --output FILE.nc  the state with its budget as a NetCDF file of one record\n"
+        "      --overwrite       replace files that are there\n"
+        "      --threads N       threads to use (default: OMP_NUM_THREADS or all); results do not depend on "
+        "it\n"
+        "      --quiet           no progress, no tables\n"
+        "  -h, --help            this text\n");
+}
+
+static int read_altitudes(Request *request, const char *text, Fault *fault)
+{
+    char copy[400];
+    if (strlen(text) >= sizeof copy)
+        return fault_set(fault, FAULT_INPUT, "--at: more than %zu characters; repeat the option instead",
+                         sizeof copy - 1);
+    strcpy(copy, text);
+    for (char *at = copy, *next; at; at = next) {
+        next = strchr(at, ',');
+        if (next)
+            *next++ = '\0';
+        if (request->altitudes == BUDGET_ALTITUDES)
+            return fault_set(fault, FAULT_INPUT, "--at: more than %d altitudes; name fewer",
+                             BUDGET_ALTITUDES);
+        if (option_number("--at", at, 0, 200, &request->km[request->altitudes], fault))
+            return fault->code;
+        request->altitudes++;
+    }
+    return 0;
+}
+
+static int whole(const char *option, const char *text, double low, double high, double *value, Fault *fault)
+{
+    if (option_number(option, text, low, high, value, fault))
+        return fault->code;
+    return *value == floor(*value)
+               ? 0
+               : fault_set(fault, FAULT_INPUT, "%s: %s is no whole number; give one like %g", option, text,
+                           floor(*value));
+}
+
+static int take_option(Request *request, int found, Fault *fault)
+{
+    double value;
+    switch (found) {
+    case 'o': request->archive = optarg; break;
+    case 'c': request->csv = optarg; break;
+    case 'j': request->json = optarg; break;
+    case 'w': request->overwrite = 1; break;
+    case 'q': request->quiet = 1; break;
+    case 'r': request->book = 1; break;
+    case 'h': request->help = 1; break;
+    case 'a': return read_altitudes(request, optarg, fault);
+    case 'y': request->year_given = 1; return whole("--year", optarg, 1750, 2500, &request->year, fault);
+    case 'n': return option_number("--years", optarg, 0.1, 1000, &request->years, fault);
+    case 't':
+        if (!whole("--threads", optarg, 1, 1024, &value, fault))
+            request->threads = (int)value;
+        return fault->code;
+    }
+    return 0;
+}
+
+static int read_request(Request *request, int argc, char **argv, Fault *fault)
+{
+    static const struct option options[] = {
+        {"year", required_argument, NULL, 'y'},   {"years", required_argument, NULL, 'n'},
+        {"at", required_argument, NULL, 'a'},     {"reactions", no_argument, NULL, 'r'},
+        {"csv", required_argument, NULL, 'c'},    {"json", required_argument, NULL, 'j'},
+        {"output", required_argument, NULL, 'o'}, {"overwrite", no_argument, NULL, 'w'},
+        {"quiet", no_argument, NULL, 'q'},        {"threads", required_argument, NULL, 't'},
+        {"help", no_argument, NULL, 'h'},         {NULL, 0, NULL, 0}};
+    static const char *const names[] = {"--year",  "--years",   "--at",     "--reactions",
+                                        "--csv",   "--json",    "--output", "--overwrite",
+                                        "--quiet", "--threads", "--help",   NULL};
+    size_t used = (size_t)snprintf(request->command_line, sizeof request->command_line, "skymend");
+    for (int i = 0; i < argc && used < sizeof request->command_line; i++)
+        used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s",
+                                 argv[i]);
+    int found, before = 1;
+    opterr = 0;
+    optind = 1;
+    while ((found = getopt_long(argc, argv, ":o:h", options, NULL)) != -1) {
+        if (found == ':' || found == '?')
+            return option_fault("budget", argv, optind > before ? optind - 1 : before, found, names, fault);
+        if (take_option(request, found, fault))
+            return fault->code;
+        before = optind;
+    }
+    if (request->help || one_operand("budget", argc, argv, optind, &request->case_path, fault))
+        return fault->code;
+    if (!request->year_given)
+        return fault_set(fault, FAULT_INPUT, "budget: no year named; add --year Y");
+    int given = request->altitudes;
+    for (int km = 15; !given && km <= 60; km += 5)
+        request->km[request->altitudes++] = km;
+    return 0;
+}
+
+static int check_altitudes(const Request *request, const Model *model, Fault *fault)
+{
+    double top = 1e-5 * model->grid.edge[model->grid.layers];
+    for (int i = 0; i < request->altitudes; i++)
+        if (request->km[i] > top)
+            return fault_set(fault, FAULT_INPUT, "--at: %g km is above the grid's top at %g km; stay below",
+                             request->km[i], top);
+    return 0;
+}
+
+/* ---- files ---- */
+
+/* Told before the long work begins, not after it. */
+static int check_free(const char *path, int overwrite, Fault *fault)
+{
+    if (path && !overwrite && access(path, F_OK) == 0)
+        return fault_set(fault, FAULT_INPUT, "%s exists already: choose another name, or add --overwrite",
+                         path);
+    return 0;
+}
+
+static int write_text(const char *path, int overwrite, const BudgetView *view,
+                      void (*write)(const BudgetView *, FILE *), Fault *fault)
+{
+    FILE *out = fopen(path, overwrite ? "w" : "wx");
+    if (!out)
+        return fault_set(fault, FAULT_OUTPUT,
+                         "%s: cannot create the file: %s; choose a place that can be written", path,
+                         strerror(errno));
+    write(view, out);
+    int bad = ferror(out);
+    if (fclose(out) || bad)
+        return fault_set(fault, FAULT_OUTPUT, "%s: could not be written to its end; free some space", path);
+    return 0;
+}
+
+static int write_archive(const Request *request, const Balance *balance, const BudgetView *view,
+                         const double *rate, Fault *fault)
+{
+    Archive *archive;
+    const Record record = {.time = view->year,
+                           .time_start = request->year,
+                           .time_end = request->year + 1.0,
+                           .x = view->x,
+                           .ozone_column = column_ozone_du(view->model, view->x),
+                           .rate = rate};
+    if (archive_create(&archive, view->model, request->archive, request->overwrite, request->command_line,
+                       fault))
+        return fault->code;
+    if (archive_append(archive, &record, fault)) {
+        archive_abandon(archive);
+        return fault->code;
+    }
+    return archive_close(archive, balance->column, fault);
+}
+
+static int put_out(const Request *request, const Balance *balance, const BudgetView *view, const double *rate,
+                   Fault *fault)
+{
+    if (request->csv && write_text(request->csv, request->overwrite, view, budget_csv, fault))
+        return fault->code;
+    if (request->json && write_text(request->json, request->overwrite, view, budget_json, fault))
+        return fault->code;
+    if (request->archive && write_archive(request, balance, view, rate, fault))
+        return fault->code;
+    if (request->quiet)
+        return 0;
+    budget_print(view, stdout);
+    if (request->book) {
+        printf("\n");
+        budget_print_book(view, stdout);
+    }
+    return 0;
+}
+
+/* ---- the run ---- */
+
+static void show_progress(void *context, const Progress *progress)
+{
+    progress_show(context, progress);
+}
+
+/* The state whose budget is taken: the column in balance with the middle of the year. */
+static int get_state(const Request *request, const Model *model, Balance *balance, Fault *fault)
+{
+    ProgressBar bar;
+    const Watcher watcher = {.progress = show_progress, .context = &bar};
+    progress_open(&bar, request->quiet);
+    int code = balance_make(balance, model, NULL, request->year + 0.5, request->years, request->threads,
+                            &watcher, fault);
+    progress_close(&bar);
+    return code;
+}
+
+/* Budget of the state, and everything written. */
+static int account(const Request *request, const Model *model, const Balance *balance, const OxBook *book,
+                   Fault *fault)
+{
+    size_t padded = (size_t)model->grid.padded, solved = (size_t)model->mechanism->solved;
+    double *rate = calloc((size_t)model->mechanism->reactions * padded, sizeof(double));
+    double *field = calloc((2 * BUDGET_TERMS + 1) * padded, sizeof(double));
+    GasBudget *gas = calloc(solved, sizeof *gas);
+    int code = rate && field && gas ? 0 : fault_memory(fault, "the budget");
+    if (!code) {
+        double *net = field + BUDGET_TERMS * padded, *chain = net + padded;
+        BudgetView view = {.model = model,
+                           .book = book,
+                           .x = balance->column->x,
+                           .term = field,
+                           .net = net,
+                           .chain = chain,
+                           .gas = gas,
+                           .year = request->year + 0.5,
+                           .years = request->years,
+                           .drift = balance->drift,
+                           .altitudes = request->altitudes};
+        memcpy(view.km, request->km, sizeof view.km);
+        budget_step_rates(model, balance->stepper, view.x, rate);
+        budget_odd_oxygen(book, &model->grid, rate, field, net);
+        budget_chain_lengths(book, &model->grid, rate, field, chain);
+        for (int s = 0; s < (int)solved; s++)
+            budget_gas(model, view.x, rate, s, &gas[s]);
+        code = put_out(request, balance, &view, rate, fault);
+    }
+    free(rate);
+    free(field);
+    free(gas);
+    return code;
+}
+
+static int run(const Request *request, Fault *fault)
+{
+    Settings *settings = malloc(sizeof *settings);
+    Model *model = NULL;
+    OxBook *book = NULL;
+    Balance balance = {0};
+    if (!settings)
+        return fault_memory(fault, "settings");
+    int code = load_case(settings, request->case_path, fault);
+    settings->first_year = settings->last_year = (int)request->year;
+    if (!code)
+        code = model_make(&model, settings, fault);
+    if (!code)
+        code = check_altitudes(request, model, fault);
+    if (!code)
+        code = ox_book_make(&book, model->mechanism, fault);
+    if (!code && (check_free(request->csv, request->overwrite, fault) ||
+                  check_free(request->json, request->overwrite, fault) ||
+                  check_free(request->archive, request->overwrite, fault)))
+        code = fault->code;
+    if (!code && request->threads)
+        omp_set_num_threads(request->threads);
+    if (!code)
+        code = get_state(request, model, &balance, fault);
+    if (!code)
+        code = account(request, model, &balance, book, fault);
+    balance_free(&balance);
+    ox_book_free(book);
+    model_free(model);
+    free(settings);
+    return code;
+}
+
+int command_budget(int argc, char **argv)
+{
+    Request request = {.years = 40.0};
+    Fault fault = {0};
+    int code = read_request(&request, argc, argv, &fault);
+    if (!code && request.help) {
+        print_help();
+        return 0;
+    }
+    if (!code)
+        code = run(&request, &fault);
+    return code ? report_fault(&fault) : 0;
+}
