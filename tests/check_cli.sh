@@ -131,10 +131,10 @@ run "$SKYMEND" --version
 well "version"
 run "$SKYMEND" --help
 well "help"
-for verb in project check sunlight answers; do
+for verb in project check sunlight answers budget; do
     truth "help names $verb" grep -qw "$verb" output
 done
-for verb in project check sunlight answers; do
+for verb in project check sunlight answers budget; do
     run "$SKYMEND" $verb --help
     well "help of $verb"
 done

@@ -100,8 +100,16 @@ with xr.open_dataset(sys.argv[1]) as data:
     fields = [v for v in data.data_vars.values() if v.dims == ("time", "altitude")]
     assert fields, "no mole fractions"
     for field in fields:
+        unit = "cm-3 s-1" if field.name.startswith("odd_oxygen_") else "mol mol-1"
         assert np.isfinite(field.values).all(), f"{field.name} has missing or non-finite values"
-        assert field.attrs["units"] == "mol mol-1" and field.attrs["long_name"], field.name
+        assert field.attrs["units"] == unit and field.attrs["long_name"], field.name
+    if "odd_oxygen_net_source" in data:  # the books of odd oxygen close in the file
+        sign = {"production": 1.0, "loss": -1.0}
+        parts = {f.name: sign[f.name.split("_")[2]] * f.values for f in fields if "_by_" in f.name}
+        gross = sum(np.abs(part) for part in parts.values())
+        left = sum(parts.values()) - data["odd_oxygen_net_source"].values
+        assert len(parts) == 9 and (np.abs(left) <= 1e-12 * gross).all(), "odd oxygen does not close"
+        assert data["lifetime_N2O"].attrs["units"] == "year" and (data["lifetime_N2O"] > 10.0).all(), "lifetime"
     column = data["ozone_column"]
     assert column.dims == ("time",) and np.isfinite(column.values).all(), "ozone_column"
     assert ((column > 1.0) & (column < 2000.0)).all(), "ozone_column is not in DU"
