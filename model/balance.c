@@ -38,3 +38,8 @@ void balance_free(Balance *balance)
     column_free(balance->column);
     *balance = (Balance){0};
 }
+
+const double *balance_means(const Balance *balance, const Model *model)
+{
+    return model->settings.day == DAY_EXPLICIT ? stepper_mean(balance->stepper) : balance->column->x;
+}

@@ -17,5 +17,8 @@ typedef struct {
 int balance_make(Balance *balance, const Model *model, const double *x, double time, double years,
                  int threads, const Watcher *watcher, Fault *fault);
 void balance_free(Balance *balance);
+/* Daily means of the state, [solved][padded]: column->x, or with explicit days the mean of the last of them.
+ */
+const double *balance_means(const Balance *balance, const Model *model);
 
 #endif

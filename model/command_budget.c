@@ -240,7 +240,7 @@ static int account(const Request *request, const Model *model, const Balance *ba
         double *net = field + BUDGET_TERMS * padded, *chain = net + padded;
         BudgetView view = {.model = model,
                            .book = book,
-                           .x = balance->column->x,
+                           .x = balance_means(balance, model),
                            .term = field,
                            .net = net,
                            .chain = chain,

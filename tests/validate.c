@@ -293,8 +293,8 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
         code = balance_make(&balance, model, run_fields(run, STEADY_YEAR), STEADY_YEAR + 0.5, STEADY_YEARS, 0,
                             &nobody, fault);
     if (!code) {
-        const Evidence evidence = {run, &balance, rate, term};
-        budget_step_rates(model, balance.stepper, balance.column->x, rate);
+        const Evidence evidence = {run, balance_means(&balance, model), rate, term};
+        budget_step_rates(model, balance.stepper, evidence.x, rate);
         budget_odd_oxygen(book, &model->grid, rate, term, term + BUDGET_TERMS * padded);
         for (int t = 0; !code && t < TABLES; t++)
             code = judge(&tables[t], reasons, &evidence, fault);

@@ -38,10 +38,11 @@ double run_column(const Run *run, int first, int last);
 /* ---- validate_rows.c: the published values ---- */
 
 typedef struct {
-    const Run *run;         /* the baseline, all years */
-    const Balance *balance; /* the same column in balance with the surface values of STEADY_YEAR */
-    const double *rate;     /* [reactions][padded] rates of reaction of that balance, cm-3 s-1 */
-    const double *term;     /* [BUDGET_TERMS][padded] its budget of odd oxygen, cm-3 s-1 */
+    const Run *run; /* the baseline, all years */
+    /* the same column in balance with the surface values of STEADY_YEAR: */
+    const double *x;    /* [solved][padded] mole fractions, daily means */
+    const double *rate; /* [reactions][padded] rates of reaction, cm-3 s-1 */
+    const double *term; /* [BUDGET_TERMS][padded] its budget of odd oxygen, cm-3 s-1 */
 } Evidence;
 
 #define STEADY_YEAR 2000 /* the conditions of the published lifetimes (SPARC Report 6, 2013) */

@@ -138,7 +138,7 @@ static int lifetime(const Ask *ask, double *value)
     GasBudget budget;
     if (solved(ask, gas, &species))
         return ask->fault->code;
-    budget_gas(ask->model, ask->evidence->balance->column->x, ask->evidence->rate, species, &budget);
+    budget_gas(ask->model, ask->evidence->x, ask->evidence->rate, species, &budget);
     *value = budget_lifetime(&budget, aloft ? budget.aloft : budget.loss, GAS_LOSSES);
     if (!isfinite(*value))
         return fault_set(ask->fault, FAULT_NUMERICS, "%s: %s is not lost", ask->id, gas);
@@ -159,7 +159,7 @@ static int slope(const Ask *ask, double *value)
                 {"slope-Cly-N2O", "N2O", TOTAL_CLY, NULL, 150e-9, 300e-9},
                 {"slope-CFC-11-CFC-12", "CFC-12", 0, "CFC-11", 0.85, 0.99}}; /* of its value at the ground */
     double y[SETTINGS_MAX_EDGES];
-    const double *x = ask->evidence->balance->column->x;
+    const double *x = ask->evidence->x;
     int padded = ask->model->grid.padded;
     for (size_t i = 0; i < sizeof rows / sizeof rows[0]; i++) {
         int species, other = -1;
