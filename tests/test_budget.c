@@ -469,7 +469,7 @@ static void test_order(void **state)
     assert_true(clox > 0.15 && clox < 0.35);
     assert_true(clox > share(model, term, BUDGET_CLOX, 30.0) && clox > share(model, term, BUDGET_CLOX, 50.0));
     /* all other production is a correction (most of it OH + HNO3; 2.5 % at 20 km when this was written);
-     * ozone is in balance with its light at 45 km, where it lives a day */
+     * ozone is in balance with its light at 45 km, where it lives a day, but for what diffusion carries */
     for (double km = 20.0; km <= 60.0; km += 2.0) {
         double at[3];
         for (int t = 0; t < 3; t++)
@@ -477,7 +477,9 @@ static void test_order(void **state)
         if (!(at[BUDGET_OTHER] < 0.04 * (at[0] + at[1] + at[2])) || !(at[BUDGET_OTHER] > 0.0))
             fail_msg("%g km: other production %g of %g", km, at[BUDGET_OTHER], at[0] + at[1] + at[2]);
     }
-    assert_true(fabs(budget_at_km(model, net, 45.0)) < 0.01 * budget_at_km(model, term, 45.0));
+    double gives = budget_at_km(model, net, 45.0) / budget_at_km(model, term, 45.0);
+    print_message("   net source at 45 km: %.2f %% of the production\n", 100.0 * gives);
+    assert_true(fabs(gives) < 0.03);
     free(rate);
     free(term);
     free(net);

@@ -65,29 +65,6 @@ static int read_named(Csv *csv, const char *path, const char *const *names, size
     return fault->code;
 }
 
-/* The rows of more behind those of csv, which borrows their text: more must outlive it. */
-static int add_rows(Csv *csv, const Csv *more, Fault *fault)
-{
-    size_t cells = csv->first[csv->rows], extra = more->first[more->rows] - more->first[1];
-    char **cell_list = realloc(csv->cell, (cells + extra) * sizeof *cell_list);
-    if (cell_list)
-        csv->cell = cell_list;
-    size_t *first = realloc(csv->first, (csv->rows + more->rows) * sizeof *first);
-    if (first)
-        csv->first = first;
-    int *line = realloc(csv->line, (csv->rows + more->rows) * sizeof *line);
-    if (line)
-        csv->line = line;
-    if (!cell_list || !first || !line)
-        return fault_memory(fault, "the published values");
-    memcpy(csv->cell + cells, more->cell + more->first[1], extra * sizeof *cell_list);
-    for (size_t row = 1; row < more->rows; row++) {
-        csv->line[csv->rows] = more->line[row];
-        csv->first[++csv->rows] = cells + more->first[row + 1] - more->first[1];
-    }
-    return 0;
-}
-
 static const char *find_reason(const Csv *reasons, const char *id)
 {
     for (size_t row = 1; row < reasons->rows; row++)
@@ -293,7 +270,7 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
         code = balance_make(&balance, model, run_fields(run, STEADY_YEAR), STEADY_YEAR + 0.5, STEADY_YEARS, 0,
                             &nobody, fault);
     if (!code) {
-        const Evidence evidence = {run, balance_means(&balance, model), rate, term};
+        const Evidence evidence = {run, balance.stepper, balance_means(&balance, model), rate, term};
         budget_step_rates(model, balance.stepper, evidence.x, rate);
         budget_odd_oxygen(book, &model->grid, rate, term, term + BUDGET_TERMS * padded);
         for (int t = 0; !code && t < TABLES; t++)

@@ -40,9 +40,10 @@ double run_column(const Run *run, int first, int last);
 typedef struct {
     const Run *run; /* the baseline, all years */
     /* the same column in balance with the surface values of STEADY_YEAR: */
-    const double *x;    /* [solved][padded] mole fractions, daily means */
-    const double *rate; /* [reactions][padded] rates of reaction, cm-3 s-1 */
-    const double *term; /* [BUDGET_TERMS][padded] its budget of odd oxygen, cm-3 s-1 */
+    const Stepper *stepper; /* that carried it */
+    const double *x;        /* [solved][padded] mole fractions, daily means */
+    const double *rate;     /* [reactions][padded] rates of reaction, cm-3 s-1 */
+    const double *term;     /* [BUDGET_TERMS][padded] its budget of odd oxygen, cm-3 s-1 */
 } Evidence;
 
 #define STEADY_YEAR 2000 /* the conditions of the published lifetimes (SPARC Report 6, 2013) */

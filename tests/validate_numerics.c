@@ -65,7 +65,8 @@ static int measure_day(const Run *baseline, int year, DayError *error, Fault *fa
     Balance factors = {0}, days = {0};
     const Watcher nobody = {0};
     fprintf(stderr, "explicit days of %d\n", year);
-    int code = balance_make(&factors, baseline->model, run_fields(baseline, year), year + 0.5, 1.0, 0, &nobody, fault);
+    int code = balance_make(&factors, baseline->model, run_fields(baseline, year), year + 0.5, 1.0, 0,
+                            &nobody, fault);
     settings.day = DAY_EXPLICIT;
     if (!code)
         code = model_make(&model, &settings, fault);
