@@ -50,7 +50,9 @@ POLYNOMIAL = {
                    "(J. Geophys. Res. 96, 5025)", 273, 200, 304,
                    [-134.80, 1.7084, -9.1540e-3, 2.1644e-5, -1.9863e-8],
                    [3.3070e-1, -5.0957e-3, 2.9361e-5, -7.6198e-8, 7.6825e-11]),
-    "halon-1202": ("Gillotay and Simon 1989; Burkholder et al. 1991", 273, 222, 330,
+    # Valid from 222 nm; the constant is printed to 0.1 only (up to 12 %), so where there is a
+    # published table, to 280 nm, the table stands.
+    "halon-1202": ("Gillotay and Simon 1989; Burkholder et al. 1991", 273, 282, 330,
                    [-206.2, 2.3726, -1.0527e-2, 1.9239e-5, -1.2242e-8], []),
     "halon-1301": ("Gillotay and Simon 1989; Burkholder et al. 1991", 273, 178, 266,
                    [62.563, -2.0068, 1.6592e-2, -5.6465e-5, 6.7459e-8],
@@ -74,8 +76,8 @@ POLYNOMIAL = {
     "CHBr3": ("Papanastasiou et al. 2014 (Atmos. Chem. Phys. 14, 3017)", 296, 260, 344,
               [-32.6067, 0.10308, 6.39e-5, -7.7392e-7, -2.2513e-9, 6.1376e-12],
               [-0.1582, 0.0014758, -3.8058e-6, -9.187e-10, 1.0772e-11]),
-    # Only the slope of the chloroform fit is used: A is empty, sigma comes from TABLE.
-    "CHCl3": ("Simon et al. 1988 (J. Atmos. Chem. 7, 107), slope only", 273, 190, 240, [],
+    "CHCl3": ("Simon et al. 1988 (J. Atmos. Chem. 7, 107)", 273, 190, 240,
+              [269.80, -6.0908, 4.7830e-2, -1.6427e-4, 2.0682e-7],
               [3.7973, -7.0913e-2, 4.9397e-4, -1.5226e-6, 1.7555e-9]),
 }
 
@@ -92,12 +94,13 @@ TABLE = {
                (235, 5, [0.0016, 0.00029])],
     "CCl4": [(174, 2, [995, 1007, 976, 772, 589, 450, 318, 218, 144, 98.9, 74.4, 68.2])],
     "halon-1211": [(174, 2, [111, 99, 83, 68, 56, 49, 48, 52, 62, 73, 84, 95, 107])],
-    "halon-1202": [(180, 5, [165, 200, 231, 195, 148, 125, 150, 205]), (220, 2, [268])],
+    "halon-1202": [(190, 2, [114, 109, 100, 91, 82, 75, 72, 74, 81, 93, 110, 136, 155, 180, 203, 224,
+                             242, 251, 253, 250, 241, 227, 209, 189, 168, 147, 126, 106, 88, 73, 59,
+                             47, 37, 29, 23, 18, 13, 10, 7.6, 5.7, 4.2, 3.1, 2.2, 1.6, 1.2, 0.89])],
     "CH3Br": [(174, 2, [44.0, 36.0, 31.0, 28.5, 28.0, 29.5, 33.0, 38.0, 44.0, 53.1, 62.5, 66.0,
                         72.0])],
     "CH2Br2": [(190, 5, [140, 185, 215, 223])],
-    "CHCl3": [(175, 5, [440, 330, 210, 115, 58, 27, 11.7, 4.9, 2.0, 0.80, 0.32, 0.130, 0.052,
-                        0.021])],
+    "CHCl3": [(175, 5, [440, 330, 210])],
     "CHBr3": [(190, 2, [399, 360, 351, 366, 393, 416, 433, 440, 445, 451, 468, 493, 524, 553, 574,
                         582, 578, 558, 527, 487, 441, 397, 362, 324, 295, 273, 253, 234, 214, 194,
                         174, 158, 136, 116, 99])],
@@ -114,7 +117,8 @@ SLOPE = {
                "210 to 300 K; slope of 230 nm kept beyond, none below 184.9 nm"),
     "halon-1202": (lambda nm: 0.0 if nm < 240 else 1.6e-4 * (min(nm, 330.0) - 240.0),
                    "slope rising from zero at 240 nm by 1.6e-4 per K and nm: an estimate after "
-                   "halon-1211, whose band lies 20 nm shorter; the published B is not recalled"),
+                   "halon-1211, whose band lies 20 nm shorter; the published B is not recalled, and "
+                   "no slope was typed a second time"),
 }
 
 # Continuation beyond the fitted range to this wavelength, along log sigma at its last slope.
@@ -127,19 +131,48 @@ LYMAN_ALPHA = {"CFC-115": 4.57e-18}
 COLD_LIMIT = {"CH2Br2": 250.0, "CHBr3": 240.0}     # narrower measured temperature ranges
 
 SHARE = {"CFC-11": "10 %", "CFC-12": "10 %", "CFC-113": "15 %", "CCl4": "10 %", "HCFC-22": "15 %",
-         "CHBr3": "15 %", "halon-1202": "30 %", "CHCl3": "40 %"}    # others 20 %
+         "CHBr3": "15 %", "halon-1202": "15 % (30 % from 282 nm)",
+         "CHCl3": "20 % (40 % below 190 nm)"}    # others 20 %
 
 NOTE = {
     "CFC-113": "the published B give a small maximum of sigma(210 K)/sigma(298 K) near 190 nm",
     "halon-1211": "174 to 198 nm is a 298 K table recalled to about 20 %",
-    "halon-1202": "180 to 220 nm is a 298 K table recalled to about 30 %",
+    "halon-1202": "190 to 280 nm is the published 298 K table; below, no value is recalled and it counts "
+                  "as zero: such light reaches no height where the gas survives",
     "CH3Br": "174 to 198 nm is a 298 K table recalled to about 20 %",
     "CH2Br2": "190 to 205 nm is a 298 K table recalled to about 20 %",
-    "CHCl3": "sigma at 298 K is an estimate placed between CH2Cl2 and CH3CCl3; only the slope "
-             "follows the published fit. OH, not light, removes nearly all CHCl3",
+    "CHCl3": "175 to 185 nm is an estimate at 298 K. OH, not light, removes nearly all CHCl3",
     "CCl4": "174 to 196 nm is the 298 K table: near 194 nm the fit runs 15 % below it",
     "CFC-11": "the updated parameterization of McGillen et al. 2013 is not recalled; the earlier "
               "recommended table and slope stand here",
+}
+
+
+# Second typing from memory, without sight of the first; DEVELOPERS.md tells what agreement is worth.
+AGREE = "typed twice from memory, the two agree"
+TWICE = {
+    "CCl4": AGREE + ", but at 298 K the fit used here and the printed table, which the second typed, "
+            "part by -10 % at 226 nm and +16 % at 250 nm",
+    "CFC-11": "typed twice from memory, 298 K table against the older one of Simon et al.: within "
+              "10 % but for 14 % at 222 and 224 nm; 235 to 260 nm typed once",
+    "CFC-12": "typed twice from memory, 298 K table against the older one of Simon et al.: within "
+              "8 %; 235 and 240 nm typed once",
+    "CFC-115": AGREE + " from 172 to 204 nm",
+    "CH2Cl2": AGREE + " from 176 nm on",
+    "CH3Br": AGREE + " from 190 nm on",
+    "CH3Cl": AGREE + " to 220 nm; beyond, the second follows the polynomial, 12 % lower at 226 nm",
+    "CHBr3": AGREE + " at 190 to 256 nm; the fit beyond was typed once (the older Moortgat formula "
+             "is within 5 % at 290 to 310 nm, 45 % higher at 340 nm and 298 K)",
+    "CHCl3": "fit from 190 nm taken from the second typing; the first had only an estimate, up to a "
+             "factor 2.3 below",
+    "HCFC-22": AGREE + " from 174 to 204 nm",
+    "halon-1202": "table taken from the second typing; the first, recalled to 30 %, was twice as "
+                  "high at 190 to 200 nm and 11 to 17 % higher at 222 to 238 nm; from 282 nm typed "
+                  "once",
+    "halon-1211": AGREE + " from 200 nm on",
+    "OClO": "typed once",
+    "Cl2O2": "typed twice from memory: the older shape to 308 nm agrees at every wavelength; of the "
+             "newer spectrum the second knew 308 nm (5.1e-19) and 352 nm (9.0e-20, here 14 % lower)",
 }
 
 
@@ -162,7 +195,7 @@ def room_spectrum(gas):
     rows = []
     for first, step, values in TABLE.get(gas, []):
         rows += [(first + step * i, v * 1e-20) for i, v in enumerate(values)]
-    if gas in POLYNOMIAL and POLYNOMIAL[gas][4]:
+    if gas in POLYNOMIAL:
         _, t0, first, last, a, b = POLYNOMIAL[gas]
         for nm in range(first, last + 1, 2):
             rows.append((nm, 10.0**(polynomial(a, nm) + (T_ROOM - t0) * polynomial(b, nm))))
@@ -186,11 +219,11 @@ def header(gas):
     work = f"; {POLYNOMIAL[gas][0]}" if gas in POLYNOMIAL else ""
     yield f"# source: {JPL}{work}"
     yield ("# basis: from memory; computed from the published formula or table by "
-           "scripts/make_spectra_halogen.py")
+           "scripts/make_spectra_halogen.py; " + TWICE.get(gas, AGREE))
     yield "# interpolation: log"
     yield f"# uncertainty: about {SHARE.get(gas, '20 %')} (rounded, from memory)"
     notes = []
-    if gas in POLYNOMIAL and POLYNOMIAL[gas][4]:
+    if gas in POLYNOMIAL:
         notes.append(f"polynomial in wavelength and T from {POLYNOMIAL[gas][2]} to "
                      f"{POLYNOMIAL[gas][3]} nm, log sigma linear in T, so two columns are exact")
     if gas in SLOPE:
@@ -198,10 +231,11 @@ def header(gas):
     if gas in TAIL_TO:
         notes.append(f"beyond the fit, to {TAIL_TO[gas]} nm, log sigma continued at its last slope")
     if gas in LYMAN_ALPHA:
-        notes.append("121 to 122 nm: Lyman-alpha; 1e-30 marks the gap in the table, not a value")
+        notes.append(f"121 to 122 nm: Lyman-alpha. Between 122 and {POLYNOMIAL[gas][2]} nm no value "
+                     "is recalled; 1e-30 marks the gap and keeps interpolation from filling it")
     if gas in NOTE:
         notes.append(NOTE[gas])
-    if gas in TABLE and gas in POLYNOMIAL and POLYNOMIAL[gas][4]:
+    if gas in TABLE and gas in POLYNOMIAL and gas not in SLOPE:
         notes.append("below the fit: 298 K table, temperature slope fading to zero within 15 nm")
     for text in notes:
         yield f"# note: {text}"
@@ -254,7 +288,7 @@ def write_bells(gas, folder):
              "# unit: wavelength_nm nm; sigma_* cm2 molecule-1",
              f"# source: {JPL}; {work}",
              "# basis: from memory; computed from the published formula by "
-             "scripts/make_spectra_halogen.py",
+             "scripts/make_spectra_halogen.py; " + TWICE.get(gas, AGREE),
              "# interpolation: log",
              f"# uncertainty: about {share} (rounded, from memory)",
              "wavelength_nm," + ",".join(f"sigma_{t:.0f}K" for t in columns)]
@@ -333,7 +367,7 @@ def write_built(gas, folder):
     lines = [f"# quantity: absorption cross section of {gas}",
              "# unit: wavelength_nm nm; sigma_* cm2 molecule-1",
              f"# source: {JPL}; {work}",
-             "# basis: from memory; computed by scripts/make_spectra_halogen.py",
+             "# basis: from memory; computed by scripts/make_spectra_halogen.py; " + TWICE[gas],
              f"# interpolation: {interpolation}",
              f"# uncertainty: about {share} (rounded, from memory)"]
     lines += [f"# note: {text}" for text in notes]
