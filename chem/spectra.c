@@ -80,7 +80,8 @@ static double curve_at(const Curve *curve, double w)
     double t = (w - x[0]) / (x[1] - x[0]);
     if (curve->kind == CURVE_LOG && y[0] > 0 && y[1] > 0)
         return y[0] * exp(t * log(y[1] / y[0]));
-    return y[0] + t * (y[1] - y[0]); /* also where a logarithmic curve touches zero */
+    return y[0] +
+           t * (y[1] - y[0]); /* also where a logarithmic curve touches zero, which no shipped one does */
 }
 
 static double next_break(const Curve *curve, double w)
