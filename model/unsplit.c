@@ -9,9 +9,9 @@
 #include "../chem/surface.h"
 #include "../input/constants.h"
 
-/* Relative shift of a density for the derivative of a coefficient, of ozone for that of the light: half the
- * digits of a double for smooth formulas; more where a radiation calculation lies between. */
-static const double PARTNER_SHIFT = 1e-6, OZONE_SHIFT = 1e-3;
+/* Relative shift of a density for the derivative of a coefficient, of an absorber for that of the light: half
+ * the digits of a double for smooth formulas; more where a radiation calculation lies between. */
+static const double PARTNER_SHIFT = 1e-6, ABSORBER_SHIFT = 1e-3;
 /* Density, cm-3, below which a partner counts as absent: surface.c has reached its limit there. */
 static const double ABSENT = 10.0;
 
@@ -91,12 +91,13 @@ static int allocate(Unsplit *unsplit, Fault *fault)
                 {&unsplit->value, solved * layers},
                 {&unsplit->shifted, reactions * padded},
                 {&unsplit->bend, solved * reactions * padded},
-                {&unsplit->slope, layers * lit * padded + 1},
+                {&unsplit->slope, UNSPLIT_ABSORBERS * layers * lit * padded + 1},
                 {&unsplit->ahead, solved * padded + lit * padded}};
     unsplit->carried = calloc(solved, 1);
     unsplit->kept = calloc(solved * layers, 1);
     unsplit->partner = calloc(solved, sizeof(int));
-    if (!unsplit->carried || !unsplit->kept || !unsplit->partner)
+    unsplit->absorber = calloc(UNSPLIT_ABSORBERS * layers, sizeof(int));
+    if (!unsplit->carried || !unsplit->kept || !unsplit->partner || !unsplit->absorber)
         return fault_memory(fault, "the unsplit column");
     list_partners(unsplit);
     for (size_t i = 0; i < sizeof part / sizeof part[0]; i++) {
@@ -166,6 +167,7 @@ void unsplit_free(Unsplit *unsplit)
     free(unsplit->carried);
     free(unsplit->kept);
     free(unsplit->partner);
+    free(unsplit->absorber);
     free(unsplit);
 }
 
@@ -180,7 +182,7 @@ void unsplit_take_factors(Unsplit *unsplit, const Day *day)
         unsplit->factor[i] = day ? day->factor[i] : 1.0;
     for (size_t i = 0; i < lit; i++)
         unsplit->lit[i] = day ? day->lit[i] : 1.0;
-    unsplit->has_slope = 0;
+    unsplit->absorbers = 0;
 }
 
 void unsplit_set_time(Unsplit *unsplit, double time)
@@ -401,25 +403,49 @@ void unsplit_turnover(const Unsplit *unsplit, const double *x, double *turnover)
 
 /* ---- light ---- */
 
+/* Ozone counts in every layer; NO2 and NO where the layer's optical depth at the absorber's strongest is
+ * COUNTS: NO2 at 400 nm (JPL 19-5), NO in the lines of its delta bands (Minschwaner and Siskind 1993, orders of
+ * magnitude). */
+static void list_absorbers(Unsplit *unsplit)
+{
+    static const struct {
+        const char *name;
+        double section; /* cm2 */
+    } absorbers[UNSPLIT_ABSORBERS] = {{"O3", HUGE_VAL}, {"NO2", 6e-19}, {"NO", 1e-15}};
+    static const double COUNTS = 1e-6;
+    const Model *model = unsplit->model;
+    unsplit->absorbers = 0;
+    for (int a = 0; a < UNSPLIT_ABSORBERS; a++) {
+        int s = mechanism_solved(model->mechanism, absorbers[a].name);
+        for (int l = 0; s >= 0 && l < unsplit->layers; l++) {
+            double column = unsplit->density[FIELD(model->grid.padded, s, l)] * model->grid.depth[l];
+            if (a == 0 || column * absorbers[a].section > COUNTS)
+                unsplit->absorber[unsplit->absorbers++] = l * unsplit->solved + s;
+        }
+    }
+}
+
 void unsplit_slopes(Unsplit *unsplit, const double *x)
 {
     const Model *model = unsplit->model;
     const Mechanism *mechanism = model->mechanism;
     Light *light = unsplit->light;
-    int padded = model->grid.padded, ozone = mechanism_solved(mechanism, "O3");
+    int padded = model->grid.padded, top = unsplit->layers - 1;
     size_t field = (size_t)light->reactions * (size_t)padded, all = (size_t)unsplit->solved * (size_t)padded;
     double *shifted = unsplit->ahead, *before = shifted + all;
+    list_absorbers(unsplit);
     memcpy(shifted, x, all * sizeof(double));
     light_refresh(light, x, unsplit->lit);
     memcpy(before, light->mean, field * sizeof(double));
-    for (int m = 0; m < unsplit->layers; m++) {
-        double *here = shifted + FIELD(padded, ozone, m), *slope = unsplit->slope + (size_t)m * field;
-        double kept = *here, step = OZONE_SHIFT * fmax(fabs(kept), 1e-12);
-        *here = kept + step;
-        for (int l = unsplit->layers; m == unsplit->layers - 1 && l < padded; l++)
-            shifted[FIELD(padded, ozone, l)] = *here;
+    for (int m = 0; m < unsplit->absorbers; m++) {
+        int s = unsplit->absorber[m] % unsplit->solved, layer = unsplit->absorber[m] / unsplit->solved;
+        double *here = shifted + FIELD(padded, s, layer), *slope = unsplit->slope + (size_t)m * field;
+        double kept = *here, step = ABSORBER_SHIFT * fmax(fabs(kept), 1e-12);
+        for (int l = 0; l < (layer == top ? padded - top : 1); l++)
+            here[l] = kept + step;
         light_refresh(light, shifted, unsplit->lit);
-        *here = kept;
+        for (int l = 0; l < (layer == top ? padded - top : 1); l++)
+            here[l] = kept;
         for (int j = 0; j < light->reactions; j++)
             for (int l = 0; l < padded; l++) {
                 size_t at = FIELD(padded, j, l);
@@ -428,8 +454,7 @@ void unsplit_slopes(Unsplit *unsplit, const double *x)
             }
     }
     memcpy(light->mean, before, field * sizeof(double));
-    unsplit->lights += unsplit->layers + 1;
-    unsplit->has_slope = 1;
+    unsplit->lights += unsplit->absorbers + 1;
 }
 
 void unsplit_rate_gradient(const Unsplit *unsplit, const double *weight, double *gradient)
@@ -458,8 +483,7 @@ void unsplit_rate_gradient(const Unsplit *unsplit, const double *weight, double 
                 gradient[l * solved + unsplit->partner[p]] +=
                     weight[at] * unsplit->product[at] * unsplit->bend[FIELD(padded, p * reactions + r, l)];
             }
-    int ozone = mechanism_solved(mechanism, "O3");
-    for (int m = 0; unsplit->has_slope && m < layers; m++) {
+    for (int m = 0; m < unsplit->absorbers; m++) {
         const double *slope = unsplit->slope + (size_t)m * (size_t)unsplit->light->reactions * (size_t)padded;
         double sum = 0.0;
         for (int j = 0; j < unsplit->light->reactions; j++)
@@ -467,6 +491,6 @@ void unsplit_rate_gradient(const Unsplit *unsplit, const double *weight, double 
                 size_t at = FIELD(padded, lit_first + j, l);
                 sum += weight[at] * unsplit->product[at] * slope[FIELD(padded, j, l)];
             }
-        gradient[m * solved + ozone] += sum;
+        gradient[unsplit->absorber[m]] += sum;
     }
 }

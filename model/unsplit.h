@@ -11,10 +11,10 @@
  * The matrix of derivatives. Unknowns stand layer by layer, so that it is block-tridiagonal, with full
  * blocks on the diagonal and diagonal ones beside it: a band of `solved` on both sides (LAPACK dgbtrf). Uptake
  * coefficients and HO2 + HO2 depend on species of their own layer, whose derivatives (finite differences of
- * the formulas) belong to the blocks. Photolysis in a layer depends on ozone in every layer: a change of rank
- * `layers`, kept apart as U V' with V the ozone of each layer, and put in by the formula of Sherman, Morrison
- * and Woodbury (Hager 1989, SIAM Rev. 31, 221). Its slopes are finite differences of the light, layer by
- * layer. What NO and NO2 absorb follows the state, but its slope is left out of the matrix.
+ * the formulas) belong to the blocks. Photolysis in a layer depends on ozone in every layer, and a little on
+ * NO2 and NO: a change of low rank, kept apart as U V' with V the absorbers layer by layer, and put in by the
+ * formula of Sherman, Morrison and Woodbury (Hager 1989, SIAM Rev. 31, 221). Its slopes are finite differences
+ * of the light.
  *
  * Unknown i of species s in layer l is l * solved + s, its unit mole fraction; derivatives and tendencies in
  * s-1. Everything here belongs to one thread but for the light, which uses OpenMP's.
@@ -24,6 +24,8 @@
 
 #include "day.h"
 #include "pack.h"
+
+#define UNSPLIT_ABSORBERS 3 /* O3, NO2, NO */
 
 typedef struct UnsplitMatrix UnsplitMatrix; /* band, scales and update: unsplit_matrix.c */
 
@@ -55,8 +57,10 @@ typedef struct {
     int partners;
     double *shifted;      /* [reactions][padded] work: coefficients with a partner shifted */
     double *bend;         /* [partners][reactions][padded] dk/d(mole fraction of the partner), factors included */
-    double *slope;        /* [layers][photolysis][padded] d(k of a photolysis)/d(ozone of a layer), s-1 */
-    int has_slope;
+    /* slopes of photolysis against what absorbs: O3, NO2 and NO, each in the layers where it counts */
+    int absorbers;        /* 0 until unsplit_slopes; at most UNSPLIT_ABSORBERS times layers */
+    int *absorber;        /* [absorbers] unknown */
+    double *slope;        /* [absorbers][photolysis][padded] d(k)/d(mole fraction), factors included, s-1 */
     double *ahead;        /* work of unsplit_slopes: a state and a light */
     UnsplitMatrix *matrix;
     long evaluations, factorisations, lights;
@@ -76,7 +80,7 @@ void unsplit_keep(const Unsplit *unsplit, double *x);
 /* Light, coefficients and rates at x [solved][padded]; tendency [unknowns] out, kept equations value - x (per
  * second). with_jacobian: the blocks as well. */
 void unsplit_evaluate(Unsplit *unsplit, const double *x, double *tendency, int with_jacobian);
-/* The slopes of photolysis against ozone at x: layers + 1 times the light. */
+/* The slopes of photolysis against its absorbers at x: absorbers + 1 times the light. */
 void unsplit_slopes(Unsplit *unsplit, const double *x);
 /* Largest gross rate through each unknown at the last evaluation, s-1 times mole fraction: sum of the absolute
  * terms of its equation; [unknowns] out. What a residual is measured against. */

@@ -18,12 +18,13 @@ struct UnsplitMatrix {
     double *band;          /* [unknowns][stride] */
     double *row, *column;  /* [unknowns] scales */
     lapack_int *pivot;     /* [unknowns] */
-    double *update;        /* [layers][unknowns] P */
-    double *solved_update; /* [layers][unknowns] B^-1 P, while G is made */
-    double *small;         /* [layers][layers] G factored */
-    double *part;          /* [layers] work */
+    /* rank: absorbers of the light, as they were when it was factored */
+    int rank;              /* 0: without light */
+    double *update;        /* [rank][unknowns] P */
+    double *solved_update; /* [rank][unknowns] B^-1 P, while G is made */
+    double *small;         /* [rank][rank] G factored */
+    double *part;          /* [rank] work */
     lapack_int *small_pivot;
-    int with_light, ozone;
 };
 
 /* Number density, cm-3, whose mole fraction is the least scale of an unknown: scarcer species count as absent. */
@@ -35,19 +36,18 @@ int unsplit_matrix_make(Unsplit *unsplit, Fault *fault)
     if (!matrix)
         return fault_memory(fault, "the matrix of the unsplit column");
     unsplit->matrix = matrix;
-    size_t n = (size_t)unsplit->unknowns, layers = (size_t)unsplit->layers;
+    size_t n = (size_t)unsplit->unknowns, most = UNSPLIT_ABSORBERS * (size_t)unsplit->layers;
     matrix->width = unsplit->solved;
     matrix->stride = 3 * matrix->width + 1;
-    matrix->ozone = mechanism_solved(unsplit->model->mechanism, "O3");
     matrix->band = malloc(n * (size_t)matrix->stride * sizeof(double));
     matrix->row = malloc(n * sizeof(double));
     matrix->column = malloc(n * sizeof(double));
     matrix->pivot = malloc(n * sizeof(lapack_int));
-    matrix->update = malloc(layers * n * sizeof(double));
-    matrix->solved_update = malloc(layers * n * sizeof(double));
-    matrix->small = malloc(layers * layers * sizeof(double));
-    matrix->part = malloc(layers * sizeof(double));
-    matrix->small_pivot = malloc(layers * sizeof(lapack_int));
+    matrix->update = malloc(most * n * sizeof(double));
+    matrix->solved_update = malloc(most * n * sizeof(double));
+    matrix->small = malloc(most * most * sizeof(double));
+    matrix->part = malloc(most * sizeof(double));
+    matrix->small_pivot = malloc(most * sizeof(lapack_int));
     if (!matrix->band || !matrix->row || !matrix->column || !matrix->pivot || !matrix->update ||
         !matrix->solved_update || !matrix->small || !matrix->part || !matrix->small_pivot)
         return fault_memory(fault, "the matrix of the unsplit column");
@@ -125,7 +125,7 @@ static void assemble(Unsplit *unsplit, double shift)
     }
 }
 
-/* P: what the ozone of each layer does through the light. */
+/* P: what each absorber does through the light. */
 static void fill_update(Unsplit *unsplit)
 {
     const Model *model = unsplit->model;
@@ -133,8 +133,8 @@ static void fill_update(Unsplit *unsplit)
     UnsplitMatrix *matrix = unsplit->matrix;
     int padded = model->grid.padded, solved = unsplit->solved, lit = unsplit->light->reactions;
     size_t n = (size_t)unsplit->unknowns;
-    memset(matrix->update, 0, (size_t)unsplit->layers * n * sizeof(double));
-    for (int m = 0; m < unsplit->layers; m++) {
+    memset(matrix->update, 0, (size_t)matrix->rank * n * sizeof(double));
+    for (int m = 0; m < matrix->rank; m++) {
         double *to = matrix->update + (size_t)m * n;
         for (int j = 0; j < lit; j++) {
             int r = mechanism->photolysis_first + j;
@@ -155,22 +155,22 @@ static void fill_update(Unsplit *unsplit)
 static int factorise_small(Unsplit *unsplit, Fault *fault)
 {
     UnsplitMatrix *matrix = unsplit->matrix;
-    int layers = unsplit->layers, solved = unsplit->solved;
+    int rank = matrix->rank;
     size_t n = (size_t)unsplit->unknowns;
     fill_update(unsplit);
-    for (int m = 0; m < layers; m++)
+    for (int m = 0; m < rank; m++)
         for (size_t i = 0; i < n; i++)
             matrix->update[(size_t)m * n + i] *= matrix->row[i];
-    memcpy(matrix->solved_update, matrix->update, (size_t)layers * n * sizeof(double));
-    LAPACKE_dgbtrs_work(LAPACK_COL_MAJOR, 'N', (lapack_int)n, matrix->width, matrix->width, layers, matrix->band,
+    memcpy(matrix->solved_update, matrix->update, (size_t)rank * n * sizeof(double));
+    LAPACKE_dgbtrs_work(LAPACK_COL_MAJOR, 'N', (lapack_int)n, matrix->width, matrix->width, rank, matrix->band,
                         matrix->stride, matrix->pivot, matrix->solved_update, (lapack_int)n);
-    for (int m = 0; m < layers; m++)
-        for (int l = 0; l < layers; l++) {
-            size_t at = (size_t)(l * solved + matrix->ozone);
-            matrix->small[(size_t)m * (size_t)layers + (size_t)l] =
-                (l == m) + matrix->column[at] * matrix->solved_update[(size_t)m * n + at];
+    for (int m = 0; m < rank; m++)
+        for (int k = 0; k < rank; k++) {
+            size_t at = (size_t)unsplit->absorber[k];
+            matrix->small[(size_t)m * (size_t)rank + (size_t)k] =
+                (k == m) + matrix->column[at] * matrix->solved_update[(size_t)m * n + at];
         }
-    if (LAPACKE_dgetrf_work(LAPACK_COL_MAJOR, layers, layers, matrix->small, layers, matrix->small_pivot))
+    if (LAPACKE_dgetrf_work(LAPACK_COL_MAJOR, rank, rank, matrix->small, rank, matrix->small_pivot))
         return fault_set(fault, FAULT_NUMERICS, "unsplit column: the feedback of ozone on light is singular");
     return 0;
 }
@@ -196,8 +196,8 @@ int unsplit_factorise(Unsplit *unsplit, const double *x, double shift, int with_
                          mechanism_name(model->mechanism, i % unsplit->solved),
                          1e-5 * model->grid.middle[i / unsplit->solved]);
     }
-    matrix->with_light = with_light && unsplit->has_slope;
-    return matrix->with_light ? factorise_small(unsplit, fault) : 0;
+    matrix->rank = with_light ? unsplit->absorbers : 0;
+    return matrix->rank ? factorise_small(unsplit, fault) : 0;
 }
 
 static void solve_band(const Unsplit *unsplit, double *b, char form)
@@ -211,18 +211,18 @@ static void solve_band(const Unsplit *unsplit, double *b, char form)
 static void subtract_light(const Unsplit *unsplit, double *b)
 {
     const UnsplitMatrix *matrix = unsplit->matrix;
-    int layers = unsplit->layers;
+    int rank = matrix->rank;
     size_t n = (size_t)unsplit->unknowns;
     double *copy = matrix->solved_update;
     memcpy(copy, b, n * sizeof(double));
     solve_band(unsplit, copy, 'N');
-    for (int l = 0; l < layers; l++) {
-        size_t at = (size_t)(l * unsplit->solved + matrix->ozone);
-        matrix->part[l] = matrix->column[at] * copy[at];
+    for (int m = 0; m < rank; m++) {
+        size_t at = (size_t)unsplit->absorber[m];
+        matrix->part[m] = matrix->column[at] * copy[at];
     }
-    LAPACKE_dgetrs_work(LAPACK_COL_MAJOR, 'N', layers, 1, matrix->small, layers, matrix->small_pivot, matrix->part,
-                        layers);
-    for (int m = 0; m < layers; m++)
+    LAPACKE_dgetrs_work(LAPACK_COL_MAJOR, 'N', rank, 1, matrix->small, rank, matrix->small_pivot, matrix->part,
+                        rank);
+    for (int m = 0; m < rank; m++)
         for (size_t i = 0; i < n; i++)
             b[i] -= matrix->part[m] * matrix->update[(size_t)m * n + i];
 }
@@ -231,22 +231,22 @@ static void subtract_light(const Unsplit *unsplit, double *b)
 static void subtract_light_transposed(const Unsplit *unsplit, double *b)
 {
     const UnsplitMatrix *matrix = unsplit->matrix;
-    int layers = unsplit->layers;
+    int rank = matrix->rank;
     size_t n = (size_t)unsplit->unknowns;
     double *copy = matrix->solved_update;
     memcpy(copy, b, n * sizeof(double));
     solve_band(unsplit, copy, 'T');
-    for (int m = 0; m < layers; m++) {
+    for (int m = 0; m < rank; m++) {
         double sum = 0.0;
         for (size_t i = 0; i < n; i++)
             sum += matrix->update[(size_t)m * n + i] * copy[i];
         matrix->part[m] = sum;
     }
-    LAPACKE_dgetrs_work(LAPACK_COL_MAJOR, 'T', layers, 1, matrix->small, layers, matrix->small_pivot, matrix->part,
-                        layers);
-    for (int l = 0; l < layers; l++) {
-        size_t at = (size_t)(l * unsplit->solved + matrix->ozone);
-        b[at] -= matrix->column[at] * matrix->part[l];
+    LAPACKE_dgetrs_work(LAPACK_COL_MAJOR, 'T', rank, 1, matrix->small, rank, matrix->small_pivot, matrix->part,
+                        rank);
+    for (int m = 0; m < rank; m++) {
+        size_t at = (size_t)unsplit->absorber[m];
+        b[at] -= matrix->column[at] * matrix->part[m];
     }
 }
 
@@ -257,7 +257,7 @@ void unsplit_solve(const Unsplit *unsplit, double *b, int transposed)
     const double *after = transposed ? matrix->row : matrix->column;
     for (int i = 0; i < unsplit->unknowns; i++)
         b[i] *= before[i];
-    if (matrix->with_light) {
+    if (matrix->rank) {
         if (transposed)
             subtract_light_transposed(unsplit, b);
         else
@@ -287,8 +287,7 @@ void unsplit_multiply(const Unsplit *unsplit, const double *z, int with_light, i
                 out[i] += values[j - start] * z[j];
         }
     }
-    int ozone = mechanism_solved(mechanism, "O3");
-    for (int m = 0; with_light && unsplit->has_slope && m < unsplit->layers; m++)
+    for (int m = 0; with_light && m < unsplit->absorbers; m++)
         for (int j = 0; j < lit; j++) {
             int r = mechanism->photolysis_first + j;
             const Reaction *reaction = &mechanism->reaction[r];
@@ -296,7 +295,7 @@ void unsplit_multiply(const Unsplit *unsplit, const double *z, int with_light, i
                 double change = unsplit->slope[FIELD(padded, m * lit + j, l)] * unsplit->product[FIELD(padded, r, l)] /
                                 model->air.number_density[l];
                 for (int c = 0; c < reaction->changes; c++) {
-                    int i = l * solved + reaction->changed[c], o = m * solved + ozone;
+                    int i = l * solved + reaction->changed[c], o = unsplit->absorber[m];
                     if (unsplit->kept[i])
                         continue;
                     if (transposed)
