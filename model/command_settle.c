@@ -28,7 +28,8 @@ static void print_help(void)
            "                       as in O3@40 and lifetime:N2O\n"
            "      --rows N         lines of a ranking (default 20)\n"
            "      --csv            everything as CSV\n"
-           "      --threads N      threads to use (default: OMP_NUM_THREADS or all); results do not depend on it\n"
+           "      --threads N      threads to use (default: OMP_NUM_THREADS or all); results do not depend "
+           "on it\n"
            "  -h, --help           this text\n\n"
            "Sensitivities are first-order, of the column settled anew; diurnal factors stay as they are.\n");
 }
@@ -105,13 +106,13 @@ static int has_lifetime(const Model *model, const double *x, int s)
 static const double levels[] = {20, 30, 40, 50};
 enum { LEVELS = sizeof levels / sizeof levels[0] };
 
-static void print_settled(const Unsplit *unsplit, const Column *column, const Steady *steady, int year)
+static void print_settled(const Unsplit *unsplit, const Column *column, const SteadyReport *steady, int year)
 {
     const Model *model = unsplit->model;
     printf("%s\n\nsettled at the surface values of %d (its middle), %s\n", model->settings.title, year,
            unsplit->has_factors ? "with diurnal factors" : "with daily means and no diurnal factors");
-    printf("  steps %d, not taken %d, turns of the factors %d, %.1f s\n", steady->iterations, steady->rejected,
-           steady->turns, steady->seconds);
+    printf("  steps %d, not taken %d, turns of the factors %d, %.1f s\n", steady->iterations,
+           steady->rejected, steady->turns, steady->seconds);
     printf("  residual %.1e of the gross rate (%s, %.1f km); last step of Newton's %.1e", steady->residual,
            mechanism_name(model->mechanism, steady->worst_species),
            1e-5 * model->grid.middle[steady->worst_layer], steady->change);
@@ -131,7 +132,8 @@ static void print_settled(const Unsplit *unsplit, const Column *column, const St
     }
 }
 
-static void print_settled_csv(const Unsplit *unsplit, const Column *column, const Steady *steady, int year)
+static void print_settled_csv(const Unsplit *unsplit, const Column *column, const SteadyReport *steady,
+                              int year)
 {
     const Model *model = unsplit->model;
     printf("# quantity: settled column, surface values of the middle of %d, %s\n", year,
@@ -139,8 +141,8 @@ static void print_settled_csv(const Unsplit *unsplit, const Column *column, cons
     printf("table,name,value,unit,uncertainty_factor_298K,effect_of_uncertainty\n");
     printf("solution,year,%d,,,\nsolution,steps,%d,,,\nsolution,turns,%d,,,\n", year, steady->iterations,
            steady->turns);
-    printf("solution,residual,%.3e,of the gross rate,,\nsolution,last_change,%.3e,relative,,\n", steady->residual,
-           steady->change);
+    printf("solution,residual,%.3e,of the gross rate,,\nsolution,last_change,%.3e,relative,,\n",
+           steady->residual, steady->change);
     printf("answer,column,%.6f,DU,,\n", column_ozone_du(model, column->x));
     for (int i = 0; i < LEVELS; i++)
         if (shown(model, levels[i]))
@@ -168,7 +170,8 @@ typedef struct {
     int count;
 } Ranking;
 
-static void add_entry(Ranking *ranking, const char *kind, const char *name, double change, double f, double effect)
+static void add_entry(Ranking *ranking, const char *kind, const char *name, double change, double f,
+                      double effect)
 {
     Entry *entry = &ranking->entry[ranking->count++];
     *entry = (Entry){.kind = kind, .change = change, .f = f, .effect = effect};
@@ -197,8 +200,8 @@ static int make_reactions(Ranking *ranking, const Sensitivity *sensitivity, cons
 /* Mixing by bands of this many km. */
 static const double BAND = 10.0;
 
-static int make_borders(Ranking *ranking, const Sensitivity *sensitivity, const Unsplit *unsplit, const double *x,
-                        Fault *fault)
+static int make_borders(Ranking *ranking, const Sensitivity *sensitivity, const Unsplit *unsplit,
+                        const double *x, Fault *fault)
 {
     const Model *model = unsplit->model;
     double top = 1e-5 * model->grid.edge[unsplit->layers];
@@ -208,7 +211,8 @@ static int make_borders(Ranking *ranking, const Sensitivity *sensitivity, const 
     for (int s = 0; s < unsplit->solved; s++) {
         const char *name = mechanism_name(model->mechanism, s);
         if (sensitivity->surface[s] != 0.0)
-            add_entry(ranking, "at the ground", name, sensitivity->surface[s] * x[FIELD(model->grid.padded, s, 0)], 0, 0);
+            add_entry(ranking, "at the ground", name,
+                      sensitivity->surface[s] * x[FIELD(model->grid.padded, s, 0)], 0, 0);
         if (sensitivity->deposition[s] != 0.0)
             add_entry(ranking, "deposition", name, sensitivity->deposition[s], 0, 0);
         if (sensitivity->held[s] != 0.0)
@@ -238,8 +242,8 @@ static int by_change(const void *a, const void *b)
     return (left < right) - (left > right);
 }
 
-static void print_rankings(const Sensitivity *sensitivity, const char *name, Ranking *reactions, Ranking *borders,
-                           int rows)
+static void print_rankings(const Sensitivity *sensitivity, const char *name, Ranking *reactions,
+                           Ranking *borders, int rows)
 {
     const char *unit = answer_unit(&sensitivity->answer);
     double squares = 0.0, whole = sensitivity->value;
@@ -248,18 +252,22 @@ static void print_rankings(const Sensitivity *sensitivity, const char *name, Ran
         squares += reactions->entry[i].effect * reactions->entry[i].effect;
         without += reactions->entry[i].f == 0.0 && strcmp(reactions->entry[i].kind, "washout") != 0;
     }
-    printf("\nWhat the laboratory does not know, and what it does to the %s (%.6g %s)\n\n", name, whole, unit);
-    printf("  %-32s %-11s %12s %7s %12s %9s\n", "reaction", "kind", "per +1 %, %", "f(298)", "effect", "effect, %");
+    printf("\nWhat the laboratory does not know, and what it does to the %s (%.6g %s)\n\n", name, whole,
+           unit);
+    printf("  %-32s %-11s %12s %7s %12s %9s\n", "reaction", "kind", "per +1 %, %", "f(298)", "effect",
+           "effect, %");
     qsort(reactions->entry, (size_t)reactions->count, sizeof(Entry), by_effect);
     for (int i = 0; i < reactions->count && i < rows && reactions->entry[i].effect != 0.0; i++) {
         const Entry *entry = &reactions->entry[i];
-        printf("  %-32s %-11s %+12.5f %7.2f %+12.4g %+9.3f\n", entry->name, entry->kind, entry->change / whole,
-               entry->f, entry->effect, 100.0 * entry->effect / whole);
+        printf("  %-32s %-11s %+12.5f %7.2f %+12.4g %+9.3f\n", entry->name, entry->kind,
+               entry->change / whole, entry->f, entry->effect, 100.0 * entry->effect / whole);
     }
     printf("  all together, independent of each other: %.4g %s, %.2f %%; %d reactions have no published f\n",
            sqrt(squares), unit, fabs(100.0 * sqrt(squares) / whole), without);
-    printf("  effect: the rate coefficient times f(T) = f exp|g (1/T - 1/298)| at every altitude, to first order\n");
-    printf("\nWhat borders and mixing do to the %s\n\n  %-22s %-14s %12s\n", name, "kind", "of", "per +1 %, %");
+    printf("  effect: the rate coefficient times f(T) = f exp|g (1/T - 1/298)| at every altitude, to first "
+           "order\n");
+    printf("\nWhat borders and mixing do to the %s\n\n  %-22s %-14s %12s\n", name, "kind", "of",
+           "per +1 %, %");
     qsort(borders->entry, (size_t)borders->count, sizeof(Entry), by_change);
     for (int i = 0; i < borders->count && i < rows; i++)
         printf("  %-22s %-14s %+12.5f\n", borders->entry[i].kind, borders->entry[i].name,
@@ -316,7 +324,7 @@ static int run(const Request *request, Fault *fault)
     Column *column = NULL;
     Stepper *stepper = NULL;
     Unsplit *unsplit = NULL;
-    Steady steady = {0};
+    SteadyReport steady = {0};
     Answer answer = {0};
     if (!settings)
         return fault_memory(fault, "settings");

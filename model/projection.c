@@ -1,4 +1,4 @@
-/* projection: spin-up and the years. */
+/* projection: how a run starts, and the years. */
 #include "projection.h"
 
 #include <math.h>
@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "../input/constants.h"
+#include "steady.h"
 
 static int stopped(const Watcher *watcher)
 {
@@ -89,6 +90,36 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
     return watcher->record(watcher->context, &record, fault);
 }
 
+int projection_settle(const Model *model, Stepper *stepper, Column *column, Fault *fault)
+{
+    Unsplit *unsplit;
+    SteadyReport report;
+    int code = unsplit_make(&unsplit, model, fault);
+    if (code)
+        return code;
+    code = steady_find(unsplit, stepper, column, column->time, &report, fault);
+    if (!code && model->settings.day == DAY_EXPLICIT) { /* whose state is that of midnight */
+        day_midnight(stepper_day(stepper), column->x, column->x);
+        unsplit_keep(unsplit, column->x);
+    }
+    unsplit_free(unsplit);
+    return code;
+}
+
+/* Where the first year starts from. */
+static int begin(const Model *model, Stepper *stepper, Column *column, double spin_share,
+                 const Watcher *watcher, Fault *fault)
+{
+    if (model->settings.start == START_SPINUP)
+        return projection_spin_up(model, stepper, column, model->settings.spinup_years, spin_share, watcher,
+                                  fault);
+    int code = projection_settle(model, stepper, column, fault);
+    if (!code && stopped(watcher))
+        code =
+            fault_set(fault, FAULT_INTERRUPTED, "interrupted before the first year; nothing is written yet");
+    return code;
+}
+
 int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher, Fault *fault)
 {
     const Settings *settings = &model->settings;
@@ -97,8 +128,9 @@ int projection_run(const Model *model, Stepper *stepper, Column *column, const W
     if (!sum)
         return fault_memory(fault, "means of an interval");
     int years = settings->last_year - settings->first_year + 1, per_year = settings->outputs_per_year;
-    double whole = settings->spinup_years + years, spin_share = settings->spinup_years / whole;
-    int code = projection_spin_up(model, stepper, column, settings->spinup_years, spin_share, watcher, fault);
+    double spinup = settings->start == START_SPINUP ? settings->spinup_years : 0.0;
+    double spin_share = spinup / (spinup + years);
+    int code = begin(model, stepper, column, spin_share, watcher, fault);
     column_open_ledger(model, column);
     long intervals = (long)years * per_year;
     for (long i = 0; !code && i < intervals; i++) {

@@ -40,10 +40,11 @@ int answer_read(Answer *answer, const char *text, const Model *model, Fault *fau
         answer->kind = ANSWER_OZONE;
         answer->altitude_km = strtod(text + 3, &end);
         if (end == text + 3 || *end)
-            return fault_set(fault, FAULT_INPUT, "\"%s\": give an altitude in km after O3@, as in O3@40", text);
+            return fault_set(fault, FAULT_INPUT, "\"%s\": give an altitude in km after O3@, as in O3@40",
+                             text);
         if (!(answer->altitude_km >= 1e-5 * model->grid.middle[0] && answer->altitude_km <= top))
-            return fault_set(fault, FAULT_INPUT, "\"%s\": the middles of the layers reach from %g to %g km", text,
-                             1e-5 * model->grid.middle[0], top);
+            return fault_set(fault, FAULT_INPUT, "\"%s\": the middles of the layers reach from %g to %g km",
+                             text, 1e-5 * model->grid.middle[0], top);
         return 0;
     }
     if (!strncmp(text, "lifetime:", 9)) {
@@ -55,12 +56,13 @@ int answer_read(Answer *answer, const char *text, const Model *model, Fault *fau
         int code = read_species(answer, text + 5, model, fault);
         int kind = code ? 0 : model->surface_kind[answer->species];
         if (!code && kind != SURFACE_SCHEDULE && kind != SURFACE_FIXED)
-            return fault_set(fault, FAULT_INPUT, "\"%s\": the ground keeps no value of %s; name a gas it keeps", text,
-                             text + 5);
+            return fault_set(fault, FAULT_INPUT,
+                             "\"%s\": the ground keeps no value of %s; name a gas it keeps", text, text + 5);
         return code;
     }
-    return fault_set(fault, FAULT_INPUT,
-                     "\"%s\" is no answer; give column, O3@KM, lifetime:GAS or flux:GAS (O3@40, lifetime:N2O)", text);
+    return fault_set(
+        fault, FAULT_INPUT,
+        "\"%s\" is no answer; give column, O3@KM, lifetime:GAS or flux:GAS (O3@40, lifetime:N2O)", text);
 }
 
 void answer_name(const Answer *answer, const Model *model, char *text, size_t size)
@@ -70,7 +72,9 @@ void answer_name(const Answer *answer, const Model *model, char *text, size_t si
     case ANSWER_LIFETIME:
         snprintf(text, size, "lifetime:%s", mechanism_name(model->mechanism, answer->species));
         break;
-    case ANSWER_FLUX: snprintf(text, size, "flux:%s", mechanism_name(model->mechanism, answer->species)); break;
+    case ANSWER_FLUX:
+        snprintf(text, size, "flux:%s", mechanism_name(model->mechanism, answer->species));
+        break;
     default: snprintf(text, size, "column");
     }
 }
@@ -100,8 +104,10 @@ static double gross_loss(const Unsplit *unsplit, int s)
     for (int r = 0; r < model->mechanism->reactions; r++) {
         const Reaction *reaction = &model->mechanism->reaction[r];
         for (int c = 0; c < reaction->changes; c++)
-            for (int l = 0; reaction->changed[c] == s && reaction->change[c] < 0.0 && l < unsplit->layers; l++)
-                loss -= reaction->change[c] * unsplit->rate[FIELD(model->grid.padded, r, l)] * model->grid.depth[l];
+            for (int l = 0; reaction->changed[c] == s && reaction->change[c] < 0.0 && l < unsplit->layers;
+                 l++)
+                loss -= reaction->change[c] * unsplit->rate[FIELD(model->grid.padded, r, l)] *
+                        model->grid.depth[l];
     }
     return loss;
 }
@@ -116,7 +122,8 @@ static double ground_flux(const Unsplit *unsplit, const double *x, int s)
         const Reaction *reaction = &model->mechanism->reaction[r];
         for (int c = 0; c < reaction->changes; c++)
             if (reaction->changed[c] == s)
-                gain += reaction->change[c] * unsplit->rate[FIELD(model->grid.padded, r, 0)] * model->grid.depth[0];
+                gain += reaction->change[c] * unsplit->rate[FIELD(model->grid.padded, r, 0)] *
+                        model->grid.depth[0];
     }
     return -gain;
 }
@@ -194,7 +201,8 @@ int sensitivity_prepare(Unsplit *unsplit, const double *x, Fault *fault)
 }
 
 /* What each reaction's logarithm does, from the adjoint m and the answer's own weight of the rates. */
-static void take_reactions(Sensitivity *sensitivity, const Unsplit *unsplit, const double *m, const double *weight)
+static void take_reactions(Sensitivity *sensitivity, const Unsplit *unsplit, const double *m,
+                           const double *weight)
 {
     const Model *model = unsplit->model;
     int solved = unsplit->solved, padded = model->grid.padded;
@@ -276,7 +284,8 @@ int sensitivity_make(Sensitivity **made, const Unsplit *unsplit, const double *x
     size_t rates = (size_t)unsplit->model->mechanism->reactions * (size_t)unsplit->model->grid.padded;
     Sensitivity *sensitivity = calloc(1, sizeof *sensitivity);
     double *m = calloc(n + rates, sizeof(double)), *weight = m + n;
-    int code = sensitivity && m ? allocate(sensitivity, unsplit, fault) : fault_memory(fault, "sensitivities");
+    int code =
+        sensitivity && m ? allocate(sensitivity, unsplit, fault) : fault_memory(fault, "sensitivities");
     if (code) {
         free(m);
         sensitivity_free(sensitivity);
@@ -331,12 +340,15 @@ int sensitivity_per_flux(const Unsplit *unsplit, const double *x, const Sensitiv
     return 0;
 }
 
-static double sum_over_layers(const Sensitivity *sensitivity, const Model *model, int r, const Reaction *uncertain)
+static double sum_over_layers(const Sensitivity *sensitivity, const Model *model, int r,
+                              const Reaction *uncertain)
 {
     const double *row = sensitivity->reaction + FIELD(model->grid.padded, r, 0);
     double sum = 0.0;
     for (int l = 0; l < model->grid.layers; l++) {
-        double bend = uncertain ? fabs(uncertain->g * (1.0 / model->air.temperature[l] - 1.0 / STANDARD_TEMPERATURE)) : 0.0;
+        double bend =
+            uncertain ? fabs(uncertain->g * (1.0 / model->air.temperature[l] - 1.0 / STANDARD_TEMPERATURE))
+                      : 0.0;
         sum += row[l] * (uncertain ? log(uncertain->f) + bend : 1.0);
     }
     return sum;

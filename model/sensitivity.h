@@ -2,8 +2,8 @@
  *
  * The settled column solves F(x, p) = 0 (unsplit.h). For an answer Q(x, p) one solve of the transposed system
  *     A' m = -dQ/dx,   A = dF/dx   gives   dQ/dp = (dQ/dp at fixed x) + m' dF/dp
- * for all parameters p at once (the adjoint method). The derivative is that of the answer of the column settled
- * anew, the light's answer to ozone included; diurnal factors stay as they are.
+ * for all parameters p at once (the adjoint method). The derivative is that of the answer of the column
+ * settled anew, the light's answer to ozone included; diurnal factors stay as they are.
  */
 #ifndef SKYMEND_SENSITIVITY_H
 #define SKYMEND_SENSITIVITY_H
@@ -30,9 +30,9 @@ typedef struct {
      * coefficient wrong by the same factor everywhere. Thermal, photolysis, surface, washout.
      * [reactions][padded], 0 in padding lanes */
     double *reaction;
-    double *surface;    /* [solved] d(answer)/d(mole fraction kept by the ground); 0 where it keeps none */
-    double *flux;       /* [solved] d(answer)/d(flux into the lowest layer, molecules cm-2 s-1), of species whose
-                           ground keeps no value; for the others see sensitivity_per_flux */
+    double *surface; /* [solved] d(answer)/d(mole fraction kept by the ground); 0 where it keeps none */
+    double *flux;    /* [solved] d(answer)/d(flux into the lowest layer, molecules cm-2 s-1), of species whose
+                        ground keeps no value; for the others see sensitivity_per_flux */
     double *deposition; /* [solved] d(answer)/d(ln deposition velocity) */
     double *held;       /* [solved] d(answer)/d(ln of the profile held below the tropopause) */
     double *eddy;       /* [layers + 1] d(answer)/d(ln K) at each edge */
@@ -58,8 +58,8 @@ void sensitivity_free(Sensitivity *sensitivity);
 /* d(answer)/d(flux of species s, molecules cm-2 s-1) were the flux given and not the value at the ground, all
  * other grounds as they are. Where the ground keeps no value this is flux[s]; where it does,
  *     (d answer / d value) / (d flux / d value),
- * the divisor by an adjoint solve of its own: exact where the gas feeds back on its own lifetime, and right for
- * a gas of which there is none yet. FAULT_INPUT when the ground's flux does not depend on the value. */
+ * the divisor by an adjoint solve of its own: exact where the gas feeds back on its own lifetime, and right
+ * for a gas of which there is none yet. FAULT_INPUT when the ground's flux does not depend on the value. */
 int sensitivity_per_flux(const Unsplit *unsplit, const double *x, const Sensitivity *sensitivity, int s,
                          double *derivative, Fault *fault);
 

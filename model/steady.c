@@ -8,8 +8,8 @@
 
 #include "../input/constants.h"
 
-/* s: the first step, in which radicals that start from nothing move half-way; the first after the factors have
- * moved; the length that counts as Newton's: a hundred million years; and where to give up. */
+/* s: the first step, in which radicals that start from nothing move half-way; the first after the factors
+ * have moved; the length that counts as Newton's: a hundred million years; and where to give up. */
 static const double FIRST = 1.0, AGAIN = 1e7, NEWTON = 3e15, SHORTEST = 1e-6;
 
 /* How much longer the next step is, by the largest relative change of the last one. */
@@ -32,7 +32,7 @@ static double air_of(const Unsplit *unsplit, int i)
     return unsplit->model->air.number_density[i / unsplit->solved];
 }
 
-static void find_residual(const Unsplit *unsplit, const double *x, const Room *room, Steady *steady)
+static void find_residual(const Unsplit *unsplit, const double *x, const Room *room, SteadyReport *steady)
 {
     unsplit_turnover(unsplit, x, room->turnover);
     steady->residual = 0.0;
@@ -51,15 +51,15 @@ static void find_residual(const Unsplit *unsplit, const double *x, const Room *r
     }
 }
 
-static int not_settled(const Unsplit *unsplit, const Steady *steady, const char *why, Fault *fault)
+static int not_settled(const Unsplit *unsplit, const SteadyReport *steady, const char *why, Fault *fault)
 {
     const Model *model = unsplit->model;
-    return fault_set(fault, FAULT_NUMERICS,
-                     "no steady state: %s after %d steps; the residual is %.2g of the gross rate at species %s, "
-                     "altitude %.2f km; check the case, or give numerics.start = \"spinup\"",
-                     why, steady->iterations, steady->residual,
-                     mechanism_name(model->mechanism, steady->worst_species),
-                     1e-5 * model->grid.middle[steady->worst_layer]);
+    return fault_set(
+        fault, FAULT_NUMERICS,
+        "no steady state: %s after %d steps; the residual is %.2g of the gross rate at species %s, "
+        "altitude %.2f km; check the case, or give numerics.start = \"spinup\"",
+        why, steady->iterations, steady->residual, mechanism_name(model->mechanism, steady->worst_species),
+        1e-5 * model->grid.middle[steady->worst_layer]);
 }
 
 /* The step in room->step: its largest relative change, and whether it falls below zero. */
@@ -77,8 +77,8 @@ static int judge(const Unsplit *unsplit, const double *x, const Room *room, doub
     return falls || !isfinite(*change);
 }
 
-static int iterate(Unsplit *unsplit, double *x, const Room *room, double first, double enough, Steady *steady,
-                   Fault *fault)
+static int iterate(Unsplit *unsplit, double *x, const Room *room, double first, double enough,
+                   SteadyReport *steady, Fault *fault)
 {
     int padded = unsplit->model->grid.padded, solved = unsplit->solved, fresh = 0;
     double h = first;
@@ -121,7 +121,8 @@ static int iterate(Unsplit *unsplit, double *x, const Room *room, double first, 
     return not_settled(unsplit, steady, "the state still moves", fault);
 }
 
-static int settle_from(Unsplit *unsplit, double *x, double first, double enough, Steady *steady, Fault *fault)
+static int settle_from(Unsplit *unsplit, double *x, double first, double enough, SteadyReport *steady,
+                       Fault *fault)
 {
     size_t n = (size_t)unsplit->unknowns;
     double *block = malloc(3 * n * sizeof(double));
@@ -133,9 +134,9 @@ static int settle_from(Unsplit *unsplit, double *x, double first, double enough,
     return code;
 }
 
-int steady_settle(Unsplit *unsplit, double *x, Steady *steady, Fault *fault)
+int steady_settle(Unsplit *unsplit, double *x, SteadyReport *steady, Fault *fault)
 {
-    *steady = (Steady){0};
+    *steady = (SteadyReport){0};
     double since = omp_get_wtime();
     int code = settle_from(unsplit, x, FIRST, STEADY_CHANGE, steady, fault);
     steady->seconds = omp_get_wtime() - since;
@@ -156,7 +157,7 @@ static double ozone_moved(const Unsplit *unsplit, const double *x, double *befor
     return most;
 }
 
-static int take_turns(Unsplit *unsplit, Stepper *stepper, Column *column, Steady *steady, Fault *fault)
+static int take_turns(Unsplit *unsplit, Stepper *stepper, Column *column, SteadyReport *steady, Fault *fault)
 {
     double before[SETTINGS_MAX_EDGES];
     ozone_moved(unsplit, column->x, before);
@@ -173,16 +174,18 @@ static int take_turns(Unsplit *unsplit, Stepper *stepper, Column *column, Steady
         if (steady->turns > 1 && steady->ozone_change <= STEADY_OZONE)
             return settle_from(unsplit, column->x, NEWTON, STEADY_CHANGE, steady, fault);
         if (steady->turns == STEADY_TURNS)
-            return fault_set(fault, FAULT_NUMERICS,
-                             "no steady state: after %d turns of diurnal factors ozone still moves by %.2g of "
-                             "itself; check the case, or give numerics.start = \"spinup\"",
-                             steady->turns, steady->ozone_change);
+            return fault_set(
+                fault, FAULT_NUMERICS,
+                "no steady state: after %d turns of diurnal factors ozone still moves by %.2g of "
+                "itself; check the case, or give numerics.start = \"spinup\"",
+                steady->turns, steady->ozone_change);
     }
 }
 
-int steady_find(Unsplit *unsplit, Stepper *stepper, Column *column, double time, Steady *steady, Fault *fault)
+int steady_find(Unsplit *unsplit, Stepper *stepper, Column *column, double time, SteadyReport *steady,
+                Fault *fault)
 {
-    *steady = (Steady){0};
+    *steady = (SteadyReport){0};
     double since = omp_get_wtime();
     column->time = time;
     unsplit_set_time(unsplit, time);

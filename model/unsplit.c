@@ -33,7 +33,8 @@ static void mark_kept(Unsplit *unsplit)
             continue;
         unsplit->kept[s] = kind == SURFACE_SCHEDULE || kind == SURFACE_FIXED;
         unsplit->value[s] = kind == SURFACE_FIXED ? model->surface_value[s] : 0.0;
-        unsplit->deposit[s] = kind == SURFACE_DEPOSITION && unsplit->carried[s] ? model->surface_value[s] : 0.0;
+        unsplit->deposit[s] =
+            kind == SURFACE_DEPOSITION && unsplit->carried[s] ? model->surface_value[s] : 0.0;
     }
     for (int h = 0; h < model->held; h++)
         for (int l = 0; l < unsplit->layers; l++) {
@@ -157,11 +158,11 @@ void unsplit_free(Unsplit *unsplit)
     light_free(unsplit->light);
     pack_free(unsplit->pack);
     unsplit_matrix_free(unsplit->matrix);
-    double *array[] = {unsplit->factor,   unsplit->lit,     unsplit->coefficient, unsplit->k,
-                       unsplit->product,  unsplit->rate,    unsplit->density,     unsplit->jacobian,
-                       unsplit->block_f,  unsplit->block,   unsplit->mass,        unsplit->conductance,
-                       unsplit->deposit,  unsplit->value,   unsplit->shifted,     unsplit->bend,
-                       unsplit->slope,    unsplit->ahead};
+    double *array[] = {unsplit->factor,  unsplit->lit,   unsplit->coefficient, unsplit->k,
+                       unsplit->product, unsplit->rate,  unsplit->density,     unsplit->jacobian,
+                       unsplit->block_f, unsplit->block, unsplit->mass,        unsplit->conductance,
+                       unsplit->deposit, unsplit->value, unsplit->shifted,     unsplit->bend,
+                       unsplit->slope,   unsplit->ahead};
     for (size_t i = 0; i < sizeof array / sizeof array[0]; i++)
         free(array[i]);
     free(unsplit->carried);
@@ -176,7 +177,8 @@ void unsplit_free(Unsplit *unsplit)
 void unsplit_take_factors(Unsplit *unsplit, const Day *day)
 {
     size_t padded = (size_t)unsplit->model->grid.padded;
-    size_t factors = (size_t)unsplit->model->mechanism->reactions * padded, lit = (size_t)unsplit->solved * padded;
+    size_t factors = (size_t)unsplit->model->mechanism->reactions * padded,
+           lit = (size_t)unsplit->solved * padded;
     unsplit->has_factors = day != NULL;
     for (size_t i = 0; i < factors; i++)
         unsplit->factor[i] = day ? day->factor[i] : 1.0;
@@ -254,7 +256,8 @@ static void bend_coefficients(Unsplit *unsplit)
     size_t reactions = (size_t)mechanism->reactions;
     for (int p = 0; p < unsplit->partners; p++) {
         double *density = unsplit->density + FIELD(padded, unsplit->partner[p], 0);
-        double kept[PACK_ROUND(SETTINGS_MAX_EDGES)], *bend = unsplit->bend + (size_t)p * reactions * (size_t)padded;
+        double kept[PACK_ROUND(SETTINGS_MAX_EDGES)],
+            *bend = unsplit->bend + (size_t)p * reactions * (size_t)padded;
         for (int l = 0; l < padded; l++) {
             kept[l] = density[l];
             if (density[l] > ABSENT)
@@ -311,7 +314,8 @@ static void evaluate_chemistry(Unsplit *unsplit, double *tendency, int with_jaco
             double *to = unsplit->jacobian + (size_t)l * square;
             for (int i = 0; with_jacobian && i < solved; i++)
                 for (int j = 0; j < solved; j++)
-                    to[i * solved + j] = unsplit->block[((size_t)i * (size_t)species + (size_t)j) * PACK + (size_t)lane];
+                    to[i * solved + j] =
+                        unsplit->block[((size_t)i * (size_t)species + (size_t)j) * PACK + (size_t)lane];
         }
     }
 }
@@ -331,7 +335,8 @@ static void add_bends(Unsplit *unsplit)
                 double change = bend * unsplit->product[FIELD(padded, r, l)] / model->air.number_density[l];
                 double *block = unsplit->jacobian + (size_t)l * (size_t)solved * (size_t)solved;
                 for (int c = 0; c < reaction->changes; c++)
-                    block[reaction->changed[c] * solved + unsplit->partner[p]] += reaction->change[c] * change;
+                    block[reaction->changed[c] * solved + unsplit->partner[p]] +=
+                        reaction->change[c] * change;
             }
         }
 }
@@ -345,7 +350,8 @@ static void add_transport(const Unsplit *unsplit, const double *x, double *tende
         const double *row = x + FIELD(padded, s, 0);
         double below = unsplit->deposit[s] * unsplit->model->air.number_density[0] * row[0];
         for (int l = 0; l < unsplit->layers; l++) {
-            double above = l + 1 < unsplit->layers ? unsplit->conductance[l + 1] * (row[l + 1] - row[l]) : 0.0;
+            double above =
+                l + 1 < unsplit->layers ? unsplit->conductance[l + 1] * (row[l + 1] - row[l]) : 0.0;
             tendency[l * solved + s] += (above - below) / unsplit->mass[l];
             below = above;
         }
@@ -379,8 +385,9 @@ void unsplit_turnover(const Unsplit *unsplit, const double *x, double *turnover)
         const Reaction *reaction = &mechanism->reaction[r];
         for (int c = 0; c < reaction->changes; c++)
             for (int l = 0; l < unsplit->layers; l++)
-                turnover[l * solved + reaction->changed[c]] += fabs(reaction->change[c] * unsplit->rate[FIELD(padded, r, l)]) /
-                                                               model->air.number_density[l];
+                turnover[l * solved + reaction->changed[c]] +=
+                    fabs(reaction->change[c] * unsplit->rate[FIELD(padded, r, l)]) /
+                    model->air.number_density[l];
     }
     for (int s = 0; s < solved; s++)
         for (int l = 0; l < unsplit->layers; l++) {
@@ -404,8 +411,8 @@ void unsplit_turnover(const Unsplit *unsplit, const double *x, double *turnover)
 /* ---- light ---- */
 
 /* Ozone counts in every layer; NO2 and NO where the layer's optical depth at the absorber's strongest is
- * COUNTS: NO2 at 400 nm (JPL 19-5), NO in the lines of its delta bands (Minschwaner and Siskind 1993, orders of
- * magnitude). */
+ * COUNTS: NO2 at 400 nm (JPL 19-5), NO in the lines of its delta bands (Minschwaner and Siskind 1993, orders
+ * of magnitude). */
 static void list_absorbers(Unsplit *unsplit)
 {
     static const struct {

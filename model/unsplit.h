@@ -9,12 +9,12 @@
  * layer up; a species that is not carried has no transport.
  *
  * The matrix of derivatives. Unknowns stand layer by layer, so that it is block-tridiagonal, with full
- * blocks on the diagonal and diagonal ones beside it: a band of `solved` on both sides (LAPACK dgbtrf). Uptake
- * coefficients and HO2 + HO2 depend on species of their own layer, whose derivatives (finite differences of
- * the formulas) belong to the blocks. Photolysis in a layer depends on ozone in every layer, and a little on
- * NO2 and NO: a change of low rank, kept apart as U V' with V the absorbers layer by layer, and put in by the
- * formula of Sherman, Morrison and Woodbury (Hager 1989, SIAM Rev. 31, 221). Its slopes are finite differences
- * of the light.
+ * blocks on the diagonal and diagonal ones beside it: a band of `solved` on both sides (LAPACK dgbtrf).
+ * Uptake coefficients and HO2 + HO2 depend on species of their own layer, whose derivatives (finite
+ * differences of the formulas) belong to the blocks. Photolysis in a layer depends on ozone in every layer,
+ * and a little on NO2 and NO: a change of low rank, kept apart as U V' with V the absorbers layer by layer,
+ * and put in by the formula of Sherman, Morrison and Woodbury (Hager 1989, SIAM Rev. 31, 221). Its slopes are
+ * finite differences of the light.
  *
  * Unknown i of species s in layer l is l * solved + s, its unit mole fraction; derivatives and tendencies in
  * s-1. Everything here belongs to one thread but for the light, which uses OpenMP's.
@@ -38,30 +38,30 @@ typedef struct {
     double *factor, *lit; /* frozen diurnal factors [reactions][padded], daylight ratios [solved][padded] */
 
     /* at the state of the last unsplit_evaluate */
-    double *coefficient;  /* [reactions][padded] of thermal, surface and washout reactions, no factors */
-    double *k;            /* [reactions][padded] as the rates see them, factors and light included */
-    double *product;      /* [reactions][padded] product of the reactants' densities */
-    double *rate;         /* [reactions][padded] k times product, molecules cm-3 s-1 */
-    double *density;      /* [solved][padded] cm-3 */
-    double *jacobian;     /* [layers][solved][solved] chemistry within a layer, row by column, s-1 */
+    double *coefficient; /* [reactions][padded] of thermal, surface and washout reactions, no factors */
+    double *k;           /* [reactions][padded] as the rates see them, factors and light included */
+    double *product;     /* [reactions][padded] product of the reactants' densities */
+    double *rate;        /* [reactions][padded] k times product, molecules cm-3 s-1 */
+    double *density;     /* [solved][padded] cm-3 */
+    double *jacobian;    /* [layers][solved][solved] chemistry within a layer, row by column, s-1 */
 
     double *block_f, *block; /* work: one pack of the kernel's species */
 
-    double *mass;         /* [layers] N dz, molecules cm-2 */
-    double *conductance;  /* [layers + 1] K N / distance of middles, molecules cm-2 s-1; 0 at the ends */
-    double *deposit;      /* [solved] deposition velocity, cm s-1 */
+    double *mass;           /* [layers] N dz, molecules cm-2 */
+    double *conductance;    /* [layers + 1] K N / distance of middles, molecules cm-2 s-1; 0 at the ends */
+    double *deposit;        /* [solved] deposition velocity, cm s-1 */
     unsigned char *carried; /* [solved] 1: diffuses */
-    unsigned char *kept;  /* [unknowns] 1: the equation is value - x = 0 */
-    double *value;        /* [unknowns] that value */
-    int *partner;         /* [partners] species that coefficients of their own layer depend on */
+    unsigned char *kept;    /* [unknowns] 1: the equation is value - x = 0 */
+    double *value;          /* [unknowns] that value */
+    int *partner;           /* [partners] species that coefficients of their own layer depend on */
     int partners;
-    double *shifted;      /* [reactions][padded] work: coefficients with a partner shifted */
-    double *bend;         /* [partners][reactions][padded] dk/d(mole fraction of the partner), factors included */
+    double *shifted; /* [reactions][padded] work: coefficients with a partner shifted */
+    double *bend;    /* [partners][reactions][padded] dk/d(mole fraction of the partner), factors included */
     /* slopes of photolysis against what absorbs: O3, NO2 and NO, each in the layers where it counts */
-    int absorbers;        /* 0 until unsplit_slopes; at most UNSPLIT_ABSORBERS times layers */
-    int *absorber;        /* [absorbers] unknown */
-    double *slope;        /* [absorbers][photolysis][padded] d(k)/d(mole fraction), factors included, s-1 */
-    double *ahead;        /* work of unsplit_slopes: a state and a light */
+    int absorbers; /* 0 until unsplit_slopes; at most UNSPLIT_ABSORBERS times layers */
+    int *absorber; /* [absorbers] unknown */
+    double *slope; /* [absorbers][photolysis][padded] d(k)/d(mole fraction), factors included, s-1 */
+    double *ahead; /* work of unsplit_slopes: a state and a light */
     UnsplitMatrix *matrix;
     long evaluations, factorisations, lights;
 } Unsplit;
@@ -82,8 +82,8 @@ void unsplit_keep(const Unsplit *unsplit, double *x);
 void unsplit_evaluate(Unsplit *unsplit, const double *x, double *tendency, int with_jacobian);
 /* The slopes of photolysis against its absorbers at x: absorbers + 1 times the light. */
 void unsplit_slopes(Unsplit *unsplit, const double *x);
-/* Largest gross rate through each unknown at the last evaluation, s-1 times mole fraction: sum of the absolute
- * terms of its equation; [unknowns] out. What a residual is measured against. */
+/* Largest gross rate through each unknown at the last evaluation, s-1 times mole fraction: sum of the
+ * absolute terms of its equation; [unknowns] out. What a residual is measured against. */
 void unsplit_turnover(const Unsplit *unsplit, const double *x, double *turnover);
 
 /* Factor A - shift M, with A the derivative at the last evaluation with jacobian, M the identity without

@@ -14,10 +14,10 @@
 #include <string.h>
 
 struct UnsplitMatrix {
-    int width, stride;     /* band on either side; leading dimension of LAPACK's storage */
-    double *band;          /* [unknowns][stride] */
-    double *row, *column;  /* [unknowns] scales */
-    lapack_int *pivot;     /* [unknowns] */
+    int width, stride;    /* band on either side; leading dimension of LAPACK's storage */
+    double *band;         /* [unknowns][stride] */
+    double *row, *column; /* [unknowns] scales */
+    lapack_int *pivot;    /* [unknowns] */
     /* rank: absorbers of the light, as they were when it was factored */
     int rank;              /* 0: without light */
     double *update;        /* [rank][unknowns] P */
@@ -27,7 +27,8 @@ struct UnsplitMatrix {
     lapack_int *small_pivot;
 };
 
-/* Number density, cm-3, whose mole fraction is the least scale of an unknown: scarcer species count as absent. */
+/* Number density, cm-3, whose mole fraction is the least scale of an unknown: scarcer species count as
+ * absent. */
 static const double SCARCE = 1e-3;
 
 int unsplit_matrix_make(Unsplit *unsplit, Fault *fault)
@@ -121,7 +122,8 @@ static void assemble(Unsplit *unsplit, double shift)
         first = i - width > first ? i - width : first;
         end = i + width + 1 < end ? i + width + 1 : end;
         for (int j = first; j < end; j++)
-            matrix->band[(size_t)j * stride + (size_t)(2 * width + i - j)] = matrix->row[i] * values[j - start];
+            matrix->band[(size_t)j * stride + (size_t)(2 * width + i - j)] =
+                matrix->row[i] * values[j - start];
     }
 }
 
@@ -162,8 +164,8 @@ static int factorise_small(Unsplit *unsplit, Fault *fault)
         for (size_t i = 0; i < n; i++)
             matrix->update[(size_t)m * n + i] *= matrix->row[i];
     memcpy(matrix->solved_update, matrix->update, (size_t)rank * n * sizeof(double));
-    LAPACKE_dgbtrs_work(LAPACK_COL_MAJOR, 'N', (lapack_int)n, matrix->width, matrix->width, rank, matrix->band,
-                        matrix->stride, matrix->pivot, matrix->solved_update, (lapack_int)n);
+    LAPACKE_dgbtrs_work(LAPACK_COL_MAJOR, 'N', (lapack_int)n, matrix->width, matrix->width, rank,
+                        matrix->band, matrix->stride, matrix->pivot, matrix->solved_update, (lapack_int)n);
     for (int m = 0; m < rank; m++)
         for (int k = 0; k < rank; k++) {
             size_t at = (size_t)unsplit->absorber[k];
@@ -203,8 +205,8 @@ int unsplit_factorise(Unsplit *unsplit, const double *x, double shift, int with_
 static void solve_band(const Unsplit *unsplit, double *b, char form)
 {
     const UnsplitMatrix *matrix = unsplit->matrix;
-    LAPACKE_dgbtrs_work(LAPACK_COL_MAJOR, form, unsplit->unknowns, matrix->width, matrix->width, 1, matrix->band,
-                        matrix->stride, matrix->pivot, b, unsplit->unknowns);
+    LAPACKE_dgbtrs_work(LAPACK_COL_MAJOR, form, unsplit->unknowns, matrix->width, matrix->width, 1,
+                        matrix->band, matrix->stride, matrix->pivot, b, unsplit->unknowns);
 }
 
 /* b -= P G^-1 Q' B^-1 b, by way of a copy. */
@@ -220,8 +222,8 @@ static void subtract_light(const Unsplit *unsplit, double *b)
         size_t at = (size_t)unsplit->absorber[m];
         matrix->part[m] = matrix->column[at] * copy[at];
     }
-    LAPACKE_dgetrs_work(LAPACK_COL_MAJOR, 'N', rank, 1, matrix->small, rank, matrix->small_pivot, matrix->part,
-                        rank);
+    LAPACKE_dgetrs_work(LAPACK_COL_MAJOR, 'N', rank, 1, matrix->small, rank, matrix->small_pivot,
+                        matrix->part, rank);
     for (int m = 0; m < rank; m++)
         for (size_t i = 0; i < n; i++)
             b[i] -= matrix->part[m] * matrix->update[(size_t)m * n + i];
@@ -242,8 +244,8 @@ static void subtract_light_transposed(const Unsplit *unsplit, double *b)
             sum += matrix->update[(size_t)m * n + i] * copy[i];
         matrix->part[m] = sum;
     }
-    LAPACKE_dgetrs_work(LAPACK_COL_MAJOR, 'T', rank, 1, matrix->small, rank, matrix->small_pivot, matrix->part,
-                        rank);
+    LAPACKE_dgetrs_work(LAPACK_COL_MAJOR, 'T', rank, 1, matrix->small, rank, matrix->small_pivot,
+                        matrix->part, rank);
     for (int m = 0; m < rank; m++) {
         size_t at = (size_t)unsplit->absorber[m];
         b[at] -= matrix->column[at] * matrix->part[m];
@@ -292,8 +294,8 @@ void unsplit_multiply(const Unsplit *unsplit, const double *z, int with_light, i
             int r = mechanism->photolysis_first + j;
             const Reaction *reaction = &mechanism->reaction[r];
             for (int l = 0; l < unsplit->layers; l++) {
-                double change = unsplit->slope[FIELD(padded, m * lit + j, l)] * unsplit->product[FIELD(padded, r, l)] /
-                                model->air.number_density[l];
+                double change = unsplit->slope[FIELD(padded, m * lit + j, l)] *
+                                unsplit->product[FIELD(padded, r, l)] / model->air.number_density[l];
                 for (int c = 0; c < reaction->changes; c++) {
                     int i = l * solved + reaction->changed[c], o = unsplit->absorber[m];
                     if (unsplit->kept[i])

@@ -181,6 +181,7 @@ static int tolerance_row(const Run *baseline, NumericRow *rows, int *count, Faul
     double when = 0.0, now = settings.relative_tolerance;
     settings.first_year = 1980;
     settings.last_year = 1989;
+    settings.start = START_SPINUP;
     settings.spinup_years = 0;
     if (run_years(&loose, &settings, run_fields(baseline, 1979), "decade at the default tolerance", fault))
         return fault->code;
