@@ -9,9 +9,8 @@
 #include "../chem/surface.h"
 #include "../input/constants.h"
 
-/* Relative shift of a density for the derivative of a coefficient, of an absorber for that of the light: half
- * the digits of a double for smooth formulas; more where a radiation calculation lies between. */
-static const double PARTNER_SHIFT = 1e-6, ABSORBER_SHIFT = 1e-3;
+/* Relative shift of a density for the derivative of a coefficient: half the digits of a double. */
+static const double PARTNER_SHIFT = 1e-6;
 /* Density, cm-3, below which a partner counts as absent: surface.c has reached its limit there. */
 static const double ABSENT = 10.0;
 
@@ -89,6 +88,7 @@ static int allocate(Unsplit *unsplit, Fault *fault)
                 {&unsplit->mass, layers},
                 {&unsplit->conductance, layers + 1},
                 {&unsplit->deposit, solved},
+                {&unsplit->emission, solved},
                 {&unsplit->value, solved * layers},
                 {&unsplit->shifted, reactions * padded},
                 {&unsplit->bend, solved * reactions * padded},
@@ -158,11 +158,11 @@ void unsplit_free(Unsplit *unsplit)
     light_free(unsplit->light);
     pack_free(unsplit->pack);
     unsplit_matrix_free(unsplit->matrix);
-    double *array[] = {unsplit->factor,  unsplit->lit,   unsplit->coefficient, unsplit->k,
-                       unsplit->product, unsplit->rate,  unsplit->density,     unsplit->jacobian,
-                       unsplit->block_f, unsplit->block, unsplit->mass,        unsplit->conductance,
-                       unsplit->deposit, unsplit->value, unsplit->shifted,     unsplit->bend,
-                       unsplit->slope,   unsplit->ahead};
+    double *array[] = {unsplit->emission,    unsplit->factor,  unsplit->lit,   unsplit->coefficient,
+                       unsplit->k,           unsplit->product, unsplit->rate,  unsplit->density,
+                       unsplit->jacobian,    unsplit->block_f, unsplit->block, unsplit->mass,
+                       unsplit->conductance, unsplit->deposit, unsplit->value, unsplit->shifted,
+                       unsplit->bend,        unsplit->slope,   unsplit->ahead};
     for (size_t i = 0; i < sizeof array / sizeof array[0]; i++)
         free(array[i]);
     free(unsplit->carried);
@@ -193,6 +193,12 @@ void unsplit_set_time(Unsplit *unsplit, double time)
     for (int s = 0; s < unsplit->solved; s++)
         if (model->surface_kind[s] == SURFACE_SCHEDULE)
             unsplit->value[s] = schedule_abundance(&model->schedule, model->surface_gas[s], time);
+}
+
+void unsplit_emit(Unsplit *unsplit, int s, double flux)
+{
+    unsplit->kept[s] = 0;
+    unsplit->emission[s] = flux;
 }
 
 void unsplit_keep(const Unsplit *unsplit, double *x)
@@ -348,7 +354,8 @@ static void add_transport(const Unsplit *unsplit, const double *x, double *tende
         if (!unsplit->carried[s])
             continue;
         const double *row = x + FIELD(padded, s, 0);
-        double below = unsplit->deposit[s] * unsplit->model->air.number_density[0] * row[0];
+        double below =
+            unsplit->deposit[s] * unsplit->model->air.number_density[0] * row[0] - unsplit->emission[s];
         for (int l = 0; l < unsplit->layers; l++) {
             double above =
                 l + 1 < unsplit->layers ? unsplit->conductance[l + 1] * (row[l + 1] - row[l]) : 0.0;
@@ -400,104 +407,11 @@ void unsplit_turnover(const Unsplit *unsplit, const double *x, double *turnover)
             if (!unsplit->carried[s])
                 continue;
             if (l == 0)
-                *to += fabs(unsplit->deposit[s] * row[0]) / model->grid.depth[0];
+                *to += fabs(unsplit->deposit[s] * row[0]) / model->grid.depth[0] +
+                       fabs(unsplit->emission[s]) / unsplit->mass[0];
             if (l > 0)
                 *to += fabs(unsplit->conductance[l] * (row[l] - row[l - 1])) / unsplit->mass[l];
             if (l + 1 < unsplit->layers)
                 *to += fabs(unsplit->conductance[l + 1] * (row[l + 1] - row[l])) / unsplit->mass[l];
         }
-}
-
-/* ---- light ---- */
-
-/* Ozone counts in every layer; NO2 and NO where the layer's optical depth at the absorber's strongest is
- * COUNTS: NO2 at 400 nm (JPL 19-5), NO in the lines of its delta bands (Minschwaner and Siskind 1993, orders
- * of magnitude). */
-static void list_absorbers(Unsplit *unsplit)
-{
-    static const struct {
-        const char *name;
-        double section; /* cm2 */
-    } absorbers[UNSPLIT_ABSORBERS] = {{"O3", HUGE_VAL}, {"NO2", 6e-19}, {"NO", 1e-15}};
-    static const double COUNTS = 1e-6;
-    const Model *model = unsplit->model;
-    unsplit->absorbers = 0;
-    for (int a = 0; a < UNSPLIT_ABSORBERS; a++) {
-        int s = mechanism_solved(model->mechanism, absorbers[a].name);
-        for (int l = 0; s >= 0 && l < unsplit->layers; l++) {
-            double column = unsplit->density[FIELD(model->grid.padded, s, l)] * model->grid.depth[l];
-            if (a == 0 || column * absorbers[a].section > COUNTS)
-                unsplit->absorber[unsplit->absorbers++] = l * unsplit->solved + s;
-        }
-    }
-}
-
-void unsplit_slopes(Unsplit *unsplit, const double *x)
-{
-    const Model *model = unsplit->model;
-    const Mechanism *mechanism = model->mechanism;
-    Light *light = unsplit->light;
-    int padded = model->grid.padded, top = unsplit->layers - 1;
-    size_t field = (size_t)light->reactions * (size_t)padded, all = (size_t)unsplit->solved * (size_t)padded;
-    double *shifted = unsplit->ahead, *before = shifted + all;
-    list_absorbers(unsplit);
-    memcpy(shifted, x, all * sizeof(double));
-    light_refresh(light, x, unsplit->lit);
-    memcpy(before, light->mean, field * sizeof(double));
-    for (int m = 0; m < unsplit->absorbers; m++) {
-        int s = unsplit->absorber[m] % unsplit->solved, layer = unsplit->absorber[m] / unsplit->solved;
-        double *here = shifted + FIELD(padded, s, layer), *slope = unsplit->slope + (size_t)m * field;
-        double kept = *here, step = ABSORBER_SHIFT * fmax(fabs(kept), 1e-12);
-        for (int l = 0; l < (layer == top ? padded - top : 1); l++)
-            here[l] = kept + step;
-        light_refresh(light, shifted, unsplit->lit);
-        for (int l = 0; l < (layer == top ? padded - top : 1); l++)
-            here[l] = kept;
-        for (int j = 0; j < light->reactions; j++)
-            for (int l = 0; l < padded; l++) {
-                size_t at = FIELD(padded, j, l);
-                slope[at] = (light->mean[at] - before[at]) / step *
-                            unsplit->factor[FIELD(padded, mechanism->photolysis_first + j, l)];
-            }
-    }
-    memcpy(light->mean, before, field * sizeof(double));
-    unsplit->lights += unsplit->absorbers + 1;
-}
-
-void unsplit_rate_gradient(const Unsplit *unsplit, const double *weight, double *gradient)
-{
-    const Model *model = unsplit->model;
-    const Mechanism *mechanism = model->mechanism;
-    int padded = model->grid.padded, solved = unsplit->solved, layers = unsplit->layers;
-    int lit_first = mechanism->photolysis_first, reactions = mechanism->reactions;
-    for (int r = 0; r < reactions; r++) {
-        const Reaction *reaction = &mechanism->reaction[r];
-        for (int i = 0; i < reaction->reactants; i++)
-            for (int l = 0; l < layers; l++) {
-                double others = 1.0;
-                for (int j = 0; j < reaction->reactants; j++)
-                    if (j != i)
-                        others *= unsplit->density[FIELD(padded, reaction->reactant[j], l)];
-                size_t at = FIELD(padded, r, l);
-                gradient[l * solved + reaction->reactant[i]] +=
-                    weight[at] * unsplit->k[at] * others * model->air.number_density[l];
-            }
-    }
-    for (int p = 0; p < unsplit->partners; p++)
-        for (int r = 0; r < reactions; r++)
-            for (int l = 0; l < layers; l++) {
-                size_t at = FIELD(padded, r, l);
-                gradient[l * solved + unsplit->partner[p]] +=
-                    weight[at] * unsplit->product[at] * unsplit->bend[FIELD(padded, p * reactions + r, l)];
-            }
-    for (int m = 0; m < unsplit->absorbers; m++) {
-        const double *slope = unsplit->slope + (size_t)m * (size_t)unsplit->light->reactions * (size_t)padded;
-        double sum = 0.0;
-        for (int j = 0; j < unsplit->light->reactions; j++)
-            for (int l = 0; l < layers; l++) {
-                size_t at = FIELD(padded, lit_first + j, l);
-                sum += weight[at] * unsplit->product[at] * slope[FIELD(padded, j, l)];
-            }
-        gradient[unsplit->absorber[m]] += sum;
-    }
 }

@@ -50,6 +50,7 @@ typedef struct {
     double *mass;           /* [layers] N dz, molecules cm-2 */
     double *conductance;    /* [layers + 1] K N / distance of middles, molecules cm-2 s-1; 0 at the ends */
     double *deposit;        /* [solved] deposition velocity, cm s-1 */
+    double *emission;       /* [solved] molecules cm-2 s-1 into the lowest layer; 0 until unsplit_emit */
     unsigned char *carried; /* [solved] 1: diffuses */
     unsigned char *kept;    /* [unknowns] 1: the equation is value - x = 0 */
     double *value;          /* [unknowns] that value */
@@ -74,6 +75,9 @@ void unsplit_free(Unsplit *unsplit);
 void unsplit_take_factors(Unsplit *unsplit, const Day *day);
 /* What the ground keeps, at decimal year time. */
 void unsplit_set_time(Unsplit *unsplit, double time);
+/* Let a flux into the lowest layer, molecules cm-2 s-1, drive species s, and not a value that the ground
+ * keeps. */
+void unsplit_emit(Unsplit *unsplit, int s, double flux);
 /* Put the kept values into x [solved][padded]; padding lanes repeat the top layer. */
 void unsplit_keep(const Unsplit *unsplit, double *x);
 
@@ -98,6 +102,22 @@ void unsplit_multiply(const Unsplit *unsplit, const double *z, int with_light, i
  * slopes are known: what unsplit_multiply and the answers of sensitivity.h are made of.
  *   weight [reactions][padded] per rate in molecules cm-3 s-1 */
 void unsplit_rate_gradient(const Unsplit *unsplit, const double *weight, double *gradient);
+
+/* ---- through time (unsplit_time.c) ---- */
+
+typedef struct {
+    double relative, absolute; /* of a step's error; absolute in molecules cm-3 */
+    double fixed;              /* > 0: every step of this many s, whatever its error (order of the method) */
+    double step;               /* s, in: to try first (0: chosen), out: to try next */
+    long steps, rejections, iterations;
+} UnsplitStepping;
+
+/* Carry x [solved][padded] on from *time, decimal years, by years; factors stay those taken, the light
+ * follows the state. frozen = 1 keeps the ground and the clock at *time. TR-BDF2, order 2, L-stable, steps
+ * ending where the schedule bends. FAULT_NUMERICS when the step shrinks to nothing; x and *time then stand
+ * where it got. */
+int unsplit_advance(Unsplit *unsplit, double *x, double *time, double years, int frozen,
+                    UnsplitStepping *stepping, Fault *fault);
 
 /* private to unsplit*.c */
 int unsplit_matrix_make(Unsplit *unsplit, Fault *fault);
