@@ -162,7 +162,7 @@ static int take_turns(Unsplit *unsplit, Stepper *stepper, Column *column, Steady
     double before[SETTINGS_MAX_EDGES];
     ozone_moved(unsplit, column->x, before);
     for (double first = FIRST;; first = AGAIN) {
-        int code = stepper_refresh(stepper, column, fault);
+        int code = stepper_refresh(stepper, column, 1, fault);
         if (code)
             return code;
         unsplit_take_factors(unsplit, stepper_day(stepper));
@@ -194,11 +194,11 @@ int steady_find(Unsplit *unsplit, Stepper *stepper, Column *column, double time,
     if (unsplit->model->settings.day == DAY_MEAN) {
         unsplit_take_factors(unsplit, NULL);
         code = settle_from(unsplit, column->x, FIRST, STEADY_CHANGE, steady, fault);
-        if (!code)
-            code = stepper_refresh(stepper, column, fault);
     } else {
         code = take_turns(unsplit, stepper, column, steady, fault);
     }
+    if (!code)
+        code = stepper_refresh(stepper, column, 0, fault);
     steady->seconds = omp_get_wtime() - since;
     return code;
 }

@@ -481,11 +481,11 @@ static void renew_light(Stepper *stepper, Column *column)
     refresh_light(stepper, column);
 }
 
-int stepper_refresh(Stepper *stepper, Column *column, Fault *fault)
+int stepper_refresh(Stepper *stepper, Column *column, int with_day, Fault *fault)
 {
     refresh_coefficients(stepper, column);
     renew_light(stepper, column);
-    if (stepper->model->settings.day == DAY_MEAN)
+    if (!with_day || stepper->model->settings.day == DAY_MEAN)
         return 0;
     int code = repeat_day(stepper, column, fault);
     if (!code)

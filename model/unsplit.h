@@ -75,7 +75,7 @@ void unsplit_free(Unsplit *unsplit);
 void unsplit_take_factors(Unsplit *unsplit, const Day *day);
 /* What the ground keeps, at decimal year time. */
 void unsplit_set_time(Unsplit *unsplit, double time);
-/* Let a flux into the lowest layer, molecules cm-2 s-1, drive species s, and not a value that the ground
+/* Let a flux into the lowest layer, molecules cm-2 s-1, drive the carried species s, and not a value that the ground
  * keeps. */
 void unsplit_emit(Unsplit *unsplit, int s, double flux);
 /* Put the kept values into x [solved][padded]; padding lanes repeat the top layer. */
