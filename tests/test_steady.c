@@ -163,22 +163,36 @@ static void test_factors_belong(void **state)
     end_rest(&rest);
 }
 
-/* No steady state: ozone that nothing takes grows for ever. The fault says so with species and altitude. */
+/* No steady state: a gas that is emitted and that nothing takes grows for ever. And no state at all: a rate
+ * that is no number. The faults name species and altitude and say what to do. */
 static void test_none(void **state)
 {
     (void)state;
     Settings settings = coarse_case(DAY_MEAN, 2000);
     Rest rest = make_rest(&settings);
     const Model *model = rest.run.model;
-    int padded = model->grid.padded;
-    for (int l = 0; l < padded; l++)
-        rest.unsplit->factor[FIELD(padded, 3, l)] = NAN;
+    int padded = model->grid.padded, s = solved_of(model, "CFC-115");
+    for (int r = 0; r < model->mechanism->reactions; r++)
+        for (int c = 0; c < model->mechanism->reaction[r].changes; c++)
+            for (int l = 0; model->mechanism->reaction[r].changed[c] == s && l < padded; l++)
+                rest.unsplit->factor[FIELD(padded, r, l)] = 0.0;
+    unsplit_emit(rest.unsplit, s, 1e5);
     Fault fault = {0};
     assert_int_equal(steady_settle(rest.unsplit, rest.run.column->x, &rest.report, &fault), FAULT_NUMERICS);
     print_message("   %s\n", fault.text);
-    assert_non_null(strstr(fault.text, "no steady state"));
+    assert_non_null(strstr(fault.text, "no steady state: the state still moves"));
+    assert_non_null(strstr(fault.text, "CFC-115"));
     assert_non_null(strstr(fault.text, "altitude"));
     assert_non_null(strstr(fault.text, "spinup"));
+    end_rest(&rest);
+
+    rest = make_rest(&settings);
+    for (int l = 0; l < padded; l++)
+        rest.unsplit->factor[FIELD(padded, 3, l)] = NAN;
+    fault = (Fault){0};
+    assert_int_equal(steady_settle(rest.unsplit, rest.run.column->x, &rest.report, &fault), FAULT_NUMERICS);
+    print_message("   %s\n", fault.text);
+    assert_non_null(strstr(fault.text, "shrank to nothing"));
     end_rest(&rest);
 }
 
