@@ -6,8 +6,8 @@
 #include <string.h>
 
 /* Relative shift of an absorber: radiation stands between it and the rates, and the error of the difference,
- * of first order in the shift, stays below a thousandth. */
-static const double ABSORBER_SHIFT = 1e-3;
+ * of first order in the shift, stays below 1e-4. */
+static const double ABSORBER_SHIFT = 1e-4;
 
 /* Whether NO absorbs anything that matters in layer l: the light of its bands is gone where its own
  * photolysis is a hundredth of that at the top. */

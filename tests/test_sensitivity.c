@@ -1,8 +1,10 @@
 /* Tests of the adjoint (model/sensitivity): against central differences of columns settled anew, at frozen
  * diurnal factors, for parameters of every kind. Built-in case on coarse layers.
  *
- * Tolerance: 1 %, of an effect that is not tiny: 2e-5 of the answer per unit of ln(parameter), where two
- * columns settled to 1e-8 and apart by 0.004 in the parameter differ by 8e-8. */
+ * Tolerance: 1 %, of an effect that is not tiny. Two columns settled to 1e-8 (STEADY_CHANGE), apart by 0.02
+ * in ln(parameter), give the derivative to 5e-7 of the answer: a hundredth of TINY. Where the layers'
+ * contributions to an effect cancel, 2e-4 of their absolute sum is allowed: the light's slopes
+ * (unsplit_light.c) and kinks in the fits of surface.c come to about that. */
 #define _XOPEN_SOURCE 700
 #include "settled.h"
 
@@ -10,7 +12,7 @@
 
 enum { ANSWERS = 4 };
 static const char *const wanted[ANSWERS] = {"column", "O3@40", "lifetime:N2O", "flux:CFC-11"};
-static const double STEP = 2e-3, TOLERANCE = 0.01, TINY = 2e-5;
+static const double STEP = 1e-2, TOLERANCE = 0.01, TINY = 5e-5;
 
 typedef struct {
     Rest rest;
@@ -64,9 +66,10 @@ static void settle_anew(Bench *bench, double value[ANSWERS])
         value[a] = answer_value(bench->rest.unsplit, x, &bench->answer[a]);
 }
 
-/* The parameter is what stands at the place(s); got [ANSWERS] its derivatives by ln(parameter). */
+/* The parameter is what stands at the place(s); got [ANSWERS] its derivatives by ln(parameter), gross
+ * [ANSWERS] the absolute sum of their parts, or NULL. */
 static void compare(Bench *bench, const char *name, double *at, size_t count, size_t stride,
-                    const double *got)
+                    const double *got, const double *gross)
 {
     double up[ANSWERS], down[ANSWERS], ratio = exp(STEP);
     scale(at, count, stride, ratio);
@@ -77,7 +80,8 @@ static void compare(Bench *bench, const char *name, double *at, size_t count, si
     bench->parameters++;
     for (int a = 0; a < ANSWERS; a++) {
         double want = (up[a] - down[a]) / (2.0 * STEP), value = bench->sensitivity[a]->value;
-        double off = fabs(got[a] - want) / fmax(fabs(want), TINY * fabs(value));
+        double least = fmax(TINY * fabs(value), gross ? 2e-4 / TOLERANCE * gross[a] : 0.0);
+        double off = fabs(got[a] - want) / fmax(fabs(want), least);
         bench->worst = fmax(bench->worst, off);
         bench->compared += fabs(want) > TINY * fabs(value);
         if (!(off < TOLERANCE))
@@ -95,22 +99,24 @@ static void compare_reaction(Bench *bench, const char *id)
         r++;
     if (r == mechanism->reactions)
         fail_msg("no reaction %s", id);
-    double got[ANSWERS] = {0};
+    double got[ANSWERS] = {0}, gross[ANSWERS] = {0};
     for (int a = 0; a < ANSWERS; a++)
-        for (int l = 0; l < model->grid.layers; l++)
+        for (int l = 0; l < model->grid.layers; l++) {
             got[a] += bench->sensitivity[a]->reaction[FIELD(padded, r, l)];
-    compare(bench, id, bench->rest.unsplit->factor + FIELD(padded, r, 0), (size_t)padded, 1, got);
+            gross[a] += fabs(bench->sensitivity[a]->reaction[FIELD(padded, r, l)]);
+        }
+    compare(bench, id, bench->rest.unsplit->factor + FIELD(padded, r, 0), (size_t)padded, 1, got, gross);
 }
 
 static void test_reactions(void **state)
 {
     (void)state;
     static const char *const ids[] = {
-        "O+O2+M",   "O+O3",         "O1D+N2",         "O1D+H2O",        "OH+O3",        "HO2+O3",
-        "NO+O3",    "NO2+O",        "NO+HO2",         "NO2+OH",         "Cl+O3",        "ClO+O",
-        "Cl+CH4",   "ClO+NO2",      "O1D+N2O-NO",     "HO2+HO2",        "J-O2",         "J-O3",
-        "J-O3-O1D", "J-NO2",        "J-N2O",          "J-CFC-11",       "J-HNO3",       "J-ClONO2-Cl",
-        "J-Cl2O2",  "het-N2O5-H2O", "het-ClONO2-H2O", "het-ClONO2-HCl", "het-HOCl-HCl", "het-BrONO2-H2O"};
+        "O+O2+M",     "O+O3",         "O1D+N2",         "O1D+H2O",        "OH+O3",        "HO2+O3",
+        "NO+O3",      "NO2+O",        "NO+HO2",         "NO2+OH",         "Cl+O3",        "ClO+O",
+        "Cl+CH4",     "ClO+NO2",      "O1D+N2O-NO",     "HO2+HO2",        "J-O2",         "J-O3",
+        "J-O3-O1D",   "J-NO2",        "J-N2O",          "J-CFC-11",       "J-HNO3",       "J-ClONO2-Cl",
+        "J-Cl2O2-Cl", "het-N2O5-H2O", "het-ClONO2-H2O", "het-ClONO2-HCl", "het-HOCl-HCl", "het-BrONO2-H2O"};
     for (int day = DAY_MEAN; day <= DAY_FACTORS; day++) {
         Bench bench = make_bench(day);
         for (size_t i = 0; i < sizeof ids / sizeof ids[0]; i += day == DAY_MEAN ? 1 : 7)
@@ -138,13 +144,13 @@ static void test_borders(void **state)
         int s = solved_of(model, kept[i]);
         for (int a = 0; a < ANSWERS; a++)
             got[a] = bench.sensitivity[a]->surface[s] * unsplit->value[s];
-        compare(&bench, kept[i], &unsplit->value[s], 1, 1, got);
+        compare(&bench, kept[i], &unsplit->value[s], 1, 1, got, NULL);
     }
     for (size_t i = 0; i < sizeof deposited / sizeof deposited[0]; i++) {
         int s = solved_of(model, deposited[i]);
         for (int a = 0; a < ANSWERS; a++)
             got[a] = bench.sensitivity[a]->deposition[s];
-        compare(&bench, deposited[i], &unsplit->deposit[s], 1, 1, got);
+        compare(&bench, deposited[i], &unsplit->deposit[s], 1, 1, got, NULL);
     }
     for (int h = 0; h < model->held; h++) {
         int s = model->held_species[h];
@@ -154,7 +160,7 @@ static void test_borders(void **state)
         for (int a = 0; a < ANSWERS; a++)
             got[a] = bench.sensitivity[a]->held[s];
         compare(&bench, mechanism_name(model->mechanism, s), &unsplit->value[s], layers,
-                (size_t)unsplit->solved, got);
+                (size_t)unsplit->solved, got, NULL);
     }
     static const int edges[] = {1, 6, 8, 11, 15, 20, 26};
     for (size_t i = 0; i < sizeof edges / sizeof edges[0]; i++) {
@@ -162,7 +168,7 @@ static void test_borders(void **state)
         snprintf(name, sizeof name, "K at %g km", 1e-5 * model->grid.edge[edges[i]]);
         for (int a = 0; a < ANSWERS; a++)
             got[a] = bench.sensitivity[a]->eddy[edges[i]];
-        compare(&bench, name, &unsplit->conductance[edges[i]], 1, 1, got);
+        compare(&bench, name, &unsplit->conductance[edges[i]], 1, 1, got, NULL);
     }
     print_message("   %d borders, %d derivatives above the least; largest difference %.1e\n",
                   bench.parameters, bench.compared, bench.worst);
