@@ -7,13 +7,15 @@
 #include <string.h>
 
 #include "../input/constants.h"
+#include "archive.h"
 #include "commands.h"
 #include "sensitivity.h"
 #include "steady.h"
 
 typedef struct {
-    const char *case_path, *of;
-    int year_given, year, sensitivity, csv, threads, rows, help;
+    const char *case_path, *of, *output;
+    char command_line[2000];
+    int overwrite, year_given, year, sensitivity, csv, threads, rows, help;
 } Request;
 
 static void print_help(void)
@@ -28,6 +30,8 @@ static void print_help(void)
            "                       as in O3@40 and lifetime:N2O\n"
            "      --rows N         lines of a ranking (default 20)\n"
            "      --csv            everything as CSV\n"
+           "  -o, --output FILE.nc the settled column as a NetCDF file of one record\n"
+           "      --overwrite      replace FILE.nc if it is there\n"
            "      --threads N      threads to use (default: OMP_NUM_THREADS or all); results do not depend "
            "on it\n"
            "  -h, --help           this text\n\n"
@@ -48,21 +52,28 @@ static int whole_number(const char *option, const char *text, double low, double
 static int read_request(Request *request, int argc, char **argv, Fault *fault)
 {
     static const struct option options[] = {
-        {"year", required_argument, NULL, 'y'}, {"sensitivity", no_argument, NULL, 's'},
-        {"of", required_argument, NULL, 'o'},   {"rows", required_argument, NULL, 'r'},
-        {"csv", no_argument, NULL, 'c'},        {"threads", required_argument, NULL, 't'},
-        {"help", no_argument, NULL, 'h'},       {NULL, 0, NULL, 0}};
-    static const char *const names[] = {"--year", "--sensitivity", "--of",   "--rows",
-                                        "--csv",  "--threads",     "--help", NULL};
+        {"output", required_argument, NULL, 'f'}, {"overwrite", no_argument, NULL, 'w'},
+        {"year", required_argument, NULL, 'y'},   {"sensitivity", no_argument, NULL, 's'},
+        {"of", required_argument, NULL, 'O'},     {"rows", required_argument, NULL, 'r'},
+        {"csv", no_argument, NULL, 'c'},          {"threads", required_argument, NULL, 't'},
+        {"help", no_argument, NULL, 'h'},         {NULL, 0, NULL, 0}};
+    static const char *const names[] = {"--year",    "--sensitivity", "--of",     "--rows",      "--csv",
+                                        "--threads", "--help",        "--output", "--overwrite", NULL};
     int found, before = 1, code = 0;
-    request->of = NULL;
+    size_t used = (size_t)snprintf(request->command_line, sizeof request->command_line, "skymend");
+    for (int i = 0; i < argc && used < sizeof request->command_line; i++)
+        used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s",
+                                 argv[i]);
     request->rows = 20;
     opterr = 0;
     optind = 1;
-    while (!code && (found = getopt_long(argc, argv, ":h", options, NULL)) != -1) {
+    while (!code && (found = getopt_long(argc, argv, ":o:h", options, NULL)) != -1) {
         switch (found) {
         case 's': request->sensitivity = 1; break;
-        case 'o': request->of = optarg; break;
+        case 'O': request->of = optarg; break;
+        case 'f':
+        case 'o': request->output = optarg; break;
+        case 'w': request->overwrite = 1; break;
         case 'c': request->csv = 1; break;
         case 'h': request->help = 1; break;
         case 'r': code = whole_number("--rows", optarg, 1, 10000, &request->rows, fault); break;
@@ -317,6 +328,15 @@ static int run_sensitivity(Unsplit *unsplit, const double *x, const Answer *answ
     return code;
 }
 
+static int write_record(Archive *archive, const Column *column, const Model *model, int year, Fault *fault)
+{
+    Record record = {year + 0.5, year, year + 1.0, column->x, column_ozone_du(model, column->x)};
+    int code = archive_append(archive, &record, fault);
+    if (code)
+        archive_abandon(archive);
+    return code ? code : archive_close(archive, NULL, fault); /* no run, no ledger */
+}
+
 static int run(const Request *request, Fault *fault)
 {
     Settings *settings = malloc(sizeof *settings);
@@ -324,6 +344,7 @@ static int run(const Request *request, Fault *fault)
     Column *column = NULL;
     Stepper *stepper = NULL;
     Unsplit *unsplit = NULL;
+    Archive *archive = NULL;
     SteadyReport steady = {0};
     Answer answer = {0};
     if (!settings)
@@ -343,8 +364,15 @@ static int run(const Request *request, Fault *fault)
         code = stepper_make(&stepper, model, request->threads, fault);
     if (!code)
         code = unsplit_make(&unsplit, model, fault);
+    if (!code && request->output)
+        code = archive_create(&archive, model, request->output, request->overwrite, request->command_line,
+                              fault);
     if (!code)
         code = steady_find(unsplit, stepper, column, year + 0.5, &steady, fault);
+    if (archive && code)
+        archive_abandon(archive);
+    if (archive && !code)
+        code = write_record(archive, column, model, year, fault);
     if (!code && request->csv)
         print_settled_csv(unsplit, column, &steady, year);
     else if (!code)

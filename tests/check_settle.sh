@@ -69,6 +69,11 @@ truth "sensitivities" eval '[ $status -eq 0 ] && grep -q "What the laboratory do
 # light takes CFC-11: nothing does more to its lifetime than its own photolysis, mixing and the light's absorbers
 truth "what matters for CFC-11 is there" grep -q 'J-CFC-11' output
 
+"$SKYMEND" settle coarse.cfg --year 2000 -o settled.nc >output 2>errors
+status=$?
+truth "writes a file" eval '[ $status -eq 0 ] && ncdump -v ozone_column settled.nc | grep -q "ozone_column = [23]"'
+refused "keeps a file that is there" "exists already" coarse.cfg -o settled.nc
+
 for threads in 1 2; do
     "$SKYMEND" settle coarse.cfg --year 2000 --csv --sensitivity --threads $threads >threads$threads.csv 2>errors
 done
