@@ -21,11 +21,13 @@
 enum DayMode { DAY_MEAN, DAY_FACTORS, DAY_EXPLICIT };
 enum MomentsOut { MOMENTS_NONE, MOMENTS_ALL };
 enum SunMode { SUN_GLOBAL, SUN_LATITUDE };
+enum StartMode { START_SETTLED, START_SPINUP };
 enum BoundKind { BOUND_FIXED, BOUND_DEPOSITION };
 
 typedef struct {
     char species[32];
-    int kind;     /* enum BoundKind */
+    int kind;     /* enum StartMode { START_SETTLED, START_SPINUP };
+enum BoundKind */
     double value; /* BOUND_FIXED: mole fraction mol mol-1; BOUND_DEPOSITION: velocity cm s-1 */
     int line;     /* in the case file, for messages; 0 when built in or from an included file */
 } SurfaceBound;
@@ -82,7 +84,8 @@ typedef struct {
     double outer_step_days;        /* splitting step */
     double relative_tolerance;     /* chemistry */
     double absolute_tolerance_cm3; /* chemistry, molecules cm-3 */
-    double spinup_years;           /* balance at the first year's values before the run */
+    int start;                     /* enum StartMode */
+    double spinup_years;           /* START_SPINUP: balance at the first year's values before the run */
 
     /* output */
     int outputs_per_year; /* number of equal intervals per year, each record is the mean over its interval */

@@ -3,6 +3,7 @@
 
 static const char *const sun_choices[] = {"global", "latitude", NULL};
 static const char *const moments_choices[] = {"none", "all", NULL};
+static const char *const start_choices[] = {"settled", "spinup", NULL};
 static const char *const day_choices[] = {"mean", "factors", "explicit", NULL};
 
 const char *const bound_kinds[] = {"fixed", "deposition", NULL};
@@ -58,7 +59,7 @@ static const SettingKey keys[] = {
     NAMED("files", "bins", bins_file, "wavelength-bins.csv", "CSV of wavelength intervals"),
     NAMED("files", "solar", solar_file, "solar-irradiance.csv", "CSV of sunlight above the atmosphere"),
     NAMED("files", "initial", initial_file, "initial-profiles.csv",
-          "CSV of the state the spin-up starts from"),
+          "CSV of the state that spin-up and steady state start from"),
     TEXT("files", "tropospheric_oh", tropospheric_oh_file, "tropospheric-oh.csv",
          "CSV profile of OH held below the tropopause; empty to compute OH everywhere"),
     NAMED("files", "tropospheric_water", tropospheric_water_file, "tropospheric-water.csv",
@@ -99,8 +100,11 @@ static const SettingKey keys[] = {
          "error allowed per step of the chemistry"),
     REAL("numerics", "absolute_tolerance_cm3", absolute_tolerance_cm3, 1e2, 1e-6, 1e8, "molecules cm-3",
          "the same for gases too scarce to matter"),
+    CHOICE("numerics", "start", start, START_SETTLED, start_choices,
+           "settled: from the steady state under the first year's values; spinup: from the initial profiles "
+           "after spinup_years under them"),
     REAL("numerics", "spinup_years", spinup_years, 15, 0, 500, "years",
-         "balance at the first year's values before the run starts"),
+         "balance at the first year's values before the run starts, with start = \"spinup\""),
 
     WHOLE("output", "per_year", outputs_per_year, 1, 1, 366, "",
           "equal intervals per year; each record is the mean over its interval"),

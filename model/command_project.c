@@ -49,8 +49,8 @@ static void print_help(void)
         "it\n"
         "      --quiet           no progress, no table\n"
         "  -h, --help            this text\n\n"
-        "An interrupted run (Ctrl-C) leaves FILE.nc with every finished interval in it; during the spin-up\n"
-        "there is none yet, and no file.\n");
+        "An interrupted run (Ctrl-C) leaves FILE.nc with every finished interval in it; before the first is\n"
+        "finished there is no file.\n");
 }
 
 static int read_request(Request *request, int argc, char **argv, Fault *fault)

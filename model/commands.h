@@ -7,6 +7,7 @@
 #include "../input/settings.h"
 
 int command_project(int argc, char **argv);
+int command_settle(int argc, char **argv);
 int command_check(int argc, char **argv);
 int command_sunlight(int argc, char **argv);
 int command_answers(int argc, char **argv);

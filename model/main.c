@@ -14,6 +14,7 @@ static const struct {
     const char *help;
 } verbs[] = {
     {"project", command_project, "run a case through its years; write the file, print the answers"},
+    {"settle", command_settle, "find the column at rest under one year's surface values; sensitivities"},
     {"check", command_check, "read everything a case names, print the resolved case, run nothing"},
     {"sunlight", command_sunlight, "print photolysis rates by altitude, as CSV"},
     {"budget", command_budget, "what makes and destroys ozone, by catalytic family; how long gases live"},

@@ -1,4 +1,4 @@
-/* projection: spin-up and the years. */
+/* projection: how a run starts, and the years. */
 #include "projection.h"
 
 #include <math.h>
@@ -7,6 +7,7 @@
 
 #include "../input/constants.h"
 #include "budget.h"
+#include "steady.h"
 
 static int stopped(const Watcher *watcher)
 {
@@ -117,7 +118,7 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
         budget_step_rates(model, stepper, mean, means->step_rate);
         add(means->rate, means->step_rate, means->rates);
         if (means->course)
-            stepper_moments(stepper, means->step_course);
+            stepper_moments(stepper, mean, means->step_course);
         add(means->course, means->step_course, means->moments);
         tell(model, column, watcher, 0,
              share_before + (share_after - share_before) * (double)(i + 1) / (double)steps);
@@ -142,6 +143,36 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
     return watcher->record(watcher->context, &record, fault);
 }
 
+int projection_settle(const Model *model, Stepper *stepper, Column *column, Fault *fault)
+{
+    Unsplit *unsplit;
+    SteadyReport report;
+    int code = unsplit_make(&unsplit, model, fault);
+    if (code)
+        return code;
+    code = steady_find(unsplit, stepper, column, column->time, &report, fault);
+    if (!code && model->settings.day == DAY_EXPLICIT) { /* whose state is that of midnight */
+        day_midnight(stepper_day(stepper), column->x, column->x);
+        unsplit_keep(unsplit, column->x);
+    }
+    unsplit_free(unsplit);
+    return code;
+}
+
+/* Where the first year starts from. */
+static int begin(const Model *model, Stepper *stepper, Column *column, double spin_share,
+                 const Watcher *watcher, Fault *fault)
+{
+    if (model->settings.start == START_SPINUP)
+        return projection_spin_up(model, stepper, column, model->settings.spinup_years, spin_share, watcher,
+                                  fault);
+    int code = projection_settle(model, stepper, column, fault);
+    if (!code && stopped(watcher))
+        code =
+            fault_set(fault, FAULT_INTERRUPTED, "interrupted before the first year; nothing is written yet");
+    return code;
+}
+
 int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher, Fault *fault)
 {
     const Settings *settings = &model->settings;
@@ -149,8 +180,9 @@ int projection_run(const Model *model, Stepper *stepper, Column *column, const W
     if (means_make(&means, model, fault))
         return fault->code;
     int years = settings->last_year - settings->first_year + 1, per_year = settings->outputs_per_year;
-    double whole = settings->spinup_years + years, spin_share = settings->spinup_years / whole;
-    int code = projection_spin_up(model, stepper, column, settings->spinup_years, spin_share, watcher, fault);
+    double spinup = settings->start == START_SPINUP ? settings->spinup_years : 0.0;
+    double spin_share = spinup / (spinup + years);
+    int code = begin(model, stepper, column, spin_share, watcher, fault);
     column_open_ledger(model, column);
     long intervals = (long)years * per_year;
     for (long i = 0; !code && i < intervals; i++) {

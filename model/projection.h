@@ -23,10 +23,13 @@ typedef struct {
     volatile sig_atomic_t *stop; /* checked every outer step; non-zero: FAULT_INTERRUPTED */
 } Watcher;
 
-/* Spin up at the first year's values, then run first_year..last_year of the case, both included. The ledger
- * of column is opened after the spin-up. */
+/* Start as numerics.start says, settled or spun up at the first year's values, then run first_year..last_year
+ * of the case, both included. The ledger of column is opened after the start. */
 int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher,
                    Fault *fault);
+/* Only the settled start: column at rest under the values of its time (steady.h), stepper with the light and
+ * factors of that state. */
+int projection_settle(const Model *model, Stepper *stepper, Column *column, Fault *fault);
 /* Only the spin-up (years of it), schedule and clock held. share_of_all scales the progress. */
 int projection_spin_up(const Model *model, Stepper *stepper, Column *column, double years,
                        double share_of_all, const Watcher *watcher, Fault *fault);

@@ -363,12 +363,11 @@ static int carry_day(Stepper *stepper, Column *column, double years, Fault *faul
     return 0;
 }
 
-static int refresh_factors(Stepper *stepper, Column *column, Fault *fault)
+/* Repeat the day of the column's state until it gives the same factors. */
+static int repeat_day(Stepper *stepper, Column *column, Fault *fault)
 {
     const Model *model = stepper->model;
     Day *day = stepper->day;
-    if (model->settings.day != DAY_FACTORS || !day_stale(day, column->x))
-        return 0;
     Column *sample = stepper->sample;
     int cold = !day->ready, settled = 0, days = 0;
     memcpy(sample->x, column->x,
@@ -389,6 +388,13 @@ static int refresh_factors(Stepper *stepper, Column *column, Fault *fault)
     column->unsettled += !cold && !settled;
     column->factor_refreshes++;
     return 0;
+}
+
+static int refresh_factors(Stepper *stepper, Column *column, Fault *fault)
+{
+    if (stepper->model->settings.day != DAY_FACTORS || !day_stale(stepper->day, column->x))
+        return 0;
+    return repeat_day(stepper, column, fault);
 }
 
 /* ---- the step ---- */
@@ -537,9 +543,9 @@ const Day *stepper_day(const Stepper *stepper)
 {
     return stepper->day;
 }
-void stepper_moments(const Stepper *stepper, double *out)
+void stepper_moments(const Stepper *stepper, const double *mean, double *out)
 {
-    moments_values(stepper->moments, stepper->day, stepper->mean, out);
+    moments_values(stepper->moments, stepper->day, mean, out);
 }
 StepClock stepper_clock(const Stepper *stepper)
 {
@@ -548,4 +554,30 @@ StepClock stepper_clock(const Stepper *stepper)
 const double *stepper_coefficients(const Stepper *stepper)
 {
     return stepper->coefficient;
+}
+
+/* ---- for who finds the state by other means ---- */
+
+static void renew_light(Stepper *stepper, Column *column)
+{
+    size_t field = (size_t)stepper->model->mechanism->solved * (size_t)stepper->model->grid.padded;
+    if (stepper->model->settings.day == DAY_EXPLICIT) {
+        for (size_t i = 0; i < field; i++)
+            stepper->daylight[i] = column->x[i] * stepper->day->lit[i];
+        stepper->daylight_known = 1;
+    }
+    stepper->light->ready = 0;
+    refresh_light(stepper, column);
+}
+
+int stepper_refresh(Stepper *stepper, Column *column, int with_day, Fault *fault)
+{
+    refresh_coefficients(stepper, column);
+    renew_light(stepper, column);
+    if (!with_day || stepper->model->settings.day == DAY_MEAN)
+        return 0;
+    int code = repeat_day(stepper, column, fault);
+    if (!code)
+        renew_light(stepper, column); /* by the new shares of daylight */
+    return code;
 }

@@ -34,13 +34,18 @@ void stepper_free(Stepper *stepper);
  * column->time and the clock where it is (spin-up). On a fault the column holds a partly advanced state. */
 int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, Fault *fault);
 
+/* Light and coefficients and, with_day, unless the case runs on daily means, diurnal factors afresh for the
+ * daily means column->x, whatever has moved or not; the state and its time stay. With explicit days the
+ * factors, which such a run does without, tell what the day makes of the means (stepper_day). */
+int stepper_refresh(Stepper *stepper, Column *column, int with_day, Fault *fault);
+
 /* Mean mole fractions over the last step [solved][padded]: of its two ends, or of the explicit day. */
 const double *stepper_mean(const Stepper *stepper);
 const Light *stepper_light(const Stepper *stepper);
 const Day *stepper_day(const Stepper *stepper);
-/* Mole fractions by time of day that belong to stepper_mean; day.mode other than DAY_MEAN. out
- * [MOMENTS][solved][padded]. */
-void stepper_moments(const Stepper *stepper, double *out);
+/* Mole fractions by time of day that belong to the daily means [solved][padded]; day.mode other than
+ * DAY_MEAN. out [MOMENTS][solved][padded]. */
+void stepper_moments(const Stepper *stepper, const double *mean, double *out);
 StepClock stepper_clock(const Stepper *stepper);
 /* Rate coefficients of the last step without factors, [reactions][padded]; photolysis rows hold day means
  * (Light.mean). */

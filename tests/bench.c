@@ -112,6 +112,7 @@ static int time_projection(const Settings *settings, Setting *setting, Timing *t
     }
     long spun_outer = code ? 0 : column->outer_steps, spun_days = code ? 0 : column->days;
     if (!code) {
+        model->settings.start = START_SPINUP;
         model->settings.spinup_years = 0.0; /* done */
         code = projection_run(model, stepper, column, &watcher, fault);
     }

@@ -44,7 +44,7 @@ done
 cat >"$TEST_DIR/short.cfg" <<'END'
 years: { first = 1980; last = 1980; };
 grid: { spacing_km = 5.0; };
-numerics: { spinup_years = 0.1; outer_step_days = 15.0; };
+numerics: { start = "spinup"; spinup_years = 0.1; outer_step_days = 15.0; };
 END
 check "sanitizers find nothing in a short run with diurnal factors" \
     build-sanitized/skymend project "$TEST_DIR/short.cfg" -o "$TEST_DIR/short.nc" --threads 2

@@ -119,7 +119,7 @@ case_with() {
     } >"$file"
 }
 years='years = { first = 1990; last = 1990; };'
-coarse='grid = { top_km = 80; spacing_km = 4; }; day = { mode = "mean"; }; numerics = { spinup_years = 0; };'
+coarse='grid = { top_km = 80; spacing_km = 4; }; day = { mode = "mean"; }; numerics = { start = "spinup"; spinup_years = 0; };'
 
 line_of() { # FILE TEXT: number of the first line that holds it
     grep -nF -e "$2" "$1" | head -n 1 | cut -d: -f1
@@ -441,7 +441,7 @@ truth "interrupt: the file is gone or opens" eval '[ ! -e long.nc ] || opens lon
 
 case_with longer.cfg 'years = { first = 1955; last = 2100; };' 'output = { per_year = 52; };' \
     'grid = { top_km = 80; spacing_km = 4; }; day = { mode = "mean"; };' \
-    'numerics = { spinup_years = 0; outer_step_days = 0.1; };'
+    'numerics = { start = "spinup"; spinup_years = 0; outer_step_days = 0.1; };'
 "$SKYMEND" project longer.cfg -o longer.nc --quiet >output 2>said </dev/null &
 running=$!
 export HDF5_USE_FILE_LOCKING=FALSE # the file is looked at while it is being written

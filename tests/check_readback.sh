@@ -8,7 +8,7 @@ course=
 
 if [ $# -eq 0 ] && [ -n "${SKYMEND-}" ] && [ -n "${TEST_DIR-}" ]; then
     printf '%s\n' 'years: { first = 1978; last = 1983; };' 'grid: { spacing_km = 4.0; };' \
-        'day: { mode = "mean"; };' 'numerics: { spinup_years = 0.5; };' >"$TEST_DIR/readback.cfg"
+        'day: { mode = "mean"; };' 'numerics: { start = "spinup"; spinup_years = 0.5; };' >"$TEST_DIR/readback.cfg"
     "$SKYMEND" project "$TEST_DIR/readback.cfg" -o "$TEST_DIR/readback.nc" --quiet || exit 2
     set -- "$TEST_DIR/readback.nc"
     # the same gases by time of day

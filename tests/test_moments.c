@@ -35,14 +35,14 @@ static int spin(void **state)
     of_days = malloc(MOMENTS * size * sizeof(double));
     if (!of_means || !of_days)
         return -1;
-    stepper_moments(means.stepper, of_means);
+    stepper_moments(means.stepper, stepper_mean(means.stepper), of_means);
     settings.day = DAY_EXPLICIT;
     settings.refresh_column = 1e-4; /* the first light knows the ozone of midnight only */
     settings.relative_tolerance = 1e-3;
     days = start(&settings, 1);
     memcpy(days.column->x, of_means + MOMENT_MIDNIGHT * size, size * sizeof(double));
     advance(&days, 1.0, DAYS, 1);
-    stepper_moments(days.stepper, of_days);
+    stepper_moments(days.stepper, stepper_mean(days.stepper), of_days);
     return 0;
 }
 

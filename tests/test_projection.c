@@ -14,6 +14,7 @@ static Settings coarse(double spacing_km, int first_year)
     settings_default(&settings, data_dir());
     settings.spacing_km = spacing_km;
     settings.first_year = settings.last_year = first_year;
+    settings.start = START_SPINUP;
     settings.spinup_years = 0.0;
     return settings;
 }

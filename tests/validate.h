@@ -70,6 +70,11 @@ typedef struct {
     char note[ROW_NOTE];
 } NumericRow;
 
+/* validate_unsplit.c: split less unsplit after years from the settled first_year, under the schedule: ozone
+ * column, DU, and the largest relative difference of ozone in a layer and its altitude. */
+int splitting_error(const Settings *from, int first_year, int years, double *column_du, double *layer,
+                    double *altitude_km, Fault *fault);
+
 #define NUMERIC_MOST 24
 /* Measure them all; returns a fault's code. rows [NUMERIC_MOST], count out. */
 int numerics_measure(const Run *baseline, NumericRow *rows, int *count, Fault *fault);

@@ -34,7 +34,7 @@ int row_moments(const Evidence *evidence, const char *id, double *value, char *n
     double *x = malloc(MOMENTS * field * sizeof(double));
     if (!x)
         return fault_memory(fault, "values by time of day");
-    stepper_moments(evidence->stepper, x);
+    stepper_moments(evidence->stepper, evidence->x, x);
     const double *noon = x + MOMENT_NOON * field;
     *value = at_km(model, noon + FIELD(model->grid.padded, a, 0), noon + FIELD(model->grid.padded, b, 0), km);
     snprintf(note, ROW_NOTE, "balance of %d, noon of the case's sun, %g km", STEADY_YEAR, km);

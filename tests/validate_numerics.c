@@ -173,6 +173,22 @@ static int splitting_alone_row(const Run *baseline, NumericRow *rows, int *count
     return 0;
 }
 
+/* The splitting against the same equations unsplit. */
+static int unsplit_rows(const Run *baseline, NumericRow *rows, int *count, Fault *fault)
+{
+    double column, layer, altitude = 0.0;
+    if (splitting_error(&baseline->model->settings, 1985, 3, &column, &layer, &altitude, fault))
+        return fault->code;
+    NumericRow *row =
+        add(rows, count, "split-unsplit-column", "split against unsplit, 1985-1987: column", "DU", SMALL_DU);
+    row->value = fabs(column);
+    snprintf(row->note, ROW_NOTE, "%+.3f DU", column);
+    row = add(rows, count, "split-unsplit-layer", "the same, O3 in any layer", "%", 0.5);
+    row->value = 100.0 * layer;
+    snprintf(row->note, ROW_NOTE, "at %.1f km", altitude);
+    return 0;
+}
+
 static int tolerance_row(const Run *baseline, NumericRow *rows, int *count, Fault *fault)
 {
     Settings settings = baseline->model->settings;
@@ -180,6 +196,7 @@ static int tolerance_row(const Run *baseline, NumericRow *rows, int *count, Faul
     double when = 0.0, now = settings.relative_tolerance;
     settings.first_year = 1980;
     settings.last_year = 1989;
+    settings.start = START_SPINUP;
     settings.spinup_years = 0;
     if (run_years(&loose, &settings, run_fields(baseline, 1979), "decade at the default tolerance", fault))
         return fault->code;
@@ -224,8 +241,9 @@ int numerics_measure(const Run *baseline, NumericRow *rows, int *count, Fault *f
 {
     *count = 0;
     if (day_rows(baseline, rows, count, fault) || splitting_row(baseline, rows, count, fault) ||
-        splitting_alone_row(baseline, rows, count, fault) || tolerance_row(baseline, rows, count, fault) ||
-        refresh_row(baseline, 1, rows, count, fault) || refresh_row(baseline, 0, rows, count, fault))
+        splitting_alone_row(baseline, rows, count, fault) || unsplit_rows(baseline, rows, count, fault) ||
+        tolerance_row(baseline, rows, count, fault) || refresh_row(baseline, 1, rows, count, fault) ||
+        refresh_row(baseline, 0, rows, count, fault))
         return fault->code;
     return 0;
 }

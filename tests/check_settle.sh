@@ -1,0 +1,84 @@
+#!/bin/sh
+# What skymend settle says and refuses: tables, CSV, sensitivities, the same bits for any number of threads.
+#
+# Environment: SKYMEND the program, SKYMEND_DATA the folder of the data, TEST_DIR a scratch folder.
+# Prints "ok NAME" or "not ok NAME" per check. Every expected text is this program's own contract (README.md).
+
+: "${SKYMEND:?path of the program}" "${SKYMEND_DATA:?folder of the data}" "${TEST_DIR:?scratch folder}"
+SKYMEND=$(cd "$(dirname "$SKYMEND")" && pwd)/$(basename "$SKYMEND")
+SKYMEND_DATA=$(cd "$SKYMEND_DATA" && pwd)
+export SKYMEND_DATA
+cd "$TEST_DIR" || exit 1
+failures=0
+
+truth() {
+    name=$1
+    shift
+    if "$@"; then
+        printf 'ok %s\n' "$name"
+    else
+        printf 'not ok %s\n# untrue: %s\n' "$name" "$*"
+        failures=$((failures + 1))
+    fi
+}
+
+# refused NAME PIECE OPTION...: exit 2, one line on standard error that holds the piece, nothing else
+refused() {
+    name=$1
+    piece=$2
+    shift 2
+    "$SKYMEND" settle "$@" >output 2>errors </dev/null
+    status=$?
+    truth "$name" eval '[ $status -eq 2 ] && [ "$(wc -l <errors)" -eq 1 ] && grep -qF -e "$piece" errors && [ ! -s output ]'
+}
+
+cat >coarse.cfg <<'END'
+title = "coarse";
+years = { first = 1980; last = 1990; };
+grid = { top_km = 60; spacing_km = 4; };
+day = { mode = "mean"; };
+END
+
+refused "unknown option" "did you mean --year?" coarse.cfg --yaer 1990
+refused "year without a value" "needs a value" coarse.cfg --year
+refused "year no number" "is no number" coarse.cfg --year soon
+refused "year not whole" "no whole number" coarse.cfg --year 1990.5
+refused "year outside the schedule" "CFC-11 has values for" coarse.cfg --year 2300
+refused "of without sensitivity" "add --sensitivity" coarse.cfg --of column
+refused "unknown answer" "is no answer" coarse.cfg --sensitivity --of columm
+refused "unknown gas" "did you mean N2O?" coarse.cfg --sensitivity --of lifetime:N20
+refused "altitude outside the grid" "reach from" coarse.cfg --sensitivity --of O3@70
+refused "flux of a gas that the ground does not keep" "keeps no value of O3" coarse.cfg --sensitivity --of flux:O3
+refused "two cases" "name one" coarse.cfg other.cfg
+refused "no such case" "nowhere.cfg" nowhere.cfg
+
+"$SKYMEND" settle --help >output 2>errors
+truth "help" eval '[ $? -eq 0 ] && grep -q "usage: skymend settle" output && [ ! -s errors ]'
+
+"$SKYMEND" settle coarse.cfg --year 2000 >output 2>errors
+status=$?
+truth "settles" eval '[ $status -eq 0 ] && [ ! -s errors ]'
+truth "prints the column" grep -q 'ozone column  *[23][0-9][0-9]\.[0-9]* DU' output
+truth "prints lifetimes" grep -q '^  N2O  *[0-9.]*  *3\.1[0-9]*e+05 ppt' output
+"$SKYMEND" settle coarse.cfg --csv >first.csv 2>errors
+truth "the first year of the case by default" grep -q '^solution,year,1980,' first.csv
+
+"$SKYMEND" settle coarse.cfg --year 2000 --sensitivity --of lifetime:CFC-11 --rows 5 >output 2>errors
+status=$?
+truth "sensitivities" eval '[ $status -eq 0 ] && grep -q "What the laboratory does not know" output'
+# light takes CFC-11: nothing does more to its lifetime than its own photolysis, mixing and the light's absorbers
+truth "what matters for CFC-11 is there" grep -q 'J-CFC-11' output
+
+"$SKYMEND" settle coarse.cfg --year 2000 -o settled.nc >output 2>errors
+status=$?
+truth "writes a file" eval '[ $status -eq 0 ] && ncdump -v ozone_column settled.nc | grep -q "ozone_column = [23]"'
+refused "keeps a file that is there" "exists already" coarse.cfg -o settled.nc
+
+for threads in 1 2; do
+    "$SKYMEND" settle coarse.cfg --year 2000 --csv --sensitivity --threads $threads >threads$threads.csv 2>errors
+done
+truth "the same bits for any number of threads" cmp -s threads1.csv threads2.csv
+truth "every row of the CSV has six cells" eval \
+    '[ "$(grep -v "^#" threads1.csv | awk -F, "NF != 6" | wc -l)" -eq 0 ] && [ "$(wc -l <threads1.csv)" -gt 250 ]'
+
+exit $((failures > 0))
