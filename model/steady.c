@@ -15,7 +15,7 @@ static const double FIRST = 1.0, AGAIN = 1e7, NEWTON = 3e15, SHORTEST = 1e-6;
 /* How much longer the next step is, by the largest relative change of the last one. */
 static double growth(double change)
 {
-    return change < 0.1 ? 100.0 : change < 0.3 ? 10.0 : change < 0.9 ? 4.0 : 2.0;
+    return change < 1e-3 ? 1e4 : change < 0.1 ? 100.0 : change < 0.3 ? 10.0 : change < 0.9 ? 4.0 : 2.0;
 }
 
 typedef struct {

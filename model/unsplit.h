@@ -75,8 +75,8 @@ void unsplit_free(Unsplit *unsplit);
 void unsplit_take_factors(Unsplit *unsplit, const Day *day);
 /* What the ground keeps, at decimal year time. */
 void unsplit_set_time(Unsplit *unsplit, double time);
-/* Let a flux into the lowest layer, molecules cm-2 s-1, drive the carried species s, and not a value that the ground
- * keeps. */
+/* Let a flux into the lowest layer, molecules cm-2 s-1, drive the carried species s, and not a value that the
+ * ground keeps. */
 void unsplit_emit(Unsplit *unsplit, int s, double flux);
 /* Put the kept values into x [solved][padded]; padding lanes repeat the top layer. */
 void unsplit_keep(const Unsplit *unsplit, double *x);
@@ -84,7 +84,9 @@ void unsplit_keep(const Unsplit *unsplit, double *x);
 /* Light, coefficients and rates at x [solved][padded]; tendency [unknowns] out, kept equations value - x (per
  * second). with_jacobian: the blocks as well. */
 void unsplit_evaluate(Unsplit *unsplit, const double *x, double *tendency, int with_jacobian);
-/* The slopes of photolysis against its absorbers at x: absorbers + 1 times the light. */
+/* The slopes of photolysis against its absorbers at x, where unsplit_evaluate was last: absorbers + 1 times
+ * the light. The blocks belong to factors and light as they are: evaluate, slopes, factorise, in this order.
+ */
 void unsplit_slopes(Unsplit *unsplit, const double *x);
 /* Largest gross rate through each unknown at the last evaluation, s-1 times mole fraction: sum of the
  * absolute terms of its equation; [unknowns] out. What a residual is measured against. */
