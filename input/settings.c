@@ -394,6 +394,14 @@ static int check_together(Reading *reading)
                  settings->outputs_per_year);
         return clash(reading, "output", "per_year", "", text);
     }
+    if (settings->temperature == TEMPERATURE_FILE && !settings->temperature_file[0])
+        return clash(reading, "temperature", "mode", "",
+                     "temperature.mode is \"file\", but files.temperature_change names none; name the table");
+    if (settings->temperature != TEMPERATURE_FILE && settings->temperature_file[0])
+        return clash(
+            reading, "files", "temperature_change", "",
+            "files.temperature_change is used with temperature.mode = \"file\" alone; set the mode, or "
+            "leave the file out");
     return check_files(reading);
 }
 

@@ -20,6 +20,7 @@
 
 enum DayMode { DAY_MEAN, DAY_FACTORS, DAY_EXPLICIT };
 enum SunMode { SUN_GLOBAL, SUN_LATITUDE };
+enum TemperatureMode { TEMPERATURE_FIXED, TEMPERATURE_CO2, TEMPERATURE_FILE };
 enum BoundKind { BOUND_FIXED, BOUND_DEPOSITION };
 
 typedef struct {
@@ -57,6 +58,13 @@ typedef struct {
     char tropospheric_water_file[SETTINGS_PATH]; /* tropospheric-water.csv */
     char tropospheric_no2_file[SETTINGS_PATH];   /* tropospheric-nitrogen-dioxide.csv; "" = NO2 computed
                                                     everywhere */
+
+    char co2_cooling_file[SETTINGS_PATH]; /* co2-cooling.csv */
+    char temperature_file[SETTINGS_PATH]; /* "" unless temperature is TEMPERATURE_FILE */
+
+    /* temperature */
+    int temperature;    /* enum TemperatureMode */
+    int reference_year; /* the air of the case is that of this year, TEMPERATURE_CO2 */
 
     /* sun */
     int sun;               /* enum SunMode */

@@ -2,6 +2,7 @@
 #include "settings_keys.h"
 
 static const char *const sun_choices[] = {"global", "latitude", NULL};
+static const char *const temperature_choices[] = {"fixed", "co2", "file", NULL};
 static const char *const day_choices[] = {"mean", "factors", "explicit", NULL};
 
 const char *const bound_kinds[] = {"fixed", "deposition", NULL};
@@ -64,6 +65,17 @@ static const SettingKey keys[] = {
           "CSV profile of water vapour held below the tropopause"),
     TEXT("files", "tropospheric_no2", tropospheric_no2_file, "tropospheric-nitrogen-dioxide.csv",
          "CSV profile of NO2 held below the tropopause; empty to compute NO2 everywhere"),
+    NAMED("files", "co2_cooling", co2_cooling_file, "co2-cooling.csv",
+          "CSV profile of the change of temperature for a doubling of CO2"),
+    TEXT("files", "temperature_change", temperature_file, "",
+         "CSV of the change of temperature by year and altitude; used when temperature.mode is file"),
+
+    CHOICE("temperature", "mode", temperature, TEMPERATURE_CO2, temperature_choices,
+           "fixed: that of the air profile; co2: cooling with the CO2 of the schedule by a published linear "
+           "relation; file: change by year and altitude as in files.temperature_change"),
+    WHOLE("temperature", "reference_year", reference_year, 1980, 1750, 2500, "",
+          "year the air profile belongs to, used when mode is co2; the standard atmosphere of 1976 rests on "
+          "soundings of the decades before"),
 
     CHOICE("sun", "kind", sun, SUN_GLOBAL, sun_choices,
            "global mean sun, or the sun of latitude_deg on day_of_year"),

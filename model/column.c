@@ -9,6 +9,8 @@
 
 #include "../input/constants.h"
 #include "../input/table.h"
+#include "conditions.h"
+#include "variation.h"
 
 /* ---- tables of the case ---- */
 
@@ -301,6 +303,22 @@ static int make_fields(Model *model, Fault *fault)
     return 0;
 }
 
+static int set_conditions(Model *model, Fault *fault)
+{
+    char *sources = NULL;
+    int code = variation_read(&model->variation, model, &sources, fault);
+    size_t length = code ? 0 : strlen(sources), old = strlen(model->sources);
+    char *longer = length ? realloc(model->sources, old + length + 1) : NULL;
+    if (longer) {
+        memcpy(longer + old, sources, length + 1);
+        model->sources = longer;
+    } else if (length) {
+        code = fault_memory(fault, "list of sources");
+    }
+    free(sources);
+    return code ? code : conditions_make(&model->base, model, fault);
+}
+
 int model_make(Model **made, const Settings *settings, Fault *fault)
 {
     *made = NULL;
@@ -326,6 +344,8 @@ int model_make(Model **made, const Settings *settings, Fault *fault)
         code = set_ground(model, fault);
     if (!code)
         code = read_aerosol(model, fault);
+    if (!code)
+        code = set_conditions(model, fault);
     if (code) {
         model_free(model);
         return code;
@@ -338,6 +358,8 @@ void model_free(Model *model)
 {
     if (!model)
         return;
+    variation_free(model->variation);
+    conditions_free(model->base);
     diffusion_free(model->diffusion);
     spectra_free(model->spectra);
     kernel_free(model->kernel);

@@ -28,6 +28,7 @@ int day_make(Day **made, const Model *model, Fault *fault)
     size_t padded = (size_t)model->grid.padded, solved = (size_t)model->mechanism->solved;
     size_t reactions = (size_t)model->mechanism->reactions;
     day->model = model;
+    day->conditions = model->base;
     day->factor = malloc(reactions * padded * sizeof(double));
     day->ratio = malloc(solved * padded * sizeof(double));
     day->lit = malloc(solved * padded * sizeof(double));
@@ -106,8 +107,7 @@ static void take_ratios(Day *day, const double *end, double lit_time)
     for (int s = 0; s < day->model->mechanism->solved; s++)
         for (int l = 0; l < padded; l++) {
             size_t at = FIELD(padded, s, l);
-            double mean = day->sum_y[at] / DAY_SECONDS,
-                   midnight = end[at] * day->model->air.number_density[l];
+            double mean = day->sum_y[at] / DAY_SECONDS, midnight = end[at] * day->conditions->air[l];
             int there = mean > ABSENT;
             /* a value below zero is within the solver's tolerance of zero, and a ratio cannot say more than
              * that */

@@ -3,11 +3,12 @@
 #define SKYMEND_LIGHT_H
 
 #include "../chem/photolysis.h"
-#include "column.h"
+#include "conditions.h"
 #include "sun.h"
 
 typedef struct {
     const Model *model;
+    const Conditions *conditions; /* Model.base until light_follow */
     Sun sun;
     Photolysis *photolysis;
     int reactions; /* photolysis reactions; row 0 is the mechanism's reaction photolysis_first */
@@ -24,6 +25,10 @@ typedef struct {
 /* Owner: caller. refine as in sun_make. */
 int light_make(Light **made, const Model *model, int refine, Fault *fault);
 void light_free(Light *light);
+
+/* Take conditions (kept by reference) in place of what light went by; moved says which parts changed since
+ * then, ConditionsPart added up. Rates count as stale afterwards where they depend on them. */
+void light_follow(Light *light, const Conditions *conditions, int moved);
 
 /* Absorbers while the sun is up: x [solved][padded] mole fractions, times lit [solved][padded] where that is
  * not NULL (mean by daylight over daily mean: in the mesosphere ozone by day is a fraction of that by night).

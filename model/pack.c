@@ -40,6 +40,7 @@ int pack_make(PackWork **made, const Model *model, Fault *fault)
     PackWork *work = calloc(1, sizeof *work);
     if (!work)
         return fault_memory(fault, "chemistry of a pack");
+    work->conditions = model->base;
     size_t species = (size_t)model->kernel->species, reactions = (size_t)model->kernel->reactions;
     size_t tallies = (size_t)model->kernel->tallies;
     struct {
@@ -140,7 +141,7 @@ static int kept_by_ground(const Model *model, int s)
 void pack_load(PackWork *work, const Model *model, int first, const double *x)
 {
     int padded = model->grid.padded, solved = model->mechanism->solved;
-    const double *air = model->air.number_density + first;
+    const double *air = work->conditions->air + first;
     for (int s = 0; s < solved; s++) {
         const double *row = x + FIELD(padded, s, first);
         for (int l = 0; l < PACK; l++)
@@ -151,7 +152,7 @@ void pack_load(PackWork *work, const Model *model, int first, const double *x)
     work->held = 0;
     for (int h = 0; h < model->held; h++) {
         const double *free_here = model->held_free + FIELD(padded, h, first);
-        const double *fraction = model->held_fraction + FIELD(padded, h, first);
+        const double *fraction = work->conditions->held_fraction + FIELD(padded, h, first);
         int any = 0, row = work->held * PACK;
         for (int l = 0; l < PACK; l++) {
             any |= free_here[l] == 0.0;
@@ -202,7 +203,8 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
 {
     int padded = model->grid.padded, solved = model->mechanism->solved;
     int lanes = model->grid.layers - first < PACK ? model->grid.layers - first : PACK;
-    const double *air = model->air.number_density + first, *depth = model->grid.depth + first;
+    const double *air = work->conditions->air + first, *depth = work->conditions->depth + first;
+    const double *fraction = work->conditions->held_fraction;
     restore_atoms(work, model);
     for (int s = 0; s < solved; s++) {
         double *row = x + FIELD(padded, s, first), kept = row[0];
@@ -224,10 +226,10 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
                 continue;
             int s = model->held_species[h];
             if (l < lanes) {
-                double held = model->held_fraction[at] * air[l];
+                double held = fraction[at] * air[l];
                 ledger->exchanged[h] += (held - work->y[s * PACK + l]) * depth[l];
             }
-            x[FIELD(padded, s, first + l)] = model->held_fraction[at];
+            x[FIELD(padded, s, first + l)] = fraction[at];
         }
     }
     for (int t = 0; t < model->kernel->tallies; t++) {

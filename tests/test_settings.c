@@ -115,6 +115,11 @@ static void settings_refuses_a_bad_case(void **state)
         {"files = {\n eddy = \"nowhere.csv\"; };", ":2: ", "nowhere.csv: not found (files.eddy)"},
         {"files = { schedule = \"/nowhere/s.csv\"; };", ":1: ", "cannot be read (files.schedule)"},
         {"\n\nfiles = { mechanism = \"\"; };", ":3: ", "files.mechanism is empty"},
+        {"\ntemperature = { mode = \"file\"; };", ":2: ", "files.temperature_change"},
+        {"files = { temperature_change = \"co2-cooling.csv\"; };", ":1: ", "temperature.mode"},
+        {"temperature = { mode = \"co3\"; };", ":1: ", "did you mean co2"},
+        {"temperature = { reference_year = 3000; };", ":1: ", "between 1750 and 2500"},
+        {"files = { co2_cooling = \"\"; };", ":1: ", "is empty"},
         {"sun = { kind = \"moon\"; };", ":1: ", "\"global\", \"latitude\""},
         {"grid = { top_km = 200; };", ":1: ", "between 20 and 86 km"},
         {"sun = { surface_albedo = -0.1; };", ":1: ", "between 0 and 1"},
@@ -240,7 +245,7 @@ static void settings_defaults_fit_the_data(void **state)
             fail_msg("%s", fault.text);
         files++;
     }
-    assert_int_equal(files, 10);
+    assert_int_equal(files, 11);
 
     char path[2 * SETTINGS_PATH], *text;
     Fault fault = {0};

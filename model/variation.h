@@ -1,0 +1,27 @@
+/* variation: what changes the conditions of a run in time: the tables, read and put onto the layers.
+ *
+ * Temperature change by CO2 (temperature.mode = "co2"): change = K per doubling (table, by altitude) times
+ * log2(CO2 now / CO2 of temperature.reference_year), CO2 of the schedule at the ground; or given by year and
+ * altitude (mode = "file"). That ozone itself warms the stratosphere is not included: a loss of ozone cools
+ * about as much as CO2 did between 1980 and 2000, and its return warms again.
+ */
+#ifndef SKYMEND_VARIATION_H
+#define SKYMEND_VARIATION_H
+
+#include "column.h"
+#include "profiles.h"
+
+struct Variation {
+    /* temperature */
+    int co2; /* gas of the schedule that goes with cooling, -1 when there is none */
+    double co2_reference;
+    double *doubling; /* [padded] K per doubling of CO2 */
+    Profiles change;  /* by year: K; times 0 when there is none */
+};
+
+/* The tables the case names. Needs everything of the model but base. *sources: citations, one a line, "" when
+ * there are none; owner: caller. */
+int variation_read(Variation **read, const Model *model, char **sources, Fault *fault);
+void variation_free(Variation *variation); /* accepts NULL */
+
+#endif
