@@ -59,8 +59,11 @@ typedef struct {
     char tropospheric_no2_file[SETTINGS_PATH];   /* tropospheric-nitrogen-dioxide.csv; "" = NO2 computed
                                                     everywhere */
 
-    char co2_cooling_file[SETTINGS_PATH]; /* co2-cooling.csv */
-    char temperature_file[SETTINGS_PATH]; /* "" unless temperature is TEMPERATURE_FILE */
+    char co2_cooling_file[SETTINGS_PATH];     /* co2-cooling.csv */
+    char volcanic_file[SETTINGS_PATH];        /* "" = background aerosol alone */
+    char solar_cycle_file[SETTINGS_PATH];     /* "" = steady sun */
+    char solar_amplitude_file[SETTINGS_PATH]; /* solar-cycle-amplitude.csv */
+    char temperature_file[SETTINGS_PATH];     /* "" unless temperature is TEMPERATURE_FILE */
 
     /* temperature */
     int temperature;    /* enum TemperatureMode */

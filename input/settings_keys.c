@@ -69,6 +69,13 @@ static const SettingKey keys[] = {
           "CSV profile of the change of temperature for a doubling of CO2"),
     TEXT("files", "temperature_change", temperature_file, "",
          "CSV of the change of temperature by year and altitude; used when temperature.mode is file"),
+    TEXT("files", "volcanic", volcanic_file, "",
+         "CSV of sulfate surface that volcanoes add, by year and altitude; empty for the background alone"),
+    TEXT("files", "solar_cycle", solar_cycle_file, "",
+         "CSV of the phase of the solar cycle by year, such as solar-cycle-idealised.csv; empty for a steady "
+         "sun"),
+    NAMED("files", "solar_amplitude", solar_amplitude_file, "solar-cycle-amplitude.csv",
+          "CSV of the change of sunlight over the solar cycle by wavelength"),
 
     CHOICE("temperature", "mode", temperature, TEMPERATURE_CO2, temperature_choices,
            "fixed: that of the air profile; co2: cooling with the CO2 of the schedule by a published linear "

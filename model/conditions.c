@@ -5,6 +5,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "../input/table.h"
 #include "variation.h"
 
 int conditions_make(Conditions **made, const Model *model, Fault *fault)
@@ -37,6 +38,7 @@ int conditions_make(Conditions **made, const Model *model, Fault *fault)
     memcpy(conditions->held_fraction, model->held_fraction, MODEL_HELD_MOST * bytes);
     for (size_t b = 0; b < bins; b++)
         conditions->solar[b] = 1.0;
+    conditions->phase = NAN;
     conditions->day_of_year = model->settings.day_of_year;
     *made = conditions;
     return 0;
@@ -99,8 +101,51 @@ static int move_air(Conditions *conditions, const Model *model, double time)
     return CONDITIONS_AIR;
 }
 
+/* ---- aerosol ---- */
+
+/* Volume is surface times effective radius over 3, so the radius of two aerosols is the mean by surface. */
+static int move_aerosol(Conditions *conditions, const Model *model, double time)
+{
+    const Profiles *volcanic = &model->variation->volcanic;
+    int padded = model->grid.padded, moved = 0;
+    double *area = conditions->work, *radius = conditions->work + padded;
+    if (!volcanic->times)
+        return 0;
+    profiles_at(volcanic, 0, time, area);
+    profiles_at(volcanic, 1, time, radius);
+    for (int l = 0; l < padded; l++) {
+        double old = model->aerosol_area[l], added = 1e-8 * area[l], sum = old + added;
+        double mean = model->aerosol_radius[l];
+        if (added > 0.0)
+            mean = (old * mean + added * 1e-4 * radius[l]) / sum;
+        if (sum == conditions->aerosol_area[l] && mean == conditions->aerosol_radius[l])
+            continue;
+        conditions->aerosol_area[l] = sum;
+        conditions->aerosol_radius[l] = mean;
+        moved = CONDITIONS_AEROSOL;
+    }
+    return moved;
+}
+
+/* ---- sunlight ---- */
+
+static int move_light(Conditions *conditions, const Model *model, double time)
+{
+    const Variation *variation = model->variation;
+    if (!variation->phases)
+        return 0;
+    double phase = table_linear(variation->year, variation->phase, variation->phases, time);
+    if (fabs(phase - conditions->phase) <= CONDITIONS_SOLAR_STEP) /* NaN at first: untrue */
+        return 0;
+    conditions->phase = phase;
+    for (int b = 0; b < model->spectra->bins; b++)
+        conditions->solar[b] = 1.0 + variation->amplitude[b] * (phase - 0.5);
+    return CONDITIONS_LIGHT;
+}
+
 int conditions_move(Conditions *conditions, const Model *model, double time, double season)
 {
     (void)season;
-    return move_air(conditions, model, time);
+    return move_air(conditions, model, time) | move_aerosol(conditions, model, time) |
+           move_light(conditions, model, time);
 }

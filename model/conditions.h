@@ -34,6 +34,7 @@ struct Conditions {
     double *aerosol_radius; /* [padded] cm, effective */
     double *held_fraction;  /* [MODEL_HELD_MOST][padded] mole fraction where held, 0 where free */
     double *solar;          /* [bins] sunlight relative to the table of the case */
+    double phase;           /* of the solar cycle, when there is one; NaN before the first move */
     double day_of_year;     /* 1..366.25, of the sun's place */
     double *work;           /* [2][padded] */
 };
@@ -48,8 +49,8 @@ void conditions_free(Conditions *conditions); /* accepts NULL */
  * the time of year, which goes on when the years stand still in a spin-up). Returns which parts changed,
  * ConditionsPart added up; 0 most of the time. Temperature and sunlight move in small steps
  * (CONDITIONS_KELVIN, CONDITIONS_SOLAR_STEP), since tables must be made afresh when they do. */
-#define CONDITIONS_KELVIN 0.05    /* in a steady state about 0.05 % of the ozone at 40 km, where most */
-#define CONDITIONS_SOLAR_STEP 0.1 /* of the phase of the solar cycle: 0.2 % of the ozone column at most */
+#define CONDITIONS_KELVIN 0.05     /* in a steady state about 0.05 % of the ozone at 40 km, where most */
+#define CONDITIONS_SOLAR_STEP 0.05 /* of the phase of the solar cycle: about 0.1 % of the ozone column */
 int conditions_move(Conditions *conditions, const Model *model, double time, double season);
 
 #endif

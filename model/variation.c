@@ -8,9 +8,21 @@
 
 static const double KM_PER_CM = 1e-5;
 
-static int read_series(Profiles *profiles, const Model *model, const char *what, const char *file,
-                       const char *time_name, const ProfilesColumn *column, int columns, char **sources,
-                       Fault *fault)
+/* Append "what: text" to the list of sources. */
+static int add_source(char **sources, const char *what, const char *text, Fault *fault)
+{
+    size_t old = strlen(*sources), more = strlen(what) + strlen(text) + 4;
+    char *longer = realloc(*sources, old + more);
+    if (!longer)
+        return fault_memory(fault, "list of sources");
+    snprintf(longer + old, more, "%s: %s\n", what, text);
+    *sources = longer;
+    return 0;
+}
+
+static int read_table(Profiles *profiles, const Model *model, const char *what, const char *file,
+                      const char *time_name, const ProfilesColumn *column, int columns, char **sources,
+                      Fault *fault)
 {
     const Settings *settings = &model->settings;
     char path[2 * SETTINGS_PATH + 2];
@@ -18,15 +30,7 @@ static int read_series(Profiles *profiles, const Model *model, const char *what,
     int code = table_locate(what, file, settings->case_dir, settings->data_dir, path, sizeof path, fault);
     if (!code)
         code = profiles_read(profiles, what, path, time_name, column, columns, &model->grid, to_km, fault);
-    if (code)
-        return code;
-    size_t old = strlen(*sources), more = strlen(what) + strlen(profiles->source) + 4;
-    char *longer = realloc(*sources, old + more);
-    if (!longer)
-        return fault_memory(fault, "list of sources");
-    snprintf(longer + old, more, "%s: %s\n", what, profiles->source);
-    *sources = longer;
-    return 0;
+    return code ? code : add_source(sources, what, profiles->source, fault);
 }
 
 /* ---- temperature ---- */
@@ -69,8 +73,8 @@ static int read_temperature(Variation *variation, const Model *model, char **sou
         Profiles table;
         int code = find_co2(variation, model, fault);
         if (!code)
-            code = read_series(&table, model, "temperature against CO2", settings->co2_cooling_file, NULL,
-                               &doubling, 1, sources, fault);
+            code = read_table(&table, model, "temperature against CO2", settings->co2_cooling_file, NULL,
+                              &doubling, 1, sources, fault);
         if (code)
             return code;
         variation->doubling = table.value; /* its one profile */
@@ -78,8 +82,8 @@ static int read_temperature(Variation *variation, const Model *model, char **sou
         profiles_free(&table);
     }
     if (settings->temperature == TEMPERATURE_FILE) {
-        int code = read_series(&variation->change, model, "temperature change", settings->temperature_file,
-                               "year", &change, 1, sources, fault);
+        int code = read_table(&variation->change, model, "temperature change", settings->temperature_file,
+                              "year", &change, 1, sources, fault);
         if (!code)
             code = profiles_covers(&variation->change, "temperature change", settings->first_year,
                                    settings->last_year + 1, fault);
@@ -87,6 +91,85 @@ static int read_temperature(Variation *variation, const Model *model, char **sou
             return code;
     }
     return 0;
+}
+
+/* ---- aerosol ---- */
+
+static int read_volcanic(Variation *variation, const Model *model, char **sources, Fault *fault)
+{
+    static const ProfilesColumn column[] = {{"surface_um2_cm-3", 0.0, 1e4, 0},
+                                            {"effective_radius_um", 1e-3, 100.0, 1}};
+    const Settings *settings = &model->settings;
+    if (!settings->volcanic_file[0])
+        return 0;
+    int code = read_table(&variation->volcanic, model, "volcanic aerosol", settings->volcanic_file, "year",
+                          column, 2, sources, fault);
+    return code ? code
+                : profiles_covers(&variation->volcanic, "volcanic aerosol", settings->first_year,
+                                  settings->last_year + 1, fault);
+}
+
+/* ---- solar cycle ---- */
+
+/* Two columns of a table, the first ascending, the second within its range, covering first..last. */
+static int read_pairs(Table *table, const Model *model, const char *what, const char *file,
+                      const char *x_name, const char *y_name, double low, double high, double first,
+                      double last, const double **x, const double **y, char **sources, Fault *fault)
+{
+    char path[2 * SETTINGS_PATH + 2], source[600];
+    size_t x_column, y_column;
+    if (table_locate(what, file, model->settings.case_dir, model->settings.data_dir, path, sizeof path,
+                     fault) ||
+        table_read(table, path, fault) || table_column(table, x_name, &x_column, fault) ||
+        table_require_increasing(table, x_column, fault) || table_column(table, y_name, &y_column, fault) ||
+        table_require_range(table, y_column, low, high, fault))
+        return fault->code;
+    *x = table_values(table, x_column);
+    *y = table_values(table, y_column);
+    size_t end = table->rows - 1;
+    if (table->rows < 2 || (*x)[0] > first || (*x)[end] < last)
+        return fault_at(fault, path, table->line[end],
+                        "%s covers %s %g to %g, but %g to %g is needed; add rows", what, x_name, (*x)[0],
+                        (*x)[end], first, last);
+    if (!table_header(table, "source", source, sizeof source))
+        snprintf(source, sizeof source, "%.590s", path);
+    return add_source(sources, what, source, fault);
+}
+
+static int read_cycle(Variation *variation, const Model *model, char **sources, Fault *fault)
+{
+    const Settings *settings = &model->settings;
+    const Spectra *spectra = model->spectra;
+    if (!settings->solar_cycle_file[0])
+        return 0;
+    Table index = {0}, amplitude = {0};
+    const double *x, *y;
+    double shortest = spectra->lower[0], longest = spectra->upper[spectra->bins - 1];
+    int code = read_pairs(&index, model, "solar cycle", settings->solar_cycle_file, "year", "phase", -0.5,
+                          2.5, settings->first_year, settings->last_year + 1, &x, &y, sources, fault);
+    if (!code) {
+        size_t bytes = index.rows * sizeof(double);
+        variation->phases = index.rows;
+        variation->year = malloc(bytes);
+        variation->phase = malloc(bytes);
+        variation->amplitude = malloc((size_t)spectra->bins * sizeof(double));
+        if (!variation->year || !variation->phase || !variation->amplitude) {
+            code = fault_memory(fault, "solar cycle");
+        } else {
+            memcpy(variation->year, x, bytes);
+            memcpy(variation->phase, y, bytes);
+        }
+    }
+    if (!code)
+        code = read_pairs(&amplitude, model, "amplitude of the solar cycle", settings->solar_amplitude_file,
+                          "wavelength_nm", "change_percent", -50.0, 190.0, shortest, longest, &x, &y, sources,
+                          fault);
+    for (int b = 0; !code && b < spectra->bins; b++)
+        variation->amplitude[b] =
+            0.01 * table_linear(x, y, amplitude.rows, 0.5 * (spectra->lower[b] + spectra->upper[b]));
+    table_free(&index);
+    table_free(&amplitude);
+    return code;
 }
 
 int variation_read(Variation **read, const Model *model, char **sources, Fault *fault)
@@ -100,6 +183,10 @@ int variation_read(Variation **read, const Model *model, char **sources, Fault *
     }
     variation->co2 = -1;
     int code = read_temperature(variation, model, sources, fault);
+    if (!code)
+        code = read_volcanic(variation, model, sources, fault);
+    if (!code)
+        code = read_cycle(variation, model, sources, fault);
     if (code) {
         variation_free(variation);
         return code;
@@ -114,5 +201,9 @@ void variation_free(Variation *variation)
         return;
     free(variation->doubling);
     profiles_free(&variation->change);
+    profiles_free(&variation->volcanic);
+    free(variation->year);
+    free(variation->phase);
+    free(variation->amplitude);
     free(variation);
 }

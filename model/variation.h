@@ -4,6 +4,13 @@
  * log2(CO2 now / CO2 of temperature.reference_year), CO2 of the schedule at the ground; or given by year and
  * altitude (mode = "file"). That ozone itself warms the stratosphere is not included: a loss of ozone cools
  * about as much as CO2 did between 1980 and 2000, and its return warms again.
+ *
+ * Volcanic aerosol (files.volcanic): surface added to the background by year and altitude, with its own
+ * effective radius; the radius of both together follows from their surface and volume. Sunlight that aerosol
+ * scatters and the warming it brings are not included.
+ *
+ * Solar cycle (files.solar_cycle, an index by year, with files.solar_amplitude by wavelength): sunlight of
+ * the case times 1 + amplitude (phase - 1/2).
  */
 #ifndef SKYMEND_VARIATION_H
 #define SKYMEND_VARIATION_H
@@ -17,6 +24,15 @@ struct Variation {
     double co2_reference;
     double *doubling; /* [padded] K per doubling of CO2 */
     Profiles change;  /* by year: K; times 0 when there is none */
+
+    Profiles
+        volcanic; /* by year: added surface um2 cm-3, its effective radius um; times 0 when there is none */
+
+    /* solar cycle */
+    size_t phases;     /* 0 when there is none */
+    double *year;      /* [phases] ascending */
+    double *phase;     /* [phases] 0 minimum, 1 maximum */
+    double *amplitude; /* [bins] maximum less minimum, relative to their mean */
 };
 
 /* The tables the case names. Needs everything of the model but base. *sources: citations, one a line, "" when

@@ -120,6 +120,9 @@ static void settings_refuses_a_bad_case(void **state)
         {"temperature = { mode = \"co3\"; };", ":1: ", "did you mean co2"},
         {"temperature = { reference_year = 3000; };", ":1: ", "between 1750 and 2500"},
         {"files = { co2_cooling = \"\"; };", ":1: ", "is empty"},
+        {"files = { volcanic = \"nowhere.csv\"; };", ":1: ", "nowhere.csv: not found (files.volcanic)"},
+        {"files = { solar_cycle = \"nowhere.csv\"; };", ":1: ", "nowhere.csv: not found (files.solar_cycle)"},
+        {"files = { solar_amplitude = \"\"; };", ":1: ", "is empty"},
         {"sun = { kind = \"moon\"; };", ":1: ", "\"global\", \"latitude\""},
         {"grid = { top_km = 200; };", ":1: ", "between 20 and 86 km"},
         {"sun = { surface_albedo = -0.1; };", ":1: ", "between 0 and 1"},
@@ -245,7 +248,7 @@ static void settings_defaults_fit_the_data(void **state)
             fail_msg("%s", fault.text);
         files++;
     }
-    assert_int_equal(files, 11);
+    assert_int_equal(files, 12);
 
     char path[2 * SETTINGS_PATH], *text;
     Fault fault = {0};
