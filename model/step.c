@@ -477,6 +477,10 @@ const Light *stepper_light(const Stepper *stepper)
 {
     return stepper->light;
 }
+const Conditions *stepper_conditions(const Stepper *stepper)
+{
+    return stepper->conditions;
+}
 const Day *stepper_day(const Stepper *stepper)
 {
     return stepper->day;

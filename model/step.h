@@ -34,6 +34,8 @@ int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, F
 /* Mean mole fractions over the last step [solved][padded]: of its two ends, or of the explicit day. */
 const double *stepper_mean(const Stepper *stepper);
 const Light *stepper_light(const Stepper *stepper);
+/* What surrounds the chemistry in the last step. */
+const Conditions *stepper_conditions(const Stepper *stepper);
 const Day *stepper_day(const Stepper *stepper);
 StepClock stepper_clock(const Stepper *stepper);
 /* Rate coefficients of the last step without factors, [reactions][padded]; photolysis rows hold day means

@@ -1,6 +1,7 @@
 /* variation: reading. */
 #include "variation.h"
 
+#include <math.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -172,6 +173,31 @@ static int read_cycle(Variation *variation, const Model *model, char **sources, 
     return code;
 }
 
+/* The laws of the chemistry were measured within these, and a slip of the tables shows here. */
+static int check_range(const Variation *variation, const Model *model, Fault *fault)
+{
+    const double least = 100.0, most = 400.0;
+    int co2 = variation->co2, years = co2 >= 0 ? model->schedule.years[co2] : variation->change.times;
+    int padded = model->grid.padded;
+    for (int y = 0; y < years; y++) {
+        double doublings =
+            co2 >= 0 ? log2(model->schedule.abundance[co2][y] / variation->co2_reference) : 0.0;
+        for (int l = 0; l < padded; l++) {
+            double change = co2 >= 0 ? variation->doubling[l] * doublings
+                                     : variation->change.value[(size_t)y * (size_t)padded + (size_t)l];
+            double kelvin = model->air.temperature[l] + change;
+            if (!(kelvin >= least && kelvin <= most))
+                return fault_at(
+                    fault, co2 >= 0 ? model->schedule.path : variation->change.path, 0,
+                    "the temperature at %g km would be %.0f K in %g; it must lie between %g and %g K: "
+                    "correct the table, or set temperature.mode = \"fixed\"",
+                    KM_PER_CM * model->grid.middle[l], kelvin,
+                    co2 >= 0 ? model->schedule.first_year[co2] + y : variation->change.time[y], least, most);
+        }
+    }
+    return 0;
+}
+
 int variation_read(Variation **read, const Model *model, char **sources, Fault *fault)
 {
     *read = NULL;
@@ -183,6 +209,8 @@ int variation_read(Variation **read, const Model *model, char **sources, Fault *
     }
     variation->co2 = -1;
     int code = read_temperature(variation, model, sources, fault);
+    if (!code)
+        code = check_range(variation, model, fault);
     if (!code)
         code = read_volcanic(variation, model, sources, fault);
     if (!code)
