@@ -19,7 +19,7 @@
 #define SETTINGS_MAX_BOUNDS 64
 
 enum DayMode { DAY_MEAN, DAY_FACTORS, DAY_EXPLICIT };
-enum SunMode { SUN_GLOBAL, SUN_LATITUDE };
+enum SunMode { SUN_GLOBAL, SUN_LATITUDE, SUN_SEASON };
 enum TemperatureMode { TEMPERATURE_FIXED, TEMPERATURE_CO2, TEMPERATURE_FILE };
 enum BoundKind { BOUND_FIXED, BOUND_DEPOSITION };
 
@@ -59,7 +59,11 @@ typedef struct {
     char tropospheric_no2_file[SETTINGS_PATH];   /* tropospheric-nitrogen-dioxide.csv; "" = NO2 computed
                                                     everywhere */
 
-    char co2_cooling_file[SETTINGS_PATH];     /* co2-cooling.csv */
+    char co2_cooling_file[SETTINGS_PATH]; /* co2-cooling.csv */
+    char month_air_file[SETTINGS_PATH];   /* by month, SUN_SEASON; "" = none, as the next three */
+    char month_oh_file[SETTINGS_PATH];
+    char month_water_file[SETTINGS_PATH];
+    char month_no2_file[SETTINGS_PATH];
     char volcanic_file[SETTINGS_PATH];        /* "" = background aerosol alone */
     char solar_cycle_file[SETTINGS_PATH];     /* "" = steady sun */
     char solar_amplitude_file[SETTINGS_PATH]; /* solar-cycle-amplitude.csv */
@@ -71,7 +75,7 @@ typedef struct {
 
     /* sun */
     int sun;               /* enum SunMode */
-    double latitude_deg;   /* SUN_LATITUDE */
+    double latitude_deg;   /* SUN_LATITUDE, SUN_SEASON */
     double day_of_year;    /* SUN_LATITUDE, 1..366 */
     double surface_albedo; /* 0..1 */
 

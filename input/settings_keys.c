@@ -1,7 +1,7 @@
 /* settings_keys: the table of case-file keys and the built-in surface boundaries. */
 #include "settings_keys.h"
 
-static const char *const sun_choices[] = {"global", "latitude", NULL};
+static const char *const sun_choices[] = {"global", "latitude", "season", NULL};
 static const char *const temperature_choices[] = {"fixed", "co2", "file", NULL};
 static const char *const day_choices[] = {"mean", "factors", "explicit", NULL};
 
@@ -69,6 +69,16 @@ static const SettingKey keys[] = {
           "CSV profile of the change of temperature for a doubling of CO2"),
     TEXT("files", "temperature_change", temperature_file, "",
          "CSV of the change of temperature by year and altitude; used when temperature.mode is file"),
+    TEXT("files", "air_by_month", month_air_file, "",
+         "CSV of temperature and pressure by month and altitude, used when sun.kind is season; files.air is "
+         "then "
+         "the annual mean"),
+    TEXT("files", "tropospheric_oh_by_month", month_oh_file, "",
+         "CSV of OH held below the tropopause by month and altitude, used when sun.kind is season"),
+    TEXT("files", "tropospheric_water_by_month", month_water_file, "",
+         "CSV of water vapour held below the tropopause by month and altitude, used when sun.kind is season"),
+    TEXT("files", "tropospheric_no2_by_month", month_no2_file, "",
+         "CSV of NO2 held below the tropopause by month and altitude, used when sun.kind is season"),
     TEXT("files", "volcanic", volcanic_file, "",
          "CSV of sulfate surface that volcanoes add, by year and altitude; empty for the background alone"),
     TEXT("files", "solar_cycle", solar_cycle_file, "",
@@ -84,9 +94,12 @@ static const SettingKey keys[] = {
           "year the air profile belongs to, used when mode is co2; the standard atmosphere of 1976 rests on "
           "soundings of the decades before"),
 
-    CHOICE("sun", "kind", sun, SUN_GLOBAL, sun_choices,
-           "global mean sun, or the sun of latitude_deg on day_of_year"),
-    REAL("sun", "latitude_deg", latitude_deg, 0, -90, 90, "degrees north", "used when kind is latitude"),
+    CHOICE(
+        "sun", "kind", sun, SUN_GLOBAL, sun_choices,
+        "global: mean sun; latitude: the sun of latitude_deg on day_of_year, every day; season: the sun of "
+        "latitude_deg through the year"),
+    REAL("sun", "latitude_deg", latitude_deg, 0, -90, 90, "degrees north",
+         "used when kind is latitude or season"),
     REAL("sun", "day_of_year", day_of_year, 80, 1, 366, "", "used when kind is latitude; 1 = 1 January"),
     REAL("sun", "surface_albedo", surface_albedo, 0.3, 0, 1, "",
          "share of light the lower boundary returns; 0.3 is the whole Earth with its clouds "

@@ -5,7 +5,9 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "../input/constants.h"
 #include "../input/table.h"
+#include "sun.h"
 #include "variation.h"
 
 int conditions_make(Conditions **made, const Model *model, Fault *fault)
@@ -62,31 +64,34 @@ void conditions_free(Conditions *conditions)
 /* ---- temperature ---- */
 
 /* Temperature of now, [padded]; 0 when it does not vary. */
-static int temperature_now(const Model *model, double time, double *kelvin)
+static int temperature_now(const Model *model, double time, double season, double *kelvin, double *work)
 {
     const Variation *variation = model->variation;
     int padded = model->grid.padded;
+    int by_month = variation->month_air.times > 0, by_year = variation->change.times > 0;
+    if (by_month)
+        profiles_in_year(&variation->month_air, 0, season, kelvin);
+    else
+        memcpy(kelvin, model->air.temperature, (size_t)padded * sizeof(double));
     if (variation->co2 >= 0) {
         double co2 = schedule_abundance(&model->schedule, variation->co2, time);
         double doublings = log2(co2 / variation->co2_reference);
         for (int l = 0; l < padded; l++)
-            kelvin[l] = model->air.temperature[l] + variation->doubling[l] * doublings;
-        return 1;
+            kelvin[l] += variation->doubling[l] * doublings;
     }
-    if (variation->change.times) {
-        profiles_at(&variation->change, 0, time, kelvin);
+    if (by_year) {
+        profiles_at(&variation->change, 0, time, work);
         for (int l = 0; l < padded; l++)
-            kelvin[l] += model->air.temperature[l];
-        return 1;
+            kelvin[l] += work[l];
     }
-    return 0;
+    return by_month || by_year || variation->co2 >= 0;
 }
 
-static int move_air(Conditions *conditions, const Model *model, double time)
+static int move_air(Conditions *conditions, const Model *model, double time, double season)
 {
-    double *kelvin = conditions->work, most = 0.0;
     int padded = model->grid.padded;
-    if (!temperature_now(model, time, kelvin))
+    double *kelvin = conditions->work, most = 0.0;
+    if (!temperature_now(model, time, season, kelvin, conditions->work + padded))
         return 0;
     for (int l = 0; l < padded; l++)
         most = fmax(most, fabs(kelvin[l] - conditions->temperature[l]));
@@ -143,9 +148,44 @@ static int move_light(Conditions *conditions, const Model *model, double time)
     return CONDITIONS_LIGHT;
 }
 
+/* ---- season ---- */
+
+static int move_sun(Conditions *conditions, const Model *model, double season)
+{
+    if (model->settings.sun != SUN_SEASON)
+        return 0;
+    double day = 1.0 + 365.25 * (season - floor(season));
+    double turn = fabs(sun_declination(day) - sun_declination(conditions->day_of_year)) * 180.0 / PI;
+    if (turn <= CONDITIONS_SUN_DEGREES && fabs(day - conditions->day_of_year) <= CONDITIONS_SUN_DAYS)
+        return 0;
+    conditions->day_of_year = day;
+    return CONDITIONS_SUN;
+}
+
+/* After move_air: what is held as a density is a share of the air of now. */
+static int move_held(Conditions *conditions, const Model *model, double season)
+{
+    int padded = model->grid.padded, moved = 0;
+    for (int h = 0; h < model->held; h++) {
+        const Profiles *month = &model->variation->month_held[h];
+        if (!month->times)
+            continue;
+        profiles_in_year(month, 0, season, conditions->work);
+        for (int l = 0; l < padded; l++) {
+            size_t at = FIELD(padded, h, l);
+            if (model->held_free[at] != 0.0)
+                continue;
+            double x = conditions->work[l] / (model->variation->month_density[h] ? conditions->air[l] : 1.0);
+            moved |= x != conditions->held_fraction[at] ? CONDITIONS_HELD : 0;
+            conditions->held_fraction[at] = x;
+        }
+    }
+    return moved;
+}
+
 int conditions_move(Conditions *conditions, const Model *model, double time, double season)
 {
-    (void)season;
-    return move_air(conditions, model, time) | move_aerosol(conditions, model, time) |
-           move_light(conditions, model, time);
+    int moved = move_air(conditions, model, time, season) | move_aerosol(conditions, model, time) |
+                move_light(conditions, model, time) | move_sun(conditions, model, season);
+    return moved | move_held(conditions, model, season);
 }

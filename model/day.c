@@ -67,7 +67,7 @@ void day_free(Day *day)
 
 int day_stale(const Day *day, const double *x)
 {
-    if (!day->ready)
+    if (!day->ready || day->outdated)
         return 1;
     const Model *model = day->model;
     int padded = model->grid.padded;
@@ -161,5 +161,6 @@ double day_take(Day *day, const Light *light, const double *end, double lit_time
 void day_settle(Day *day, const double *x)
 {
     memcpy(day->reference, x, fields(day, day->model->mechanism->solved) * sizeof(double));
+    day->outdated = 0;
     day->ready = 1;
 }

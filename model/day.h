@@ -32,6 +32,7 @@ typedef struct {
     double *sum_lit; /* [solved][padded] cm-3 s, while the sun is up */
     double *sum_w;   /* [reactions][padded] cm-3 */
     double *loss;    /* [solved] work */
+    int outdated;    /* the sun has moved since the factors were made */
     int ready;
 } Day;
 

@@ -69,6 +69,10 @@ void light_follow(Light *light, const Conditions *conditions, int moved)
     if (moved & CONDITIONS_AIR && light->photolysis)
         photolysis_set_air(light->photolysis, conditions->temperature, conditions->air, conditions->depth,
                            light->model->air.column_above_top);
+    if (moved & CONDITIONS_SUN) {
+        sun_set_day(&light->sun, &light->model->settings, conditions->day_of_year);
+        light->turned = 1;
+    }
     if (moved & CONDITIONS_LIGHT && light->photolysis)
         photolysis_set_sunlight(light->photolysis, conditions->solar);
 }
@@ -88,10 +92,8 @@ static void overhead_column(const Model *model, const double *x, const double *l
     }
 }
 
-int light_stale(const Light *light, const double *x, const double *lit)
+static int overhead_moved(const Light *light, const double *x, const double *lit)
 {
-    if (!light->ready)
-        return 1;
     const Model *model = light->model;
     double now[PACK_ROUND(SETTINGS_MAX_EDGES)];
     overhead_column(model, x, lit, now);
@@ -101,6 +103,11 @@ int light_stale(const Light *light, const double *x, const double *lit)
             return 1;
     }
     return 0;
+}
+
+int light_stale(const Light *light, const double *x, const double *lit)
+{
+    return !light->ready || light->turned || overhead_moved(light, x, lit);
 }
 
 /* A negative mole fraction within the tolerance absorbs nothing. */
@@ -144,22 +151,40 @@ static void fold_fixed_reactants(Light *light)
     }
 }
 
+/* Rates at the nodes, [nodes][reactions][padded]. */
+static void fill_table(Light *light, const double *x, const double *lit, double earth_sun)
+{
+    int padded = light->model->grid.padded;
+    number_density(light, x, lit, "O3", light->density);
+    number_density(light, x, lit, "NO2", light->density + padded);
+    number_density(light, x, lit, "NO", light->density + 2 * padded);
+    photolysis_rates(light->photolysis, light->density, light->density + padded, light->density + 2 * padded,
+                     earth_sun, light->table);
+    fold_fixed_reactants(light);
+    overhead_column(light->model, x, lit, light->overhead);
+}
+
 void light_refresh(Light *light, const double *x, const double *lit)
 {
-    const Model *model = light->model;
-    int padded = model->grid.padded, reactions = light->reactions;
-    if (light->sun.nodes) {
-        number_density(light, x, lit, "O3", light->density);
-        number_density(light, x, lit, "NO2", light->density + padded);
-        number_density(light, x, lit, "NO", light->density + 2 * padded);
-        photolysis_rates(light->photolysis, light->density, light->density + padded,
-                         light->density + 2 * padded, light->sun.earth_sun, light->table);
-        fold_fixed_reactants(light);
-        int stride = reactions * padded;
+    const Sun *sun = &light->sun;
+    int season = light->model->settings.sun == SUN_SEASON,
+        stride = light->reactions * light->model->grid.padded;
+    /* with a season the table outlasts the day and is that of 1 au */
+    int only_turned = light->ready && light->turned && !overhead_moved(light, x, lit);
+    if (!only_turned && sun->nodes)
+        fill_table(light, x, lit, season ? 1.0 : sun->earth_sun);
+    else if (!only_turned)
+        overhead_column(light->model, x, lit, light->overhead);
+    if (sun->nodes) {
 #pragma omp parallel for schedule(static)
-        for (int i = 0; i < stride; i++)
-            light->mean[i] = sun_spread(&light->sun, light->table + i, stride, light->knot + i, stride);
+        for (int i = 0; i < stride; i++) {
+            light->mean[i] = sun_spread(sun, light->table + i, stride, light->knot + i, stride);
+            for (int k = 0; season && k < SUN_KNOTS; k++)
+                light->knot[(size_t)k * (size_t)stride + (size_t)i] *= sun->earth_sun;
+            if (season)
+                light->mean[i] *= sun->earth_sun;
+        }
     }
-    overhead_column(model, x, lit, light->overhead);
     light->ready = 1;
+    light->turned = 0;
 }

@@ -20,6 +20,7 @@ typedef struct {
     double *overhead; /* [padded] ozone above each layer's middle at the last refresh, cm-2 */
     double *density;  /* [3][padded] work: number densities of O3, NO2, NO */
     int ready;        /* rates have been computed */
+    int turned;       /* the sun has moved since: rates at the nodes hold, those of the day do not */
 } Light;
 
 /* Owner: caller. refine as in sun_make. */

@@ -323,8 +323,8 @@ double pack_part_length(const Light *light, int part)
     const Sun *sun = &light->sun;
     part = morning_part(part);
     if (part < PACK_NIGHT_PARTS)
-        return (sun->nodes ? sun->time[0] : 0.5 * DAY_SECONDS) / PACK_NIGHT_PARTS;
-    return sun->nodes ? sun->time[part_knot(part + 1)] - sun->time[part_knot(part)] : 0.0;
+        return (sun->rises ? sun->time[0] : 0.5 * DAY_SECONDS) / PACK_NIGHT_PARTS;
+    return sun->rises ? sun->time[part_knot(part + 1)] - sun->time[part_knot(part)] : 0.0;
 }
 
 int pack_part_lit(int part)

@@ -154,6 +154,8 @@ static void move_conditions(Stepper *stepper, double time, double season)
         return;
     if (moved & CONDITIONS_AIR)
         thermal_coefficients(stepper);
+    if (moved & CONDITIONS_SUN)
+        stepper->day->outdated = 1;
     light_follow(stepper->light, stepper->conditions, moved);
 }
 

@@ -110,6 +110,98 @@ static int read_volcanic(Variation *variation, const Model *model, char **source
                                   settings->last_year + 1, fault);
 }
 
+/* ---- season ---- */
+
+/* Replace the altitude's temperature by that at the layer's pressure. The table gives both by altitude; put
+ * onto the layers they are a curve T(p), read where the layer's own pressure lies. */
+static int read_month_air(Variation *variation, const Model *model, char **sources, Fault *fault)
+{
+    const Settings *settings = &model->settings;
+    char path[2 * SETTINGS_PATH + 2];
+    Table table = {0};
+    size_t month = 0, kelvin = 0, pascal = 0, padded = (size_t)model->grid.padded;
+    Profiles *air = &variation->month_air;
+    /* read once as profiles by altitude, which checks months, order, ranges and cover */
+    static const ProfilesColumn column[] = {{"temperature_K", 100.0, 400.0, 0},
+                                            {"pressure_Pa", 1e-6, 1.2e5, 1}};
+    int code =
+        read_table(air, model, "air by month", settings->month_air_file, "month", column, 2, sources, fault);
+    if (!code)
+        code = table_locate("air by month", settings->month_air_file, settings->case_dir, settings->data_dir,
+                            path, sizeof path, fault);
+    if (!code)
+        code = table_read(&table, path, fault);
+    if (!code)
+        code = table_column(&table, "month", &month, fault);
+    if (!code)
+        code = table_column(&table, "temperature_K", &kelvin, fault);
+    if (!code)
+        code = table_column(&table, "pressure_Pa", &pascal, fault);
+    double *height = code ? NULL : malloc(table.rows * sizeof(double)); /* minus log p: ascending */
+    if (!code && !height)
+        code = fault_memory(fault, "air by month");
+    for (size_t first = 0, end = 0; !code && first < table.rows; first = end) {
+        const double *m = table_values(&table, month), *p = table_values(&table, pascal);
+        for (end = first; !code && end < table.rows && m[end] == m[first]; end++) {
+            height[end] = -log(p[end]);
+            if (end > first && !(p[end] < p[end - 1]))
+                code = fault_at(fault, path, table.line[end],
+                                "pressure_Pa is %g after %g; it must fall with altitude", p[end], p[end - 1]);
+        }
+        for (size_t l = 0; !code && l < padded; l++) {
+            double at = -log(model->air.pressure[l]);
+            if (at < height[first] || at > height[end - 1])
+                code = fault_at(fault, path, table.line[end - 1],
+                                "month %g covers %g to %g Pa, but the layer at %g km has %g Pa; add rows",
+                                m[first], p[first], p[end - 1], KM_PER_CM * model->grid.middle[l],
+                                model->air.pressure[l]);
+            else
+                air->value[((size_t)m[first] - 1) * padded + l] =
+                    table_linear(height + first, table_values(&table, kelvin) + first, end - first, at);
+        }
+    }
+    free(height);
+    table_free(&table);
+    return code;
+}
+
+static int read_month_held(Variation *variation, const Model *model, const char *species, const char *file,
+                           const ProfilesColumn *column, int density, char **sources, Fault *fault)
+{
+    int solved = mechanism_solved(model->mechanism, species), h = 0;
+    while (h < model->held && model->held_species[h] != solved)
+        h++;
+    if (!file[0] || h == model->held)
+        return 0;
+    const Settings *settings = &model->settings;
+    char path[2 * SETTINGS_PATH + 2], what[60];
+    snprintf(what, sizeof what, "tropospheric %s by month", species);
+    int code = table_locate(what, file, settings->case_dir, settings->data_dir, path, sizeof path, fault);
+    if (!code)
+        code = profiles_read(&variation->month_held[h], what, path, "month", column, 1, &model->grid,
+                             settings->tropopause_km, fault);
+    variation->month_density[h] = density;
+    return code ? code : add_source(sources, what, variation->month_held[h].source, fault);
+}
+
+static int read_season(Variation *variation, const Model *model, char **sources, Fault *fault)
+{
+    static const ProfilesColumn water = {"H2O_mol_mol-1", 1e-15, 0.1, 1}, oh = {"OH_cm-3", 0.0, 1e9, 0},
+                                no2 = {"NO2_mol_mol-1", 1e-15, 0.1, 1};
+    const Settings *settings = &model->settings;
+    int code = 0;
+    if (settings->month_air_file[0])
+        code = read_month_air(variation, model, sources, fault);
+    if (!code)
+        code =
+            read_month_held(variation, model, "H2O", settings->month_water_file, &water, 0, sources, fault);
+    if (!code)
+        code = read_month_held(variation, model, "OH", settings->month_oh_file, &oh, 1, sources, fault);
+    if (!code)
+        code = read_month_held(variation, model, "NO2", settings->month_no2_file, &no2, 0, sources, fault);
+    return code;
+}
+
 /* ---- solar cycle ---- */
 
 /* Two columns of a table, the first ascending, the second within its range, covering first..last. */
@@ -214,6 +306,8 @@ int variation_read(Variation **read, const Model *model, char **sources, Fault *
     if (!code)
         code = read_volcanic(variation, model, sources, fault);
     if (!code)
+        code = read_season(variation, model, sources, fault);
+    if (!code)
         code = read_cycle(variation, model, sources, fault);
     if (code) {
         variation_free(variation);
@@ -230,6 +324,9 @@ void variation_free(Variation *variation)
     free(variation->doubling);
     profiles_free(&variation->change);
     profiles_free(&variation->volcanic);
+    profiles_free(&variation->month_air);
+    for (int h = 0; h < MODEL_HELD_MOST; h++)
+        profiles_free(&variation->month_held[h]);
     free(variation->year);
     free(variation->phase);
     free(variation->amplitude);

@@ -11,6 +11,9 @@
  *
  * Solar cycle (files.solar_cycle, an index by year, with files.solar_amplitude by wavelength): sunlight of
  * the case times 1 + amplitude (phase - 1/2).
+ *
+ * Season (sun.kind = "season"): temperature by month at the pressure of the layers, and the gases held in the
+ * troposphere by month. Layers stay the masses of files.air, which should be the annual mean.
  */
 #ifndef SKYMEND_VARIATION_H
 #define SKYMEND_VARIATION_H
@@ -27,6 +30,11 @@ struct Variation {
 
     Profiles
         volcanic; /* by year: added surface um2 cm-3, its effective radius um; times 0 when there is none */
+
+    /* season; times 0 where there is none */
+    Profiles month_air;                   /* by month: temperature, K, at the pressure of the layers */
+    Profiles month_held[MODEL_HELD_MOST]; /* by month and held species of the model */
+    int month_density[MODEL_HELD_MOST];   /* 1: in cm-3, 0: in mole fraction */
 
     /* solar cycle */
     size_t phases;     /* 0 when there is none */
