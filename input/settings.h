@@ -70,8 +70,8 @@ typedef struct {
     char temperature_file[SETTINGS_PATH];     /* "" unless temperature is TEMPERATURE_FILE */
 
     /* temperature */
-    int temperature;    /* enum TemperatureMode */
-    int reference_year; /* the air of the case is that of this year, TEMPERATURE_CO2 */
+    int temperature;          /* enum TemperatureMode */
+    double reference_co2_ppm; /* CO2 the air of the case goes with, TEMPERATURE_CO2 */
 
     /* sun */
     int sun;               /* enum SunMode */

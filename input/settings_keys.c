@@ -90,9 +90,8 @@ static const SettingKey keys[] = {
     CHOICE("temperature", "mode", temperature, TEMPERATURE_CO2, temperature_choices,
            "fixed: that of the air profile; co2: cooling with the CO2 of the schedule by a published linear "
            "relation; file: change by year and altitude as in files.temperature_change"),
-    WHOLE("temperature", "reference_year", reference_year, 1980, 1750, 2500, "",
-          "year the air profile belongs to, used when mode is co2; the standard atmosphere of 1976 rests on "
-          "soundings of the decades before"),
+    REAL("temperature", "reference_co2_ppm", reference_co2_ppm, 338.9, 100, 10000, "ppm",
+         "CO2 at which the air profile holds, used when mode is co2; the default is the global mean of 1980"),
 
     CHOICE(
         "sun", "kind", sun, SUN_GLOBAL, sun_choices,

@@ -100,8 +100,8 @@ void sun_set_day(Sun *sun, const Settings *settings, double day_of_year)
     place_day(sun, &path, day_of_year);
 }
 
-/* Nodes over every height of the sun in a year. */
-static void place_year(Sun *sun, const Settings *settings, int refine)
+/* Nodes over every height of the sun in a year, dense, since a winter day uses only the lower ones. */
+static void place_year(Sun *sun, const Settings *settings)
 {
     double low = 1.0, high = -1.0;
     for (int quarter = 4; quarter < 4 * 367; quarter++) {
@@ -110,7 +110,7 @@ static void place_year(Sun *sun, const Settings *settings, int refine)
         high = fmax(high, path.constant + path.swing);
     }
     /* the true extremes lie between two quarters of a day */
-    place_nodes(sun, fmax(low - 1e-5, SUN_TWILIGHT), fmin(high + 1e-5, 1.0), refine);
+    place_nodes(sun, fmax(low - 1e-5, SUN_TWILIGHT), fmin(high + 1e-5, 1.0), 2);
     sun_set_day(sun, settings, settings->day_of_year);
 }
 
@@ -118,7 +118,7 @@ void sun_make(Sun *sun, const Settings *settings, int refine)
 {
     *sun = (Sun){.earth_sun = 1.0};
     if (settings->sun == SUN_SEASON) {
-        place_year(sun, settings, refine);
+        place_year(sun, settings);
         return;
     }
     Path path = {.global = settings->sun == SUN_GLOBAL};

@@ -32,7 +32,7 @@ typedef struct {
     double earth_sun;             /* flux relative to that at 1 au */
 } Sun;
 
-/* refine = 1: as used; 2: nodes twice as dense (tests of the interpolation). */
+/* refine = 1: as used; 2: nodes twice as dense (tests of the interpolation, and always with a season). */
 void sun_make(Sun *sun, const Settings *settings, int refine);
 
 /* SUN_SEASON: the path on a day of the year (1 = the beginning of 1 January; fractions and 365.25 days

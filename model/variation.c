@@ -36,39 +36,31 @@ static int read_table(Profiles *profiles, const Model *model, const char *what, 
 
 /* ---- temperature ---- */
 
-/* The CO2 of the schedule, which must reach the year the air of the case belongs to. */
 static int find_co2(Variation *variation, const Model *model, Fault *fault)
 {
     const Schedule *schedule = &model->schedule;
-    int year = model->settings.reference_year, gas = schedule_find(schedule, "CO2");
+    int gas = schedule_find(schedule, "CO2");
     if (gas < 0)
         return fault_at(
             fault, schedule->path, 0,
             "the schedule has no CO2, which temperature.mode = \"co2\" goes by; add the gas, or set "
             "temperature.mode = \"fixed\"");
-    int first = schedule->first_year[gas], last = first + schedule->years[gas] - 1;
-    if (year < first || year > last)
-        return fault_at(
-            fault, schedule->path, schedule->first_line[gas],
-            "CO2 has values for %d to %d, but temperature.reference_year is %d; add the years, or "
-            "correct the key, or set temperature.mode = \"fixed\"",
-            first, last, year);
     variation->co2 = gas;
-    variation->co2_reference = schedule_abundance(schedule, gas, year + 0.5);
+    variation->co2_reference = 1e-6 * model->settings.reference_co2_ppm;
     for (int y = 0; y < schedule->years[gas]; y++)
         if (!(schedule->abundance[gas][y] > 0.0))
             return fault_at(
                 fault, schedule->path, schedule->first_line[gas],
                 "CO2 is %g in %d; temperature.mode = \"co2\" goes by its logarithm: correct it, or "
                 "set temperature.mode = \"fixed\"",
-                schedule->abundance[gas][y], first + y);
+                schedule->abundance[gas][y], schedule->first_year[gas] + y);
     return 0;
 }
 
 static int read_temperature(Variation *variation, const Model *model, char **sources, Fault *fault)
 {
     static const ProfilesColumn doubling = {"K_per_doubling", -40.0, 40.0, 0},
-                                change = {"change_K", -80.0, 80.0, 0};
+                                change = {"change_K", -150.0, 150.0, 0};
     const Settings *settings = &model->settings;
     if (settings->temperature == TEMPERATURE_CO2) {
         Profiles table;

@@ -1,7 +1,7 @@
 /* variation: what changes the conditions of a run in time: the tables, read and put onto the layers.
  *
  * Temperature change by CO2 (temperature.mode = "co2"): change = K per doubling (table, by altitude) times
- * log2(CO2 now / CO2 of temperature.reference_year), CO2 of the schedule at the ground; or given by year and
+ * log2(CO2 now / temperature.reference_co2_ppm), CO2 of the schedule at the ground; or given by year and
  * altitude (mode = "file"). That ozone itself warms the stratosphere is not included: a loss of ozone cools
  * about as much as CO2 did between 1980 and 2000, and its return warms again.
  *

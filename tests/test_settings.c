@@ -118,7 +118,7 @@ static void settings_refuses_a_bad_case(void **state)
         {"\ntemperature = { mode = \"file\"; };", ":2: ", "files.temperature_change"},
         {"files = { temperature_change = \"co2-cooling.csv\"; };", ":1: ", "temperature.mode"},
         {"temperature = { mode = \"co3\"; };", ":1: ", "did you mean co2"},
-        {"temperature = { reference_year = 3000; };", ":1: ", "between 1750 and 2500"},
+        {"temperature = { reference_co2_ppm = 3.4e-4; };", ":1: ", "between 100 and 10000 ppm"},
         {"files = { co2_cooling = \"\"; };", ":1: ", "is empty"},
         {"files = { volcanic = \"nowhere.csv\"; };", ":1: ", "nowhere.csv: not found (files.volcanic)"},
         {"files = { solar_cycle = \"nowhere.csv\"; };", ":1: ", "nowhere.csv: not found (files.solar_cycle)"},
