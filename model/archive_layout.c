@@ -182,8 +182,8 @@ static int put_global(const Layout *out, const char *command_line, Fault *fault)
          "long; a decimal year is written as the same fraction of that calendar year. Mole fractions are "
          "layer means; ozone_column includes the part above the top of the grid."},
         {"caution",
-         "A single near-global column: no polar winter, no ozone hole, no change of circulation or "
-         "temperature. A planning "
+         "A single near-global column: no polar winter, no ozone hole, no change of circulation; "
+         "temperature changes as the case has it (by default with CO2), not with ozone. A planning "
          "figure. Health and regulatory decisions defer to the competent authority and its own methods."},
         {"mechanism", mechanism->title ? mechanism->title : ""},
         {"mechanism_version", mechanism->version ? mechanism->version : ""},
@@ -325,10 +325,13 @@ static int put_altitude(const Layout *out, const Dimensions *dim, Fault *fault)
 
 static int put_profiles(const Layout *out, const Dimensions *dim, Fault *fault)
 {
-    static const Description temperature = {"air_temperature", "K", "air_temperature", "air temperature",
-                                            NULL};
+    static const Description temperature = {
+        "air_temperature", "K", "air_temperature",
+        "air temperature of the base atmosphere, before any change by temperature.mode or month", NULL};
     static const Description pressure = {"air_pressure", "Pa", "air_pressure", "air pressure", NULL};
-    static const Description density = {"air_number_density", "cm-3", NULL, "number density of air molecules",
+    static const Description density = {"air_number_density", "cm-3", NULL,
+                                        "number density of air molecules of the base atmosphere; times layer "
+                                        "depth the mass of the layer, which never changes",
                                         NULL};
     static const Description eddy = {"eddy_diffusion", "cm2 s-1", NULL, "vertical eddy diffusion coefficient",
                                      NULL};

@@ -32,8 +32,8 @@ static void print_help(FILE *out)
             "  skymend --version\n\n"
             "Exit codes: 0 done, 2 the request or an input is wrong, 3 the numerics failed,\n"
             "4 the output could not be written, 130 interrupted (what is finished is kept).\n\n"
-            "A single near-global column has no polar winter, no ozone hole, and no change of circulation\n"
-            "or temperature. For decisions on health or regulation defer to the competent authority.\n");
+            "A single near-global column has no polar winter, no ozone hole, no change of circulation,\n"
+            "and no temperature that answers to ozone. For decisions on health or regulation defer to the competent authority.\n");
 }
 
 static int dispatch(int argc, char **argv)
