@@ -303,22 +303,6 @@ static int make_fields(Model *model, Fault *fault)
     return 0;
 }
 
-static int set_conditions(Model *model, Fault *fault)
-{
-    char *sources = NULL;
-    int code = variation_read(&model->variation, model, &sources, fault);
-    size_t length = code ? 0 : strlen(sources), old = strlen(model->sources);
-    char *longer = length ? realloc(model->sources, old + length + 1) : NULL;
-    if (longer) {
-        memcpy(longer + old, sources, length + 1);
-        model->sources = longer;
-    } else if (length) {
-        code = fault_memory(fault, "list of sources");
-    }
-    free(sources);
-    return code ? code : conditions_make(&model->base, model, fault);
-}
-
 int model_make(Model **made, const Settings *settings, Fault *fault)
 {
     *made = NULL;
@@ -345,7 +329,9 @@ int model_make(Model **made, const Settings *settings, Fault *fault)
     if (!code)
         code = read_aerosol(model, fault);
     if (!code)
-        code = set_conditions(model, fault);
+        code = variation_read(&model->variation, model, &model->sources, fault);
+    if (!code)
+        code = conditions_make(&model->base, model, fault);
     if (code) {
         model_free(model);
         return code;

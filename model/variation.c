@@ -285,12 +285,9 @@ static int check_range(const Variation *variation, const Model *model, Fault *fa
 int variation_read(Variation **read, const Model *model, char **sources, Fault *fault)
 {
     *read = NULL;
-    *sources = calloc(1, 1);
     Variation *variation = calloc(1, sizeof *variation);
-    if (!variation || !*sources) {
-        free(variation);
+    if (!variation)
         return fault_memory(fault, "what varies");
-    }
     variation->co2 = -1;
     int code = read_temperature(variation, model, sources, fault);
     if (!code)

@@ -43,8 +43,8 @@ struct Variation {
     double *amplitude; /* [bins] maximum less minimum, relative to their mean */
 };
 
-/* The tables the case names. Needs everything of the model but base. *sources: citations, one a line, "" when
- * there are none; owner: caller. */
+/* The tables the case names. Needs everything of the model but base. Their citations are appended to
+ * *sources, text from malloc, one a line. Owner: caller. */
 int variation_read(Variation **read, const Model *model, char **sources, Fault *fault);
 void variation_free(Variation *variation); /* accepts NULL */
 
