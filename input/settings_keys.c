@@ -99,7 +99,8 @@ static const SettingKey keys[] = {
         "latitude_deg through the year"),
     REAL("sun", "latitude_deg", latitude_deg, 0, -90, 90, "degrees north",
          "used when kind is latitude or season"),
-    REAL("sun", "day_of_year", day_of_year, 80, 1, 366, "", "used when kind is latitude; 1 = 1 January"),
+    REAL("sun", "day_of_year", day_of_year, 80, 1, 366, "",
+         "used when kind is latitude, and by the verb sunlight when it is season; 1 = 1 January"),
     REAL("sun", "surface_albedo", surface_albedo, 0.3, 0, 1, "",
          "share of light the lower boundary returns; 0.3 is the whole Earth with its clouds "
          "(common practice), clear ground is near 0.1 and less in the ultraviolet"),
