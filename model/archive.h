@@ -15,6 +15,8 @@ typedef struct {
     double time, time_start, time_end; /* decimal years; written as days since 1950-01-01, see calendar.h */
     const double *x;                   /* [solved][padded] mean mole fractions over the interval */
     double ozone_column;               /* DU, mean over the interval */
+    const double *temperature_change; /* [layers] K against the base atmosphere, mean over the interval; NULL:
+                                         not known, left as missing */
 } Record;
 
 /* command_line goes into history. Fault FAULT_OUTPUT (exit 4) when the path cannot be written, FAULT_INPUT

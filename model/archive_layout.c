@@ -13,6 +13,7 @@
 
 #include "archive.h"
 #include "calendar.h"
+#include "variation.h"
 
 #ifndef SKYMEND_VERSION
 #define SKYMEND_VERSION "unknown"
@@ -345,6 +346,20 @@ static int put_profiles(const Layout *out, const Dimensions *dim, Fault *fault)
     return 0;
 }
 
+static int define_change(Layout *out, const Dimensions *dim, Fault *fault)
+{
+    static const Description change = {
+        "temperature_change", "K", NULL,
+        "temperature less air_temperature, which is that of the base atmosphere",
+        "time: mean altitude: mean"};
+    const int field[2] = {dim->time, dim->altitude};
+    const size_t chunk[2] = {1, (size_t)out->model->grid.layers};
+    out->change = -1;
+    return variation_of_temperature(out->model->variation)
+               ? define(out, &change, 2, field, chunk, &out->change, fault)
+               : 0;
+}
+
 int layout_define(Layout *out, const char *command_line, Fault *fault)
 {
     size_t layers = (size_t)out->model->grid.layers;
@@ -358,7 +373,7 @@ int layout_define(Layout *out, const char *command_line, Fault *fault)
         status = nc_def_dim(out->file, "nv", 2, &dim.bound);
     if (layout_fault(out->path, status, "the dimensions", fault) || put_global(out, command_line, fault) ||
         define_series(out, &dim, fault) || put_altitude(out, &dim, fault) || put_profiles(out, &dim, fault) ||
-        define_species(out, &dim, fault))
+        define_species(out, &dim, fault) || define_change(out, &dim, fault))
         return fault->code;
     status = nc_enddef(out->file);
     if (status == NC_NOERR)

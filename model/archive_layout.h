@@ -15,7 +15,9 @@ typedef struct {
     const char *path;              /* for messages */
     int file;                      /* NetCDF id */
     int time, time_bounds, column; /* variable ids, set by layout_define */
-    int *fraction;                 /* [solved] variable ids, set by layout_define */
+    int change; /* variable id of the temperature change, set by layout_define; -1: temperature does not vary
+                 */
+    int *fraction; /* [solved] variable ids, set by layout_define */
 } Layout;
 
 /* Define everything in a new file and write what does not change with time. FAULT_INPUT when two species

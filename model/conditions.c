@@ -84,7 +84,7 @@ static int temperature_now(const Model *model, double time, double season, doubl
         for (int l = 0; l < padded; l++)
             kelvin[l] += work[l];
     }
-    return by_month || by_year || variation->co2 >= 0;
+    return variation_of_temperature(variation);
 }
 
 static int move_air(Conditions *conditions, const Model *model, double time, double season)

@@ -57,15 +57,16 @@ int projection_spin_up(const Model *model, Stepper *stepper, Column *column, dou
     return 0;
 }
 
-/* One output interval: advance and average. */
+/* One output interval: advance and average. sum: [solved][padded] and, behind it, [layers]. */
 static int run_interval(const Model *model, Stepper *stepper, Column *column, double start, double end,
                         double share_before, double share_after, double *sum, const Watcher *watcher,
                         Fault *fault)
 {
     size_t field = (size_t)model->mechanism->solved * (size_t)model->grid.padded;
-    double step;
+    size_t layers = (size_t)model->grid.layers;
+    double step, *change = sum + field;
     long steps = plan_steps(model, start, end - start, &step);
-    memset(sum, 0, field * sizeof(double));
+    memset(sum, 0, (field + layers) * sizeof(double));
     for (long i = 0; i < steps; i++) {
         int code = stepper_advance(stepper, column, step, 0, fault);
         if (code)
@@ -73,6 +74,9 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
         const double *mean = stepper_mean(stepper);
         for (size_t j = 0; j < field; j++)
             sum[j] += mean[j];
+        const double *kelvin = stepper_conditions(stepper)->temperature;
+        for (size_t l = 0; l < layers; l++)
+            change[l] += kelvin[l] - model->air.temperature[l];
         tell(model, column, watcher, 0,
              share_before + (share_after - share_before) * (double)(i + 1) / (double)steps);
         if (stopped(watcher))
@@ -82,10 +86,12 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
     }
     for (size_t j = 0; j < field; j++)
         sum[j] /= (double)steps;
+    for (size_t l = 0; l < layers; l++)
+        change[l] /= (double)steps;
     column->time = end; /* no drift from adding steps */
     if (!watcher->record)
         return 0;
-    Record record = {0.5 * (start + end), start, end, sum, column_ozone_du(model, sum)};
+    Record record = {0.5 * (start + end), start, end, sum, column_ozone_du(model, sum), change};
     return watcher->record(watcher->context, &record, fault);
 }
 
@@ -93,7 +99,7 @@ int projection_run(const Model *model, Stepper *stepper, Column *column, const W
 {
     const Settings *settings = &model->settings;
     size_t field = (size_t)model->mechanism->solved * (size_t)model->grid.padded;
-    double *sum = malloc(field * sizeof(double));
+    double *sum = malloc((field + (size_t)model->grid.layers) * sizeof(double));
     if (!sum)
         return fault_memory(fault, "means of an interval");
     int years = settings->last_year - settings->first_year + 1, per_year = settings->outputs_per_year;

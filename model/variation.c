@@ -306,6 +306,11 @@ int variation_read(Variation **read, const Model *model, char **sources, Fault *
     return 0;
 }
 
+int variation_of_temperature(const Variation *variation)
+{
+    return variation && (variation->co2 >= 0 || variation->change.times || variation->month_air.times);
+}
+
 void variation_free(Variation *variation)
 {
     if (!variation)

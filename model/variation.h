@@ -46,6 +46,8 @@ struct Variation {
 /* The tables the case names. Needs everything of the model but base. Their citations are appended to
  * *sources, text from malloc, one a line. Owner: caller. */
 int variation_read(Variation **read, const Model *model, char **sources, Fault *fault);
+/* 1 when temperature may differ from that of the base atmosphere; accepts NULL (0). */
+int variation_of_temperature(const Variation *variation);
 void variation_free(Variation *variation); /* accepts NULL */
 
 #endif

@@ -6,6 +6,7 @@
 #include "run.h"
 
 #include "../model/conditions.h"
+#include "../model/projection.h"
 #include "../model/variation.h"
 #include "../transport/air.h"
 
@@ -234,6 +235,37 @@ static void temperature_follows_co2(void **state)
     check_near(run.model->grid.middle[layer], 50e5, 1e-12);
     check_near(now->temperature[layer] - run.model->air.temperature[layer], -10.5 * doublings, 1e-9);
     check_near(now->temperature[0], run.model->air.temperature[0], 0.0); /* troposphere as it is */
+    end(&run);
+}
+
+static int take_record(void *context, const Record *record, Fault *fault)
+{
+    (void)fault;
+    double *change = context;
+    *change = record->temperature_change[12];
+    return 0;
+}
+
+/* What the file is told of the change is its mean over the interval: the trend of 50 km, 0 to -10 K in two
+ * years, is -2.5 K in the mean of the first and -7.5 K in that of the second year. Tolerance: half a step of
+ * the conditions. */
+static void the_record_tells_the_change(void **state)
+{
+    Settings settings = coarse(1990, 1991);
+    settings.spinup_years = 0.0;
+    use_change(state, &settings, "trend.csv", 0, 0, -4, -10);
+    double change = 0.0;
+    Watcher watcher = {.record = take_record, .context = &change};
+    Fault fault = {0};
+    Run run = start(&settings, 1);
+    ok(projection_run(run.model, run.stepper, run.column, &watcher, &fault), &fault);
+    assert_true(fabs(change + 7.5) < 0.05);
+    assert_true(variation_of_temperature(run.model->variation));
+    end(&run);
+    settings.last_year = 1990;
+    run = start(&settings, 1);
+    ok(projection_run(run.model, run.stepper, run.column, &watcher, &fault), &fault);
+    assert_true(fabs(change + 2.5) < 0.05);
     end(&run);
 }
 
@@ -563,6 +595,7 @@ int main(void)
         WITH_FOLDER(light_keeps_the_mass_of_layers),
         WITH_FOLDER(atoms_close_under_a_trend),
         WITH_FOLDER(temperature_follows_co2),
+        WITH_FOLDER(the_record_tells_the_change),
         WITH_FOLDER(cooling_makes_ozone_in_the_upper_stratosphere),
         WITH_FOLDER(solar_maximum_makes_ozone),
         WITH_FOLDER(volcanic_aerosol_works_by_chlorine),
