@@ -46,6 +46,7 @@ struct Photolysis {
     void *block;                                        /* holds every array below */
     double *cosine;                                     /* [suns] */
     double *temperature, *air, *depth;                  /* [layers] */
+    double *sunlight;                                   /* [stride] relative to the spectrum's flux */
     double *weight;                                     /* [layers][reactions][stride] sigma phi, cm2 */
     double *sigma_ozone, *sigma_dioxide;                /* [layers][stride] */
     double *absorb_air, *scatter; /* [layers][stride] optical depth of O2 for diffuse light; of Rayleigh */
@@ -81,6 +82,7 @@ static size_t lay_out(Photolysis *p, char *base)
     p->temperature = take(base, &used, layers);
     p->air = take(base, &used, layers);
     p->depth = take(base, &used, layers);
+    p->sunlight = take(base, &used, stride);
     p->weight = take(base, &used, field * (size_t)p->reactions);
     p->sigma_ozone = take(base, &used, field);
     p->sigma_dioxide = take(base, &used, field);
@@ -177,9 +179,10 @@ int photolysis_make(Photolysis **made, const Mechanism *mechanism, const Spectra
         return fault->code;
     }
     memcpy(p->cosine, cosine, (size_t)suns * sizeof *cosine);
-    memcpy(p->depth, depth, (size_t)layers * sizeof *depth);
+    for (int b = 0; b < p->stride; b++)
+        p->sunlight[b] = 1;
     find_overlap(p);
-    photolysis_set_air(p, temperature, air, air_above_top);
+    photolysis_set_air(p, temperature, air, depth, air_above_top);
     *made = p;
     return 0;
 }
@@ -324,13 +327,19 @@ static void set_oxygen(Photolysis *p)
         }
 }
 
+void photolysis_set_sunlight(Photolysis *photolysis, const double *factor)
+{
+    memcpy(photolysis->sunlight, factor, (size_t)photolysis->bins * sizeof *factor);
+}
+
 void photolysis_set_air(Photolysis *photolysis, const double *temperature, const double *air,
-                        double air_above_top)
+                        const double *depth, double air_above_top)
 {
     Photolysis *p = photolysis;
     size_t stride = (size_t)p->stride, length = (size_t)p->layers * sizeof *air;
     memcpy(p->temperature, temperature, length);
     memcpy(p->air, air, length);
+    memcpy(p->depth, depth, length);
     p->above = air_above_top;
     for (int k = 0; k < p->layers; k++) {
         const Spectra *spectra = p->spectra;
@@ -475,7 +484,8 @@ static void nitric_oxide_rates(Photolysis *p, int r, const double *nitric_oxide,
                 const double *opacity = p->opacity + (at * NITRIC_OXIDE_INTERVALS + (size_t)i) * OXYGEN_TERMS;
                 double light = 0;
                 for (int b = 0; b < p->parametrised; b++)
-                    light += p->overlap[i * p->parametrised + b] * clear[b];
+                    light +=
+                        p->overlap[i * p->parametrised + b] * p->sunlight[p->parametrised_bin[b]] * clear[b];
                 sum += interval->flux * earth_sun * light * p->efficiency[k * NITRIC_OXIDE_INTERVALS + i] *
                        nitric_oxide_cross_section(interval, opacity, column);
             }
@@ -520,7 +530,8 @@ void photolysis_rates(Photolysis *photolysis, const double *ozone, const double 
 #pragma omp parallel for schedule(static)
     for (size_t row = 0; row < (size_t)p->suns * (size_t)p->layers; row++)
         for (size_t b = 0; b < stride; b++)
-            p->flux[row * stride + b] *= b < (size_t)p->bins ? p->spectra->flux[b] * earth_sun : 0;
+            p->flux[row * stride + b] *=
+                b < (size_t)p->bins ? p->spectra->flux[b] * p->sunlight[b] * earth_sun : 0;
     all_rates(p, nitric_oxide, earth_sun, rate);
 }
 

@@ -17,8 +17,11 @@ int photolysis_make(Photolysis **made, const Mechanism *mechanism, const Spectra
                     const double *depth, double air_above_top, const double *cosine, int suns, double albedo,
                     Fault *fault);
 void photolysis_free(Photolysis *photolysis);
+/* depth [padded]: air * depth is the layer's air, cm-2; the paths of light keep the edges of the making. */
 void photolysis_set_air(Photolysis *photolysis, const double *temperature, const double *air,
-                        double air_above_top);
+                        const double *depth, double air_above_top);
+/* Sunlight relative to the spectrum read, [bins]; 1 until it is set. */
+void photolysis_set_sunlight(Photolysis *photolysis, const double *factor);
 
 /* rate [suns][photolysis reactions][padded] s-1 out, padding lanes repeat the top layer. ozone,
  * nitrogen_dioxide, nitric_oxide: number densities cm-3 [padded]. O2 is air times the mechanism's share.

@@ -364,6 +364,61 @@ static int check_files(const Reading *reading)
     return 0;
 }
 
+/* Tables by month go with a season, and with the table that holds the gas at all. */
+static int is_given(const Reading *reading, const char *group, const char *name)
+{
+    size_t count;
+    const SettingKey *keys = settings_keys(&count);
+    for (size_t k = 0; k < count; k++)
+        if (!strcmp(keys[k].group, group) && !strcmp(keys[k].name, name))
+            return reading->given[k] != NULL;
+    return 0;
+}
+
+static int check_season(Reading *reading)
+{
+    Settings *settings = reading->settings;
+    const struct {
+        const char *name, *file, *base_name, *base;
+    } tables[] = {{"air_by_month", settings->month_air_file, NULL, NULL},
+                  {"tropospheric_oh_by_month", settings->month_oh_file, "tropospheric_oh",
+                   settings->tropospheric_oh_file},
+                  {"tropospheric_water_by_month", settings->month_water_file, "tropospheric_water",
+                   settings->tropospheric_water_file},
+                  {"tropospheric_no2_by_month", settings->month_no2_file, "tropospheric_no2",
+                   settings->tropospheric_no2_file}};
+    char text[300];
+    for (size_t t = 0; t < sizeof tables / sizeof tables[0]; t++) {
+        if (!tables[t].file[0])
+            continue;
+        if (settings->sun != SUN_SEASON) {
+            snprintf(text, sizeof text,
+                     "files.%s goes with sun.kind = \"season\" alone; set it, or leave the table out",
+                     tables[t].name);
+            return clash(reading, "files", tables[t].name, "", text);
+        }
+        if (tables[t].base && !tables[t].base[0]) {
+            snprintf(text, sizeof text, "files.%s is given, but files.%s is empty; give both or neither",
+                     tables[t].name, tables[t].base_name);
+            return clash(reading, "files", tables[t].name, "", text);
+        }
+    }
+    if (settings->sun == SUN_SEASON && settings->start == START_SETTLED) {
+        if (is_given(reading, "numerics", "start"))
+            return clash(reading, "numerics", "start", "",
+                         "with sun.kind = \"season\" the column is never at rest; take numerics.start = "
+                         "\"spinup\"");
+        settings->start = START_SPINUP; /* as the help of the key says */
+    }
+    double years = settings->spinup_years;
+    if (settings->sun == SUN_SEASON && years != floor(years))
+        return clash(
+            reading, "numerics", "spinup_years", "",
+            "numerics.spinup_years must be whole with sun.kind = \"season\", so that the run starts in "
+            "January; round it");
+    return 0;
+}
+
 static int check_together(Reading *reading)
 {
     Settings *settings = reading->settings;
@@ -399,7 +454,15 @@ static int check_together(Reading *reading)
             reading, "output", "moments", "",
             "output.moments asks for values by time of day, which day.mode = \"mean\" has not; take day.mode "
             "= \"factors\" or \"explicit\", or output.moments = \"none\"");
-    return check_files(reading);
+    if (settings->temperature == TEMPERATURE_FILE && !settings->temperature_file[0])
+        return clash(reading, "temperature", "mode", "",
+                     "temperature.mode is \"file\", but files.temperature_change names none; name the table");
+    if (settings->temperature != TEMPERATURE_FILE && settings->temperature_file[0])
+        return clash(
+            reading, "files", "temperature_change", "",
+            "files.temperature_change is used with temperature.mode = \"file\" alone; set the mode, or "
+            "leave the file out");
+    return check_season(reading) ? reading->fault->code : check_files(reading);
 }
 
 /* ---- the whole file ---- */

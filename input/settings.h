@@ -20,8 +20,9 @@
 
 enum DayMode { DAY_MEAN, DAY_FACTORS, DAY_EXPLICIT };
 enum MomentsOut { MOMENTS_NONE, MOMENTS_ALL };
-enum SunMode { SUN_GLOBAL, SUN_LATITUDE };
 enum StartMode { START_SETTLED, START_SPINUP };
+enum SunMode { SUN_GLOBAL, SUN_LATITUDE, SUN_SEASON };
+enum TemperatureMode { TEMPERATURE_FIXED, TEMPERATURE_CO2, TEMPERATURE_FILE };
 enum BoundKind { BOUND_FIXED, BOUND_DEPOSITION };
 
 typedef struct {
@@ -61,9 +62,23 @@ typedef struct {
     char tropospheric_no2_file[SETTINGS_PATH];   /* tropospheric-nitrogen-dioxide.csv; "" = NO2 computed
                                                     everywhere */
 
+    char co2_cooling_file[SETTINGS_PATH]; /* co2-cooling.csv */
+    char month_air_file[SETTINGS_PATH];   /* by month, SUN_SEASON; "" = none, as the next three */
+    char month_oh_file[SETTINGS_PATH];
+    char month_water_file[SETTINGS_PATH];
+    char month_no2_file[SETTINGS_PATH];
+    char volcanic_file[SETTINGS_PATH];        /* "" = background aerosol alone */
+    char solar_cycle_file[SETTINGS_PATH];     /* "" = steady sun */
+    char solar_amplitude_file[SETTINGS_PATH]; /* solar-cycle-amplitude.csv */
+    char temperature_file[SETTINGS_PATH];     /* "" unless temperature is TEMPERATURE_FILE */
+
+    /* temperature */
+    int temperature;          /* enum TemperatureMode */
+    double reference_co2_ppm; /* CO2 the air of the case goes with, TEMPERATURE_CO2 */
+
     /* sun */
     int sun;               /* enum SunMode */
-    double latitude_deg;   /* SUN_LATITUDE */
+    double latitude_deg;   /* SUN_LATITUDE, SUN_SEASON */
     double day_of_year;    /* SUN_LATITUDE, 1..366 */
     double surface_albedo; /* 0..1 */
 

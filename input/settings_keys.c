@@ -1,9 +1,10 @@
 /* settings_keys: the table of case-file keys and the built-in surface boundaries. */
 #include "settings_keys.h"
 
-static const char *const sun_choices[] = {"global", "latitude", NULL};
 static const char *const moments_choices[] = {"none", "all", NULL};
 static const char *const start_choices[] = {"settled", "spinup", NULL};
+static const char *const sun_choices[] = {"global", "latitude", "season", NULL};
+static const char *const temperature_choices[] = {"fixed", "co2", "file", NULL};
 static const char *const day_choices[] = {"mean", "factors", "explicit", NULL};
 
 const char *const bound_kinds[] = {"fixed", "deposition", NULL};
@@ -66,11 +67,42 @@ static const SettingKey keys[] = {
           "CSV profile of water vapour held below the tropopause"),
     TEXT("files", "tropospheric_no2", tropospheric_no2_file, "tropospheric-nitrogen-dioxide.csv",
          "CSV profile of NO2 held below the tropopause; empty to compute NO2 everywhere"),
+    NAMED("files", "co2_cooling", co2_cooling_file, "co2-cooling.csv",
+          "CSV profile of the change of temperature for a doubling of CO2"),
+    TEXT("files", "temperature_change", temperature_file, "",
+         "CSV of the change of temperature by year and altitude; used when temperature.mode is file"),
+    TEXT("files", "air_by_month", month_air_file, "",
+         "CSV of temperature and pressure by month and altitude, used when sun.kind is season; files.air is "
+         "then "
+         "the annual mean"),
+    TEXT("files", "tropospheric_oh_by_month", month_oh_file, "",
+         "CSV of OH held below the tropopause by month and altitude, used when sun.kind is season"),
+    TEXT("files", "tropospheric_water_by_month", month_water_file, "",
+         "CSV of water vapour held below the tropopause by month and altitude, used when sun.kind is season"),
+    TEXT("files", "tropospheric_no2_by_month", month_no2_file, "",
+         "CSV of NO2 held below the tropopause by month and altitude, used when sun.kind is season"),
+    TEXT("files", "volcanic", volcanic_file, "",
+         "CSV of sulfate surface that volcanoes add, by year and altitude; empty for the background alone"),
+    TEXT("files", "solar_cycle", solar_cycle_file, "",
+         "CSV of the phase of the solar cycle by year, such as solar-cycle-idealised.csv; empty for a steady "
+         "sun"),
+    NAMED("files", "solar_amplitude", solar_amplitude_file, "solar-cycle-amplitude.csv",
+          "CSV of the change of sunlight over the solar cycle by wavelength"),
 
-    CHOICE("sun", "kind", sun, SUN_GLOBAL, sun_choices,
-           "global mean sun, or the sun of latitude_deg on day_of_year"),
-    REAL("sun", "latitude_deg", latitude_deg, 0, -90, 90, "degrees north", "used when kind is latitude"),
-    REAL("sun", "day_of_year", day_of_year, 80, 1, 366, "", "used when kind is latitude; 1 = 1 January"),
+    CHOICE("temperature", "mode", temperature, TEMPERATURE_CO2, temperature_choices,
+           "fixed: that of the air profile; co2: cooling with the CO2 of the schedule by a published linear "
+           "relation; file: change by year and altitude as in files.temperature_change"),
+    REAL("temperature", "reference_co2_ppm", reference_co2_ppm, 338.9, 100, 10000, "ppm",
+         "CO2 at which the air profile holds, used when mode is co2; the default is the global mean of 1980"),
+
+    CHOICE(
+        "sun", "kind", sun, SUN_GLOBAL, sun_choices,
+        "global: mean sun; latitude: the sun of latitude_deg on day_of_year, every day; season: the sun of "
+        "latitude_deg through the year"),
+    REAL("sun", "latitude_deg", latitude_deg, 0, -90, 90, "degrees north",
+         "used when kind is latitude or season"),
+    REAL("sun", "day_of_year", day_of_year, 80, 1, 366, "",
+         "used when kind is latitude, and by the verb sunlight when it is season; 1 = 1 January"),
     REAL("sun", "surface_albedo", surface_albedo, 0.3, 0, 1, "",
          "share of light the lower boundary returns; 0.3 is the whole Earth with its clouds "
          "(common practice), clear ground is near 0.1 and less in the ultraviolet"),
@@ -102,7 +134,7 @@ static const SettingKey keys[] = {
          "the same for gases too scarce to matter"),
     CHOICE("numerics", "start", start, START_SETTLED, start_choices,
            "settled: from the steady state under the first year's values; spinup: from the initial profiles "
-           "after spinup_years under them"),
+           "after spinup_years under them, which sun.kind = season takes always"),
     REAL("numerics", "spinup_years", spinup_years, 15, 0, 500, "years",
          "balance at the first year's values before the run starts, with start = \"spinup\""),
 

@@ -313,9 +313,8 @@ void answers_print(const Answers *answers, const ColumnSeries *series, FILE *out
     print_return(answers, series, out);
     fprintf(out, "\nmeans of calendar years; change is against %d\n", (int)answers->benchmark_year);
     print_decades(answers, series, out);
-    fprintf(
-        out,
-        "\nCaution: one near-global column, without polar winter, ozone hole, or change of circulation or\n"
-        "temperature; a planning figure. Health and regulatory decisions defer to the competent authority\n"
-        "and its methods.\n");
+    fprintf(out,
+            "\nCaution: one near-global column, without polar winter, ozone hole, change of circulation, or\n"
+            "temperature that answers to ozone; a planning figure. Health and regulatory decisions defer to\n"
+            "the competent authority and its methods.\n");
 }

@@ -253,6 +253,12 @@ static int put_record(Archive *archive, const Record *record, Fault *fault)
                                              record->x + FIELD(model->grid.padded, s, 0)),
                           mechanism_name(model->mechanism, s), fault))
             return fault->code;
+    if (archive->out.change >= 0 && record->temperature_change &&
+        library_fault(archive,
+                      nc_put_vara_double(archive->out.file, archive->out.change, start, one,
+                                         record->temperature_change),
+                      "temperature_change", fault))
+        return fault->code;
     if (record->moments && layout_put_moments(&archive->out, archive->records, record->moments, fault)) {
         archive->broken = 1;
         return fault->code;
@@ -286,7 +292,7 @@ static int take_place(Archive *archive, Fault *fault)
 int archive_append(Archive *archive, const Record *record, Fault *fault)
 {
     const Model *model = archive->out.model;
-    size_t variables = (size_t)model->mechanism->solved + 3 + layout_budget_variables(&archive->out);
+    size_t variables = (size_t)model->mechanism->solved + 4 + layout_budget_variables(&archive->out);
     size_t bytes = 2 * variables * (size_t)model->grid.layers * sizeof(double) + variables * INDEX_BYTES;
     if (record->moments)
         bytes += (size_t)model->mechanism->solved *

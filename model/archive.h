@@ -19,6 +19,8 @@ typedef struct {
                               of day (moments.h) when the case asks for them, else NULL */
     const double *rate; /* [reactions][padded] mean rates of reaction, cm-3 s-1; NULL: the budget is left out
                            of this record */
+    const double *temperature_change; /* [layers] K against the base atmosphere, mean over the interval; NULL:
+                                         not known, left as missing */
 } Record;
 
 /* command_line goes into history. Fault FAULT_OUTPUT (exit 4) when the path cannot be written, FAULT_INPUT

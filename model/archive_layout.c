@@ -13,6 +13,7 @@
 
 #include "archive.h"
 #include "calendar.h"
+#include "variation.h"
 
 #ifndef SKYMEND_VERSION
 #define SKYMEND_VERSION "unknown"
@@ -182,8 +183,8 @@ static int put_global(const Layout *out, const char *command_line, Fault *fault)
          "long; a decimal year is written as the same fraction of that calendar year. Mole fractions are "
          "layer means; ozone_column includes the part above the top of the grid."},
         {"caution",
-         "A single near-global column: no polar winter, no ozone hole, no change of circulation or "
-         "temperature. A planning "
+         "A single near-global column: no polar winter, no ozone hole, no change of circulation; "
+         "temperature changes as the case has it (by default with CO2), not with ozone. A planning "
          "figure. Health and regulatory decisions defer to the competent authority and its own methods."},
         {"mechanism", mechanism->title ? mechanism->title : ""},
         {"mechanism_version", mechanism->version ? mechanism->version : ""},
@@ -321,10 +322,13 @@ static int put_altitude(const Layout *out, const Dimensions *dim, Fault *fault)
 
 static int put_profiles(const Layout *out, const Dimensions *dim, Fault *fault)
 {
-    static const Description temperature = {"air_temperature", "K", "air_temperature", "air temperature",
-                                            NULL};
+    static const Description temperature = {
+        "air_temperature", "K", "air_temperature",
+        "air temperature of the base atmosphere, before any change by temperature.mode or month", NULL};
     static const Description pressure = {"air_pressure", "Pa", "air_pressure", "air pressure", NULL};
-    static const Description density = {"air_number_density", "cm-3", NULL, "number density of air molecules",
+    static const Description density = {"air_number_density", "cm-3", NULL,
+                                        "number density of air molecules of the base atmosphere; times layer "
+                                        "depth the mass of the layer, which never changes",
                                         NULL};
     static const Description eddy = {"eddy_diffusion", "cm2 s-1", NULL, "vertical eddy diffusion coefficient",
                                      NULL};
@@ -336,6 +340,20 @@ static int put_profiles(const Layout *out, const Dimensions *dim, Fault *fault)
         put_fixed(out, &eddy, dim->edge, model->eddy, layers + 1, 1.0, &variable, fault))
         return fault->code;
     return 0;
+}
+
+static int define_change(Layout *out, const Dimensions *dim, Fault *fault)
+{
+    static const Description change = {
+        "temperature_change", "K", NULL,
+        "temperature less air_temperature, which is that of the base atmosphere",
+        "time: mean altitude: mean"};
+    const int field[2] = {dim->time, dim->altitude};
+    const size_t chunk[2] = {1, (size_t)out->model->grid.layers};
+    out->change = -1;
+    return variation_of_temperature(out->model->variation)
+               ? layout_variable(out, &change, 2, field, chunk, &out->change, fault)
+               : 0;
 }
 
 int layout_define(Layout *out, const char *command_line, Fault *fault)
@@ -352,7 +370,8 @@ int layout_define(Layout *out, const char *command_line, Fault *fault)
     if (layout_fault(out->path, status, "the dimensions", fault) || put_global(out, command_line, fault) ||
         define_series(out, &dim, fault) || put_altitude(out, &dim, fault) || put_profiles(out, &dim, fault) ||
         define_species(out, &dim, fault) || layout_moments(out, dim.time, dim.altitude, fault) ||
-        layout_budget_define(out, dim.time, dim.altitude, TIME_CHUNK, fault))
+        layout_budget_define(out, dim.time, dim.altitude, TIME_CHUNK, fault) ||
+        define_change(out, &dim, fault))
         return fault->code;
     status = nc_enddef(out->file);
     if (status == NC_NOERR)

@@ -16,13 +16,15 @@ typedef struct {
     const char *path;              /* for messages */
     int file;                      /* NetCDF id */
     int time, time_bounds, column; /* variable ids, set by layout_define */
-    int *fraction;                 /* [solved] variable ids, set by layout_define */
+    int change; /* variable id of the temperature change, set by layout_define; -1: temperature does not vary
+                 */
+    int *fraction; /* [solved] variable ids, set by layout_define */
     int *course; /* [solved] variable ids of the mole fractions by time of day, -1 for a species without; NULL
                     when the case does not ask for them. Set by layout_moments; owner: archive */
-    OxBook *book;                  /* NULL: the mechanism has no odd oxygen and the file no budget */
-    int term[BUDGET_TERMS + 1];    /* variable ids of the odd-oxygen budget, the net last */
-    int *lifetime;                 /* [solved] variable ids, -1 for a gas that is no source gas */
-    double *budget;                /* [BUDGET_TERMS + 1][padded] work */
+    OxBook *book;               /* NULL: the mechanism has no odd oxygen and the file no budget */
+    int term[BUDGET_TERMS + 1]; /* variable ids of the odd-oxygen budget, the net last */
+    int *lifetime;              /* [solved] variable ids, -1 for a gas that is no source gas */
+    double *budget;             /* [BUDGET_TERMS + 1][padded] work */
 } Layout;
 
 /* A variable with its attributes; NULL: left out. */

@@ -166,11 +166,10 @@ void ox_book_free(OxBook *book)
 
 /* ---- rates ---- */
 
-void budget_rates(const Model *model, const double *x, const double *coefficient, const double *factor,
-                  double *rate)
+void budget_rates(const Model *model, const double *air, const double *x, const double *coefficient,
+                  const double *factor, double *rate)
 {
     const Mechanism *mechanism = model->mechanism;
-    const double *air = model->air.number_density;
     int padded = model->grid.padded;
     for (int r = 0; r < mechanism->reactions; r++) {
         const Reaction *reaction = &mechanism->reaction[r];
@@ -189,13 +188,16 @@ void budget_step_rates(const Model *model, const Stepper *stepper, const double 
 {
     const Day *day = stepper_day(stepper);
     size_t size = (size_t)model->mechanism->reactions * (size_t)model->grid.padded;
-    if (model->settings.day == DAY_EXPLICIT) {
+    const double *now = stepper_conditions(stepper)->air;
+    size_t padded = (size_t)model->grid.padded;
+    if (model->settings.day == DAY_EXPLICIT)
         for (size_t i = 0; i < size; i++)
             rate[i] = day->sum_w[i] / DAY_SECONDS;
-        return;
-    }
-    budget_rates(model, x, stepper_coefficients(stepper),
-                 model->settings.day == DAY_FACTORS ? day->factor : NULL, rate);
+    else
+        budget_rates(model, now, x, stepper_coefficients(stepper),
+                     model->settings.day == DAY_FACTORS ? day->factor : NULL, rate);
+    for (size_t i = 0; i < size; i++)
+        rate[i] *= model->air.number_density[i % padded] / now[i % padded];
 }
 
 /* ---- odd oxygen ---- */

@@ -75,11 +75,12 @@ int ox_book_make(OxBook **made, const Mechanism *mechanism, Fault *fault);
 void ox_book_free(OxBook *book);
 
 /* Rates of reaction, cm-3 s-1, [reactions][padded] out: coefficient times densities, times factor
- * [reactions][padded] where that is not NULL. x [solved][padded]. */
-void budget_rates(const Model *model, const double *x, const double *coefficient, const double *factor,
-                  double *rate);
+ * [reactions][padded] where that is not NULL. air [padded] cm-3, x [solved][padded]. */
+void budget_rates(const Model *model, const double *air, const double *x, const double *coefficient,
+                  const double *factor, double *rate);
 /* The mean rates of the stepper's last step: under factors and constant light from the mean mole fractions x,
- * in explicit days the integrals of the day. */
+ * in explicit days the integrals of the day. Layers are layers of mass (conditions.h): the rates given are
+ * per cm3 of the base atmosphere, so that times Model.grid.depth they are per cm2 of column. */
 void budget_step_rates(const Model *model, const Stepper *stepper, const double *x, double *rate);
 
 /* Terms of the Ox budget, cm-3 s-1: term [BUDGET_TERMS][padded] and net [padded] out, all positive but net

@@ -9,7 +9,9 @@
 
 #include "../input/constants.h"
 #include "../input/table.h"
+#include "conditions.h"
 #include "moments.h"
+#include "variation.h"
 
 /* ---- tables of the case ---- */
 
@@ -330,6 +332,10 @@ int model_make(Model **made, const Settings *settings, Fault *fault)
         code = set_ground(model, fault);
     if (!code)
         code = read_aerosol(model, fault);
+    if (!code)
+        code = variation_read(&model->variation, model, &model->sources, fault);
+    if (!code)
+        code = conditions_make(&model->base, model, fault);
     if (code) {
         model_free(model);
         return code;
@@ -342,6 +348,8 @@ void model_free(Model *model)
 {
     if (!model)
         return;
+    variation_free(model->variation);
+    conditions_free(model->base);
     diffusion_free(model->diffusion);
     spectra_free(model->spectra);
     kernel_free(model->kernel);

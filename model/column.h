@@ -25,10 +25,13 @@
 
 enum SurfaceKind { SURFACE_CLOSED, SURFACE_SCHEDULE, SURFACE_FIXED, SURFACE_DEPOSITION };
 
+typedef struct Variation Variation;   /* what changes with time: variation.h */
+typedef struct Conditions Conditions; /* what surrounds the chemistry at a moment: conditions.h */
+
 typedef struct {
     Settings settings;
     Grid grid;
-    Air air;
+    Air air;      /* the base atmosphere: names altitudes and the mass of layers (conditions.h) */
     double *eddy; /* [layers + 1] eddy diffusion coefficient at edges, cm2 s-1 */
     Mechanism *mechanism;
     Kernel *kernel;
@@ -50,6 +53,9 @@ typedef struct {
     int *held_species;     /* [held] */
     double *held_free;     /* [held][padded] 1 free, 0 held */
     double *held_fraction; /* [held][padded] mole fraction where held, 0 where free */
+
+    Variation *variation;
+    Conditions *base; /* conditions of the case's own tables, before anything has changed */
 
     char *sources; /* citations of every table read, one a line */
 } Model;

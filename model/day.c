@@ -25,6 +25,7 @@ int day_make(Day **made, const Model *model, Fault *fault)
     size_t padded = (size_t)model->grid.padded, solved = (size_t)model->mechanism->solved;
     size_t reactions = (size_t)model->mechanism->reactions;
     day->model = model;
+    day->conditions = model->base;
     day->factor = malloc(reactions * padded * sizeof(double));
     day->ratio = malloc(solved * padded * sizeof(double));
     day->lit = malloc(solved * padded * sizeof(double));
@@ -63,7 +64,7 @@ void day_free(Day *day)
 
 int day_stale(const Day *day, const double *x)
 {
-    if (!day->ready)
+    if (!day->ready || day->outdated)
         return 1;
     const Model *model = day->model;
     int padded = model->grid.padded;
@@ -103,8 +104,7 @@ static void take_ratios(Day *day, const double *end, double lit_time)
     for (int s = 0; s < day->model->mechanism->solved; s++)
         for (int l = 0; l < padded; l++) {
             size_t at = FIELD(padded, s, l);
-            double mean = day->sum_y[at] / DAY_SECONDS,
-                   midnight = end[at] * day->model->air.number_density[l];
+            double mean = day->sum_y[at] / DAY_SECONDS, midnight = end[at] * day->conditions->air[l];
             int there = mean > DAY_ABSENT;
             /* a value below zero is within the solver's tolerance of zero, and a ratio cannot say more than
              * that */
@@ -158,5 +158,6 @@ double day_take(Day *day, const Light *light, const double *end, double lit_time
 void day_settle(Day *day, const double *x)
 {
     memcpy(day->reference, x, fields(day, day->model->mechanism->solved) * sizeof(double));
+    day->outdated = 0;
     day->ready = 1;
 }

@@ -25,15 +25,17 @@
 
 typedef struct {
     const Model *model;
-    double *factor;    /* [reactions][padded] */
-    double *ratio;     /* [solved][padded] midnight value over daily mean of the last day */
-    double *lit;       /* [solved][padded] mean while the sun is up over daily mean */
-    double *reference; /* [solved][padded] mole fractions when the factors were made */
+    const Conditions *conditions; /* Model.base until the stepper sets its own */
+    double *factor;               /* [reactions][padded] */
+    double *ratio;                /* [solved][padded] midnight value over daily mean of the last day */
+    double *lit;                  /* [solved][padded] mean while the sun is up over daily mean */
+    double *reference;            /* [solved][padded] mole fractions when the factors were made */
     /* time integrals of a day, cleared by day_clear and added to by whoever carries it */
     double *sum_y;   /* [solved][padded] cm-3 s */
     double *sum_lit; /* [solved][padded] cm-3 s, while the sun is up */
     double *sum_w;   /* [reactions][padded] cm-3 */
     double *loss;    /* [solved] work */
+    int outdated;    /* the sun has moved since the factors were made */
     int ready;
 } Day;
 

@@ -18,6 +18,7 @@ int light_make(Light **made, const Model *model, int refine, Fault *fault)
     const Mechanism *mechanism = model->mechanism;
     size_t padded = (size_t)model->grid.padded;
     light->model = model;
+    light->conditions = model->base;
     light->reactions = mechanism->surface_first - mechanism->photolysis_first;
     sun_make(&light->sun, &model->settings, refine);
     size_t field = (size_t)light->reactions * padded;
@@ -60,6 +61,22 @@ void light_free(Light *light)
     free(light);
 }
 
+void light_follow(Light *light, const Conditions *conditions, int moved)
+{
+    light->conditions = conditions;
+    if (moved & (CONDITIONS_AIR | CONDITIONS_LIGHT))
+        light->ready = 0;
+    if (moved & CONDITIONS_AIR && light->photolysis)
+        photolysis_set_air(light->photolysis, conditions->temperature, conditions->air, conditions->depth,
+                           light->model->air.column_above_top);
+    if (moved & CONDITIONS_SUN) {
+        sun_set_day(&light->sun, &light->model->settings, conditions->day_of_year);
+        light->turned = 1;
+    }
+    if (moved & CONDITIONS_LIGHT && light->photolysis)
+        photolysis_set_sunlight(light->photolysis, conditions->solar);
+}
+
 /* Ozone above the middle of each layer, cm-2. */
 static void overhead_column(const Model *model, const double *x, const double *lit, double *out)
 {
@@ -75,10 +92,8 @@ static void overhead_column(const Model *model, const double *x, const double *l
     }
 }
 
-int light_stale(const Light *light, const double *x, const double *lit)
+static int overhead_moved(const Light *light, const double *x, const double *lit)
 {
-    if (!light->ready)
-        return 1;
     const Model *model = light->model;
     double now[PACK_ROUND(SETTINGS_MAX_EDGES)];
     overhead_column(model, x, lit, now);
@@ -90,31 +105,38 @@ int light_stale(const Light *light, const double *x, const double *lit)
     return 0;
 }
 
+int light_stale(const Light *light, const double *x, const double *lit)
+{
+    return !light->ready || light->turned || overhead_moved(light, x, lit);
+}
+
 /* A negative mole fraction within the tolerance absorbs nothing. */
-static void number_density(const Model *model, const double *x, const double *lit, const char *name,
+static void number_density(const Light *light, const double *x, const double *lit, const char *name,
                            double *out)
 {
+    const Model *model = light->model;
     int solved = mechanism_solved(model->mechanism, name), padded = model->grid.padded;
     for (int l = 0; l < padded; l++) {
         size_t at = solved < 0 ? 0 : FIELD(padded, solved, l);
         double share = lit ? lit[at] : 1.0;
-        out[l] = solved < 0 ? 0.0 : fmax(0.0, x[at]) * share * model->air.number_density[l];
+        out[l] = solved < 0 ? 0.0 : fmax(0.0, x[at]) * share * light->conditions->air[l];
     }
 }
 
 /* Number density of the fixed reactants of a photolysis reaction; 1 when the absorber is a solved species. */
-static double fixed_density(const Model *model, int reaction, int layer)
+static double fixed_density(const Light *light, int reaction, int layer)
 {
+    const Model *model = light->model;
     const Reaction *photolysis = &model->mechanism->reaction[model->mechanism->photolysis_first + reaction];
     return photolysis->fixed_order
-               ? photolysis->fixed_share * pow(model->air.number_density[layer], photolysis->fixed_order)
+               ? photolysis->fixed_share * pow(light->conditions->air[layer], photolysis->fixed_order)
                : 1.0;
 }
 
 double light_mean_rate(const Light *light, int reaction, int layer)
 {
     return light->mean[FIELD(light->model->grid.padded, reaction, layer)] /
-           fixed_density(light->model, reaction, layer);
+           fixed_density(light, reaction, layer);
 }
 
 static void fold_fixed_reactants(Light *light)
@@ -125,26 +147,44 @@ static void fold_fixed_reactants(Light *light)
             continue;
         for (int l = 0; l < padded; l++)
             for (int n = 0; n < light->sun.nodes; n++)
-                light->table[FIELD(padded, n * light->reactions + r, l)] *= fixed_density(light->model, r, l);
+                light->table[FIELD(padded, n * light->reactions + r, l)] *= fixed_density(light, r, l);
     }
+}
+
+/* Rates at the nodes, [nodes][reactions][padded]. */
+static void fill_table(Light *light, const double *x, const double *lit, double earth_sun)
+{
+    int padded = light->model->grid.padded;
+    number_density(light, x, lit, "O3", light->density);
+    number_density(light, x, lit, "NO2", light->density + padded);
+    number_density(light, x, lit, "NO", light->density + 2 * padded);
+    photolysis_rates(light->photolysis, light->density, light->density + padded, light->density + 2 * padded,
+                     earth_sun, light->table);
+    fold_fixed_reactants(light);
+    overhead_column(light->model, x, lit, light->overhead);
 }
 
 void light_refresh(Light *light, const double *x, const double *lit)
 {
-    const Model *model = light->model;
-    int padded = model->grid.padded, reactions = light->reactions;
-    if (light->sun.nodes) {
-        number_density(model, x, lit, "O3", light->density);
-        number_density(model, x, lit, "NO2", light->density + padded);
-        number_density(model, x, lit, "NO", light->density + 2 * padded);
-        photolysis_rates(light->photolysis, light->density, light->density + padded,
-                         light->density + 2 * padded, light->sun.earth_sun, light->table);
-        fold_fixed_reactants(light);
-        int stride = reactions * padded;
+    const Sun *sun = &light->sun;
+    int season = light->model->settings.sun == SUN_SEASON,
+        stride = light->reactions * light->model->grid.padded;
+    /* with a season the table outlasts the day and is that of 1 au */
+    int only_turned = light->ready && light->turned && !overhead_moved(light, x, lit);
+    if (!only_turned && sun->nodes)
+        fill_table(light, x, lit, season ? 1.0 : sun->earth_sun);
+    else if (!only_turned)
+        overhead_column(light->model, x, lit, light->overhead);
+    if (sun->nodes) {
 #pragma omp parallel for schedule(static)
-        for (int i = 0; i < stride; i++)
-            light->mean[i] = sun_spread(&light->sun, light->table + i, stride, light->knot + i, stride);
+        for (int i = 0; i < stride; i++) {
+            light->mean[i] = sun_spread(sun, light->table + i, stride, light->knot + i, stride);
+            for (int k = 0; season && k < SUN_KNOTS; k++)
+                light->knot[(size_t)k * (size_t)stride + (size_t)i] *= sun->earth_sun;
+            if (season)
+                light->mean[i] *= sun->earth_sun;
+        }
     }
-    overhead_column(model, x, lit, light->overhead);
     light->ready = 1;
+    light->turned = 0;
 }

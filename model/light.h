@@ -3,11 +3,12 @@
 #define SKYMEND_LIGHT_H
 
 #include "../chem/photolysis.h"
-#include "column.h"
+#include "conditions.h"
 #include "sun.h"
 
 typedef struct {
     const Model *model;
+    const Conditions *conditions; /* Model.base until light_follow */
     Sun sun;
     Photolysis *photolysis;
     int reactions; /* photolysis reactions; row 0 is the mechanism's reaction photolysis_first */
@@ -19,11 +20,16 @@ typedef struct {
     double *overhead; /* [padded] ozone above each layer's middle at the last refresh, cm-2 */
     double *density;  /* [3][padded] work: number densities of O3, NO2, NO */
     int ready;        /* rates have been computed */
+    int turned;       /* the sun has moved since: rates at the nodes hold, those of the day do not */
 } Light;
 
 /* Owner: caller. refine as in sun_make. */
 int light_make(Light **made, const Model *model, int refine, Fault *fault);
 void light_free(Light *light);
+
+/* Take conditions (kept by reference) in place of what light went by; moved says which parts changed since
+ * then, ConditionsPart added up. Rates count as stale afterwards where they depend on them. */
+void light_follow(Light *light, const Conditions *conditions, int moved);
 
 /* Absorbers while the sun is up: x [solved][padded] mole fractions, times lit [solved][padded] where that is
  * not NULL (mean by daylight over daily mean: in the mesosphere ozone by day is a fraction of that by night).

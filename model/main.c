@@ -29,13 +29,13 @@ static void print_help(FILE *out)
             "usage: skymend VERB [FILE] [options]\n\n");
     for (int v = 0; v < VERBS; v++)
         fprintf(out, "  %-10s %s\n", verbs[v].name, verbs[v].help);
-    fprintf(out,
-            "\n  skymend VERB --help   options of a verb\n"
-            "  skymend --version\n\n"
-            "Exit codes: 0 done, 2 the request or an input is wrong, 3 the numerics failed,\n"
-            "4 the output could not be written, 130 interrupted (what is finished is kept).\n\n"
-            "A single near-global column has no polar winter, no ozone hole, and no change of circulation\n"
-            "or temperature. For decisions on health or regulation defer to the competent authority.\n");
+    fprintf(out, "\n  skymend VERB --help   options of a verb\n"
+                 "  skymend --version\n\n"
+                 "Exit codes: 0 done, 2 the request or an input is wrong, 3 the numerics failed,\n"
+                 "4 the output could not be written, 130 interrupted (what is finished is kept).\n\n"
+                 "A single near-global column has no polar winter, no ozone hole, no change of circulation,\n"
+                 "and no temperature that answers to ozone. For decisions on health or regulation defer to "
+                 "the competent authority.\n");
 }
 
 static int dispatch(int argc, char **argv)

@@ -3,6 +3,7 @@
 
 #include <omp.h>
 #include <stdlib.h>
+#include <string.h>
 
 typedef struct {
     int kind; /* enum GroundKind */
@@ -158,6 +159,19 @@ void mixing_step(Mixing *mixing, int slot, Column *column, const double *sink)
         int held = mixing->ground_of[s] >= 0 && mixing->ground[mixing->ground_of[s]].held;
         *(held ? &column->exchanged[s] : &column->received[s]) += mixing->received[s];
     }
+}
+
+void mixing_tendency(const Mixing *mixing, const double *x, int s, double *rate)
+{
+    const Model *model = mixing->model;
+    const double *row = x + FIELD(model->grid.padded, s, 0);
+    memset(rate, 0, (size_t)model->grid.padded * sizeof(double));
+    if (mixing->ground_of[s] < 0)
+        return;
+    const Ground *ground = &mixing->ground[mixing->ground_of[s]];
+    diffusion_tendency(model->diffusion, row, rate);
+    if (ground->kind == GROUND_DEPOSITION)
+        rate[0] -= ground->velocity * row[0] / model->grid.depth[0];
 }
 
 void mixing_mask(const Mixing *mixing, double *rate)

@@ -23,6 +23,9 @@ int mixing_prepare(Mixing *mixing, int slot, double step, Fault *fault);
 /* One step of the length slot is ready for. sink: as in diffusion_step, [solved][padded], or NULL. Padding
  * lanes repeat the top layer afterwards. */
 void mixing_step(Mixing *mixing, int slot, Column *column, const double *sink);
+/* What transport does to the mole fraction of species s at x [solved][padded]: rate [padded] out, s-1; 0 in
+ * padding lanes, and to be masked by mixing_mask. */
+void mixing_tendency(const Mixing *mixing, const double *x, int s, double *rate);
 /* Set rate [solved][padded] to 0 where transport does not change a mole fraction: of species that are not
  * carried, in layers where they are prescribed, and in the lowest layer of those the ground keeps at a value.
  */

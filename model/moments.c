@@ -88,7 +88,7 @@ double moments_ratio(const Moments *moments, const Day *day, int moment, int s, 
     const Model *model = moments->model;
     size_t at = FIELD(model->grid.padded, s, layer);
     double mean = day->sum_y[at] / DAY_SECONDS;
-    double now = moments->state[(size_t)moment * field(model) + at] * model->air.number_density[layer];
+    double now = moments->state[(size_t)moment * field(model) + at] * day->conditions->air[layer];
     /* as for the ratio at midnight (day.c): a value below zero is zero within the solver's tolerance */
     return mean > DAY_ABSENT ? fmax(0.0, now) / mean : 1.0;
 }

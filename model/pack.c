@@ -40,6 +40,7 @@ int pack_make(PackWork **made, const Model *model, Fault *fault)
     PackWork *work = calloc(1, sizeof *work);
     if (!work)
         return fault_memory(fault, "chemistry of a pack");
+    work->conditions = model->base;
     size_t species = (size_t)model->kernel->species, reactions = (size_t)model->kernel->reactions;
     size_t tallies = (size_t)model->kernel->tallies;
     struct {
@@ -140,7 +141,7 @@ static int kept_by_ground(const Model *model, int s)
 void pack_load(PackWork *work, const Model *model, int first, const double *x)
 {
     int padded = model->grid.padded, solved = model->mechanism->solved;
-    const double *air = model->air.number_density + first;
+    const double *air = work->conditions->air + first;
     for (int s = 0; s < solved; s++) {
         const double *row = x + FIELD(padded, s, first);
         for (int l = 0; l < PACK; l++)
@@ -151,7 +152,7 @@ void pack_load(PackWork *work, const Model *model, int first, const double *x)
     work->held = 0;
     for (int h = 0; h < model->held; h++) {
         const double *free_here = model->held_free + FIELD(padded, h, first);
-        const double *fraction = model->held_fraction + FIELD(padded, h, first);
+        const double *fraction = work->conditions->held_fraction + FIELD(padded, h, first);
         int any = 0, row = work->held * PACK;
         for (int l = 0; l < PACK; l++) {
             any |= free_here[l] == 0.0;
@@ -181,7 +182,7 @@ void pack_source(PackWork *work, const Model *model, int first, const double *ba
 {
     int padded = model->grid.padded, solved = model->mechanism->solved;
     int rows = model->kernel->species + model->kernel->tallies;
-    const double *air = model->air.number_density + first;
+    const double *air = work->conditions->air + first;
     for (int s = 0; s < solved; s++)
         for (int l = 0; l < PACK; l++)
             work->source[s * PACK + l] = balance[FIELD(padded, s, first + l)] * air[l];
@@ -217,7 +218,8 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
 {
     int padded = model->grid.padded, solved = model->mechanism->solved;
     int lanes = model->grid.layers - first < PACK ? model->grid.layers - first : PACK;
-    const double *air = model->air.number_density + first, *depth = model->grid.depth + first;
+    const double *air = work->conditions->air + first, *depth = work->conditions->depth + first;
+    const double *fraction = work->conditions->held_fraction;
     restore_atoms(work, model);
     for (int s = 0; s < solved; s++) {
         double *row = x + FIELD(padded, s, first), kept = row[0];
@@ -239,10 +241,10 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
                 continue;
             int s = model->held_species[h];
             if (l < lanes) {
-                double held = model->held_fraction[at] * air[l];
+                double held = fraction[at] * air[l];
                 ledger->exchanged[h] += (held - work->y[s * PACK + l]) * depth[l];
             }
-            x[FIELD(padded, s, first + l)] = model->held_fraction[at];
+            x[FIELD(padded, s, first + l)] = fraction[at];
         }
     }
     for (int t = 0; t < model->kernel->tallies; t++) {
@@ -259,7 +261,7 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
 
 void pack_turnover(const PackWork *work, const Model *model, int first, double *made, double *lost)
 {
-    const double *air = model->air.number_density + first;
+    const double *air = work->conditions->air + first;
     for (int s = 0; s < model->mechanism->solved; s++)
         for (int l = 0; l < PACK; l++) {
             size_t at = FIELD(model->grid.padded, s, first + l);
@@ -347,8 +349,8 @@ double pack_part_length(const Light *light, int part)
     const Sun *sun = &light->sun;
     part = morning_part(part);
     if (part < PACK_NIGHT_PARTS)
-        return (sun->nodes ? sun->time[0] : 0.5 * DAY_SECONDS) / PACK_NIGHT_PARTS;
-    return sun->nodes ? sun->time[part_knot(part + 1)] - sun->time[part_knot(part)] : 0.0;
+        return (sun->rises ? sun->time[0] : 0.5 * DAY_SECONDS) / PACK_NIGHT_PARTS;
+    return sun->rises ? sun->time[part_knot(part + 1)] - sun->time[part_knot(part)] : 0.0;
 }
 
 int pack_part_lit(int part)

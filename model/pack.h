@@ -12,6 +12,7 @@
 #define PACK_ROUND_OFF 1e-10 /* relative defect of an element's atoms that counts as round-off */
 
 typedef struct {
+    const Conditions *conditions; /* Model.base until the stepper sets its own */
     SolverWork *solver;
     double *y;                      /* [kernel species][PACK] cm-3 */
     double *k;                      /* [reactions][PACK] */

@@ -66,6 +66,7 @@ typedef struct {
     double *rate;                 /* [reactions][padded] rates of reaction, cm-3 s-1 */
     double *course; /* [MOMENTS][solved][padded] by time of day; NULL when the case does not ask for them */
     double *step_rate, *step_course; /* those of one step */
+    double *change;                  /* [padded] temperature less that of the base atmosphere, K */
     double *block;
 } Means;
 
@@ -75,13 +76,14 @@ static int means_make(Means *means, const Model *model, Fault *fault)
     means->field = (size_t)model->mechanism->solved * padded;
     means->rates = (size_t)model->mechanism->reactions * padded;
     means->moments = model->settings.moments == MOMENTS_NONE ? 0 : MOMENTS * means->field;
-    means->block = malloc((means->field + 2 * means->rates + 2 * means->moments) * sizeof(double));
+    means->block = malloc((means->field + 2 * means->rates + 2 * means->moments + padded) * sizeof(double));
     if (!means->block)
         return fault_memory(fault, "means of an interval");
     means->x = means->block;
     means->rate = means->x + means->field;
     means->step_rate = means->rate + means->rates;
-    means->course = means->moments ? means->step_rate + means->rates : NULL;
+    means->change = means->step_rate + means->rates;
+    means->course = means->moments ? means->change + padded : NULL;
     means->step_course = means->moments ? means->course + means->moments : NULL;
     return 0;
 }
@@ -109,6 +111,7 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
     memset(means->rate, 0, means->rates * sizeof(double));
     if (means->course)
         memset(means->course, 0, means->moments * sizeof(double));
+    memset(means->change, 0, (size_t)model->grid.layers * sizeof(double));
     for (long i = 0; i < steps; i++) {
         int code = stepper_advance(stepper, column, step, 0, fault);
         if (code)
@@ -120,6 +123,9 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
         if (means->course)
             stepper_moments(stepper, mean, means->step_course);
         add(means->course, means->step_course, means->moments);
+        const double *kelvin = stepper_conditions(stepper)->temperature;
+        for (int l = 0; l < model->grid.layers; l++)
+            means->change[l] += kelvin[l] - model->air.temperature[l];
         tell(model, column, watcher, 0,
              share_before + (share_after - share_before) * (double)(i + 1) / (double)steps);
         if (stopped(watcher))
@@ -130,6 +136,7 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
     divide(means->x, means->field, (double)steps);
     divide(means->rate, means->rates, (double)steps);
     divide(means->course, means->moments, (double)steps);
+    divide(means->change, (size_t)model->grid.layers, (double)steps);
     column->time = end; /* no drift from adding steps */
     if (!watcher->record)
         return 0;
@@ -139,7 +146,8 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
                      .x = means->x,
                      .ozone_column = column_ozone_du(model, means->x),
                      .moments = means->course,
-                     .rate = means->rate};
+                     .rate = means->rate,
+                     .temperature_change = means->change};
     return watcher->record(watcher->context, &record, fault);
 }
 
@@ -151,6 +159,8 @@ int projection_settle(const Model *model, Stepper *stepper, Column *column, Faul
     if (code)
         return code;
     code = steady_find(unsplit, stepper, column, column->time, &report, fault);
+    if (!code)
+        stepper_balance(stepper, column);
     if (!code && model->settings.day == DAY_EXPLICIT) { /* whose state is that of midnight */
         day_midnight(stepper_day(stepper), column->x, column->x);
         unsplit_keep(unsplit, column->x);

@@ -107,7 +107,7 @@ static double gross_loss(const Unsplit *unsplit, int s)
             for (int l = 0; reaction->changed[c] == s && reaction->change[c] < 0.0 && l < unsplit->layers;
                  l++)
                 loss -= reaction->change[c] * unsplit->rate[FIELD(model->grid.padded, r, l)] *
-                        model->grid.depth[l];
+                        unsplit->conditions->depth[l];
     }
     return loss;
 }
@@ -123,7 +123,7 @@ static double ground_flux(const Unsplit *unsplit, const double *x, int s)
         for (int c = 0; c < reaction->changes; c++)
             if (reaction->changed[c] == s)
                 gain += reaction->change[c] * unsplit->rate[FIELD(model->grid.padded, r, 0)] *
-                        model->grid.depth[0];
+                        unsplit->conditions->depth[0];
     }
     return -gain;
 }
@@ -172,8 +172,8 @@ static void differentiate(const Unsplit *unsplit, const double *x, const Answer 
             const Reaction *reaction = &mechanism->reaction[r];
             for (int c = 0; c < reaction->changes; c++)
                 for (int l = 0; reaction->changed[c] == s && reaction->change[c] < 0.0 && l < layers; l++)
-                    weight[FIELD(padded, r, l)] +=
-                        reaction->change[c] * model->grid.depth[l] * burden / (loss * loss) / YEAR_SECONDS;
+                    weight[FIELD(padded, r, l)] += reaction->change[c] * unsplit->conditions->depth[l] *
+                                                   burden / (loss * loss) / YEAR_SECONDS;
         }
     } else {
         if (unsplit->carried[s]) {
@@ -184,7 +184,7 @@ static void differentiate(const Unsplit *unsplit, const double *x, const Answer 
             const Reaction *reaction = &mechanism->reaction[r];
             for (int c = 0; c < reaction->changes; c++)
                 if (reaction->changed[c] == s)
-                    weight[FIELD(padded, r, 0)] -= reaction->change[c] * model->grid.depth[0];
+                    weight[FIELD(padded, r, 0)] -= reaction->change[c] * unsplit->conditions->depth[0];
         }
     }
 }
@@ -215,7 +215,7 @@ static void take_reactions(Sensitivity *sensitivity, const Unsplit *unsplit, con
                 int i = l * solved + reaction->changed[c];
                 sum += unsplit->kept[i] ? 0.0 : reaction->change[c] * m[i];
             }
-            sensitivity->reaction[at] = (sum / model->air.number_density[l] + weight[at]) * unsplit->rate[at];
+            sensitivity->reaction[at] = (sum / unsplit->conditions->air[l] + weight[at]) * unsplit->rate[at];
         }
     }
 }

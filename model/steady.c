@@ -29,7 +29,7 @@ static double at(const Unsplit *unsplit, const double *x, int i)
 
 static double air_of(const Unsplit *unsplit, int i)
 {
-    return unsplit->model->air.number_density[i / unsplit->solved];
+    return unsplit->conditions->air[i / unsplit->solved];
 }
 
 static void find_residual(const Unsplit *unsplit, const double *x, const Room *room, SteadyReport *steady)
@@ -186,6 +186,10 @@ int steady_find(Unsplit *unsplit, Stepper *stepper, Column *column, double time,
                 Fault *fault)
 {
     *steady = (SteadyReport){0};
+    if (unsplit->model->settings.sun == SUN_SEASON)
+        return fault_set(fault, FAULT_INPUT,
+                         "with sun.kind = \"season\" the column is never at rest; take another sun, or, to "
+                         "project, numerics.start = \"spinup\"");
     double since = omp_get_wtime();
     column->time = time;
     unsplit_set_time(unsplit, time);

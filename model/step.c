@@ -24,6 +24,8 @@ typedef struct {
 
 struct Stepper {
     const Model *model;
+    Conditions *conditions; /* of now */
+    double spun;            /* years spent with the clock standing still: the seasons go on */
     int threads, packs;
     Mixing *mixing; /* slot 0: the step of a run of means; the others: parts of the day with their mirror
                        images */
@@ -105,6 +107,14 @@ static void list_balanced(Stepper *stepper)
     }
 }
 
+/* All that hang on temperature and air; water enters HO2 + HO2 only and is renewed at every step. */
+static void thermal_coefficients(Stepper *stepper)
+{
+    const Conditions *now = stepper->conditions;
+    rates_thermal(stepper->model->mechanism, stepper->model->grid.padded, now->temperature, now->air,
+                  stepper->density, 0, stepper->coefficient);
+}
+
 int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault)
 {
     *made = NULL;
@@ -118,6 +128,8 @@ int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault)
     if (!code)
         code = mixing_make(&stepper->mixing, model, stepper->threads, fault);
     if (!code)
+        code = conditions_make(&stepper->conditions, model, fault);
+    if (!code)
         code = light_make(&stepper->light, model, 1, fault);
     if (!code)
         code = day_make(&stepper->day, model, fault);
@@ -130,10 +142,11 @@ int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault)
         return code;
     }
     list_balanced(stepper);
-    const Air *air = &model->air;
-    /* water enters HO2 + HO2 only and is renewed at every step */
-    rates_thermal(model->mechanism, model->grid.padded, air->temperature, air->number_density,
-                  stepper->density, 0, stepper->coefficient);
+    for (int t = 0; t < stepper->threads; t++)
+        stepper->work[t]->conditions = stepper->conditions;
+    stepper->day->conditions = stepper->conditions;
+    light_follow(stepper->light, stepper->conditions, 0);
+    thermal_coefficients(stepper);
     rates_washout(model->mechanism, model->grid.padded, model->washout_rate, stepper->coefficient);
     *made = stepper;
     return 0;
@@ -146,6 +159,7 @@ void stepper_free(Stepper *stepper)
     for (int t = 0; stepper->work && t < stepper->threads; t++)
         pack_free(stepper->work[t]);
     mixing_free(stepper->mixing);
+    conditions_free(stepper->conditions);
     light_free(stepper->light);
     day_free(stepper->day);
     moments_free(stepper->moments);
@@ -169,20 +183,33 @@ void stepper_free(Stepper *stepper)
 
 /* ---- coefficients and light ---- */
 
+/* Bring the conditions to decimal year time, and what is made of them. */
+static void move_conditions(Stepper *stepper, double time, double season)
+{
+    int moved = conditions_move(stepper->conditions, stepper->model, time, season);
+    if (!moved)
+        return;
+    if (moved & CONDITIONS_AIR)
+        thermal_coefficients(stepper);
+    if (moved & CONDITIONS_SUN)
+        stepper->day->outdated = 1;
+    light_follow(stepper->light, stepper->conditions, moved);
+}
+
 static void refresh_coefficients(Stepper *stepper, const Column *column)
 {
     const Model *model = stepper->model;
     const Mechanism *mechanism = model->mechanism;
-    const Air *air = &model->air;
+    const Conditions *now = stepper->conditions;
     int padded = model->grid.padded, water = mechanism_solved(mechanism, "H2O");
     for (int s = 0; s < mechanism->solved; s++)
         for (int l = 0; l < padded; l++)
-            stepper->density[FIELD(padded, s, l)] = column->x[FIELD(padded, s, l)] * air->number_density[l];
+            stepper->density[FIELD(padded, s, l)] = column->x[FIELD(padded, s, l)] * now->air[l];
     if (water >= 0)
-        rates_thermal(mechanism, padded, air->temperature, air->number_density,
+        rates_thermal(mechanism, padded, now->temperature, now->air,
                       stepper->density + FIELD(padded, water, 0), 1, stepper->coefficient);
-    surface_rates(mechanism, padded, air->temperature, air->number_density, model->aerosol_area,
-                  model->aerosol_radius, stepper->density, stepper->coefficient);
+    surface_rates(mechanism, padded, now->temperature, now->air, now->aerosol_area, now->aerosol_radius,
+                  stepper->density, stepper->coefficient);
 }
 
 static void refresh_light(Stepper *stepper, Column *column)
@@ -435,7 +462,7 @@ static int advance_explicit(Stepper *stepper, Column *column, double years, Faul
     if (code)
         return code;
     for (size_t i = 0; i < field; i++) {
-        double air = model->air.number_density[i % padded];
+        double air = stepper->conditions->air[i % padded];
         stepper->mean[i] = stepper->day->sum_y[i] / DAY_SECONDS / air;
         if (lit_time > 0.0)
             stepper->daylight[i] = stepper->day->sum_lit[i] / lit_time / air;
@@ -520,7 +547,11 @@ static int advance_means(Stepper *stepper, Column *column, double step, double y
 
 int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, Fault *fault)
 {
-    double years = frozen ? 0.0 : step / YEAR_SECONDS;
+    double years = frozen ? 0.0 : step / YEAR_SECONDS, half = 0.5 * step / YEAR_SECONDS;
+    if (frozen)
+        stepper->spun += 2.0 * half;
+    move_conditions(stepper, column->time + 0.5 * years,
+                    frozen ? column->time + stepper->spun - half : column->time + half);
     int code = stepper->model->settings.day == DAY_EXPLICIT
                    ? advance_explicit(stepper, column, years, fault)
                    : advance_means(stepper, column, step, years, fault);
@@ -538,6 +569,10 @@ const double *stepper_mean(const Stepper *stepper)
 const Light *stepper_light(const Stepper *stepper)
 {
     return stepper->light;
+}
+const Conditions *stepper_conditions(const Stepper *stepper)
+{
+    return stepper->conditions;
 }
 const Day *stepper_day(const Stepper *stepper)
 {
@@ -570,8 +605,18 @@ static void renew_light(Stepper *stepper, Column *column)
     refresh_light(stepper, column);
 }
 
+void stepper_balance(const Stepper *stepper, Column *column)
+{
+    int padded = stepper->model->grid.padded;
+    for (int i = 0; i < stepper->balances; i++)
+        mixing_tendency(stepper->mixing, column->x, stepper->balanced[i],
+                        column->balance + FIELD(padded, stepper->balanced[i], 0));
+    mixing_mask(stepper->mixing, column->balance);
+}
+
 int stepper_refresh(Stepper *stepper, Column *column, int with_day, Fault *fault)
 {
+    move_conditions(stepper, column->time, column->time);
     refresh_coefficients(stepper, column);
     renew_light(stepper, column);
     if (!with_day || stepper->model->settings.day == DAY_MEAN)

@@ -39,9 +39,14 @@ int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, F
  * factors, which such a run does without, tell what the day makes of the means (stepper_day). */
 int stepper_refresh(Stepper *stepper, Column *column, int with_day, Fault *fault);
 
+/* Set the balance to that of a column at rest: what transport does to it now. */
+void stepper_balance(const Stepper *stepper, Column *column);
+
 /* Mean mole fractions over the last step [solved][padded]: of its two ends, or of the explicit day. */
 const double *stepper_mean(const Stepper *stepper);
 const Light *stepper_light(const Stepper *stepper);
+/* What surrounds the chemistry in the last step. */
+const Conditions *stepper_conditions(const Stepper *stepper);
 const Day *stepper_day(const Stepper *stepper);
 /* Mole fractions by time of day that belong to the daily means [solved][padded]; day.mode other than
  * DAY_MEAN. out [MOMENTS][solved][padded]. */

@@ -13,8 +13,7 @@ static double earth_sun_factor(double day_of_year)
            0.000077 * sin(2.0 * angle);
 }
 
-/* Solar declination, radians, Spencer (1971), good to 0.035 degrees. */
-static double declination(double day_of_year)
+double sun_declination(double day_of_year)
 {
     double angle = 2.0 * PI * (day_of_year - 1.0) / 365.0;
     return 0.006918 - 0.399912 * cos(angle) + 0.070257 * sin(angle) - 0.006758 * cos(2.0 * angle) +
@@ -57,32 +56,80 @@ static void place_nodes(Sun *sun, double low, double high, int refine)
     }
 }
 
-void sun_make(Sun *sun, const Settings *settings, int refine)
+static Path place_path(const Settings *settings, double day_of_year)
 {
-    *sun = (Sun){.earth_sun = 1.0};
-    Path path = {.global = settings->sun == SUN_GLOBAL};
-    double noon = 0.5 * DAY_SECONDS, rise = 0.25 * DAY_SECONDS, low = 0.0;
-    if (!path.global) {
-        double delta = declination(settings->day_of_year), latitude = settings->latitude_deg * PI / 180.0;
-        path.constant = sin(latitude) * sin(delta);
-        path.swing = cos(latitude) * cos(delta);
-        sun->earth_sun = earth_sun_factor(settings->day_of_year);
-        low = path.constant - path.swing;
-        rise = 0.0;
-        if (low < SUN_TWILIGHT) {
-            if (path.constant + path.swing <= SUN_TWILIGHT)
-                return; /* polar night */
-            rise = DAY_SECONDS / (2.0 * PI) * acos((path.constant - SUN_TWILIGHT) / path.swing);
-            low = SUN_TWILIGHT;
-        }
-    }
+    double delta = sun_declination(day_of_year), latitude = settings->latitude_deg * PI / 180.0;
+    return (Path){.constant = sin(latitude) * sin(delta), .swing = cos(latitude) * cos(delta)};
+}
+
+/* Knots from sunrise to noon. */
+static void place_knots(Sun *sun, const Path *path, double rise)
+{
+    double noon = 0.5 * DAY_SECONDS;
     for (int i = 0; i < SUN_KNOTS; i++) {
         double s = (double)i / (SUN_KNOTS - 1);
         /* crowd at sunrise; a real sunrise passes twilight first and needs an even spread */
-        sun->time[i] = rise + (noon - rise) * (path.global ? pow(s, 1.6) : s);
-        sun->knot[i] = path_cosine(&path, sun->time[i]);
+        sun->time[i] = rise + (noon - rise) * (path->global ? pow(s, 1.6) : s);
+        sun->knot[i] = path_cosine(path, sun->time[i]);
         if (i)
-            sun->middle[i - 1] = path_cosine(&path, 0.5 * (sun->time[i - 1] + sun->time[i]));
+            sun->middle[i - 1] = path_cosine(path, 0.5 * (sun->time[i - 1] + sun->time[i]));
+    }
+    sun->rises = 1;
+}
+
+/* The path over a place on a day: earth_sun, rises, and the knots if it does. Returns the lowest cosine that
+ * counts. */
+static double place_day(Sun *sun, const Path *path, double day_of_year)
+{
+    double low = path->constant - path->swing, rise = 0.0;
+    sun->earth_sun = earth_sun_factor(day_of_year);
+    sun->rises = 0;
+    if (low < SUN_TWILIGHT) {
+        if (path->constant + path->swing <= SUN_TWILIGHT)
+            return SUN_TWILIGHT; /* polar night */
+        rise = DAY_SECONDS / (2.0 * PI) * acos((path->constant - SUN_TWILIGHT) / path->swing);
+        low = SUN_TWILIGHT;
+    }
+    place_knots(sun, path, rise);
+    return low;
+}
+
+void sun_set_day(Sun *sun, const Settings *settings, double day_of_year)
+{
+    Path path = place_path(settings, day_of_year);
+    place_day(sun, &path, day_of_year);
+}
+
+/* Nodes over every height of the sun in a year, dense, since a winter day uses only the lower ones. */
+static void place_year(Sun *sun, const Settings *settings)
+{
+    double low = 1.0, high = -1.0;
+    for (int quarter = 4; quarter < 4 * 367; quarter++) {
+        Path path = place_path(settings, 0.25 * quarter);
+        low = fmin(low, path.constant - path.swing);
+        high = fmax(high, path.constant + path.swing);
+    }
+    /* the true extremes lie between two quarters of a day */
+    place_nodes(sun, fmax(low - 1e-5, SUN_TWILIGHT), fmin(high + 1e-5, 1.0), 2);
+    sun_set_day(sun, settings, settings->day_of_year);
+}
+
+void sun_make(Sun *sun, const Settings *settings, int refine)
+{
+    *sun = (Sun){.earth_sun = 1.0};
+    if (settings->sun == SUN_SEASON) {
+        place_year(sun, settings);
+        return;
+    }
+    Path path = {.global = settings->sun == SUN_GLOBAL};
+    double low = 0.0;
+    if (path.global) {
+        place_knots(sun, &path, 0.25 * DAY_SECONDS);
+    } else {
+        path = place_path(settings, settings->day_of_year);
+        low = place_day(sun, &path, settings->day_of_year);
+        if (!sun->rises)
+            return;
     }
     double high = path.global ? 1.0 : path.constant + path.swing;
     if (high - low < 1e-6)
@@ -130,7 +177,7 @@ double sun_spread(const Sun *sun, const double *table, int node_stride, double *
      */
     const double tiny = 1e-60;
     double y[SUN_NODES], m[SUN_NODES];
-    int n = sun->nodes, at = 0, lit = 0;
+    int n = sun->rises ? sun->nodes : 0, at = 0, lit = 0;
     for (int i = 0; i < n; i++) {
         double value = table[(size_t)i * (size_t)node_stride];
         lit |= value > 0.0;

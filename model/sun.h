@@ -4,6 +4,9 @@
  * then 12 h of dark: the mean of a rate over it is half its integral over the cosine, the true global mean. A
  * latitude's sun follows the hour angle, with twilight to 11.5 degrees below the horizon.
  *
+ * With a season the sun of a latitude goes through its year: the nodes span all heights the year has, so that
+ * the rates at them outlast the day, and sun_set_day moves the knots.
+ *
  * Photolysis is computed at a few cosines (nodes). Between them log J is interpolated by the monotone cubic
  * of Fritsch and Carlson (1980) onto the knots, times from sunrise to noon that crowd at sunrise; the
  * afternoon mirrors them. Between knots J is linear in time, scaled for each reaction and layer so that its
@@ -20,7 +23,8 @@
 #define SUN_TWILIGHT (-0.2) /* cosine below which a real sun gives no light worth counting */
 
 typedef struct {
-    int nodes;                    /* 0: the sun does not rise */
+    int nodes;                    /* 0: the sun does not rise, all year where there is a season */
+    int rises;                    /* 0: no light on this day */
     double cosine[SUN_NODES];     /* [nodes] ascending */
     double time[SUN_KNOTS];       /* s after midnight, time[SUN_KNOTS - 1] = noon */
     double knot[SUN_KNOTS];       /* cosine at the knots */
@@ -28,8 +32,14 @@ typedef struct {
     double earth_sun;             /* flux relative to that at 1 au */
 } Sun;
 
-/* refine = 1: as used; 2: nodes twice as dense (tests of the interpolation). */
+/* refine = 1: as used; 2: nodes twice as dense (tests of the interpolation, and always with a season). */
 void sun_make(Sun *sun, const Settings *settings, int refine);
+
+/* SUN_SEASON: the path on a day of the year (1 = the beginning of 1 January; fractions and 365.25 days
+ * serve). sun_make sets that of settings->day_of_year. */
+void sun_set_day(Sun *sun, const Settings *settings, double day_of_year);
+/* Declination of the sun, radians, Spencer (1971, Search 2, 172), good to 0.035 degrees. */
+double sun_declination(double day_of_year);
 
 /* Interpolate one reaction onto the knots and average it.
  *   table [nodes] with stride node_stride: rate at each node, >= 0

@@ -41,7 +41,7 @@ static void mark_kept(Unsplit *unsplit)
             if (model->held_free[FIELD(padded, h, l)] != 0.0)
                 continue;
             unsplit->kept[i] = 1;
-            unsplit->value[i] = model->held_fraction[FIELD(padded, h, l)];
+            unsplit->value[i] = unsplit->conditions->held_fraction[FIELD(padded, h, l)];
         }
 }
 
@@ -57,7 +57,7 @@ static void add_partner(Unsplit *unsplit, int s)
 /* Whatever rates.c and surface.c look up or divide by. */
 static void list_partners(Unsplit *unsplit)
 {
-    static const char *const looked_up[] = {"H2O", "HCl", "ClONO2"};
+    static const char *const looked_up[] = {"H2O", "HCl", "ClONO2", "HNO3"};
     const Mechanism *mechanism = unsplit->model->mechanism;
     for (size_t i = 0; i < sizeof looked_up / sizeof looked_up[0]; i++)
         add_partner(unsplit, mechanism_solved(mechanism, looked_up[i]));
@@ -112,6 +112,17 @@ static int allocate(Unsplit *unsplit, Fault *fault)
     return 0;
 }
 
+/* What depends on water is renewed at every evaluation. */
+static void thermal_coefficients(Unsplit *unsplit)
+{
+    const Model *model = unsplit->model;
+    const Conditions *now = unsplit->conditions;
+    rates_thermal(model->mechanism, model->grid.padded, now->temperature, now->air, unsplit->density, 0,
+                  unsplit->coefficient);
+    memcpy(unsplit->shifted, unsplit->coefficient,
+           (size_t)model->mechanism->reactions * (size_t)model->grid.padded * sizeof(double));
+}
+
 int unsplit_make(Unsplit **made, const Model *model, Fault *fault)
 {
     *made = NULL;
@@ -123,6 +134,8 @@ int unsplit_make(Unsplit **made, const Model *model, Fault *fault)
     unsplit->layers = model->grid.layers;
     unsplit->unknowns = unsplit->solved * unsplit->layers;
     int code = allocate(unsplit, fault);
+    if (!code)
+        code = conditions_make(&unsplit->conditions, model, fault);
     if (!code)
         code = light_make(&unsplit->light, model, 1, fault);
     if (!code)
@@ -140,13 +153,12 @@ int unsplit_make(Unsplit **made, const Model *model, Fault *fault)
     for (int e = 1; e < unsplit->layers; e++)
         unsplit->conductance[e] =
             model->eddy[e] * air->edge_density[e] / (grid->middle[e] - grid->middle[e - 1]);
+    unsplit->pack->conditions = unsplit->conditions;
+    light_follow(unsplit->light, unsplit->conditions, 0);
     mark_kept(unsplit);
     unsplit_take_factors(unsplit, NULL);
-    rates_thermal(model->mechanism, grid->padded, air->temperature, air->number_density, unsplit->density, 0,
-                  unsplit->coefficient); /* what depends on water is renewed at every evaluation */
     rates_washout(model->mechanism, grid->padded, model->washout_rate, unsplit->coefficient);
-    memcpy(unsplit->shifted, unsplit->coefficient,
-           (size_t)model->mechanism->reactions * (size_t)grid->padded * sizeof(double));
+    thermal_coefficients(unsplit);
     *made = unsplit;
     return 0;
 }
@@ -156,6 +168,7 @@ void unsplit_free(Unsplit *unsplit)
     if (!unsplit)
         return;
     light_free(unsplit->light);
+    conditions_free(unsplit->conditions);
     pack_free(unsplit->pack);
     unsplit_matrix_free(unsplit->matrix);
     double *array[] = {unsplit->emission,    unsplit->factor,  unsplit->lit,   unsplit->coefficient,
@@ -190,6 +203,13 @@ void unsplit_take_factors(Unsplit *unsplit, const Day *day)
 void unsplit_set_time(Unsplit *unsplit, double time)
 {
     const Model *model = unsplit->model;
+    int moved = conditions_move(unsplit->conditions, model, time, time);
+    if (moved & CONDITIONS_AIR)
+        thermal_coefficients(unsplit);
+    if (moved & CONDITIONS_HELD)
+        mark_kept(unsplit);
+    if (moved)
+        light_follow(unsplit->light, unsplit->conditions, moved);
     for (int s = 0; s < unsplit->solved; s++)
         if (model->surface_kind[s] == SURFACE_SCHEDULE)
             unsplit->value[s] = schedule_abundance(&model->schedule, model->surface_gas[s], time);
@@ -217,13 +237,13 @@ void unsplit_keep(const Unsplit *unsplit, double *x)
 static void local_coefficients(const Unsplit *unsplit, const double *density, double *coefficient)
 {
     const Model *model = unsplit->model;
-    const Air *air = &model->air;
+    const Conditions *now = unsplit->conditions;
     int padded = model->grid.padded, water = mechanism_solved(model->mechanism, "H2O");
     if (water >= 0)
-        rates_thermal(model->mechanism, padded, air->temperature, air->number_density,
-                      density + FIELD(padded, water, 0), 1, coefficient);
-    surface_rates(model->mechanism, padded, air->temperature, air->number_density, model->aerosol_area,
-                  model->aerosol_radius, density, coefficient);
+        rates_thermal(model->mechanism, padded, now->temperature, now->air, density + FIELD(padded, water, 0),
+                      1, coefficient);
+    surface_rates(model->mechanism, padded, now->temperature, now->air, now->aerosol_area,
+                  now->aerosol_radius, density, coefficient);
 }
 
 static void fill_rates(Unsplit *unsplit, const double *x)
@@ -233,7 +253,7 @@ static void fill_rates(Unsplit *unsplit, const double *x)
     int padded = model->grid.padded;
     for (int s = 0; s < unsplit->solved; s++)
         for (int l = 0; l < padded; l++)
-            unsplit->density[FIELD(padded, s, l)] = x[FIELD(padded, s, l)] * model->air.number_density[l];
+            unsplit->density[FIELD(padded, s, l)] = x[FIELD(padded, s, l)] * unsplit->conditions->air[l];
     local_coefficients(unsplit, unsplit->density, unsplit->coefficient);
     light_refresh(unsplit->light, x, unsplit->lit);
     unsplit->lights++;
@@ -275,7 +295,7 @@ static void bend_coefficients(Unsplit *unsplit)
                 size_t at = FIELD(padded, r, l);
                 double change = (unsplit->shifted[at] - unsplit->coefficient[at]) * unsplit->factor[at];
                 bend[at] = kept[l] > ABSENT && !is_lit(mechanism, r)
-                               ? change / (density[l] - kept[l]) * unsplit->model->air.number_density[l]
+                               ? change / (density[l] - kept[l]) * unsplit->conditions->air[l]
                                : 0.0;
             }
         memcpy(density, kept, (size_t)padded * sizeof(double));
@@ -304,7 +324,7 @@ static void load_pack(Unsplit *unsplit, int first)
 static void evaluate_chemistry(Unsplit *unsplit, double *tendency, int with_jacobian)
 {
     const Model *model = unsplit->model;
-    const double *air = model->air.number_density;
+    const double *air = unsplit->conditions->air;
     int solved = unsplit->solved, species = model->kernel->species;
     size_t square = (size_t)solved * (size_t)solved;
     for (int first = 0; first < unsplit->layers; first += PACK) {
@@ -338,7 +358,7 @@ static void add_bends(Unsplit *unsplit)
                 double bend = unsplit->bend[FIELD(padded, p * mechanism->reactions + r, l)];
                 if (bend == 0.0)
                     continue;
-                double change = bend * unsplit->product[FIELD(padded, r, l)] / model->air.number_density[l];
+                double change = bend * unsplit->product[FIELD(padded, r, l)] / unsplit->conditions->air[l];
                 double *block = unsplit->jacobian + (size_t)l * (size_t)solved * (size_t)solved;
                 for (int c = 0; c < reaction->changes; c++)
                     block[reaction->changed[c] * solved + unsplit->partner[p]] +=
@@ -394,7 +414,7 @@ void unsplit_turnover(const Unsplit *unsplit, const double *x, double *turnover)
             for (int l = 0; l < unsplit->layers; l++)
                 turnover[l * solved + reaction->changed[c]] +=
                     fabs(reaction->change[c] * unsplit->rate[FIELD(padded, r, l)]) /
-                    model->air.number_density[l];
+                    unsplit->conditions->air[l];
     }
     for (int s = 0; s < solved; s++)
         for (int l = 0; l < unsplit->layers; l++) {

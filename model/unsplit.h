@@ -32,6 +32,7 @@ typedef struct UnsplitMatrix UnsplitMatrix; /* band, scales and update: unsplit_
 typedef struct {
     const Model *model;
     int solved, layers, unknowns;
+    Conditions *conditions; /* of the time of unsplit_set_time */
     Light *light;
     PackWork *pack;
     int has_factors;
@@ -73,7 +74,7 @@ void unsplit_free(Unsplit *unsplit);
 
 /* Diurnal factors and daylight ratios as they now are, by copy; NULL: none (daily means). */
 void unsplit_take_factors(Unsplit *unsplit, const Day *day);
-/* What the ground keeps, at decimal year time. */
+/* What the ground keeps, and the conditions (conditions.h), at decimal year time. */
 void unsplit_set_time(Unsplit *unsplit, double time);
 /* Let a flux into the lowest layer, molecules cm-2 s-1, drive the carried species s, and not a value that the
  * ground keeps. */

@@ -34,7 +34,7 @@ static void list_absorbers(Unsplit *unsplit)
     for (int a = 0; a < UNSPLIT_ABSORBERS; a++) {
         int s = mechanism_solved(model->mechanism, names[a]);
         for (int l = 0; s >= 0 && l < unsplit->layers; l++) {
-            double column = unsplit->density[FIELD(model->grid.padded, s, l)] * model->grid.depth[l];
+            double column = unsplit->density[FIELD(model->grid.padded, s, l)] * unsplit->conditions->depth[l];
             if (a == 0 || (a == 1 ? column * SECTION > COUNTS : lights_nitric_oxide(unsplit, l)))
                 unsplit->absorber[unsplit->absorbers++] = l * unsplit->solved + s;
         }
@@ -89,7 +89,7 @@ void unsplit_rate_gradient(const Unsplit *unsplit, const double *weight, double 
                         others *= unsplit->density[FIELD(padded, reaction->reactant[j], l)];
                 size_t at = FIELD(padded, r, l);
                 gradient[l * solved + reaction->reactant[i]] +=
-                    weight[at] * unsplit->k[at] * others * model->air.number_density[l];
+                    weight[at] * unsplit->k[at] * others * unsplit->conditions->air[l];
             }
     }
     for (int p = 0; p < unsplit->partners; p++)

@@ -146,7 +146,7 @@ static void fill_update(Unsplit *unsplit)
             for (int c = 0; c < reaction->changes; c++)
                 for (int l = 0; l < unsplit->layers; l++)
                     to[l * solved + reaction->changed[c]] +=
-                        reaction->change[c] * slope[l] * product[l] / model->air.number_density[l];
+                        reaction->change[c] * slope[l] * product[l] / unsplit->conditions->air[l];
         }
         for (size_t i = 0; i < n; i++)
             if (unsplit->kept[i])
@@ -185,7 +185,7 @@ int unsplit_factorise(Unsplit *unsplit, const double *x, double shift, int with_
     for (int i = 0; i < n; i++) {
         int l = i / unsplit->solved;
         matrix->column[i] =
-            fmax(fabs(x[FIELD(padded, i % unsplit->solved, l)]), SCARCE / model->air.number_density[l]);
+            fmax(fabs(x[FIELD(padded, i % unsplit->solved, l)]), SCARCE / unsplit->conditions->air[l]);
     }
     assemble(unsplit, shift);
     unsplit->factorisations++;
@@ -295,7 +295,7 @@ void unsplit_multiply(const Unsplit *unsplit, const double *z, int with_light, i
             const Reaction *reaction = &mechanism->reaction[r];
             for (int l = 0; l < unsplit->layers; l++) {
                 double change = unsplit->slope[FIELD(padded, m * lit + j, l)] *
-                                unsplit->product[FIELD(padded, r, l)] / model->air.number_density[l];
+                                unsplit->product[FIELD(padded, r, l)] / unsplit->conditions->air[l];
                 for (int c = 0; c < reaction->changes; c++) {
                     int i = l * solved + reaction->changed[c], o = unsplit->absorber[m];
                     if (unsplit->kept[i])

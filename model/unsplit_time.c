@@ -57,7 +57,7 @@ static double norm(const Unsplit *unsplit, const double *error, const double *be
 {
     double worst = 0.0;
     for (int l = 0; l < unsplit->layers; l++) {
-        double sum = 0.0, least = stepping->absolute / unsplit->model->air.number_density[l];
+        double sum = 0.0, least = stepping->absolute / unsplit->conditions->air[l];
         for (int s = 0; s < unsplit->solved; s++) {
             int i = l * unsplit->solved + s;
             double size = fmax(fabs(before[i]), fabs(*entry(unsplit, x, i)));
@@ -135,8 +135,7 @@ static int attempt(Unsplit *unsplit, Room *room, double time, double h, int froz
 static int falls_too_low(const Unsplit *unsplit, const Room *room, double absolute)
 {
     for (int i = 0; i < unsplit->unknowns; i++) {
-        double now = *entry(unsplit, room->x, i),
-               air = unsplit->model->air.number_density[i / unsplit->solved];
+        double now = *entry(unsplit, room->x, i), air = unsplit->conditions->air[i / unsplit->solved];
         if (now * air < -absolute && now < 2.0 * room->before[i])
             return 1;
     }

@@ -286,6 +286,63 @@ SKYMEND_DATA=$TEST_DIR/no-data
 refused "data folder missing" good.cfg no-data
 SKYMEND_DATA=$shipped
 
+# ---- what changes with time ----
+
+case_with changing.cfg "$years" "$coarse" 'temperature = { mode = "file"; };' 'files = { temperature_change = "change.csv"; };'
+printf 'year,altitude_km,change_K\n1990,0,0\n1990,90,0\n1991,0,-1\n1991,90,-1\n' >change.csv
+run "$SKYMEND" check changing.cfg
+well "check accepts a temperature change"
+printf 'year,altitude_km,change_K\n1990,0,0\n1990,90,0\n1990.9,0,-1\n1990.9,90,-1\n' >change.csv
+refused "temperature change that ends before the run" changing.cfg "change.csv:5: " 1990.9 1991
+printf 'year,altitude_km,change_K\n1990,0,0\n1990,90,0\n1991,0,-1\n1991,50,-1\n' >change.csv
+refused "temperature change that ends too low" changing.cfg "change.csv:5: " 50
+printf 'year,altitude_km,change_K\n1991,0,0\n1991,90,0\n1990,0,-1\n1990,90,-1\n' >change.csv
+refused "years that fall" changing.cfg "change.csv:4: " year 1990
+printf 'year,altitude_km,change_K\n1990,0,0\n1990,90,-149\n1991,0,-79\n1991,90,-79\n' >change.csv
+refused "temperature out of the world" changing.cfg change.csv "between 100 and 400"
+printf 'year,altitude_km,change_K\n1990,0,0\n1990,90,cold\n' >change.csv
+refused "temperature change that is no number" changing.cfg "change.csv:3: " cold
+case_with bad.cfg "$years" "$coarse" 'temperature = { mode = "file"; };'
+refused "temperature change without its table" bad.cfg bad.cfg:4: files.temperature_change
+case_with bad.cfg "$years" "$coarse" 'files = { schedule = "schedule.csv"; };'
+grep -v '^[0-9]*,CO2,' "$baseline" >schedule.csv
+refused "schedule without CO2" bad.cfg schedule.csv CO2 temperature.mode
+rm schedule.csv
+
+case_with dusty.cfg "$years" "$coarse" 'files = { volcanic = "volcanic.csv"; };'
+printf 'year,altitude_km,surface_um2_cm-3,effective_radius_um\n1990,0,0,0.3\n1990,90,-1,0.3\n' >volcanic.csv
+refused "negative aerosol" dusty.cfg "volcanic.csv:3: " -1
+printf 'year,altitude_km,surface_um2_cm-3,effective_radius_um\n1992,0,0,0.3\n1992,90,0,0.3\n' >volcanic.csv
+refused "aerosol of other years" dusty.cfg volcanic.csv 1990 1992
+printf 'year,altitude_km,surface\n1990,0,0\n1990,90,0\n' >volcanic.csv
+refused "aerosol without its column" dusty.cfg "volcanic.csv:1: " surface_um2_cm-3
+
+case_with cycling.cfg "$years" "$coarse" 'files = { solar_cycle = "cycle.csv"; };'
+printf 'year,phase\n1990,0\n1990.5,1\n' >cycle.csv
+refused "solar cycle that ends before the run" cycling.cfg "cycle.csv:3: " 1990.5 1991
+printf 'year,phase\n1990,70\n1991,200\n' >cycle.csv
+refused "solar flux in place of a phase" cycling.cfg "cycle.csv:2: " phase 70
+
+case_with yearly.cfg "$years" "$coarse" 'sun = { kind = "season"; latitude_deg = 45; };' \
+    'files = { tropospheric_oh_by_month = "oh.csv"; };'
+months() { # months LAST: a table by month
+    echo 'month,altitude_km,OH_cm-3'
+    for m in $(seq 1 "$1"); do printf '%d,0,1e6\n%d,15,1e6\n' "$m" "$m"; done
+}
+months 12 >oh.csv
+run "$SKYMEND" check yearly.cfg
+well "check accepts a table by month"
+months 11 >oh.csv
+refused "year of eleven months" yearly.cfg "oh.csv:23: " 11
+months 12 | sed 's/^7,/8,/' >oh.csv
+refused "month left out" yearly.cfg "oh.csv:14: " "month 7"
+case_with yearly.cfg "$years" "$coarse" 'files = { air_by_month = "air-45N-by-month.csv"; };'
+refused "air by month without a season" yearly.cfg yearly.cfg:4: sun.kind
+case_with yearly.cfg "$years" "$coarse" 'sun = { kind = "season"; };' 'files = { air_by_month = "air.csv"; };'
+{ echo 'month,altitude_km,temperature_K,pressure_Pa'
+    for m in $(seq 1 12); do printf '%d,0,280,5e4\n%d,90,200,0.1\n' "$m" "$m"; done; } >air.csv
+refused "air by month that lacks the pressures" yearly.cfg "air.csv:" Pa
+
 # ---- output ----
 
 run "$SKYMEND" check good.cfg

@@ -97,7 +97,12 @@ with xr.open_dataset(sys.argv[1]) as data:
     assert (np.diff(altitude) > 0).all() and altitude[-1] < 200.0, "altitude in km does not ascend"
     assert (layer[:, 0] < altitude).all() and (altitude < layer[:, 1]).all(), "altitude outside its bounds"
     assert (layer[1:, 0] == layer[:-1, 1]).all(), "layers do not follow each other"
-    fields = [v for v in data.data_vars.values() if v.dims == ("time", "altitude")]
+    layered = [v for v in data.data_vars.values() if v.dims == ("time", "altitude")]
+    fields = [v for v in layered if "species" in v.attrs]
+    for field in layered:
+        assert "species" in field.attrs or field.name == "temperature_change", field.name
+        if field.name == "temperature_change":
+            assert field.attrs["units"] == "K" and np.isfinite(field.values).all(), field.name
     assert fields, "no mole fractions"
     for field in fields:
         unit = "cm-3 s-1" if field.name.startswith("odd_oxygen_") else "mol mol-1"

@@ -791,7 +791,8 @@ static void write_projection(const Made *made, const char *path)
             double z = grid->middle[i] / 1e5;
             x[FIELD(grid->padded, 0, i)] = 8e-6 * exp(-pow((z - 33.0) / 13.0, 2)) * column / 300.0 + 3e-8;
         }
-        const Record record = {year + 0.5, year, year + 1.0, x, column, NULL, NULL};
+        const Record record = {
+            .time = year + 0.5, .time_start = year, .time_end = year + 1.0, .x = x, .ozone_column = column};
         if (archive_append(archive, &record, &fault))
             fail_msg("%s", fault.text);
         free(x);

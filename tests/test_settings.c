@@ -115,7 +115,22 @@ static void settings_refuses_a_bad_case(void **state)
         {"files = {\n eddy = \"nowhere.csv\"; };", ":2: ", "nowhere.csv: not found (files.eddy)"},
         {"files = { schedule = \"/nowhere/s.csv\"; };", ":1: ", "cannot be read (files.schedule)"},
         {"\n\nfiles = { mechanism = \"\"; };", ":3: ", "files.mechanism is empty"},
-        {"sun = { kind = \"moon\"; };", ":1: ", "\"global\", \"latitude\""},
+        {"\ntemperature = { mode = \"file\"; };", ":2: ", "files.temperature_change"},
+        {"files = { temperature_change = \"co2-cooling.csv\"; };", ":1: ", "temperature.mode"},
+        {"temperature = { mode = \"co3\"; };", ":1: ", "did you mean co2"},
+        {"temperature = { reference_co2_ppm = 3.4e-4; };", ":1: ", "between 100 and 10000 ppm"},
+        {"files = { co2_cooling = \"\"; };", ":1: ", "is empty"},
+        {"files = { volcanic = \"nowhere.csv\"; };", ":1: ", "nowhere.csv: not found (files.volcanic)"},
+        {"files = { solar_cycle = \"nowhere.csv\"; };", ":1: ", "nowhere.csv: not found (files.solar_cycle)"},
+        {"files = { solar_amplitude = \"\"; };", ":1: ", "is empty"},
+        {"\nfiles = { air_by_month = \"x.csv\"; };", ":2: ", "files.air_by_month goes with sun.kind"},
+        {"sun = { kind = \"season\"; };\nfiles = { tropospheric_oh = \"\"; tropospheric_oh_by_month = \"x\"; "
+         "};",
+         ":2: ", "give both"},
+        {"sun = { kind = \"season\"; };\nnumerics = { spinup_years = 1.5; };", ":2: ", "must be whole"},
+        {"sun = { kind = \"season\"; };\nfiles = { air_by_month = \"x.csv\"; };",
+         ":2: ", "files.air_by_month"},
+        {"sun = { kind = \"moon\"; };", ":1: ", "\"global\", \"latitude\", \"season\""},
         {"grid = { top_km = 200; };", ":1: ", "between 20 and 86 km"},
         {"sun = { surface_albedo = -0.1; };", ":1: ", "between 0 and 1"},
         {"numerics = { relative_tolerance = 1e999; };", ":1: ", "between"},
@@ -242,7 +257,7 @@ static void settings_defaults_fit_the_data(void **state)
             fail_msg("%s", fault.text);
         files++;
     }
-    assert_int_equal(files, 10);
+    assert_int_equal(files, 12);
 
     char path[2 * SETTINGS_PATH], *text;
     Fault fault = {0};

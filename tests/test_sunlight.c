@@ -687,10 +687,11 @@ static void test_photolysis_linear_and_same(void **state)
     double thin[LAYERS];
     for (int k = 0; k < LAYERS; k++)
         thin[k] = 0.5 * world.air.number_density[k];
-    photolysis_set_air(photolysis, world.air.temperature, thin, 0.5 * world.air.column_above_top);
+    photolysis_set_air(photolysis, world.air.temperature, thin, world.grid.depth,
+                       0.5 * world.air.column_above_top);
     photolysis_rates(photolysis, world.ozone, world.dioxide, world.nitric_oxide, 1, rate);
     assert_true(rate_of(rate, 0, reaction("J-O2"), 20) > 1.5 * rate_of(three, 0, reaction("J-O2"), 20));
-    photolysis_set_air(photolysis, world.air.temperature, world.air.number_density,
+    photolysis_set_air(photolysis, world.air.temperature, world.air.number_density, world.grid.depth,
                        world.air.column_above_top);
     photolysis_rates(photolysis, world.ozone, world.dioxide, world.nitric_oxide, 1, rate);
     assert_memory_equal(rate, three, 3 * set * sizeof *rate);
