@@ -41,8 +41,8 @@ typedef struct {
 int steady_settle(Unsplit *unsplit, double *x, SteadyReport *steady, Fault *fault);
 
 /* The same for the surface values of a time, with the factors of the case made for the settled state. column:
- * in, where to start; out, settled, its time that time. The stepper is left with the light and coefficients of
- * that state and the factors of the last turn; unsplit has the same. */
+ * in, where to start; out, settled, its time that time. The stepper is left with the light and coefficients
+ * of that state and the factors of the last turn; unsplit has the same. */
 int steady_find(Unsplit *unsplit, Stepper *stepper, Column *column, double time, SteadyReport *steady,
                 Fault *fault);
 

@@ -31,9 +31,9 @@ void stepper_free(Stepper *stepper);
  * column->time and the clock where it is (spin-up). On a fault the column holds a partly advanced state. */
 int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, Fault *fault);
 
-/* Light and coefficients and, with_day, unless the case runs on daily means, diurnal factors afresh for the daily
- * means column->x, whatever has moved or not; the state and its time stay. With explicit days the factors,
- * which such a run does without, tell what the day makes of the means (stepper_day). */
+/* Light and coefficients and, with_day, unless the case runs on daily means, diurnal factors afresh for the
+ * daily means column->x, whatever has moved or not; the state and its time stay. With explicit days the
+ * factors, which such a run does without, tell what the day makes of the means (stepper_day). */
 int stepper_refresh(Stepper *stepper, Column *column, int with_day, Fault *fault);
 
 /* Mean mole fractions over the last step [solved][padded]: of its two ends, or of the explicit day. */

@@ -116,6 +116,7 @@ static void settings_refuses_a_bad_case(void **state)
         {"files = { schedule = \"/nowhere/s.csv\"; };", ":1: ", "cannot be read (files.schedule)"},
         {"\n\nfiles = { mechanism = \"\"; };", ":3: ", "files.mechanism is empty"},
         {"sun = { kind = \"moon\"; };", ":1: ", "\"global\", \"latitude\""},
+        {"numerics = { start = \"setled\"; };", ":1: ", "did you mean settled?"},
         {"grid = { top_km = 200; };", ":1: ", "between 20 and 86 km"},
         {"sun = { surface_albedo = -0.1; };", ":1: ", "between 0 and 1"},
         {"numerics = { relative_tolerance = 1e999; };", ":1: ", "between"},
