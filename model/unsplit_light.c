@@ -10,10 +10,10 @@
 static const double ABSORBER_SHIFT = 1e-4;
 
 /* Whether NO absorbs anything that matters in layer l: the light of its bands is gone where its own
- * photolysis is a hundredth of that at the top. */
+ * photolysis is 1e-5 of that at the top. */
 static int lights_nitric_oxide(const Unsplit *unsplit, int l)
 {
-    static const double GONE = 0.01;
+    static const double GONE = 1e-5;
     const Mechanism *mechanism = unsplit->model->mechanism;
     int padded = unsplit->model->grid.padded, top = unsplit->layers - 1;
     for (int j = 0; j < unsplit->light->reactions; j++)
@@ -24,7 +24,7 @@ static int lights_nitric_oxide(const Unsplit *unsplit, int l)
 }
 
 /* Ozone counts in every layer; NO2 where the optical depth of the layer at 400 nm, 6e-19 cm2 (JPL 19-5), is
- * more than a millionth; NO at the top. */
+ * more than a millionth; NO where its own light is. */
 static void list_absorbers(Unsplit *unsplit)
 {
     static const char *const names[UNSPLIT_ABSORBERS] = {"O3", "NO2", "NO"};

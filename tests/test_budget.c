@@ -212,7 +212,8 @@ static void test_refused(void **state)
 
 /* ---- books ---- */
 
-/* Net source of Ox in a layer by the kernel's own lists of what feeds what. */
+/* Net source of Ox in a layer, per cm3 of the base atmosphere, by the kernel's own lists of what feeds what.
+ */
 static double kernel_source(const Run *run, const OxBook *book, const double *coefficient,
                             const double *factor, int layer)
 {
@@ -226,10 +227,10 @@ static double kernel_source(const Run *run, const OxBook *book, const double *co
             for (int i = 0; i < 3; i++)
                 if (kernel->reactant[3 * r + i] < kernel->species)
                     w *= run->column->x[FIELD(padded, kernel->reactant[3 * r + i], layer)] *
-                         run->model->air.number_density[layer];
+                         stepper_conditions(run->stepper)->air[layer];
             net += book->content[s] * kernel->source_weight[e] * w;
         }
-    return net;
+    return net * run->model->air.number_density[layer] / stepper_conditions(run->stepper)->air[layer];
 }
 
 /* On a state far from balance, so that nothing cancels by itself. Terms and net are sums over the same
@@ -288,7 +289,9 @@ static void test_explicit_days(void **state)
     for (int l = 0; l < model->grid.layers; l++)
         if (stepper_coefficients(run.stepper)[FIELD(padded, oxygen, l)] > 1.0)
             check_near(rate[FIELD(padded, oxygen, l)],
-                       stepper_coefficients(run.stepper)[FIELD(padded, oxygen, l)], 1e-3);
+                       stepper_coefficients(run.stepper)[FIELD(padded, oxygen, l)] *
+                           model->air.number_density[l] / stepper_conditions(run.stepper)->air[l],
+                       1e-3);
     free(rate);
     end(&run);
 }

@@ -131,6 +131,8 @@ static void settings_refuses_a_bad_case(void **state)
         {"sun = { kind = \"season\"; };\nfiles = { air_by_month = \"x.csv\"; };",
          ":2: ", "files.air_by_month"},
         {"sun = { kind = \"moon\"; };", ":1: ", "\"global\", \"latitude\", \"season\""},
+        {"sun = { kind = \"season\"; };\nnumerics = { start = \"settled\"; };", ":2: ", "never at rest"},
+        {"numerics = { start = \"setled\"; };", ":1: ", "did you mean settled?"},
         {"grid = { top_km = 200; };", ":1: ", "between 20 and 86 km"},
         {"sun = { surface_albedo = -0.1; };", ":1: ", "between 0 and 1"},
         {"numerics = { relative_tolerance = 1e999; };", ":1: ", "between"},

@@ -61,7 +61,7 @@ static void test_at_rest(void **state)
             for (int c = 0; c < model->mechanism->reaction[r].changes; c++)
                 for (int l = 1; model->mechanism->reaction[r].changed[c] == s && l < unsplit->layers; l++)
                     lost -= model->mechanism->reaction[r].change[c] *
-                            unsplit->rate[FIELD(model->grid.padded, r, l)] * model->grid.depth[l];
+                            unsplit->rate[FIELD(model->grid.padded, r, l)] * unsplit->conditions->depth[l];
         print_message("   CFC-115: %.6g molecules cm-2 s-1 enter, %.6g are lost\n", in, lost);
         check_near(in, lost, 1e-5);
         free(tendency);

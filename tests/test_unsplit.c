@@ -37,7 +37,7 @@ static void test_transport_is_that_of_mixing(void **state)
     Fault fault = {0};
     ok(mixing_make(&mixing, model, 1, &fault), &fault);
     ok(mixing_prepare(mixing, 0, 1.0, &fault), &fault);
-    mixing_step(mixing, 0, column);
+    mixing_step(mixing, 0, column, NULL);
     int moved = 0;
     double worst = 0.0;
     for (int i = 0; i < unsplit->unknowns; i++) {
@@ -49,7 +49,7 @@ static void test_transport_is_that_of_mixing(void **state)
         }
         /* the change is a difference of mole fractions stored to 16 digits */
         double noise = 4e-16 * fabs(before[place(unsplit, i)]);
-        if (before[place(unsplit, i)] * model->air.number_density[i / unsplit->solved] < 1.0)
+        if (before[place(unsplit, i)] * unsplit->conditions->air[i / unsplit->solved] < 1.0)
             continue; /* less than a molecule per cm3 */
         worst = fmax(worst, (fabs(change - tendency[i]) - noise) / gross[i]);
         moved += change != 0.0;
@@ -84,6 +84,7 @@ static void test_chemistry_is_that_of_the_packs(void **state)
     PackWork *work;
     Fault fault = {0};
     ok(pack_make(&work, model, &fault), &fault);
+    work->conditions = unsplit->conditions;
     for (int first = 0; first < padded; first += PACK) {
         pack_load(work, model, first, rest.run.column->x);
         pack_rates(work, model, first, stepper_coefficients(stepper), stepper_light(stepper)->mean,
@@ -104,7 +105,7 @@ static void test_chemistry_is_that_of_the_packs(void **state)
         for (int lane = 0; lane < PACK && first + lane < unsplit->layers; lane++)
             for (int s = 0; s < solved; s++) {
                 int i = (first + lane) * solved + s;
-                double air = model->air.number_density[first + lane], y = before[s * PACK + lane];
+                double air = unsplit->conditions->air[first + lane], y = before[s * PACK + lane];
                 if (unsplit->kept[i] || gross[i] * air > y / 60.0 || y < 1e4)
                     continue;
                 double change = (work->y[s * PACK + lane] - y) / step, noise = 4e-16 * y / step;
@@ -209,7 +210,7 @@ static void test_linear_algebra(void **state)
         unsplit_solve(unsplit, au, 0);
         double worst = 0.0;
         for (int i = 0; i < n; i++) {
-            double scale = fmax(fabs(u[i]), 1.0 / model->air.number_density[i / unsplit->solved]);
+            double scale = fmax(fabs(u[i]), 1.0 / unsplit->conditions->air[i / unsplit->solved]);
             worst = fmax(worst, fabs(au[i] - u[i]) / scale);
         }
         /* z' A^-1 b = b' A'^-1 z for b of the size of the turnover */
@@ -244,7 +245,7 @@ static void test_linear_algebra(void **state)
             for (int c = 0; c < mechanism->reaction[r].changes; c++)
                 weight[FIELD(padded, r, l)] += mechanism->reaction[r].change[c] *
                                                z[l * unsplit->solved + mechanism->reaction[r].changed[c]] /
-                                               model->air.number_density[l];
+                                               unsplit->conditions->air[l];
     unsplit_rate_gradient(unsplit, weight, gradient);
     unsplit_multiply(unsplit, z, 1, 1, az);
     double worst = 0.0, size = 0.0;
