@@ -86,6 +86,7 @@ typedef struct {
     int day;               /* enum DayMode */
     double refresh_column; /* relative change of overhead ozone that refreshes photolysis rates */
     double refresh_state;  /* relative change of the state that refreshes the diurnal factors */
+    double refresh_years;  /* and the time after which they are made afresh all the same */
 
     /* boundaries */
     double tropopause_km;   /* prescribed water, OH and NO2, washout below */

@@ -114,6 +114,8 @@ static const SettingKey keys[] = {
          "change of overhead ozone at which photolysis rates are made afresh"),
     REAL("day", "refresh_state", refresh_state, 0.03, 1e-4, 10, "relative",
          "change of the state at which the diurnal factors are made afresh"),
+    REAL("day", "refresh_years", refresh_years, 0.5, 1e-3, 1e3, "years",
+         "time after which the diurnal factors are made afresh however little has changed"),
 
     REAL("surface", "tropopause_km", tropopause_km, 12, 5, 20, "km",
          "water, OH and NO2 are prescribed and washout acts below it; the global mean of the thermal "
@@ -126,8 +128,8 @@ static const SettingKey keys[] = {
          "gases held or taken up at the ground; a list given here replaces the built-in one; a gas of "
          "the schedule needs no entry"),
 
-    REAL("numerics", "outer_step_days", outer_step_days, 30.4375 / 4, 0.01, 366, "days",
-         "step of the splitting between transport and chemistry; the default is a quarter of a mean month"),
+    REAL("numerics", "outer_step_days", outer_step_days, 30.4375 / 3, 0.01, 366, "days",
+         "step of the splitting between transport and chemistry; the default is a third of a mean month"),
     REAL("numerics", "relative_tolerance", relative_tolerance, 1e-2, 1e-10, 0.1, "",
          "error allowed per step of the chemistry"),
     REAL("numerics", "absolute_tolerance_cm3", absolute_tolerance_cm3, 1e2, 1e-6, 1e8, "molecules cm-3",

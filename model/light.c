@@ -4,6 +4,7 @@
 #include "../input/constants.h"
 #include <math.h>
 #include <stdlib.h>
+#include <string.h>
 
 /* Absorption cross section of ozone at its maximum is 1.15e-17 cm2 (JPL 19-5): optical depth 1 is this
  * column. */
@@ -26,11 +27,16 @@ int light_make(Light **made, const Model *model, int refine, Fault *fault)
     light->knot = calloc(SUN_KNOTS * field + 1, sizeof(double));
     light->mean = calloc(field + 1, sizeof(double));
     light->overhead = calloc(padded, sizeof(double));
+    light->kelvin = calloc(padded, sizeof(double));
+    light->air = calloc(padded, sizeof(double));
     light->density = calloc(3 * padded, sizeof(double));
     double *edge_km = calloc((size_t)model->grid.layers + 1, sizeof(double));
     int code = 0;
-    if (!light->table || !light->knot || !light->mean || !light->overhead || !light->density || !edge_km)
+    if (!light->table || !light->knot || !light->mean || !light->overhead || !light->kelvin || !light->air ||
+        !light->density || !edge_km)
         code = fault_memory(fault, "photolysis rates");
+    if (!code)
+        memcpy(light->kelvin, model->air.temperature, padded * sizeof(double));
     if (!code && light->sun.nodes) {
         for (int i = 0; i <= model->grid.layers; i++)
             edge_km[i] = 1e-5 * model->grid.edge[i];
@@ -57,24 +63,62 @@ void light_free(Light *light)
     free(light->knot);
     free(light->mean);
     free(light->overhead);
+    free(light->kelvin);
+    free(light->air);
     free(light->density);
     free(light);
 }
 
-void light_follow(Light *light, const Conditions *conditions, int moved)
+static double temperature_moved(const Light *light)
+{
+    double most = 0.0;
+    for (int l = 0; l < light->model->grid.padded; l++)
+        most = fmax(most, fabs(light->conditions->temperature[l] - light->kelvin[l]));
+    return most;
+}
+
+/* Times the number density of the fixed reactants of a photolysis reaction is to be taken. */
+static int fixed_order(const Light *light, int reaction)
+{
+    const Mechanism *mechanism = light->model->mechanism;
+    return mechanism->reaction[mechanism->photolysis_first + reaction].fixed_order;
+}
+
+/* Coefficients of fixed reactants to the density of now. */
+static void scale_fixed_reactants(Light *light)
+{
+    int padded = light->model->grid.padded;
+    for (int l = 0; l < padded; l++) {
+        double ratio = light->conditions->air[l] / light->air[l];
+        light->air[l] = light->conditions->air[l];
+        for (int r = 0; r < light->reactions; r++) {
+            if (!fixed_order(light, r))
+                continue;
+            double scale = pow(ratio, fixed_order(light, r));
+            light->mean[FIELD(padded, r, l)] *= scale;
+            for (int k = 0; k < SUN_KNOTS; k++)
+                light->knot[FIELD(padded, k * light->reactions + r, l)] *= scale;
+            for (int n = 0; n < light->sun.nodes; n++)
+                light->table[FIELD(padded, n * light->reactions + r, l)] *= scale;
+        }
+    }
+}
+
+int light_follow(Light *light, const Conditions *conditions, int moved)
 {
     light->conditions = conditions;
-    if (moved & (CONDITIONS_AIR | CONDITIONS_LIGHT))
+    int follows = light->ready && moved & CONDITIONS_AIR;
+    if (follows)
+        scale_fixed_reactants(light);
+    if (moved & CONDITIONS_LIGHT || (follows && temperature_moved(light) > LIGHT_KELVIN))
         light->ready = 0;
-    if (moved & CONDITIONS_AIR && light->photolysis)
-        photolysis_set_air(light->photolysis, conditions->temperature, conditions->air, conditions->depth,
-                           light->model->air.column_above_top);
     if (moved & CONDITIONS_SUN) {
         sun_set_day(&light->sun, &light->model->settings, conditions->day_of_year);
         light->turned = 1;
     }
     if (moved & CONDITIONS_LIGHT && light->photolysis)
         photolysis_set_sunlight(light->photolysis, conditions->solar);
+    return follows;
 }
 
 /* Ozone above the middle of each layer, cm-2. */
@@ -143,7 +187,7 @@ static void fold_fixed_reactants(Light *light)
 {
     int padded = light->model->grid.padded;
     for (int r = 0; r < light->reactions; r++) {
-        if (!light->model->mechanism->reaction[light->model->mechanism->photolysis_first + r].fixed_order)
+        if (!fixed_order(light, r))
             continue;
         for (int l = 0; l < padded; l++)
             for (int n = 0; n < light->sun.nodes; n++)
@@ -151,10 +195,24 @@ static void fold_fixed_reactants(Light *light)
     }
 }
 
+/* Let the photolysis have the air of now. */
+static void take_air(Light *light)
+{
+    const Conditions *now = light->conditions;
+    size_t size = (size_t)light->model->grid.padded * sizeof(double);
+    memcpy(light->air, now->air, size);
+    if (!(temperature_moved(light) > 0.0))
+        return;
+    photolysis_set_air(light->photolysis, now->temperature, now->air, now->depth,
+                       light->model->air.column_above_top);
+    memcpy(light->kelvin, now->temperature, size);
+}
+
 /* Rates at the nodes, [nodes][reactions][padded]. */
 static void fill_table(Light *light, const double *x, const double *lit, double earth_sun)
 {
     int padded = light->model->grid.padded;
+    take_air(light);
     number_density(light, x, lit, "O3", light->density);
     number_density(light, x, lit, "NO2", light->density + padded);
     number_density(light, x, lit, "NO", light->density + 2 * padded);

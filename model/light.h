@@ -17,6 +17,8 @@ typedef struct {
     double *table;    /* [nodes][reactions][padded] */
     double *knot;     /* [SUN_KNOTS][reactions][padded], morning */
     double *mean;     /* [reactions][padded], mean over 24 h */
+    double *kelvin;   /* [padded] temperature the photolysis has its cross sections for */
+    double *air;      /* [padded] cm-3, number density of air in the coefficients of fixed reactants */
     double *overhead; /* [padded] ozone above each layer's middle at the last refresh, cm-2 */
     double *density;  /* [3][padded] work: number densities of O3, NO2, NO */
     int ready;        /* rates have been computed */
@@ -28,8 +30,11 @@ int light_make(Light **made, const Model *model, int refine, Fault *fault);
 void light_free(Light *light);
 
 /* Take conditions (kept by reference) in place of what light went by; moved says which parts changed since
- * then, ConditionsPart added up. Rates count as stale afterwards where they depend on them. */
-void light_follow(Light *light, const Conditions *conditions, int moved);
+ * then, ConditionsPart added up. Rates count as stale afterwards where they depend on them; of temperature,
+ * when it has moved by more than LIGHT_KELVIN, while number densities in the coefficients follow at once.
+ * Returns 1 when coefficients have changed. */
+#define LIGHT_KELVIN 0.1 /* cross sections move by less than 1e-3 of themselves */
+int light_follow(Light *light, const Conditions *conditions, int moved);
 
 /* Absorbers while the sun is up: x [solved][padded] mole fractions, times lit [solved][padded] where that is
  * not NULL (mean by daylight over daily mean: in the mesosphere ozone by day is a fraction of that by night).

@@ -10,7 +10,7 @@
 
 #include "column.h"
 
-#define MIXING_SLOTS 9 /* step lengths that can be kept ready at once */
+#define MIXING_SLOTS 10 /* step lengths that can be kept ready at once */
 
 typedef struct Mixing Mixing;
 

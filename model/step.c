@@ -10,7 +10,7 @@
 #include "../input/constants.h"
 #include "mixing.h"
 
-_Static_assert(1 + PACK_DAY_PARTS / 2 <= MIXING_SLOTS, "a slot for each length of a part of the day");
+_Static_assert(2 + PACK_DAY_PARTS / 2 <= MIXING_SLOTS, "a slot for each border of parts of the day");
 
 /* Share of a species' production that its balance may take. Of ozone and atomic oxygen, which photolysis
  * turns over within minutes, transport takes far less anywhere. */
@@ -27,8 +27,8 @@ struct Stepper {
     Conditions *conditions; /* of now */
     double spun;            /* years spent with the clock standing still: the seasons go on */
     int threads, packs;
-    Mixing *mixing; /* slot 0: the step of a run of means; the others: parts of the day with their mirror
-                       images */
+    Mixing *mixing; /* slot 0: the step of a run of means; the others: borders of parts of the day with their
+                       mirror images */
     Light *light;
     Day *day;
     Moments *moments;
@@ -49,6 +49,7 @@ struct Stepper {
     double *made, *lost; /* [solved][padded] by the chemistry at the end of a step, mole fraction s-1 */
     double *daylight;    /* [solved][padded] explicit days: mean of the last day while the sun was up */
     int daylight_known;
+    double since_factors; /* s of the run since the diurnal factors were made */
     StepClock clock;
 };
 
@@ -183,6 +184,14 @@ void stepper_free(Stepper *stepper)
 
 /* ---- coefficients and light ---- */
 
+/* Mean photolysis rates go among the coefficients. */
+static void take_light(Stepper *stepper)
+{
+    size_t padded = (size_t)stepper->model->grid.padded;
+    memcpy(stepper->coefficient + FIELD(padded, stepper->model->mechanism->photolysis_first, 0),
+           stepper->light->mean, (size_t)stepper->light->reactions * padded * sizeof(double));
+}
+
 /* Bring the conditions to decimal year time, and what is made of them. */
 static void move_conditions(Stepper *stepper, double time, double season)
 {
@@ -193,7 +202,8 @@ static void move_conditions(Stepper *stepper, double time, double season)
         thermal_coefficients(stepper);
     if (moved & CONDITIONS_SUN)
         stepper->day->outdated = 1;
-    light_follow(stepper->light, stepper->conditions, moved);
+    if (light_follow(stepper->light, stepper->conditions, moved))
+        take_light(stepper);
 }
 
 static void refresh_coefficients(Stepper *stepper, const Column *column)
@@ -214,7 +224,6 @@ static void refresh_coefficients(Stepper *stepper, const Column *column)
 
 static void refresh_light(Stepper *stepper, Column *column)
 {
-    const Mechanism *mechanism = stepper->model->mechanism;
     const double *x = column->x, *lit = stepper->day->lit; /* 1 as long as no day has been made */
     if (stepper->model->settings.day == DAY_EXPLICIT) {
         x = stepper->daylight_known ? stepper->daylight : column->x;
@@ -224,9 +233,7 @@ static void refresh_light(Stepper *stepper, Column *column)
         return;
     light_refresh(stepper->light, x, lit);
     column->photolysis_refreshes++;
-    memcpy(stepper->coefficient + FIELD(stepper->model->grid.padded, mechanism->photolysis_first, 0),
-           stepper->light->mean,
-           (size_t)stepper->light->reactions * (size_t)stepper->model->grid.padded * sizeof(double));
+    take_light(stepper);
 }
 
 /* ---- chemistry ---- */
@@ -361,30 +368,40 @@ static int carry_part(Stepper *stepper, Column *column, int part, Fault *fault)
     return settle_packs(stepper, column, fault);
 }
 
+/* Transport over the border at which part begins (PACK_DAY_PARTS: the day's end): the half of the part before
+ * and the half of this one, in one. */
+static int carry_border(Stepper *stepper, Column *column, int part, double length, Fault *fault)
+{
+    int slot = 1 + (part < PACK_DAY_PARTS / 2 ? part : PACK_DAY_PARTS - part);
+    int code = mixing_prepare(stepper->mixing, slot, length, fault);
+    if (!code)
+        mixing_step(stepper->mixing, slot, column, NULL);
+    return code;
+}
+
 /* From midnight to midnight in parts, each half its transport, its chemistry, half its transport. Leaves the
  * time integrals in stepper->day. years: what the schedule's clock moves by. */
 static int carry_day(Stepper *stepper, Column *column, double years, Fault *fault)
 {
-    double elapsed = 0.0;
+    double elapsed = 0.0, half = 0.0;
     day_clear(stepper->day);
     for (int part = 0; part < PACK_DAY_PARTS; part++) {
         double length = pack_part_length(stepper->light, part);
-        int slot = 1 + (part < PACK_DAY_PARTS / 2 ? part : PACK_DAY_PARTS - 1 - part);
         moments_see(stepper->moments, part, column->x);
         if (!(length > 0.0))
             continue;
-        int code = mixing_prepare(stepper->mixing, slot, 0.5 * length, fault);
+        mixing_set_ground(stepper->model, column, column->time + elapsed / DAY_SECONDS * years);
+        int code = carry_border(stepper, column, part, half + 0.5 * length, fault);
+        if (!code)
+            code = carry_part(stepper, column, part, fault);
         if (code)
             return code;
-        mixing_set_ground(stepper->model, column,
-                          column->time + (elapsed + 0.5 * length) / DAY_SECONDS * years);
-        mixing_step(stepper->mixing, slot, column, NULL);
-        code = carry_part(stepper, column, part, fault);
-        if (code)
-            return code;
-        mixing_step(stepper->mixing, slot, column, NULL);
+        half = 0.5 * length;
         elapsed += length;
     }
+    int code = carry_border(stepper, column, PACK_DAY_PARTS, half, fault);
+    if (code)
+        return code;
     moments_see(stepper->moments, PACK_DAY_PARTS, column->x);
     mixing_set_ground(stepper->model, column, column->time + years);
     return 0;
@@ -414,12 +431,15 @@ static int repeat_day(Stepper *stepper, Column *column, Fault *fault)
     column->days += days;
     column->unsettled += !cold && !settled;
     column->factor_refreshes++;
+    stepper->since_factors = 0.0;
     return 0;
 }
 
 static int refresh_factors(Stepper *stepper, Column *column, Fault *fault)
 {
-    if (stepper->model->settings.day != DAY_FACTORS || !day_stale(stepper->day, column->x))
+    const Settings *settings = &stepper->model->settings;
+    if (settings->day != DAY_FACTORS || (stepper->since_factors < settings->refresh_years * YEAR_SECONDS &&
+                                         !day_stale(stepper->day, column->x)))
         return 0;
     return repeat_day(stepper, column, fault);
 }
@@ -559,6 +579,7 @@ int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, F
         return code;
     column->time += years;
     column->outer_steps++;
+    stepper->since_factors += step;
     return 0;
 }
 
