@@ -410,6 +410,11 @@ static int check_season(Reading *reading)
                          "\"spinup\"");
         settings->start = START_SPINUP; /* as the help of the key says */
     }
+    if (settings->sun == SUN_SEASON && settings->moments != MOMENTS_NONE)
+        return clash(
+            reading, "output", "moments", "",
+            "output.moments goes with one day's sunrise, which sun.kind = \"season\" moves from day to "
+            "day; take sun.kind = \"latitude\" with a day_of_year, or output.moments = \"none\"");
     double years = settings->spinup_years;
     if (settings->sun == SUN_SEASON && years != floor(years))
         return clash(

@@ -27,8 +27,7 @@ enum BoundKind { BOUND_FIXED, BOUND_DEPOSITION };
 
 typedef struct {
     char species[32];
-    int kind;     /* enum StartMode { START_SETTLED, START_SPINUP };
-enum BoundKind */
+    int kind;     /* enum BoundKind */
     double value; /* BOUND_FIXED: mole fraction mol mol-1; BOUND_DEPOSITION: velocity cm s-1 */
     int line;     /* in the case file, for messages; 0 when built in or from an included file */
 } SurfaceBound;

@@ -145,7 +145,7 @@ static const SettingKey keys[] = {
     CHOICE("output", "moments", moments, MOMENTS_NONE, moments_choices,
            "all: mole fractions at midnight, sunrise, noon and sunset as well, for every gas but those kept "
            "at a "
-           "value at the ground; needs day.mode factors or explicit"),
+           "value at the ground; needs day.mode factors or explicit, and a sun without seasons"),
 };
 
 _Static_assert(sizeof keys / sizeof keys[0] <= SETTINGS_MOST_KEYS, "raise SETTINGS_MOST_KEYS");

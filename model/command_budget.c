@@ -145,12 +145,41 @@ static int check_altitudes(const Request *request, const Model *model, Fault *fa
 
 /* ---- files ---- */
 
-/* Told before the long work begins, not after it. */
-static int check_free(const char *path, int overwrite, Fault *fault)
+/* The folder of a file to be made. */
+static int check_folder(const char *path, Fault *fault)
 {
-    if (path && !overwrite && access(path, F_OK) == 0)
-        return fault_set(fault, FAULT_INPUT, "%s exists already: choose another name, or add --overwrite",
-                         path);
+    char folder[4096];
+    const char *slash = strrchr(path, '/');
+    size_t length = slash ? (size_t)(slash - path) + 1 : 0;
+    if (length >= sizeof folder)
+        return fault_set(fault, FAULT_INPUT, "%.60s...: the name is too long; choose a shorter one", path);
+    snprintf(folder, sizeof folder, "%.*s", (int)length, path);
+    if (access(length ? folder : ".", W_OK | X_OK) == 0)
+        return 0;
+    return fault_set(fault, FAULT_OUTPUT,
+                     "%s: cannot create the file: %s; choose a place that can be written", path,
+                     strerror(errno));
+}
+
+/* Told before the long work begins, not after it. */
+static int check_outputs(const Request *request, Fault *fault)
+{
+    const char *const path[] = {request->csv, request->json, request->archive};
+    static const char *const option[] = {"--csv", "--json", "-o"};
+    for (int i = 0; i < 3; i++) {
+        if (!path[i])
+            continue;
+        for (int j = 0; j < i; j++)
+            if (path[j] && !strcmp(path[i], path[j]))
+                return fault_set(fault, FAULT_INPUT, "%s and %s both name %s; give each a file of its own",
+                                 option[j], option[i], path[i]);
+        int there = access(path[i], F_OK) == 0;
+        if (there && !request->overwrite)
+            return fault_set(fault, FAULT_INPUT, "%s exists already: choose another name, or add --overwrite",
+                             path[i]);
+        if (!there && check_folder(path[i], fault))
+            return fault->code;
+    }
     return 0;
 }
 
@@ -169,24 +198,49 @@ static int write_text(const char *path, int overwrite, const BudgetView *view,
     return 0;
 }
 
-static int write_archive(const Request *request, const Balance *balance, const BudgetView *view,
-                         const double *rate, Fault *fault)
+static int write_record(const Request *request, const Balance *balance, const BudgetView *view,
+                        const Record *record, Fault *fault)
 {
     Archive *archive;
-    const Record record = {.time = view->year,
-                           .time_start = request->year,
-                           .time_end = request->year + 1.0,
-                           .x = view->x,
-                           .ozone_column = column_ozone_du(view->model, view->x),
-                           .rate = rate};
     if (archive_create(&archive, view->model, request->archive, request->overwrite, request->command_line,
                        fault))
         return fault->code;
-    if (archive_append(archive, &record, fault)) {
+    if (archive_append(archive, record, fault)) {
         archive_abandon(archive);
         return fault->code;
     }
     return archive_close(archive, balance->column, fault);
+}
+
+static int write_archive(const Request *request, const Balance *balance, const BudgetView *view,
+                         const double *rate, Fault *fault)
+{
+    const Model *model = view->model;
+    size_t padded = (size_t)model->grid.padded, solved = (size_t)model->mechanism->solved;
+    int course = model->settings.moments != MOMENTS_NONE, code = 0;
+    double *change = calloc(padded, sizeof(double));
+    double *moments = course ? calloc(MOMENTS * solved * padded, sizeof(double)) : NULL;
+    if (!change || (course && !moments))
+        code = fault_memory(fault, "the record");
+    if (!code) {
+        const double *kelvin = stepper_conditions(balance->stepper)->temperature;
+        for (int l = 0; l < model->grid.layers; l++)
+            change[l] = kelvin[l] - model->air.temperature[l];
+        if (course)
+            stepper_moments(balance->stepper, view->x, moments);
+        const Record record = {.time = view->year,
+                               .time_start = request->year,
+                               .time_end = request->year + 1.0,
+                               .x = view->x,
+                               .ozone_column = column_ozone_du(model, view->x),
+                               .moments = moments,
+                               .rate = rate,
+                               .temperature_change = change};
+        code = write_record(request, balance, view, &record, fault);
+    }
+    free(change);
+    free(moments);
+    return code;
 }
 
 static int put_out(const Request *request, const Balance *balance, const BudgetView *view, const double *rate,
@@ -279,10 +333,8 @@ static int run(const Request *request, Fault *fault)
         code = check_altitudes(request, model, fault);
     if (!code)
         code = ox_book_make(&book, model->mechanism, fault);
-    if (!code && (check_free(request->csv, request->overwrite, fault) ||
-                  check_free(request->json, request->overwrite, fault) ||
-                  check_free(request->archive, request->overwrite, fault)))
-        code = fault->code;
+    if (!code)
+        code = check_outputs(request, fault);
     if (!code && request->threads)
         omp_set_num_threads(request->threads);
     if (!code)

@@ -112,13 +112,13 @@ static int place_sun(const Settings *settings, const Request *request, OneSun *o
     sun_make(&sun, settings, 1);
     const char *whose = settings->sun == SUN_GLOBAL ? "global" : "latitude's",
                *word = moment_words[request->moment];
-    double low = sun.nodes ? sun.knot[0] : -1.0, high = sun.nodes ? sun.knot[SUN_KNOTS - 1] : -1.0;
+    double low = sun.rises ? sun.knot[0] : -1.0, high = sun.rises ? sun.knot[SUN_KNOTS - 1] : -1.0;
     *one = (OneSun){.earth_sun = sun.earth_sun};
     if (request->moment == MOMENT_NOON) {
-        one->dark = !sun.nodes;
+        one->dark = !sun.rises;
         one->cosine = high;
     } else if (request->moment == MOMENT_MIDNIGHT) {
-        one->dark = !sun.nodes || sun.time[0] > 0.0;
+        one->dark = !sun.rises || sun.time[0] > 0.0;
         one->cosine = low;
     } else if (low > 0.0 || high < 0.0) {
         return fault_set(

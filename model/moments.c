@@ -42,14 +42,14 @@ int moments_hours(const Settings *settings, double *hours, Fault *fault)
     const double hour = DAY_SECONDS / 24.0, noon = 0.5 * DAY_SECONDS;
     Sun sun;
     sun_make(&sun, settings, 1);
-    double rise = sun.nodes ? sun.time[0] : noon;
+    double rise = sun.rises ? sun.time[0] : noon;
     if (!(rise > 0.0 && rise < noon))
         return fault_at(
             fault, settings->case_path[0] ? settings->case_path : "built-in case", 0,
             "output.moments: at latitude %g on day %g it is %s for 24 h (twilight counts until the sun is "
             "11.5 degrees below the horizon), so there is no dawn and no dusk; choose another day or "
             "latitude, or output.moments = \"none\"",
-            settings->latitude_deg, settings->day_of_year, sun.nodes ? "light" : "dark");
+            settings->latitude_deg, settings->day_of_year, sun.rises ? "light" : "dark");
     hours[MOMENT_MIDNIGHT] = 0.0;
     hours[MOMENT_SUNRISE] = rise / hour;
     hours[MOMENT_NOON] = noon / hour;

@@ -180,7 +180,7 @@ def draw(data, benchmark_year, quantity, path):
     lower.set_xlim(edges[0], edges[-1])
     lower.ticklabel_format(axis="y", useOffset=False)
     upper.set_title(data["title"])
-    figure.supxlabel(f"{data['source']}: one near-global column without polar winter, ozone hole or change of temperature; a planning figure. "
+    figure.supxlabel(f"{data['source']}: one near-global column without polar winter, ozone hole or change of circulation; a planning figure. "
                      "Defer to the competent authority.", fontsize=7, color="0.35")
     figure.savefig(path, dpi=150)
     plt.close(figure)

@@ -104,6 +104,10 @@ for name, gas in data["gases"].items():
     assert math.isclose(gas["burden_cm-2"] / loss / 31557600.0, gas["lifetime_years"], rel_tol=1e-8), name
 assert math.isclose(file["lifetime_N2O"][0], data["gases"]["N2O"]["lifetime_years"], rel_tol=1e-8)
 
+# with more CO2 than in 1980 the stratopause is colder, and the file says by how much
+change = file["temperature_change"][0]
+assert not np.ma.is_masked(change) and -5.0 < change[12] < -0.1, change
+
 # the books close in what is written; shares sum to one; every layer is there
 layers = len(data["altitude_km"])
 net = sum(np.array(v) for v in ox["production"].values()) - sum(np.array(v) for v in ox["loss"].values())
@@ -118,6 +122,12 @@ PY
 check "CSV, JSON and NetCDF agree, books close, shares sum to one" "$python" compare.py
 check "the JSON is the same again, with another number of threads" sh -c \
     "'$SKYMEND' budget quick.cfg --year 1990 --years 2 --json again.json --quiet --threads 2 && cmp b.json again.json"
+
+printf 'title = "courses"; grid = { top_km = 80; spacing_km = 4; }; output = { moments = "all"; };\n' >course.cfg
+run course.cfg --year 1990 --years 0.1 -o course.nc --quiet
+check "with moments the file holds them" "$python" -c 'import netCDF4, numpy
+no = netCDF4.Dataset("course.nc")["NO_course"][0]
+assert no.shape == (4, 20) and not numpy.ma.is_masked(no) and no[2, 8] > 1e-10 > 1e3 * no[0, 8], no'
 
 run quick.cfg --year 1990 --years 1 --quiet
 check "--quiet prints nothing" [ "$status" -eq 0 -a ! -s output -a ! -s errors ]
@@ -151,7 +161,13 @@ for form in --csv --json -o; do
     check "$form: and stays" grep -q kept there
     run quick.cfg --year 1990 --years 0.1 $form nowhere/b --quiet
     refused "$form: a folder that is not there" 4 "nowhere/b"
+    # said before the column is carried: a thousand years would take far longer than this check may
+    check "$form: and is told at once" sh -c "timeout 10 '$SKYMEND' budget quick.cfg --year 1990 --years 1000 \
+        $form nowhere/b --quiet 2>/dev/null; [ \$? -eq 4 ]"
 done
+run quick.cfg --year 1990 --csv one --json one
+refused "one file for two forms" 2 "--csv and --json" "one"
+check "one file for two forms: none is written" [ ! -e one ]
 run quick.cfg --year 1990 --years 0.1 --csv there --overwrite --quiet
 check "--overwrite replaces" [ "$status" -eq 0 -a "$(grep -c kept there)" -eq 0 ]
 if [ -w /dev/full ]; then

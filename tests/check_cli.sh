@@ -382,6 +382,12 @@ rates midnight
 truth "midnight sun" awk -F, 'NR > 1 && $3 <= 0 { exit 1 }' midnight
 run "$SKYMEND" sunlight polar.cfg --moment sunset
 expect "no sunset in the polar day" 2 sunset
+printf 'sun: { kind = "season"; latitude_deg = 85.0; day_of_year = 1.0; };\n' | cat good.cfg - >night.cfg
+run "$SKYMEND" sunlight night.cfg --moment noon
+well "noon of the polar night within a season"
+truth "no light at noon of the polar night" grep -q '^# sun: noon .*without light' output
+run "$SKYMEND" sunlight night.cfg --moment sunrise
+expect "no sunrise in the polar night" 2 "below the horizon"
 run "$SKYMEND" sunlight good.cfg --moment nooon
 expect "moment misspelt" 2 "did you mean noon"
 run "$SKYMEND" sunlight good.cfg --moment noon --cosine 1

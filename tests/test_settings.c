@@ -175,6 +175,7 @@ static void settings_refuses_a_bad_case(void **state)
         {"day = { mode = \"explicit\"; };\noutput = { per_year = 366; };", ":2: ", "at most 365"},
         {"day = { mode = \"mean\"; };\noutput = { moments = \"all\"; };", ":2: ", "day.mode = \"mean\""},
         {"output = { moments = \"al\"; };", ":1: ", "none"},
+        {"sun = { kind = \"season\"; };\noutput = { moments = \"all\"; };", ":2: ", "from day to day"},
         {"\n@include \"none.cfg\"\n", ":2: ", "cannot be opened"},
         {"@include \"/etc/hostname\"\n", ":1: ", "@include"},
         {"@include \"../outside-of-it.cfg\"\n", ":1: ", "@include"},
