@@ -270,9 +270,12 @@ static int allocate(Sensitivity *sensitivity, const Unsplit *unsplit, Fault *fau
     sensitivity->deposition = calloc(solved, sizeof(double));
     sensitivity->held = calloc(solved, sizeof(double));
     sensitivity->eddy = calloc((size_t)unsplit->layers + 1, sizeof(double));
+    sensitivity->temperature = calloc((size_t)unsplit->layers, sizeof(double));
     if (!sensitivity->reaction || !sensitivity->surface || !sensitivity->flux || !sensitivity->deposition ||
-        !sensitivity->held || !sensitivity->eddy)
+        !sensitivity->held || !sensitivity->eddy || !sensitivity->temperature)
         return fault_memory(fault, "sensitivities");
+    memcpy(sensitivity->temperature, unsplit->conditions->temperature,
+           (size_t)unsplit->layers * sizeof(double));
     return 0;
 }
 
@@ -316,6 +319,7 @@ void sensitivity_free(Sensitivity *sensitivity)
     free(sensitivity->deposition);
     free(sensitivity->held);
     free(sensitivity->eddy);
+    free(sensitivity->temperature);
     free(sensitivity);
 }
 
@@ -347,7 +351,7 @@ static double sum_over_layers(const Sensitivity *sensitivity, const Model *model
     double sum = 0.0;
     for (int l = 0; l < model->grid.layers; l++) {
         double bend =
-            uncertain ? fabs(uncertain->g * (1.0 / model->air.temperature[l] - 1.0 / STANDARD_TEMPERATURE))
+            uncertain ? fabs(uncertain->g * (1.0 / sensitivity->temperature[l] - 1.0 / STANDARD_TEMPERATURE))
                       : 0.0;
         sum += row[l] * (uncertain ? log(uncertain->f) + bend : 1.0);
     }

@@ -33,9 +33,10 @@ typedef struct {
     double *surface; /* [solved] d(answer)/d(mole fraction kept by the ground); 0 where it keeps none */
     double *flux;    /* [solved] d(answer)/d(flux into the lowest layer, molecules cm-2 s-1), of species whose
                         ground keeps no value; for the others see sensitivity_per_flux */
-    double *deposition; /* [solved] d(answer)/d(ln deposition velocity) */
-    double *held;       /* [solved] d(answer)/d(ln of the profile held below the tropopause) */
-    double *eddy;       /* [layers + 1] d(answer)/d(ln K) at each edge */
+    double *deposition;  /* [solved] d(answer)/d(ln deposition velocity) */
+    double *held;        /* [solved] d(answer)/d(ln of the profile held below the tropopause) */
+    double *eddy;        /* [layers + 1] d(answer)/d(ln K) at each edge */
+    double *temperature; /* [layers] K, of the settled column */
 } Sensitivity;
 
 /* "column", "O3@40", "lifetime:N2O", "flux:CFC-11". FAULT_INPUT names what there is. */

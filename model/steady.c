@@ -70,8 +70,9 @@ static int judge(const Unsplit *unsplit, const double *x, const Room *room, doub
     for (int i = 0; i < unsplit->unknowns; i++) {
         double before = at(unsplit, x, i), step = room->step[i], air = air_of(unsplit, i);
         double value = fabs(step) / fmax(fmax(fabs(before), fabs(before + step)), STEADY_SCARCE / air);
-        if (!(value <= *change))
-            *change = value;
+        if (isnan(value))
+            return 1;
+        *change = fmax(*change, value);
         falls |= step < 0.0 && (before + step) * air < -STEADY_BELOW;
     }
     return falls || !isfinite(*change);

@@ -64,8 +64,9 @@ static double norm(const Unsplit *unsplit, const double *error, const double *be
             double value = unsplit->kept[i] ? 0.0 : error[i] / (least + stepping->relative * size);
             sum += value * value;
         }
-        if (!(sum <= worst))
-            worst = sum;
+        if (isnan(sum))
+            return sum;
+        worst = fmax(worst, sum);
     }
     return sqrt(worst / unsplit->solved);
 }
