@@ -262,14 +262,18 @@ static int check_range(const Variation *variation, const Model *model, Fault *fa
 {
     const double least = 100.0, most = 400.0;
     int co2 = variation->co2, years = co2 >= 0 ? model->schedule.years[co2] : variation->change.times;
-    int padded = model->grid.padded;
-    for (int y = 0; y < years; y++) {
+    int padded = model->grid.padded, months = variation->month_air.times;
+    /* between months and years temperature lies between theirs */
+    for (int i = 0; i < years * (months ? months : 1); i++) {
+        int y = i % years, month = i / years;
+        const double *base =
+            months ? variation->month_air.value + FIELD(padded, month, 0) : model->air.temperature;
         double doublings =
             co2 >= 0 ? log2(model->schedule.abundance[co2][y] / variation->co2_reference) : 0.0;
         for (int l = 0; l < padded; l++) {
             double change = co2 >= 0 ? variation->doubling[l] * doublings
                                      : variation->change.value[(size_t)y * (size_t)padded + (size_t)l];
-            double kelvin = model->air.temperature[l] + change;
+            double kelvin = base[l] + change;
             if (!(kelvin >= least && kelvin <= most))
                 return fault_at(
                     fault, co2 >= 0 ? model->schedule.path : variation->change.path, 0,
@@ -291,11 +295,11 @@ int variation_read(Variation **read, const Model *model, char **sources, Fault *
     variation->co2 = -1;
     int code = read_temperature(variation, model, sources, fault);
     if (!code)
-        code = check_range(variation, model, fault);
-    if (!code)
         code = read_volcanic(variation, model, sources, fault);
     if (!code)
         code = read_season(variation, model, sources, fault);
+    if (!code)
+        code = check_range(variation, model, fault);
     if (!code)
         code = read_cycle(variation, model, sources, fault);
     if (code) {

@@ -342,6 +342,16 @@ case_with yearly.cfg "$years" "$coarse" 'sun = { kind = "season"; };' 'files = {
 { echo 'month,altitude_km,temperature_K,pressure_Pa'
     for m in $(seq 1 12); do printf '%d,0,280,5e4\n%d,90,200,0.1\n' "$m" "$m"; done; } >air.csv
 refused "air by month that lacks the pressures" yearly.cfg "air.csv:" Pa
+# July alone is cold, and the change alone is within its range: it is their sum that cannot be
+case_with yearly.cfg "$years" "$coarse" 'sun = { kind = "season"; };' 'temperature = { mode = "file"; };' \
+    'files = { air_by_month = "air.csv"; temperature_change = "change.csv"; };'
+{ echo 'month,altitude_km,temperature_K,pressure_Pa'
+    for m in $(seq 1 12); do printf '%d,0,220,1.1e5\n%d,90,220,1e-3\n' "$m" "$m"; done; } >air.csv
+printf 'year,altitude_km,change_K\n1990,0,-60\n1990,90,-60\n1991,0,-60\n1991,90,-60\n' >change.csv
+run "$SKYMEND" check yearly.cfg
+well "check accepts a change on top of the months"
+sed 's/^7,\(.*\),220,/7,\1,140,/' air.csv >colder.csv && mv colder.csv air.csv
+refused "a change that makes one month too cold" yearly.cfg change.csv "80 K in 1990" "between 100 and 400"
 
 # ---- output ----
 
