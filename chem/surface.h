@@ -20,9 +20,11 @@ double surface_acid_percent(double temperature, double water_hpa);
 
 /* Fill coefficient[r][.] for surface reactions.
  *   temperature K, air cm-3, area of sulfate cm2 cm-3, its radius cm  [padded]
- *   density [solved][padded] number densities of solved species (H2O, HCl, ClONO2, HNO3 and first reactants
- * are looked up), cm-3 coefficient [reactions][padded]; other kinds not touched. Where the area is 0 the
- * coefficient is 0. Densities at or below zero count as an absent partner (coefficient finite). */
+ *   density [solved][padded] number densities of solved species, cm-3 (H2O, HCl, ClONO2, HNO3 and the
+ *   reactants are looked up)
+ *   coefficient [reactions][padded]; other kinds not touched
+ * Where the area is 0 the coefficient is 0. Densities at or below zero count as an absent partner
+ * (coefficient finite). */
 void surface_rates(const Mechanism *mechanism, int padded, const double *temperature, const double *air,
                    const double *area, const double *radius, const double *density, double *coefficient);
 

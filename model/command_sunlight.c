@@ -186,6 +186,7 @@ static void print_sunlight(const Model *model, const Column *column, const Light
                model->settings.sun == SUN_GLOBAL ? "global" : "latitude's");
     else
         printf("# sun: %s\n", one->text);
+    printf("# air: the base atmosphere, temperature.mode or months not applied; sunlight as tabulated\n");
     if (request->state_path)
         printf("# state: mean of %g in %s", request->year, request->state_path);
     else

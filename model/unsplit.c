@@ -21,10 +21,24 @@ static int is_lit(const Mechanism *mechanism, int r)
 
 /* ---- making ---- */
 
+static void keep_held(Unsplit *unsplit)
+{
+    const Model *model = unsplit->model;
+    int padded = model->grid.padded;
+    for (int h = 0; h < model->held; h++)
+        for (int l = 0; l < unsplit->layers; l++) {
+            int i = l * unsplit->solved + model->held_species[h];
+            if (model->held_free[FIELD(padded, h, l)] != 0.0)
+                continue;
+            unsplit->kept[i] = 1;
+            unsplit->value[i] = unsplit->conditions->held_fraction[FIELD(padded, h, l)];
+        }
+}
+
 static void mark_kept(Unsplit *unsplit)
 {
     const Model *model = unsplit->model;
-    int padded = model->grid.padded, solved = unsplit->solved;
+    int solved = unsplit->solved;
     for (int s = 0; s < solved; s++) {
         int kind = model->surface_kind[s];
         unsplit->carried[s] = model->mechanism->item[model->mechanism->solved_item[s]].transport != 0;
@@ -35,14 +49,7 @@ static void mark_kept(Unsplit *unsplit)
         unsplit->deposit[s] =
             kind == SURFACE_DEPOSITION && unsplit->carried[s] ? model->surface_value[s] : 0.0;
     }
-    for (int h = 0; h < model->held; h++)
-        for (int l = 0; l < unsplit->layers; l++) {
-            int i = l * solved + model->held_species[h];
-            if (model->held_free[FIELD(padded, h, l)] != 0.0)
-                continue;
-            unsplit->kept[i] = 1;
-            unsplit->value[i] = unsplit->conditions->held_fraction[FIELD(padded, h, l)];
-        }
+    keep_held(unsplit);
 }
 
 static void add_partner(Unsplit *unsplit, int s)
@@ -207,7 +214,7 @@ void unsplit_set_time(Unsplit *unsplit, double time)
     if (moved & CONDITIONS_AIR)
         thermal_coefficients(unsplit);
     if (moved & CONDITIONS_HELD)
-        mark_kept(unsplit);
+        keep_held(unsplit);
     if (moved)
         light_follow(unsplit->light, unsplit->conditions, moved);
     for (int s = 0; s < unsplit->solved; s++)
