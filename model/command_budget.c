@@ -17,7 +17,7 @@ typedef struct {
     const char *case_path, *csv, *json, *archive;
     double year, years;
     int year_given, overwrite, quiet, threads, book, help;
-    int altitudes;
+    int altitudes, standard; /* standard: none were named */
     double km[BUDGET_ALTITUDES];
     char command_line[2000];
 } Request;
@@ -32,7 +32,8 @@ static void print_help(void)
         "the source gases live. Without a case: the built-in baseline.\n\n"
         "      --year Y          the year whose surface values and light count\n"
         "      --years N         carry the column for N years to bring it to balance (default 40)\n"
-        "      --at KM[,KM...]   altitudes of the tables (default 15,20,...,60); may be repeated\n"
+        "      --at KM[,KM...]   altitudes of the tables (default 15,20,...,60, the grid's top at most); may "
+        "be repeated\n"
         "      --reactions       also print which reaction counts for which family, and its weight\n"
         "      --csv FILE        everything by layer, in tidy form: table,name,part,altitude_km,value,unit\n"
         "      --json FILE       the same as JSON\n"
@@ -127,16 +128,25 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
         return fault->code;
     if (!request->year_given)
         return fault_set(fault, FAULT_INPUT, "budget: no year named; add --year Y");
-    int given = request->altitudes;
-    for (int km = 15; !given && km <= 60; km += 5)
+    request->standard = request->altitudes == 0;
+    for (int km = 15; request->standard && km <= 60; km += 5)
         request->km[request->altitudes++] = km;
     return 0;
+}
+
+/* Those within the grid: of the standard ones some may lie above it. */
+static int altitudes_shown(const Request *request, const Model *model)
+{
+    int shown = request->altitudes;
+    while (request->standard && request->km[shown - 1] > 1e-5 * model->grid.edge[model->grid.layers])
+        shown--; /* ends: a grid reaches 20 km at least */
+    return shown;
 }
 
 static int check_altitudes(const Request *request, const Model *model, Fault *fault)
 {
     double top = 1e-5 * model->grid.edge[model->grid.layers];
-    for (int i = 0; i < request->altitudes; i++)
+    for (int i = 0; !request->standard && i < request->altitudes; i++)
         if (request->km[i] > top)
             return fault_set(fault, FAULT_INPUT, "--at: %g km is above the grid's top at %g km; stay below",
                              request->km[i], top);
@@ -302,7 +312,7 @@ static int account(const Request *request, const Model *model, const Balance *ba
                            .year = request->year + 0.5,
                            .years = request->years,
                            .drift = balance->drift,
-                           .altitudes = request->altitudes};
+                           .altitudes = altitudes_shown(request, model)};
         memcpy(view.km, request->km, sizeof view.km);
         budget_step_rates(model, balance->stepper, view.x, rate);
         budget_odd_oxygen(book, &model->grid, rate, field, net);

@@ -136,6 +136,10 @@ check "--at names the altitudes" grep -q '^altitude, km  *21  *33.5  *41  *colum
 check "--reactions prints the table of weights" grep -q 'shared *OH+O3 -1' output
 check "--reactions lists the odd oxygen" grep -qF '2 NO3 + 3 N2O5' output
 
+printf 'grid = { top_km = 40; spacing_km = 4; }; day = { mode = "mean"; };\n' >low.cfg
+run low.cfg --year 1990 --years 0.1
+check "a lower grid has fewer altitudes" grep -q '^altitude, km  *15  *20  *25  *30  *35  *40  *column$' output
+
 # ---- bad requests ----
 
 run quick.cfg
