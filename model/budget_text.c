@@ -81,7 +81,7 @@ static void altitude_head(const BudgetView *view, const char *first, const char 
 
 static void print_terms(const BudgetView *view, FILE *out)
 {
-    const char *title[] = {"production", "loss"};
+    static const char *const title[] = {"production", "loss"};
     altitude_head(view, "altitude, km", "   column", out);
     for (int t = 0; t < BUDGET_TERMS; t++) {
         if (t == 0 || t == BUDGET_LOSS_FIRST)
