@@ -5,7 +5,7 @@
  * Multiplying the coefficients of a run that knows only daily means, the factors make its rates those of the
  * real day.
  *
- * The day itself is carried by step.c, transport included: near the top of the column diffusion works within
+ * The day itself is carried by step_day.c, transport included: near the top of the column diffusion works within
  * hours. Each midnight every species is set to the run's daily mean times the ratio of midnight value to
  * daily mean found on the day before, so that the day stays that of the run. It is repeated until the factors
  * of all reactions that matter change by less than DAY_SETTLED. The first time, when most radicals of the run
