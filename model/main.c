@@ -1,6 +1,8 @@
 /* main: the command line. */
 #include <stdio.h>
+#include <stdlib.h>
 #include <string.h>
+#include <unistd.h>
 
 #include "commands.h"
 
@@ -66,8 +68,25 @@ static int dispatch(int argc, char **argv)
     return FAULT_INPUT;
 }
 
+/* Threads that wait for work by turning in circles take the processor from those that have some: on a busy
+ * machine a run takes several times as long. And the linear algebra library, whose work here is small, would
+ * start threads of its own. Both are told by environment variables that the libraries read as they are
+ * loaded, so the program starts itself once more where the user has not set them. If that fails, it goes on
+ * as it is: only slower. */
+static void start_with_quiet_libraries(char **argv)
+{
+    static const char *const quiet[][2] = {{"GOMP_SPINCOUNT", "1000"}, {"OPENBLAS_NUM_THREADS", "1"}};
+    int missing = 0;
+    for (size_t i = 0; i < sizeof quiet / sizeof quiet[0]; i++)
+        if (!getenv(quiet[i][0]) && !(i == 0 && getenv("OMP_WAIT_POLICY")))
+            missing |= !setenv(quiet[i][0], quiet[i][1], 0);
+    if (missing)
+        execv("/proc/self/exe", argv);
+}
+
 int main(int argc, char **argv)
 {
+    start_with_quiet_libraries(argv);
     int code = dispatch(argc, argv);
     if ((fflush(stdout) || ferror(stdout)) && !code) { /* a table cut short by a full disk is no success */
         fprintf(stderr,
