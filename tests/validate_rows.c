@@ -405,7 +405,7 @@ static int ozone_strong(const Ask *ask, double *value)
 int row_compute(const Evidence *evidence, const char *id, const char *conditions, int *state, double *value,
                 char *note_text, Fault *fault)
 {
-    static const char *const later[] = {"odp-", "eesc-", "uv-raf", "uvi-overhead", "uv-bands"};
+    static const char *const later[] = {"odp-", "eesc-", "uv-raf", "uvi-overhead", "uv-bands", "perturb"};
     const Ask ask = {evidence->run, evidence, evidence->run->model, id, conditions, note_text, fault};
     note_text[0] = '\0';
     *value = NAN;
