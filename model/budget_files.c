@@ -259,10 +259,8 @@ static void json_state(const BudgetView *view, FILE *out)
     json_text(out, view->model->settings.title);
     json_key(out, 1, 0, "year");
     json_number(out, view->year);
-    json_key(out, 1, 0, "years_carried");
-    json_number(out, view->years);
-    json_key(out, 1, 0, "drift_DU_per_year");
-    json_number(out, view->drift);
+    json_key(out, 1, 0, "explicit_days");
+    json_number(out, view->explicit_days);
     json_key(out, 1, 0, "ozone_column_DU");
     json_number(out, column_ozone_du(view->model, view->x));
     json_key(out, 1, 0, "tropopause_km");

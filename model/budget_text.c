@@ -191,10 +191,10 @@ static void print_atoms(const BudgetView *view, FILE *out)
 void budget_print(const BudgetView *view, FILE *out)
 {
     const Settings *settings = &view->model->settings;
-    fprintf(out, "%s\n\nColumn carried for %g years under the conditions of %.2f: ozone %.2f DU",
-            settings->title, view->years, view->year, column_ozone_du(view->model, view->x));
-    if (isfinite(view->drift))
-        fprintf(out, ", %+.3f DU in the last year", view->drift);
+    fprintf(out, "%s\n\nColumn at rest under the conditions of %.2f", settings->title, view->year);
+    if (view->explicit_days > 0.0)
+        fprintf(out, ", then %g explicit days", view->explicit_days);
+    fprintf(out, ": ozone %.2f DU", column_ozone_du(view->model, view->x));
     fprintf(out, ".\nMeans over 24 h. Columns are integrals from the tropopause of the case (%g km) up.\n\n",
             settings->tropopause_km);
     fprintf(out, "Odd oxygen by family, cm-3 s-1; column in cm-2 s-1\n\n");

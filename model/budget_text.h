@@ -12,12 +12,13 @@
 typedef struct {
     const Model *model;
     const OxBook *book;
-    const double *x;           /* [solved][padded] */
-    const double *term, *net;  /* [BUDGET_TERMS][padded], [padded] as from budget_odd_oxygen */
-    const double *chain;       /* [BUDGET_TERMS][padded] */
-    const GasBudget *gas;      /* [solved]; those of budget_is_source are shown */
-    double year, years, drift; /* conditions; years carried and DU moved in the last of them (NAN: unknown) */
-    int altitudes;             /* number of */
+    const double *x;             /* [solved][padded] */
+    const double *term, *net;    /* [BUDGET_TERMS][padded], [padded] as from budget_odd_oxygen */
+    const double *chain;         /* [BUDGET_TERMS][padded] */
+    const GasBudget *gas;        /* [solved]; those of budget_is_source are shown */
+    double year;                 /* whose conditions the column is at rest with */
+    double explicit_days;        /* carried from there; 0: none */
+    int altitudes;               /* number of */
     double km[BUDGET_ALTITUDES]; /* shown in the tables; CSV and JSON hold every layer */
 } BudgetView;
 

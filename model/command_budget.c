@@ -8,14 +8,18 @@
 #include <string.h>
 #include <unistd.h>
 
-#include "balance.h"
+#include "../input/constants.h"
 #include "budget_text.h"
 #include "commands.h"
 #include "progress.h"
+#include "projection.h"
+
+/* Explicit days carried from the settled state: ozone above some 25 km follows in that time. */
+static const double EXPLICIT_DAYS = 30.0;
 
 typedef struct {
     const char *case_path, *csv, *json, *archive;
-    double year, years;
+    double year;
     int year_given, overwrite, quiet, threads, book, help;
     int altitudes, standard; /* standard: none were named */
     double km[BUDGET_ALTITUDES];
@@ -26,12 +30,12 @@ static void print_help(void)
 {
     printf(
         "usage: skymend budget [CASE.cfg] --year Y [options]\n\n"
-        "Brings the column of a case to balance with the surface values of the middle of year Y and prints\n"
-        "what makes and destroys odd oxygen by catalytic family, what the families are made of, and how "
-        "long\n"
-        "the source gases live. Without a case: the built-in baseline.\n\n"
+        "Settles the column of a case under the surface values of the middle of year Y and prints what\n"
+        "makes and destroys odd oxygen by catalytic family, what the families are made of, and how long the\n"
+        "source gases live. Without a case: the built-in baseline. With explicit days the column is settled\n"
+        "with diurnal factors and carried for 30 days. A sun with seasons has no rest: its budget stands in\n"
+        "the file of skymend project.\n\n"
         "      --year Y          the year whose surface values and light count\n"
-        "      --years N         carry the column for N years to bring it to balance (default 40)\n"
         "      --at KM[,KM...]   altitudes of the tables (default 15,20,...,60, the grid's top at most); may "
         "be repeated\n"
         "      --reactions       also print which reaction counts for which family, and its weight\n"
@@ -89,7 +93,6 @@ static int take_option(Request *request, int found, Fault *fault)
     case 'h': request->help = 1; break;
     case 'a': return read_altitudes(request, optarg, fault);
     case 'y': request->year_given = 1; return whole("--year", optarg, 1750, 2500, &request->year, fault);
-    case 'n': return option_number("--years", optarg, 0.1, 1000, &request->years, fault);
     case 't':
         if (!whole("--threads", optarg, 1, 1024, &value, fault))
             request->threads = (int)value;
@@ -100,16 +103,20 @@ static int take_option(Request *request, int found, Fault *fault)
 
 static int read_request(Request *request, int argc, char **argv, Fault *fault)
 {
-    static const struct option options[] = {
-        {"year", required_argument, NULL, 'y'},   {"years", required_argument, NULL, 'n'},
-        {"at", required_argument, NULL, 'a'},     {"reactions", no_argument, NULL, 'r'},
-        {"csv", required_argument, NULL, 'c'},    {"json", required_argument, NULL, 'j'},
-        {"output", required_argument, NULL, 'o'}, {"overwrite", no_argument, NULL, 'w'},
-        {"quiet", no_argument, NULL, 'q'},        {"threads", required_argument, NULL, 't'},
-        {"help", no_argument, NULL, 'h'},         {NULL, 0, NULL, 0}};
-    static const char *const names[] = {"--year",  "--years",   "--at",     "--reactions",
-                                        "--csv",   "--json",    "--output", "--overwrite",
-                                        "--quiet", "--threads", "--help",   NULL};
+    static const struct option options[] = {{"year", required_argument, NULL, 'y'},
+                                            {"at", required_argument, NULL, 'a'},
+                                            {"reactions", no_argument, NULL, 'r'},
+                                            {"csv", required_argument, NULL, 'c'},
+                                            {"json", required_argument, NULL, 'j'},
+                                            {"output", required_argument, NULL, 'o'},
+                                            {"overwrite", no_argument, NULL, 'w'},
+                                            {"quiet", no_argument, NULL, 'q'},
+                                            {"threads", required_argument, NULL, 't'},
+                                            {"help", no_argument, NULL, 'h'},
+                                            {NULL, 0, NULL, 0}};
+    static const char *const names[] = {"--year",    "--at",     "--reactions", "--csv",
+                                        "--json",    "--output", "--overwrite", "--quiet",
+                                        "--threads", "--help",   NULL};
     size_t used = (size_t)snprintf(request->command_line, sizeof request->command_line, "skymend");
     for (int i = 0; i < argc && used < sizeof request->command_line; i++)
         used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s",
@@ -208,8 +215,13 @@ static int write_text(const char *path, int overwrite, const BudgetView *view,
     return 0;
 }
 
-static int write_record(const Request *request, const Balance *balance, const BudgetView *view,
-                        const Record *record, Fault *fault)
+typedef struct {
+    Column *column;
+    Stepper *stepper;
+    const double *x; /* [solved][padded] daily means, borrowed from one of them */
+} State;
+
+static int write_record(const Request *request, const BudgetView *view, const Record *record, Fault *fault)
 {
     Archive *archive;
     if (archive_create(&archive, view->model, request->archive, request->overwrite, request->command_line,
@@ -219,10 +231,10 @@ static int write_record(const Request *request, const Balance *balance, const Bu
         archive_abandon(archive);
         return fault->code;
     }
-    return archive_close(archive, balance->column, fault);
+    return archive_close(archive, NULL, fault); /* no run, no ledger */
 }
 
-static int write_archive(const Request *request, const Balance *balance, const BudgetView *view,
+static int write_archive(const Request *request, const State *state, const BudgetView *view,
                          const double *rate, Fault *fault)
 {
     const Model *model = view->model;
@@ -233,11 +245,11 @@ static int write_archive(const Request *request, const Balance *balance, const B
     if (!change || (course && !moments))
         code = fault_memory(fault, "the record");
     if (!code) {
-        const double *kelvin = stepper_conditions(balance->stepper)->temperature;
+        const double *kelvin = stepper_conditions(state->stepper)->temperature;
         for (int l = 0; l < model->grid.layers; l++)
             change[l] = kelvin[l] - model->air.temperature[l];
         if (course)
-            stepper_moments(balance->stepper, view->x, moments);
+            stepper_moments(state->stepper, view->x, moments);
         const Record record = {.time = view->year,
                                .time_start = request->year,
                                .time_end = request->year + 1.0,
@@ -246,21 +258,21 @@ static int write_archive(const Request *request, const Balance *balance, const B
                                .moments = moments,
                                .rate = rate,
                                .temperature_change = change};
-        code = write_record(request, balance, view, &record, fault);
+        code = write_record(request, view, &record, fault);
     }
     free(change);
     free(moments);
     return code;
 }
 
-static int put_out(const Request *request, const Balance *balance, const BudgetView *view, const double *rate,
+static int put_out(const Request *request, const State *state, const BudgetView *view, const double *rate,
                    Fault *fault)
 {
     if (request->csv && write_text(request->csv, request->overwrite, view, budget_csv, fault))
         return fault->code;
     if (request->json && write_text(request->json, request->overwrite, view, budget_json, fault))
         return fault->code;
-    if (request->archive && write_archive(request, balance, view, rate, fault))
+    if (request->archive && write_archive(request, state, view, rate, fault))
         return fault->code;
     if (request->quiet)
         return 0;
@@ -278,21 +290,43 @@ static void show_progress(void *context, const Progress *progress)
 {
     progress_show(context, progress);
 }
-
-/* The state whose budget is taken: the column in balance with the middle of the year. */
-static int get_state(const Request *request, const Model *model, Balance *balance, Fault *fault)
+static void free_state(State *state)
 {
-    ProgressBar bar;
-    const Watcher watcher = {.progress = show_progress, .context = &bar};
-    progress_open(&bar, request->quiet);
-    int code = balance_make(balance, model, NULL, request->year + 0.5, request->years, request->threads,
-                            &watcher, fault);
-    progress_close(&bar);
+    stepper_free(state->stepper);
+    column_free(state->column);
+    *state = (State){0};
+}
+
+/* The state whose budget is taken: the column at rest under the conditions of the middle of the year. */
+static int get_state(const Request *request, const Model *model, State *state, Fault *fault)
+{
+    if (model->settings.sun == SUN_SEASON)
+        return fault_set(fault, FAULT_INPUT,
+                         "budget: with sun.kind = \"season\" the column is never at rest; take another sun, "
+                         "or the budget of every record in the file of skymend project");
+    int code = column_make(&state->column, model, fault);
+    if (!code)
+        code = stepper_make(&state->stepper, model, request->threads, fault);
+    if (code)
+        return code;
+    state->column->time = request->year + 0.5;
+    code = projection_settle(model, state->stepper, state->column, fault);
+    state->x = state->column->x;
+    if (!code && model->settings.day == DAY_EXPLICIT) {
+        ProgressBar bar;
+        const Watcher watcher = {.progress = show_progress, .context = &bar};
+        progress_open(&bar, request->quiet);
+        column_open_ledger(model, state->column);
+        code = projection_spin_up(model, state->stepper, state->column,
+                                  EXPLICIT_DAYS * DAY_SECONDS / YEAR_SECONDS, 1.0, &watcher, fault);
+        progress_close(&bar);
+        state->x = stepper_mean(state->stepper);
+    }
     return code;
 }
 
 /* Budget of the state, and everything written. */
-static int account(const Request *request, const Model *model, const Balance *balance, const OxBook *book,
+static int account(const Request *request, const Model *model, const State *state, const OxBook *book,
                    Fault *fault)
 {
     size_t padded = (size_t)model->grid.padded, solved = (size_t)model->mechanism->solved;
@@ -304,22 +338,21 @@ static int account(const Request *request, const Model *model, const Balance *ba
         double *net = field + BUDGET_TERMS * padded, *chain = net + padded;
         BudgetView view = {.model = model,
                            .book = book,
-                           .x = balance_means(balance, model),
+                           .x = state->x,
                            .term = field,
                            .net = net,
                            .chain = chain,
                            .gas = gas,
                            .year = request->year + 0.5,
-                           .years = request->years,
-                           .drift = balance->drift,
+                           .explicit_days = model->settings.day == DAY_EXPLICIT ? EXPLICIT_DAYS : 0.0,
                            .altitudes = altitudes_shown(request, model)};
         memcpy(view.km, request->km, sizeof view.km);
-        budget_step_rates(model, balance->stepper, view.x, rate);
+        budget_step_rates(model, state->stepper, view.x, rate);
         budget_odd_oxygen(book, &model->grid, rate, field, net);
         budget_chain_lengths(book, &model->grid, rate, field, chain);
         for (int s = 0; s < (int)solved; s++)
             budget_gas(model, view.x, rate, s, &gas[s]);
-        code = put_out(request, balance, &view, rate, fault);
+        code = put_out(request, state, &view, rate, fault);
     }
     free(rate);
     free(field);
@@ -332,7 +365,7 @@ static int run(const Request *request, Fault *fault)
     Settings *settings = malloc(sizeof *settings);
     Model *model = NULL;
     OxBook *book = NULL;
-    Balance balance = {0};
+    State state = {0};
     if (!settings)
         return fault_memory(fault, "settings");
     int code = load_case(settings, request->case_path, fault);
@@ -348,10 +381,10 @@ static int run(const Request *request, Fault *fault)
     if (!code && request->threads)
         omp_set_num_threads(request->threads);
     if (!code)
-        code = get_state(request, model, &balance, fault);
+        code = get_state(request, model, &state, fault);
     if (!code)
-        code = account(request, model, &balance, book, fault);
-    balance_free(&balance);
+        code = account(request, model, &state, book, fault);
+    free_state(&state);
     ox_book_free(book);
     model_free(model);
     free(settings);
@@ -360,7 +393,7 @@ static int run(const Request *request, Fault *fault)
 
 int command_budget(int argc, char **argv)
 {
-    Request request = {.years = 40.0};
+    Request request = {0};
     Fault fault = {0};
     int code = read_request(&request, argc, argv, &fault);
     if (!code && request.help) {

@@ -253,13 +253,12 @@ static int read_tables(Published *tables, Fault *fault)
     return 0;
 }
 
-/* Bring the baseline to balance, take its budget, judge every row by run and balance. */
+/* Settle the baseline, take its budget, judge every row by run and settled state. */
 static int judge_all(const Published *tables, const Csv *reasons, const Run *run, Fault *fault)
 {
     const Model *model = run->model;
-    const Watcher nobody = {0};
     size_t padded = (size_t)model->grid.padded;
-    Balance balance = {0};
+    Carried rest = {0};
     OxBook *book = NULL;
     double *rate = calloc((size_t)model->mechanism->reactions * padded, sizeof(double));
     double *term = calloc((BUDGET_TERMS + 1) * padded, sizeof(double));
@@ -267,16 +266,17 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
     if (!code)
         code = ox_book_make(&book, model->mechanism, fault);
     if (!code)
-        code = balance_make(&balance, model, run_fields(run, STEADY_YEAR), STEADY_YEAR + 0.5, STEADY_YEARS, 0,
-                            &nobody, fault);
+        code = carried_make(&rest, model, run_fields(run, STEADY_YEAR), STEADY_YEAR + 0.5, fault);
+    if (!code)
+        code = projection_settle(model, rest.stepper, rest.column, fault);
     if (!code) {
-        const Evidence evidence = {run, balance.stepper, balance_means(&balance, model), rate, term};
-        budget_step_rates(model, balance.stepper, evidence.x, rate);
+        const Evidence evidence = {run, rest.stepper, rest.column->x, rate, term};
+        budget_step_rates(model, rest.stepper, evidence.x, rate);
         budget_odd_oxygen(book, &model->grid, rate, term, term + BUDGET_TERMS * padded);
         for (int t = 0; !code && t < TABLES; t++)
             code = judge(&tables[t], reasons, &evidence, fault);
     }
-    balance_free(&balance);
+    carried_free(&rest);
     ox_book_free(book);
     free(rate);
     free(term);

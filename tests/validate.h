@@ -9,8 +9,8 @@
 
 #include <stddef.h>
 
-#include "../model/balance.h"
 #include "../model/budget.h"
+#include "../model/projection.h"
 
 /* ---- validate_run.c: a run kept in memory ---- */
 
@@ -35,19 +35,29 @@ const double *run_fields(const Run *run, int year);
 /* Mean ozone column of calendar years first..last, DU. */
 double run_column(const Run *run, int first, int last);
 
+/* A column with what carries it. */
+typedef struct {
+    Column *column;
+    Stepper *stepper;
+} Carried;
+
+/* At x [solved][padded], or the initial profiles when x is NULL, at decimal year time. The model must outlive
+ * it. Owner: caller, carried_free, which accepts a zeroed one. */
+int carried_make(Carried *carried, const Model *model, const double *x, double time, Fault *fault);
+void carried_free(Carried *carried);
+
 /* ---- validate_rows.c: the published values ---- */
 
 typedef struct {
     const Run *run; /* the baseline, all years */
-    /* the same column in balance with the surface values of STEADY_YEAR: */
-    const Stepper *stepper; /* that carried it */
+    /* the same column at rest under the surface values of STEADY_YEAR: */
+    const Stepper *stepper; /* with its light, coefficients and factors */
     const double *x;        /* [solved][padded] mole fractions, daily means */
     const double *rate;     /* [reactions][padded] rates of reaction, cm-3 s-1 */
     const double *term;     /* [BUDGET_TERMS][padded] its budget of odd oxygen, cm-3 s-1 */
 } Evidence;
 
 #define STEADY_YEAR 2000 /* the conditions of the published lifetimes (SPARC Report 6, 2013) */
-#define STEADY_YEARS 40  /* carried; the slowest exchange of the stratosphere takes 5 to 10 years */
 
 enum RowState { ROW_COMPUTED, ROW_LATER };
 #define ROW_NOTE 160

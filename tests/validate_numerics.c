@@ -8,7 +8,6 @@
 #include <string.h>
 
 #include "../input/constants.h"
-#include "../model/projection.h"
 
 /* ---- limits of the defaults ---- */
 
@@ -62,22 +61,25 @@ static int measure_day(const Run *baseline, int year, DayError *error, Fault *fa
 {
     Settings settings = baseline->model->settings;
     Model *model = NULL;
-    Balance factors = {0}, days = {0};
+    Carried factors = {0}, days = {0};
     const Watcher nobody = {0};
     fprintf(stderr, "explicit days of %d\n", year);
-    int code = balance_make(&factors, baseline->model, run_fields(baseline, year), year + 0.5, 1.0, 0,
-                            &nobody, fault);
+    int code = carried_make(&factors, baseline->model, run_fields(baseline, year), year + 0.5, fault);
+    if (!code)
+        code = projection_spin_up(baseline->model, factors.stepper, factors.column, 1.0, 1.0, &nobody, fault);
     settings.day = DAY_EXPLICIT;
     if (!code)
         code = model_make(&model, &settings, fault);
     if (!code)
-        code = balance_make(&days, model, factors.column->x, year + 0.5, 1.0, 0, &nobody, fault);
+        code = carried_make(&days, model, factors.column->x, year + 0.5, fault);
+    if (!code)
+        code = projection_spin_up(model, days.stepper, days.column, 1.0, 1.0, &nobody, fault);
     if (!code)
         code = projection_spin_up(baseline->model, factors.stepper, factors.column, 1.0, 1.0, &nobody, fault);
     if (!code)
         compare_days(model, stepper_mean(factors.stepper), stepper_mean(days.stepper), error);
-    balance_free(&factors);
-    balance_free(&days);
+    carried_free(&factors);
+    carried_free(&days);
     model_free(model);
     return code;
 }

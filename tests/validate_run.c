@@ -7,8 +7,6 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "../model/projection.h"
-
 typedef struct {
     Run *run;
     const char *what;
@@ -96,4 +94,29 @@ double run_column(const Run *run, int first, int last)
     for (int year = first; year <= last; year++)
         sum += run->column[year - run->first_year];
     return sum / (last - first + 1);
+}
+
+int carried_make(Carried *carried, const Model *model, const double *x, double time, Fault *fault)
+{
+    *carried = (Carried){0};
+    int code = column_make(&carried->column, model, fault);
+    if (!code)
+        code = stepper_make(&carried->stepper, model, 0, fault);
+    if (code) {
+        carried_free(carried);
+        return code;
+    }
+    if (x)
+        memcpy(carried->column->x, x,
+               (size_t)model->mechanism->solved * (size_t)model->grid.padded * sizeof(double));
+    carried->column->time = time;
+    column_open_ledger(model, carried->column);
+    return 0;
+}
+
+void carried_free(Carried *carried)
+{
+    stepper_free(carried->stepper);
+    column_free(carried->column);
+    *carried = (Carried){0};
 }
