@@ -155,6 +155,11 @@ static int print_tables(const Published *tables)
     return unexplained;
 }
 
+static const char *numeric_word(const NumericRow *row)
+{
+    return !(row->value <= row->limit) ? "out" : isfinite(row->limit) ? "in" : "-";
+}
+
 /* Returns the number of errors above their limits without a reason. */
 static int print_numerics(const NumericRow *rows, int count, const Csv *reasons)
 {
@@ -163,12 +168,11 @@ static int print_numerics(const NumericRow *rows, int count, const Csv *reasons)
            "unit", "", "what");
     for (int i = 0; i < count; i++) {
         const NumericRow *row = &rows[i];
-        int good = row->value <= row->limit;
         char limit[32] = "-";
         if (isfinite(row->limit))
             snprintf(limit, sizeof limit, "%g", row->limit);
         printf("%-22s %10.4g %8s %-4s %-5s  %s%s%s\n", row->id, row->value, limit, row->unit,
-               good ? "in" : "out", row->what, row->note[0] ? ": " : "", row->note);
+               numeric_word(row), row->what, row->note[0] ? ": " : "", row->note);
     }
     for (int i = 0; i < count; i++) {
         const char *reason = find_reason(reasons, rows[i].id);
@@ -224,7 +228,7 @@ static int write_csv(const char *path, const Published *tables, const NumericRow
         fprintf(out, "numerics-%s,%.10g,,", row->id, row->value);
         if (isfinite(row->limit))
             fprintf(out, "%g", row->limit);
-        fprintf(out, ",%s,%s,", row->unit, row->value <= row->limit ? "in" : "out");
+        fprintf(out, ",%s,%s,", row->unit, numeric_word(row));
         quoted(out, row->note);
         fputc(',', out);
         const char *reason = row->value <= row->limit ? NULL : find_reason(reasons, row->id);
@@ -259,6 +263,7 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
     const Model *model = run->model;
     size_t padded = (size_t)model->grid.padded;
     Carried rest = {0};
+    Perturbed perturbed = {0};
     OxBook *book = NULL;
     double *rate = calloc((size_t)model->mechanism->reactions * padded, sizeof(double));
     double *term = calloc((BUDGET_TERMS + 1) * padded, sizeof(double));
@@ -269,8 +274,10 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
         code = carried_make(&rest, model, run_fields(run, STEADY_YEAR), STEADY_YEAR + 0.5, fault);
     if (!code)
         code = projection_settle(model, rest.stepper, rest.column, fault);
+    if (!code)
+        code = perturb_all(&perturbed, &model->settings, fault);
     if (!code) {
-        const Evidence evidence = {run, rest.stepper, rest.column->x, rate, term};
+        const Evidence evidence = {run, rest.stepper, rest.column->x, rate, term, &perturbed};
         budget_step_rates(model, rest.stepper, evidence.x, rate);
         budget_odd_oxygen(book, &model->grid, rate, term, term + BUDGET_TERMS * padded);
         for (int t = 0; !code && t < TABLES; t++)

@@ -46,6 +46,47 @@ typedef struct {
 int carried_make(Carried *carried, const Model *model, const double *x, double time, Fault *fault);
 void carried_free(Carried *carried);
 
+/* ---- validate_settled.c: columns at rest with something changed ---- */
+
+/* Factors. chlorine: of all gases with chlorine and without bromine that the ground keeps; n2o and ch4 at the
+ * ground; aerosol: of the surface; eddy: of the eddy diffusion coefficient. */
+typedef struct {
+    double chlorine, n2o, ch4, aerosol, eddy;
+} Change;
+#define CHANGE_NOTHING                                                                                       \
+    {                                                                                                        \
+        1.0, 1.0, 1.0, 1.0, 1.0                                                                              \
+    }
+
+typedef struct {
+    Model *model;                /* owned, changed */
+    double *x;                   /* [solved][padded] daily means, owned */
+    double column;               /* ozone, DU */
+    double ozone_40, cly_50;     /* mole fractions at 40 and 50 km */
+    double life_n2o, life_cfc11; /* years, all loss */
+} Settled;
+
+/* The column of settings at rest under the changed surface values of the middle of a year; explicit days as
+ * diurnal factors. start [solved][padded] or NULL: where Newton's method begins. Owner: caller, settled_free.
+ */
+int settled_make(Settled *settled, const Settings *from, const Change *change, int year, const double *start,
+                 Fault *fault);
+void settled_free(Settled *settled);
+
+/* ---- validate_perturb.c: known perturbations ---- */
+
+#define PERTURBED_STATES 13
+typedef struct {
+    double column, ozone_40, cly_50; /* as in Settled */
+    double chlorine;                 /* as in Change */
+} PerturbedState;
+typedef struct {
+    PerturbedState state[PERTURBED_STATES];
+} Perturbed;
+
+/* Settle them all, temperature fixed. */
+int perturb_all(Perturbed *perturbed, const Settings *from, Fault *fault);
+
 /* ---- validate_rows.c: the published values ---- */
 
 typedef struct {
@@ -55,6 +96,7 @@ typedef struct {
     const double *x;        /* [solved][padded] mole fractions, daily means */
     const double *rate;     /* [reactions][padded] rates of reaction, cm-3 s-1 */
     const double *term;     /* [BUDGET_TERMS][padded] its budget of odd oxygen, cm-3 s-1 */
+    const Perturbed *perturbed;
 } Evidence;
 
 #define STEADY_YEAR 2000 /* the conditions of the published lifetimes (SPARC Report 6, 2013) */
@@ -67,6 +109,9 @@ enum RowState { ROW_COMPUTED, ROW_LATER };
 int row_compute(const Evidence *evidence, const char *id, const char *conditions, int *state, double *value,
                 char *note, Fault *fault);
 
+/* validate_perturb.c: the model's value of a row of a perturbation; -1 for any other id. */
+int row_perturbed(const Evidence *evidence, const char *id, double *value, char *note);
+
 /* ---- validate_moments.c: ratios near noon ---- */
 
 /* The model's value of a row "noon-A/B-KM"; -1 for any other id. note as in row_compute. */
@@ -76,7 +121,7 @@ int row_moments(const Evidence *evidence, const char *id, double *value, char *n
 
 typedef struct {
     const char *id, *what, *unit;
-    double value, limit; /* fails when above limit; limit is what the program promises */
+    double value, limit; /* fails when above limit, what the program promises; infinite: reported alone */
     char note[ROW_NOTE];
 } NumericRow;
 
@@ -85,7 +130,10 @@ typedef struct {
 int splitting_error(const Settings *from, int first_year, int years, double *column_du, double *layer,
                     double *altitude_km, Fault *fault);
 
-#define NUMERIC_MOST 24
+/* validate_settled.c: what grid and mixing do to the settled column; rows are added. */
+int settled_rows(const Settings *settings, NumericRow *rows, int *count, Fault *fault);
+
+#define NUMERIC_MOST 48
 /* Measure them all; returns a fault's code. rows [NUMERIC_MOST], count out. */
 int numerics_measure(const Run *baseline, NumericRow *rows, int *count, Fault *fault);
 

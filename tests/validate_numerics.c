@@ -245,7 +245,8 @@ int numerics_measure(const Run *baseline, NumericRow *rows, int *count, Fault *f
     if (day_rows(baseline, rows, count, fault) || splitting_row(baseline, rows, count, fault) ||
         splitting_alone_row(baseline, rows, count, fault) || unsplit_rows(baseline, rows, count, fault) ||
         tolerance_row(baseline, rows, count, fault) || refresh_row(baseline, 1, rows, count, fault) ||
-        refresh_row(baseline, 0, rows, count, fault))
+        refresh_row(baseline, 0, rows, count, fault) ||
+        settled_rows(&baseline->model->settings, rows, count, fault))
         return fault->code;
     return 0;
 }
