@@ -493,6 +493,21 @@ static void nitric_oxide_rates(Photolysis *p, int r, const double *nitric_oxide,
         }
 }
 
+static int is_nitric_oxide(const Photolysis *p, int r)
+{
+    return p->mechanism->reaction[p->mechanism->photolysis_first + r].special == SPECIAL_NO;
+}
+
+/* Padding lanes of a reaction repeat the top layer. */
+static void pad(const Photolysis *p, int r, double *rate)
+{
+    for (int s = 0; s < p->suns; s++) {
+        double *row = rate + (size_t)(s * p->reactions + r) * (size_t)p->padded;
+        for (int k = p->layers; k < p->padded; k++)
+            row[k] = row[p->layers - 1];
+    }
+}
+
 static void all_rates(Photolysis *p, const double *nitric_oxide, double earth_sun, double *rate)
 {
     size_t stride = (size_t)p->stride, set = (size_t)p->reactions * (size_t)p->padded;
@@ -510,12 +525,20 @@ static void all_rates(Photolysis *p, const double *nitric_oxide, double earth_su
         int special = p->mechanism->reaction[p->mechanism->photolysis_first + r].special;
         if (special == SPECIAL_O2 || special == SPECIAL_O2_O1D)
             oxygen_rates(p, r, rate);
-        if (special == SPECIAL_NO)
+        if (is_nitric_oxide(p, r))
             nitric_oxide_rates(p, r, nitric_oxide, earth_sun, rate);
+        pad(p, r, rate);
     }
-    for (size_t row = 0; row < (size_t)p->suns * (size_t)p->reactions; row++)
-        for (int k = p->layers; k < p->padded; k++)
-            rate[row * (size_t)p->padded + (size_t)k] = rate[row * (size_t)p->padded + (size_t)p->layers - 1];
+}
+
+void photolysis_nitric_oxide(Photolysis *photolysis, const double *nitric_oxide, double earth_sun,
+                             double *rate)
+{
+    for (int r = 0; r < photolysis->reactions; r++)
+        if (is_nitric_oxide(photolysis, r)) {
+            nitric_oxide_rates(photolysis, r, nitric_oxide, earth_sun, rate);
+            pad(photolysis, r, rate);
+        }
 }
 
 void photolysis_rates(Photolysis *photolysis, const double *ozone, const double *nitrogen_dioxide,

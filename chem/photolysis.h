@@ -29,6 +29,11 @@ void photolysis_set_sunlight(Photolysis *photolysis, const double *factor);
 void photolysis_rates(Photolysis *photolysis, const double *ozone, const double *nitrogen_dioxide,
                       const double *nitric_oxide, double earth_sun, double *rate);
 
+/* NO shields nothing but itself: the rates of NO alone, for another nitric_oxide under the ozone and NO2 of
+ * the last call of photolysis_rates. Other rows of rate stay. */
+void photolysis_nitric_oxide(Photolysis *photolysis, const double *nitric_oxide, double earth_sun,
+                             double *rate);
+
 /* Actinic flux of the last call, photons cm-2 s-1 per bin: pointer to [suns][layers][stride] with stride =
  * photolysis_stride() >= bins. */
 const double *photolysis_actinic(const Photolysis *photolysis);

@@ -183,16 +183,14 @@ double light_mean_rate(const Light *light, int reaction, int layer)
            fixed_density(light, reaction, layer);
 }
 
-static void fold_fixed_reactants(Light *light)
+static void fold_fixed_reactants(Light *light, int r)
 {
     int padded = light->model->grid.padded;
-    for (int r = 0; r < light->reactions; r++) {
-        if (!fixed_order(light, r))
-            continue;
-        for (int l = 0; l < padded; l++)
-            for (int n = 0; n < light->sun.nodes; n++)
-                light->table[FIELD(padded, n * light->reactions + r, l)] *= fixed_density(light, r, l);
-    }
+    if (!fixed_order(light, r))
+        return;
+    for (int l = 0; l < padded; l++)
+        for (int n = 0; n < light->sun.nodes; n++)
+            light->table[FIELD(padded, n * light->reactions + r, l)] *= fixed_density(light, r, l);
 }
 
 /* Let the photolysis have the air of now. */
@@ -218,31 +216,58 @@ static void fill_table(Light *light, const double *x, const double *lit, double 
     number_density(light, x, lit, "NO", light->density + 2 * padded);
     photolysis_rates(light->photolysis, light->density, light->density + padded, light->density + 2 * padded,
                      earth_sun, light->table);
-    fold_fixed_reactants(light);
+    for (int r = 0; r < light->reactions; r++)
+        fold_fixed_reactants(light, r);
     overhead_column(light->model, x, lit, light->overhead);
+}
+
+/* With a season the table outlasts the day and is that of 1 au. */
+static double table_sun(const Light *light)
+{
+    return light->model->settings.sun == SUN_SEASON ? 1.0 : light->sun.earth_sun;
+}
+
+/* From the nodes onto knots and mean, of reactions first to end - 1. */
+static void spread(Light *light, int first, int end)
+{
+    const Sun *sun = &light->sun;
+    int season = light->model->settings.sun == SUN_SEASON, padded = light->model->grid.padded,
+        stride = light->reactions * padded;
+#pragma omp parallel for schedule(static)
+    for (int i = first * padded; i < end * padded; i++) {
+        light->mean[i] = sun_spread(sun, light->table + i, stride, light->knot + i, stride);
+        for (int k = 0; season && k < SUN_KNOTS; k++)
+            light->knot[(size_t)k * (size_t)stride + (size_t)i] *= sun->earth_sun;
+        if (season)
+            light->mean[i] *= sun->earth_sun;
+    }
 }
 
 void light_refresh(Light *light, const double *x, const double *lit)
 {
     const Sun *sun = &light->sun;
-    int season = light->model->settings.sun == SUN_SEASON,
-        stride = light->reactions * light->model->grid.padded;
-    /* with a season the table outlasts the day and is that of 1 au */
     int only_turned = light->ready && light->turned && !overhead_moved(light, x, lit);
     if (!only_turned && sun->nodes)
-        fill_table(light, x, lit, season ? 1.0 : sun->earth_sun);
+        fill_table(light, x, lit, table_sun(light));
     else if (!only_turned)
         overhead_column(light->model, x, lit, light->overhead);
-    if (sun->nodes) {
-#pragma omp parallel for schedule(static)
-        for (int i = 0; i < stride; i++) {
-            light->mean[i] = sun_spread(sun, light->table + i, stride, light->knot + i, stride);
-            for (int k = 0; season && k < SUN_KNOTS; k++)
-                light->knot[(size_t)k * (size_t)stride + (size_t)i] *= sun->earth_sun;
-            if (season)
-                light->mean[i] *= sun->earth_sun;
-        }
-    }
+    if (sun->nodes)
+        spread(light, 0, light->reactions);
     light->ready = 1;
     light->turned = 0;
+}
+
+void light_nitric_oxide(Light *light, const double *x, const double *lit)
+{
+    const Mechanism *mechanism = light->model->mechanism;
+    double *nitric_oxide = light->density + 2 * light->model->grid.padded;
+    if (!light->sun.nodes)
+        return;
+    number_density(light, x, lit, "NO", nitric_oxide);
+    photolysis_nitric_oxide(light->photolysis, nitric_oxide, table_sun(light), light->table);
+    for (int r = 0; r < light->reactions; r++)
+        if (mechanism->reaction[mechanism->photolysis_first + r].special == SPECIAL_NO) {
+            fold_fixed_reactants(light, r);
+            spread(light, r, r + 1);
+        }
 }

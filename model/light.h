@@ -44,6 +44,9 @@ int light_follow(Light *light, const Conditions *conditions, int moved);
  * absorption. light_refresh: compute the rates. */
 int light_stale(const Light *light, const double *x, const double *lit);
 void light_refresh(Light *light, const double *x, const double *lit);
+/* After light_refresh, at another NO but the same ozone and NO2: the rates of NO, which shields nothing else.
+ */
+void light_nitric_oxide(Light *light, const double *x, const double *lit);
 /* Photolysis rate itself, s-1, mean over 24 h. */
 double light_mean_rate(const Light *light, int reaction, int layer);
 

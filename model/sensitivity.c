@@ -195,8 +195,9 @@ int sensitivity_prepare(Unsplit *unsplit, const double *x, Fault *fault)
     if (!tendency)
         return fault_memory(fault, "sensitivities");
     unsplit_evaluate(unsplit, x, tendency, 1);
-    unsplit_slopes(unsplit, x);
     free(tendency);
+    if (unsplit_slopes(unsplit, x, fault))
+        return fault->code;
     return unsplit_factorise(unsplit, x, 0.0, 1, fault);
 }
 

@@ -99,8 +99,7 @@ static int allocate(Unsplit *unsplit, Fault *fault)
                 {&unsplit->value, solved * layers},
                 {&unsplit->shifted, reactions * padded},
                 {&unsplit->bend, solved * reactions * padded},
-                {&unsplit->slope, UNSPLIT_ABSORBERS * layers * lit * padded + 1},
-                {&unsplit->ahead, solved * padded + lit * padded}};
+                {&unsplit->slope, UNSPLIT_ABSORBERS * layers * lit * padded + 1}};
     unsplit->carried = calloc(solved, 1);
     unsplit->kept = calloc(solved * layers, 1);
     unsplit->partner = calloc(solved, sizeof(int));
@@ -182,7 +181,7 @@ void unsplit_free(Unsplit *unsplit)
                        unsplit->k,           unsplit->product, unsplit->rate,  unsplit->density,
                        unsplit->jacobian,    unsplit->block_f, unsplit->block, unsplit->mass,
                        unsplit->conductance, unsplit->deposit, unsplit->value, unsplit->shifted,
-                       unsplit->bend,        unsplit->slope,   unsplit->ahead};
+                       unsplit->bend,        unsplit->slope};
     for (size_t i = 0; i < sizeof array / sizeof array[0]; i++)
         free(array[i]);
     free(unsplit->carried);

@@ -63,7 +63,6 @@ typedef struct {
     int absorbers; /* 0 until unsplit_slopes; at most UNSPLIT_ABSORBERS times layers */
     int *absorber; /* [absorbers] unknown */
     double *slope; /* [absorbers][photolysis][padded] d(k)/d(mole fraction), factors included, s-1 */
-    double *ahead; /* work of unsplit_slopes: a state and a light */
     UnsplitMatrix *matrix;
     long evaluations, factorisations, lights;
 } Unsplit;
@@ -85,10 +84,11 @@ void unsplit_keep(const Unsplit *unsplit, double *x);
 /* Light, coefficients and rates at x [solved][padded]; tendency [unknowns] out, kept equations value - x (per
  * second). with_jacobian: the blocks as well. */
 void unsplit_evaluate(Unsplit *unsplit, const double *x, double *tendency, int with_jacobian);
-/* The slopes of photolysis against its absorbers at x, where unsplit_evaluate was last: absorbers + 1 times
- * the light. The blocks belong to factors and light as they are: evaluate, slopes, factorise, in this order.
- */
-void unsplit_slopes(Unsplit *unsplit, const double *x);
+/* The slopes of photolysis against its absorbers at x, where unsplit_evaluate was last: one light for each O3
+ * and NO2 that counts, shared out among OpenMP's threads, each of which needs a light of its own
+ * (FAULT_MEMORY); the same bits for any number of them. The blocks belong to factors and light as they are:
+ * evaluate, slopes, factorise, in this order. */
+int unsplit_slopes(Unsplit *unsplit, const double *x, Fault *fault);
 /* Largest gross rate through each unknown at the last evaluation, s-1 times mole fraction: sum of the
  * absolute terms of its equation; [unknowns] out. What a residual is measured against. */
 void unsplit_turnover(const Unsplit *unsplit, const double *x, double *turnover);

@@ -4,6 +4,8 @@
 #define _XOPEN_SOURCE 700
 #include "settled.h"
 
+#include <omp.h>
+
 #include "../model/mixing.h"
 
 /* A settled column, whose radicals are in balance; the stepper has made its light and factors. */
@@ -129,6 +131,7 @@ static void test_chemistry_is_that_of_the_packs(void **state)
 static void test_jacobian(void **state)
 {
     (void)state;
+    Fault fault = {0};
     static const struct {
         const char *name;
         int layer;
@@ -141,7 +144,7 @@ static void test_jacobian(void **state)
     double *x = rest.run.column->x, *up = unknowns(unsplit), *down = unknowns(unsplit),
            *unit = unknowns(unsplit), *got = unknowns(unsplit);
     unsplit_evaluate(unsplit, x, up, 1);
-    unsplit_slopes(unsplit, x);
+    ok(unsplit_slopes(unsplit, x, &fault), &fault);
     unsplit_evaluate(unsplit, x, up, 1);
     double worst_of_all = 0.0;
     for (size_t c = 0; c < sizeof column / sizeof column[0]; c++) {
@@ -177,9 +180,46 @@ static void test_jacobian(void **state)
 
 /* z' (A u) = u' (A' z), the solves undo the products, with and without light and both ways; and the gradient
  * of the rates, which the transposed product does not use, gives its chemistry. */
+/* The slopes of the light are the same bits for any number of threads, and leave the light as it was. */
+static void test_slopes_threads(void **state)
+{
+    (void)state;
+    Rest rest = balanced(DAY_FACTORS);
+    Unsplit *unsplit = rest.unsplit;
+    const double *x = rest.run.column->x;
+    size_t lit = (size_t)unsplit->light->reactions * (size_t)rest.run.model->grid.padded;
+    double *tendency = unknowns(unsplit), *mean = malloc(lit * sizeof(double)), *slope = NULL;
+    int most = omp_get_max_threads(), absorbers = 0;
+    Fault fault = {0};
+    assert_non_null(mean);
+    unsplit_evaluate(unsplit, x, tendency, 1);
+    memcpy(mean, unsplit->light->mean, lit * sizeof(double));
+    for (int threads = 1; threads <= 3; threads++) {
+        omp_set_num_threads(threads);
+        ok(unsplit_slopes(unsplit, x, &fault), &fault);
+        assert_memory_equal(unsplit->light->mean, mean, lit * sizeof(double));
+        size_t bytes = (size_t)unsplit->absorbers * lit * sizeof(double);
+        if (threads == 1) {
+            absorbers = unsplit->absorbers;
+            slope = malloc(bytes);
+            assert_non_null(slope);
+            memcpy(slope, unsplit->slope, bytes);
+        }
+        assert_int_equal(unsplit->absorbers, absorbers);
+        assert_memory_equal(unsplit->slope, slope, bytes);
+        memset(unsplit->slope, 0, bytes);
+    }
+    omp_set_num_threads(most);
+    free(slope);
+    free(mean);
+    free(tendency);
+    end_rest(&rest);
+}
+
 static void test_linear_algebra(void **state)
 {
     (void)state;
+    Fault fault = {0};
     Rest rest = balanced(DAY_MEAN);
     Unsplit *unsplit = rest.unsplit;
     const Model *model = rest.run.model;
@@ -188,7 +228,7 @@ static void test_linear_algebra(void **state)
     int n = unsplit->unknowns, padded = model->grid.padded;
     double *u = unknowns(unsplit), *z = unknowns(unsplit), *au = unknowns(unsplit), *az = unknowns(unsplit);
     unsplit_evaluate(unsplit, x, au, 1);
-    unsplit_slopes(unsplit, x);
+    ok(unsplit_slopes(unsplit, x, &fault), &fault);
     assert_true(unsplit->absorbers > unsplit->layers &&
                 unsplit->absorbers <= UNSPLIT_ABSORBERS * unsplit->layers);
     for (int i = 0; i < n; i++) { /* of the size of the unknowns; rows in inverse proportion */
@@ -359,6 +399,7 @@ int main(void)
     const struct CMUnitTest tests[] = {cmocka_unit_test(test_transport_is_that_of_mixing),
                                        cmocka_unit_test(test_chemistry_is_that_of_the_packs),
                                        cmocka_unit_test(test_jacobian),
+                                       cmocka_unit_test(test_slopes_threads),
                                        cmocka_unit_test(test_linear_algebra),
                                        cmocka_unit_test(test_order),
                                        cmocka_unit_test(test_split_comes_near)};
