@@ -98,8 +98,9 @@ validate:
 # speed, side by side with CVODE on the same layers at equal accuracy
 bench:
 	@scripts/install-packages.sh test
-	@$(MAKE) --no-print-directory program $(BUILD)/tests/bench $(BUILD)/tests/bench_chemistry
+	@$(MAKE) --no-print-directory program $(BUILD)/tests/bench $(BUILD)/tests/bench_settled $(BUILD)/tests/bench_chemistry
 	$(BUILD)/tests/bench --csv $(BUILD)/bench.csv
+	$(BUILD)/tests/bench_settled
 	$(BUILD)/tests/bench_chemistry
 
 install: program
