@@ -99,9 +99,9 @@ static int time_settling(const Settings *from, int day, int with_derivatives, Se
 }
 
 typedef struct {
-    double seconds, column;   /* s, DU of the last year */
-    long days, lights, steps; /* explicit days, photolysis refreshes, solver steps */
-    StepClock part;           /* wall */
+    double seconds, column;            /* s, DU of the last year */
+    long days, factors, lights, steps; /* explicit days, refreshes of factors and photolysis, solver steps */
+    StepClock part;                    /* wall */
 } Carrying;
 
 static int time_years(const Settings *from, int day, Carrying *least, Fault *fault)
@@ -129,6 +129,7 @@ static int time_years(const Settings *from, int day, Carrying *least, Fault *fau
                 (Carrying){.seconds = seconds,
                            .column = column_ozone_du(all.model, all.column->x),
                            .days = all.column->days,
+                           .factors = all.column->factor_refreshes,
                            .lights = all.column->photolysis_refreshes,
                            .steps = all.column->counts.steps,
                            .part = {after.transport - before.transport, after.chemistry - before.chemistry,
@@ -141,9 +142,10 @@ static int time_years(const Settings *from, int day, Carrying *least, Fault *fau
 static void print_years(const char *name, const Carrying *years)
 {
     printf("%d to %d %-14s %7.2f s; chemistry %.2f, factors %.2f, sunlight %.2f, transport %.2f s on the "
-           "wall;\n    %ld solver steps, %ld explicit days, %ld photolysis refreshes; %.2f DU at the end\n",
+           "wall;\n    %ld solver steps, %ld explicit days for %ld refreshes of factors, %ld of photolysis; "
+           "%.2f DU at the end\n",
            FIRST, LAST, name, years->seconds, years->part.chemistry, years->part.factors, years->part.light,
-           years->part.transport, years->steps, years->days, years->lights, years->column);
+           years->part.transport, years->steps, years->days, years->factors, years->lights, years->column);
 }
 
 int main(int argc, char **argv)
