@@ -158,11 +158,13 @@ static double ozone_moved(const Unsplit *unsplit, const double *x, double *befor
     return most;
 }
 
-static int take_turns(Unsplit *unsplit, Stepper *stepper, Column *column, SteadyReport *steady, Fault *fault)
+/* Until ozone moves by no more than enough. first: s, the first step. */
+static int take_turns(Unsplit *unsplit, Stepper *stepper, Column *column, double first, double enough,
+                      SteadyReport *steady, Fault *fault)
 {
     double before[SETTINGS_MAX_EDGES];
     ozone_moved(unsplit, column->x, before);
-    for (double first = FIRST;; first = AGAIN) {
+    for (;; first = AGAIN) {
         int code = stepper_refresh(stepper, column, 1, fault);
         if (code)
             return code;
@@ -172,7 +174,7 @@ static int take_turns(Unsplit *unsplit, Stepper *stepper, Column *column, Steady
             return code;
         steady->turns++;
         steady->ozone_change = ozone_moved(unsplit, column->x, before);
-        if (steady->turns > 1 && steady->ozone_change <= STEADY_OZONE)
+        if (steady->turns > 1 && steady->ozone_change <= enough)
             return settle_from(unsplit, column->x, NEWTON, STEADY_CHANGE, steady, fault);
         if (steady->turns == STEADY_TURNS)
             return fault_set(
@@ -200,8 +202,21 @@ int steady_find(Unsplit *unsplit, Stepper *stepper, Column *column, double time,
         unsplit_take_factors(unsplit, NULL);
         code = settle_from(unsplit, column->x, FIRST, STEADY_CHANGE, steady, fault);
     } else {
-        code = take_turns(unsplit, stepper, column, steady, fault);
+        code = take_turns(unsplit, stepper, column, FIRST, STEADY_OZONE, steady, fault);
     }
+    if (!code)
+        code = stepper_refresh(stepper, column, 0, fault);
+    steady->seconds = omp_get_wtime() - since;
+    return code;
+}
+
+int steady_tighten(Unsplit *unsplit, Stepper *stepper, Column *column, double ozone, SteadyReport *steady,
+                   Fault *fault)
+{
+    *steady = (SteadyReport){0};
+    double since = omp_get_wtime();
+    int code = unsplit->has_factors ? take_turns(unsplit, stepper, column, AGAIN, ozone, steady, fault)
+                                    : settle_from(unsplit, column->x, AGAIN, STEADY_CHANGE, steady, fault);
     if (!code)
         code = stepper_refresh(stepper, column, 0, fault);
     steady->seconds = omp_get_wtime() - since;

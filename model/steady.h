@@ -46,5 +46,10 @@ int steady_settle(Unsplit *unsplit, double *x, SteadyReport *steady, Fault *faul
  */
 int steady_find(Unsplit *unsplit, Stepper *stepper, Column *column, double time, SteadyReport *steady,
                 Fault *fault);
+/* On from a state of steady_find, or one near it (a value or flux of unsplit's changed a little), until ozone
+ * moves by no more than ozone from one turn to the next. Neither the column's time nor unsplit's values are
+ * touched. */
+int steady_tighten(Unsplit *unsplit, Stepper *stepper, Column *column, double ozone, SteadyReport *steady,
+                   Fault *fault);
 
 #endif
