@@ -2,6 +2,7 @@
 #include <math.h>
 
 #include "budget_text.h"
+#include "json.h"
 
 static const double *row_of(const BudgetView *view, const double *field, int row)
 {
@@ -115,36 +116,6 @@ void budget_csv(const BudgetView *view, FILE *out)
 }
 
 /* ---- JSON ---- */
-
-static void json_text(FILE *out, const char *text)
-{
-    fputc('"', out);
-    for (; *text; text++) {
-        if (*text == '"' || *text == '\\')
-            fprintf(out, "\\%c", *text);
-        else if ((unsigned char)*text < 0x20)
-            fprintf(out, "\\u%04x", *text);
-        else
-            fputc(*text, out);
-    }
-    fputc('"', out);
-}
-
-static void json_number(FILE *out, double value)
-{
-    if (isfinite(value))
-        fprintf(out, "%.9g", value);
-    else
-        fprintf(out, "null");
-}
-
-/* "key": with a comma before it unless it is the first of its object, on a line of its own. */
-static void json_key(FILE *out, int depth, int first, const char *key)
-{
-    fprintf(out, "%s\n%*s", first ? "" : ",", 2 * depth, "");
-    json_text(out, key);
-    fprintf(out, ": ");
-}
 
 static void json_profile(const BudgetView *view, FILE *out, const double *profile, double scale)
 {

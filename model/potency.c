@@ -11,7 +11,7 @@
 /* Chord iterations of one settling, and the change of a density at which it ends: while factors are still to
  * change, and in the end. */
 static const int CHORDS = 40;
-static const double CHANGE_BETWEEN = 1e-6, CHANGE_LAST = 1e-9;
+static const double CHANGE_BETWEEN = 1e-4, CHANGE_LAST = 1e-8;
 
 typedef struct {
     Unsplit *unsplit;

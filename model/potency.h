@@ -39,7 +39,8 @@
 #define POTENCY_CHANGE 0.25 /* DU */
 #define POTENCY_TURN 5e-4   /* of the shift of the column: its move in the last turn */
 #define POTENCY_TURNS 12
-#define POTENCY_MOST 1e-8 /* shift of the mole fraction at the ground, unless half of what is there is more  \
+#define POTENCY_MOST                                                                                         \
+    1e-8                  /* shift of the mole fraction at the ground, unless half of what is there is more  \
                            */
 #define POTENCY_BASE 1e-5 /* of ozone: the settled column itself, in place of STEADY_OZONE */
 
