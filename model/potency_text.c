@@ -118,9 +118,8 @@ void potency_print(const PotencyView *view, FILE *out)
         fprintf(out,
                 "  noise: what the last turns of the factors still moved; frozen: the same by the adjoint, "
                 "whose\n  factors do not answer to the gas\n");
-    fprintf(out,
-            "  One column for the globe: no polar chemistry, and bromine counts for more than where it is "
-            "emitted\n  or dark. A gas that lives less than half a year is not mixed well enough for it.\n");
+    fprintf(out, "  One column for the globe: no polar chemistry, no loss to ocean and soil, and a gas that "
+                 "lives less than\n  half a year is not mixed well enough for it.\n");
 }
 
 /* ---- CSV ---- */
