@@ -265,6 +265,7 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
     Carried rest = {0};
     Perturbed perturbed = {0};
     OxBook *book = NULL;
+    Potencies *potencies = NULL;
     double *rate = calloc((size_t)model->mechanism->reactions * padded, sizeof(double));
     double *term = calloc((BUDGET_TERMS + 1) * padded, sizeof(double));
     int code = rate && term ? 0 : fault_memory(fault, "rates of reaction");
@@ -276,8 +277,10 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
         code = projection_settle(model, rest.stepper, rest.column, fault);
     if (!code)
         code = perturb_all(&perturbed, &model->settings, fault);
+    if (!code)
+        code = potencies_measure(model, &potencies, fault);
     if (!code) {
-        const Evidence evidence = {run, rest.stepper, rest.column->x, rate, term, &perturbed};
+        const Evidence evidence = {run, rest.stepper, rest.column->x, rate, term, &perturbed, potencies};
         budget_step_rates(model, rest.stepper, evidence.x, rate);
         budget_odd_oxygen(book, &model->grid, rate, term, term + BUDGET_TERMS * padded);
         for (int t = 0; !code && t < TABLES; t++)
@@ -285,6 +288,7 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
     }
     carried_free(&rest);
     ox_book_free(book);
+    potency_free(potencies);
     free(rate);
     free(term);
     return code;

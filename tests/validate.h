@@ -10,6 +10,7 @@
 #include <stddef.h>
 
 #include "../model/budget.h"
+#include "../model/potency.h"
 #include "../model/projection.h"
 
 /* ---- validate_run.c: a run kept in memory ---- */
@@ -97,6 +98,8 @@ typedef struct {
     const double *rate;     /* [reactions][padded] rates of reaction, cm-3 s-1 */
     const double *term;     /* [BUDGET_TERMS][padded] its budget of odd oxygen, cm-3 s-1 */
     const Perturbed *perturbed;
+    /* and of the column at rest under the same values: */
+    const Potencies *potencies; /* factors made anew */
 } Evidence;
 
 #define STEADY_YEAR 2000 /* the conditions of the published lifetimes (SPARC Report 6, 2013) */
@@ -116,6 +119,13 @@ int row_perturbed(const Evidence *evidence, const char *id, double *value, char 
 
 /* The model's value of a row "noon-A/B-KM"; -1 for any other id. note as in row_compute. */
 int row_moments(const Evidence *evidence, const char *id, double *value, char *note, Fault *fault);
+
+/* ---- validate_potency.c: depletion potentials ---- */
+
+/* Settle the column at STEADY_YEAR and look beside it. Owner: caller. */
+int potencies_measure(const Model *model, Potencies **made, Fault *fault);
+/* The model's value of a row "odp-GAS"; -1 for any other id. note as in row_compute. */
+int row_potency(const Evidence *evidence, const char *id, double *value, char *note, Fault *fault);
 
 /* ---- validate_numerics.c: the size of the numerical errors ---- */
 

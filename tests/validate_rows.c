@@ -405,7 +405,7 @@ static int ozone_strong(const Ask *ask, double *value)
 int row_compute(const Evidence *evidence, const char *id, const char *conditions, int *state, double *value,
                 char *note_text, Fault *fault)
 {
-    static const char *const later[] = {"odp-", "eesc-", "uv-raf", "uvi-overhead", "uv-bands"};
+    static const char *const later[] = {"eesc-", "uv-raf", "uvi-overhead", "uv-bands"};
     const Ask ask = {evidence->run, evidence, evidence->run->model, id, conditions, note_text, fault};
     note_text[0] = '\0';
     *value = NAN;
@@ -434,7 +434,8 @@ int row_compute(const Evidence *evidence, const char *id, const char *conditions
         code = oxygen_threshold(&ask, value);
     else if (!strcmp(id, "O3-strong"))
         code = ozone_strong(&ask, value);
-    else if ((code = row_moments(evidence, id, value, note_text, fault)) == -1 &&
+    else if ((code = row_potency(evidence, id, value, note_text, fault)) == -1 &&
+             (code = row_moments(evidence, id, value, note_text, fault)) == -1 &&
              (code = row_perturbed(evidence, id, value, note_text)) == -1 &&
              (code = composition(&ask, value)) == -1)
         code = ozone(&ask, value);
