@@ -148,8 +148,8 @@ static void show_progress(void *context, const Progress *progress)
     progress_show(context, progress);
 }
 
-/* Settle the column, look beside it, tell. Until the column is settled Ctrl-C ends the program at once; from
- * then on it is asked for between turns. */
+/* Settle the column, look beside it, tell. A stop is looked for when the column is settled and then between
+ * turns: some seconds at most. */
 static int work(const Request *request, const Model *model, int year, Unsplit *unsplit, Stepper *stepper,
                 Column *column, Fault *fault)
 {
@@ -161,7 +161,6 @@ static int work(const Request *request, const Model *model, int year, Unsplit *u
     int code = steady_find(unsplit, stepper, column, year + 0.5, &steady, fault);
     if (code)
         return code;
-    catch_signals();
     progress_open(&bar, request->quiet);
     code = potency_make(&potencies, unsplit, stepper, column, &ask, &watcher, fault);
     progress_close(&bar);
@@ -217,6 +216,7 @@ int command_potency(int argc, char **argv)
         print_help();
         return 0;
     }
+    catch_signals();
     if (!code)
         code = run(&request, &fault);
     return code ? report_fault(&fault) : 0;

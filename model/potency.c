@@ -241,12 +241,16 @@ static int prepare(Work *work, Fault *fault)
     const Answer column = {.kind = ANSWER_COLUMN};
     SteadyReport steady;
     double *x = work->column->x;
-    int code = steady_tighten(unsplit, work->stepper, work->column, POTENCY_BASE, &steady, fault);
+    int code = stopped(work, fault);
+    if (!code)
+        code = steady_tighten(unsplit, work->stepper, work->column, POTENCY_BASE, &steady, fault);
     double before = column_ozone_du(model, x);
     if (!code)
         code = steady_tighten(unsplit, work->stepper, work->column, POTENCY_BASE, &steady, fault);
     work->ozone = column_ozone_du(model, x);
     work->unsettled = unsplit->has_factors ? fabs(work->ozone - before) : 0.0;
+    if (!code)
+        code = stopped(work, fault);
     if (!code)
         code = sensitivity_prepare(unsplit, x, fault);
     if (!code)
