@@ -104,7 +104,7 @@ read = lambda p: {r["gas"]: r for r in csv.DictReader(l for l in open(p) if not 
 a, b = read("adjoint.csv"), read("p.csv")
 assert all(a[g]["odp"] == "" and a[g]["odp_frozen"] == b[g]["odp_frozen"] for g in b) and len(a) == len(b)'
 
-# ---- a gas that a user adds: a twin of CFC-12 under another name, of which there is little ----
+# ---- a gas that a user adds: a twin of CFC-115 under another name, of which there is little ----
 
 "$python" - <<'PY'
 import os
@@ -112,12 +112,12 @@ import re
 
 data = os.environ["SKYMEND_DATA"]
 text = open(os.path.join(data, "mechanism.cfg"), encoding="utf-8").read()
-text, species = re.subn(r'(\{ name = "CFC-12"; formula = "CCl2F2"; \})', r'\1, { name = "TWIN-12"; formula = "CCl2F2"; }', text)
+text, species = re.subn(r'(\{ name = "CFC-115"; formula = "C2ClF5"; \})', r'\1, { name = "TWIN-115"; formula = "C2ClF5"; }', text)
 entry = re.compile(r"^    \{ id = .*?\},?$(?=\n(?:    \{|\);| *//|\n))", re.M | re.S)
-blocks = [e for e in entry.findall(text) if "CFC-12" in re.search(r'eq = "([^"]*)"', e).group(1).replace('"', " ").split()]
+blocks = [e for e in entry.findall(text) if "CFC-115" in re.search(r'eq = "([^"]*)"', e).group(1).replace('"', " ").split()]
 for block in blocks:
     equation = re.search(r'eq = "([^"]*)"', block).group(1)
-    twin = block.replace(equation, re.sub(r"\bCFC-12\b", "TWIN-12", equation)).replace('id = "', 'id = "twin-')
+    twin = block.replace(equation, re.sub(r"\bCFC-115\b", "TWIN-115", equation)).replace('id = "', 'id = "twin-')
     text = text.replace(block, twin.rstrip(",") + ",\n" + block)
 assert species == 1 and len(blocks) >= 3, (species, len(blocks))
 open("twin-mechanism.cfg", "w", encoding="utf-8").write(text)
@@ -128,7 +128,7 @@ years = { first = 2000; last = 2000; };
 grid = { top_km = 60; spacing_km = 4; };
 files = { mechanism = "twin-mechanism.cfg"; };
 surface = { bounds = (
-    { species = "TWIN-12"; kind = "fixed"; mole_fraction = 1e-15; },
+    { species = "TWIN-115"; kind = "fixed"; mole_fraction = 1e-15; },
 END
 "$SKYMEND" check coarse.cfg >resolved 2>errors
 "$python" - <<'PY'
@@ -142,14 +142,14 @@ PY
 "$SKYMEND" potency twin.cfg --quiet --csv twin.csv >output 2>errors
 status=$?
 truth "a case with a gas of the user's own" [ "$status" -eq 0 ]
-# two gases with the same formula, reactions and light have the same potential, whatever there is of each: to the
-# curvature of the column's answer and the noise of the factors, both told to be below 0.2 % here
-truth "its potential is that of its twin, CFC-12" "$python" -c '
+# two gases with the same formula, reactions and light have the same potential, to the noise of the factors (told to be
+# below 0.2 %), where there is so little of either that it does not shorten its own life: with CFC-12 the two are 1 % apart
+truth "its potential is that of its twin, CFC-115" "$python" -c '
 import csv
 rows = {r["gas"]: r for r in csv.DictReader(l for l in open("twin.csv") if not l.startswith("#"))}
-a, b = rows["TWIN-12"], rows["CFC-12"]
+a, b = rows["TWIN-115"], rows["CFC-115"]
 assert abs(float(a["odp"]) / float(b["odp"]) - 1) < 4e-3
-assert abs(float(a["odp_frozen"]) / float(b["odp_frozen"]) - 1) < 1e-4
+assert abs(float(a["odp_frozen"]) / float(b["odp_frozen"]) - 1) < 1e-3
 assert abs(float(a["lifetime_years"]) / float(b["lifetime_years"]) - 1) < 1e-6'
 
 # ---- an interrupt ----

@@ -74,6 +74,26 @@ status=$?
 truth "writes a file" eval '[ $status -eq 0 ] && ncdump -v ozone_column settled.nc | grep -q "ozone_column = [23]"'
 refused "keeps a file that is there" "exists already" coarse.cfg -o settled.nc
 
+"$SKYMEND" settle coarse.cfg --year 2000 --sensitivity --csv --json settled.json >settled.csv 2>errors
+status=$?
+truth "writes JSON beside the CSV" eval '[ $status -eq 0 ] && "${PYTHON:-/usr/bin/python3}" -m json.tool settled.json >/dev/null'
+truth "JSON and CSV say the same" "${PYTHON:-/usr/bin/python3}" -c '
+import csv, json, math
+data = json.load(open("settled.json"))
+rows = list(csv.reader(line for line in open("settled.csv") if not line.startswith("#")))
+values = {(r[0], r[1]): r[2] for r in rows}
+assert data["year"] == 2000 and data["sensitivity"]["of"] == "column"
+assert math.isclose(float(values["answer", "column"]), data["ozone_column_DU"], rel_tol=1e-8)
+for name, gas in data["gases"].items():
+    assert math.isclose(float(values["answer", "lifetime:" + name]), gas["lifetime_years"], rel_tol=1e-5), name
+entries = data["sensitivity"]["reactions"] + data["sensitivity"]["borders_and_mixing"]
+assert len(entries) == sum(r[0].startswith("d ") for r in rows) > 250
+for e in entries:
+    assert math.isclose(float(values["d column / d ln " + e["kind"], e["name"]]), e["per_ln"], rel_tol=1e-6), e
+effects = [abs(e.get("effect", 0)) for e in data["sensitivity"]["reactions"]]
+assert effects == sorted(effects, reverse=True)'
+refused "keeps a JSON file that is there" "exists already" coarse.cfg --json settled.json
+
 for threads in 1 2; do
     "$SKYMEND" settle coarse.cfg --year 2000 --csv --sensitivity --threads $threads >threads$threads.csv 2>errors
 done
