@@ -1,12 +1,10 @@
 /* skymend budget: what makes and destroys ozone in one year of a case, and how long the gases live. */
-#include <errno.h>
 #include <getopt.h>
 #include <math.h>
 #include <omp.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
-#include <unistd.h>
 
 #include "../input/constants.h"
 #include "budget_text.h"
@@ -162,57 +160,14 @@ static int check_altitudes(const Request *request, const Model *model, Fault *fa
 
 /* ---- files ---- */
 
-/* The folder of a file to be made. */
-static int check_folder(const char *path, Fault *fault)
-{
-    char folder[4096];
-    const char *slash = strrchr(path, '/');
-    size_t length = slash ? (size_t)(slash - path) + 1 : 0;
-    if (length >= sizeof folder)
-        return fault_set(fault, FAULT_INPUT, "%.60s...: the name is too long; choose a shorter one", path);
-    snprintf(folder, sizeof folder, "%.*s", (int)length, path);
-    if (access(length ? folder : ".", W_OK | X_OK) == 0)
-        return 0;
-    return fault_set(fault, FAULT_OUTPUT,
-                     "%s: cannot create the file: %s; choose a place that can be written", path,
-                     strerror(errno));
-}
-
-/* Told before the long work begins, not after it. */
-static int check_outputs(const Request *request, Fault *fault)
-{
-    const char *const path[] = {request->csv, request->json, request->archive};
-    static const char *const option[] = {"--csv", "--json", "-o"};
-    for (int i = 0; i < 3; i++) {
-        if (!path[i])
-            continue;
-        for (int j = 0; j < i; j++)
-            if (path[j] && !strcmp(path[i], path[j]))
-                return fault_set(fault, FAULT_INPUT, "%s and %s both name %s; give each a file of its own",
-                                 option[j], option[i], path[i]);
-        int there = access(path[i], F_OK) == 0;
-        if (there && !request->overwrite)
-            return fault_set(fault, FAULT_INPUT, "%s exists already: choose another name, or add --overwrite",
-                             path[i]);
-        if (!there && check_folder(path[i], fault))
-            return fault->code;
-    }
-    return 0;
-}
-
 static int write_text(const char *path, int overwrite, const BudgetView *view,
                       void (*write)(const BudgetView *, FILE *), Fault *fault)
 {
-    FILE *out = fopen(path, overwrite ? "w" : "wx");
+    FILE *out = open_text(path, overwrite, fault);
     if (!out)
-        return fault_set(fault, FAULT_OUTPUT,
-                         "%s: cannot create the file: %s; choose a place that can be written", path,
-                         strerror(errno));
+        return fault->code;
     write(view, out);
-    int bad = ferror(out);
-    if (fclose(out) || bad)
-        return fault_set(fault, FAULT_OUTPUT, "%s: could not be written to its end; free some space", path);
-    return 0;
+    return close_text(out, path, fault);
 }
 
 typedef struct {
@@ -377,7 +332,9 @@ static int run(const Request *request, Fault *fault)
     if (!code)
         code = ox_book_make(&book, model->mechanism, fault);
     if (!code)
-        code = check_outputs(request, fault);
+        code = check_outputs(
+            (const Output[]){{"--csv", request->csv}, {"--json", request->json}, {"-o", request->archive}}, 3,
+            request->overwrite, fault);
     if (!code && request->threads)
         omp_set_num_threads(request->threads);
     if (!code)

@@ -1,12 +1,10 @@
 /* skymend potency: the ozone depletion potentials of the gases of a case. */
-#include <errno.h>
 #include <getopt.h>
 #include <omp.h>
 #include <signal.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
-#include <unistd.h>
 
 #include "commands.h"
 #include "potency_text.h"
@@ -108,28 +106,14 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
     return request->help ? 0 : one_operand("potency", argc, argv, optind, &request->case_path, fault);
 }
 
-/* Told before the long work begins, not after it. */
-static int check_free(const char *path, int overwrite, Fault *fault)
-{
-    if (path && !overwrite && access(path, F_OK) == 0)
-        return fault_set(fault, FAULT_INPUT, "%s exists already: choose another name, or add --overwrite",
-                         path);
-    return 0;
-}
-
 static int write_text(const char *path, int overwrite, const PotencyView *view,
                       void (*write)(const PotencyView *, FILE *), Fault *fault)
 {
-    FILE *out = fopen(path, overwrite ? "w" : "wx");
+    FILE *out = open_text(path, overwrite, fault);
     if (!out)
-        return fault_set(fault, FAULT_OUTPUT,
-                         "%s: cannot create the file: %s; choose a place that can be written", path,
-                         strerror(errno));
+        return fault->code;
     write(view, out);
-    int bad = ferror(out);
-    if (fclose(out) || bad)
-        return fault_set(fault, FAULT_OUTPUT, "%s: could not be written to its end; free some space", path);
-    return 0;
+    return close_text(out, path, fault);
 }
 
 static int put_out(const Request *request, const PotencyView *view, Fault *fault)
@@ -184,9 +168,9 @@ static int run(const Request *request, Fault *fault)
     int code = load_case(settings, request->case_path, fault);
     int year = !code && !request->year_given ? settings->first_year : request->year;
     settings->first_year = settings->last_year = year; /* the schedule must cover it */
-    if (!code && (check_free(request->csv, request->overwrite, fault) ||
-                  check_free(request->json, request->overwrite, fault)))
-        code = fault->code;
+    if (!code)
+        code = check_outputs((const Output[]){{"--csv", request->csv}, {"--json", request->json}}, 2,
+                             request->overwrite, fault);
     if (!code)
         code = model_make(&model, settings, fault);
     if (!code)

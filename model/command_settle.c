@@ -1,11 +1,9 @@
 /* skymend settle: the column at rest under one year's surface values, and what every parameter does to it. */
-#include <errno.h>
 #include <getopt.h>
 #include <omp.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
-#include <unistd.h>
 
 #include "../input/constants.h"
 #include "archive.h"
@@ -72,7 +70,6 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
     for (int i = 0; i < argc && used < sizeof request->command_line; i++)
         used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s",
                                  argv[i]);
-    request->rows = 20;
     opterr = 0;
     optind = 1;
     while (!code && (found = getopt_long(argc, argv, ":o:h", options, NULL)) != -1) {
@@ -100,27 +97,16 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
         return code;
     if (request->of && !request->sensitivity)
         return fault_set(fault, FAULT_INPUT, "--of: says what --sensitivity is of; add --sensitivity");
+    if (request->rows && !request->sensitivity)
+        return fault_set(fault, FAULT_INPUT, "--rows: is the length of the rankings; add --sensitivity");
+    if (request->overwrite && !request->json && !request->output)
+        return fault_set(fault, FAULT_INPUT, "--overwrite: no file is to be written; add --json or -o");
+    if (!request->rows)
+        request->rows = 20;
     return one_operand("settle", argc, argv, optind, &request->case_path, fault);
 }
 
 /* ---- what is told ---- */
-
-static FILE *open_json(const char *path, int overwrite, Fault *fault)
-{
-    FILE *out = fopen(path, overwrite ? "w" : "wx");
-    if (!out)
-        fault_set(fault, FAULT_OUTPUT, "%s: cannot create the file: %s; choose a place that can be written",
-                  path, strerror(errno));
-    return out;
-}
-
-static int close_json(FILE *out, const char *path, Fault *fault)
-{
-    int bad = ferror(out);
-    if (fclose(out) || bad)
-        return fault_set(fault, FAULT_OUTPUT, "%s: could not be written to its end; free some space", path);
-    return 0;
-}
 
 /* json: where not NULL, into the object begun there. */
 static int run_sensitivity(Unsplit *unsplit, const double *x, const Answer *answer, const Request *request,
@@ -146,32 +132,43 @@ static int run_sensitivity(Unsplit *unsplit, const double *x, const Answer *answ
     return code;
 }
 
-static int write_record(Archive *archive, const Stepper *stepper, const Column *column, const Model *model,
-                        int year, Fault *fault)
+/* The state as the one record of a file. */
+static int write_record(const Request *request, const Stepper *stepper, const Column *column,
+                        const Model *model, int year, Fault *fault)
 {
     size_t padded = (size_t)model->grid.padded, course = MOMENTS * (size_t)model->mechanism->solved * padded;
+    int with_course = model->settings.moments != MOMENTS_NONE;
     double *rate = calloc((size_t)model->mechanism->reactions * padded, sizeof(double));
-    double *moments = calloc(course, sizeof(double));
-    int code = rate && moments ? 0 : fault_memory(fault, "the settled column's record");
+    double *moments = calloc(course, sizeof(double)), *change = calloc(padded, sizeof(double));
+    Archive *archive = NULL;
+    int code = rate && moments && change ? 0 : fault_memory(fault, "the settled column's record");
+    if (!code)
+        code = archive_create(&archive, model, request->output, request->overwrite, request->command_line,
+                              fault);
     if (!code) {
+        const double *kelvin = stepper_conditions(stepper)->temperature;
+        for (int l = 0; l < model->grid.layers; l++)
+            change[l] = kelvin[l] - model->air.temperature[l];
         budget_step_rates(model, stepper, column->x, rate);
-        if (model->settings.moments != MOMENTS_NONE)
+        if (with_course)
             stepper_moments(stepper, column->x, moments);
         Record record = {.time = year + 0.5,
                          .time_start = year,
                          .time_end = year + 1.0,
                          .x = column->x,
                          .ozone_column = column_ozone_du(model, column->x),
-                         .moments = model->settings.moments == MOMENTS_NONE ? NULL : moments,
-                         .rate = rate};
+                         .moments = with_course ? moments : NULL,
+                         .rate = rate,
+                         .temperature_change = change};
         code = archive_append(archive, &record, fault);
+        if (code)
+            archive_abandon(archive);
+        else
+            code = archive_close(archive, NULL, fault); /* no run, no ledger */
     }
-    if (code)
-        archive_abandon(archive);
-    else
-        code = archive_close(archive, NULL, fault); /* no run, no ledger */
     free(rate);
     free(moments);
+    free(change);
     return code;
 }
 
@@ -179,7 +176,7 @@ static int write_record(Archive *archive, const Stepper *stepper, const Column *
 static int tell(const Request *request, Unsplit *unsplit, const Column *column, const SteadyReport *steady,
                 int year, const Answer *answer, Fault *fault)
 {
-    FILE *json = request->json ? open_json(request->json, request->overwrite, fault) : NULL;
+    FILE *json = request->json ? open_text(request->json, request->overwrite, fault) : NULL;
     if (request->json && !json)
         return fault->code;
     if (json)
@@ -192,7 +189,7 @@ static int tell(const Request *request, Unsplit *unsplit, const Column *column, 
         run_sensitivity(unsplit, column->x, answer, request, json, fault);
     if (json) {
         fprintf(json, "\n}\n");
-        close_json(json, request->json, fault);
+        close_text(json, request->json, fault);
     }
     return fault->code;
 }
@@ -204,7 +201,6 @@ static int run(const Request *request, Fault *fault)
     Column *column = NULL;
     Stepper *stepper = NULL;
     Unsplit *unsplit = NULL;
-    Archive *archive = NULL;
     SteadyReport steady = {0};
     Answer answer = {0};
     if (!settings)
@@ -224,18 +220,13 @@ static int run(const Request *request, Fault *fault)
         code = stepper_make(&stepper, model, request->threads, fault);
     if (!code)
         code = unsplit_make(&unsplit, model, fault);
-    if (!code && request->json && !request->overwrite && access(request->json, F_OK) == 0)
-        code = fault_set(fault, FAULT_INPUT, "%s exists already: choose another name, or add --overwrite",
-                         request->json);
-    if (!code && request->output)
-        code = archive_create(&archive, model, request->output, request->overwrite, request->command_line,
-                              fault);
+    if (!code)
+        code = check_outputs((const Output[]){{"--json", request->json}, {"-o", request->output}}, 2,
+                             request->overwrite, fault);
     if (!code)
         code = steady_find(unsplit, stepper, column, year + 0.5, &steady, fault);
-    if (archive && code)
-        archive_abandon(archive);
-    if (archive && !code)
-        code = write_record(archive, stepper, column, model, year, fault);
+    if (!code && request->output)
+        code = write_record(request, stepper, column, model, year, fault);
     if (!code)
         code = tell(request, unsplit, column, &steady, year, &answer, fault);
     unsplit_free(unsplit);

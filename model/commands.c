@@ -104,3 +104,56 @@ int one_operand(const char *verb, int argc, char *const *argv, int first, const 
                          argv[first], argv[first + 1]);
     return 0;
 }
+
+/* The folder of a file to be made. */
+static int check_folder(const char *path, Fault *fault)
+{
+    char folder[4096];
+    const char *slash = strrchr(path, '/');
+    size_t length = slash ? (size_t)(slash - path) + 1 : 0;
+    if (length >= sizeof folder)
+        return fault_set(fault, FAULT_INPUT, "%.60s...: the name is too long; choose a shorter one", path);
+    snprintf(folder, sizeof folder, "%.*s", (int)length, path);
+    if (access(length ? folder : ".", W_OK | X_OK) == 0)
+        return 0;
+    return fault_set(fault, FAULT_OUTPUT,
+                     "%s: cannot create the file: %s; choose a place that can be written", path,
+                     strerror(errno));
+}
+
+int check_outputs(const Output *output, int count, int overwrite, Fault *fault)
+{
+    for (int i = 0; i < count; i++) {
+        const char *path = output[i].path;
+        if (!path)
+            continue;
+        for (int j = 0; j < i; j++)
+            if (output[j].path && !strcmp(path, output[j].path))
+                return fault_set(fault, FAULT_INPUT, "%s and %s both name %s; give each a file of its own",
+                                 output[j].option, output[i].option, path);
+        int there = access(path, F_OK) == 0;
+        if (there && !overwrite)
+            return fault_set(fault, FAULT_INPUT, "%s exists already: choose another name, or add --overwrite",
+                             path);
+        if (!there && check_folder(path, fault))
+            return fault->code;
+    }
+    return 0;
+}
+
+FILE *open_text(const char *path, int overwrite, Fault *fault)
+{
+    FILE *out = fopen(path, overwrite ? "w" : "wx");
+    if (!out)
+        fault_set(fault, FAULT_OUTPUT, "%s: cannot create the file: %s; choose a place that can be written",
+                  path, strerror(errno));
+    return out;
+}
+
+int close_text(FILE *out, const char *path, Fault *fault)
+{
+    int bad = ferror(out);
+    if (fclose(out) || bad)
+        return fault_set(fault, FAULT_OUTPUT, "%s: could not be written to its end; free some space", path);
+    return 0;
+}

@@ -3,6 +3,8 @@
 #ifndef SKYMEND_COMMANDS_H
 #define SKYMEND_COMMANDS_H
 
+#include <stdio.h>
+
 #include "../input/fault.h"
 #include "../input/settings.h"
 
@@ -31,5 +33,15 @@ int option_fault(const char *verb, char *const *argv, int optind_before, int fou
                  Fault *fault);
 /* At most one operand; FAULT_INPUT otherwise. *operand NULL when there is none. */
 int one_operand(const char *verb, int argc, char *const *argv, int first, const char **operand, Fault *fault);
+
+typedef struct {
+    const char *option, *path; /* path NULL: not asked for */
+} Output;
+/* To be asked before long work begins: FAULT_INPUT when two outputs have one name, or one exists and is not
+ * to be replaced; FAULT_OUTPUT when its folder cannot be written. */
+int check_outputs(const Output *output, int count, int overwrite, Fault *fault);
+/* A text file to write; NULL on a fault. close_text tells whether all of it got there. */
+FILE *open_text(const char *path, int overwrite, Fault *fault);
+int close_text(FILE *out, const char *path, Fault *fault);
 
 #endif

@@ -41,6 +41,8 @@ END
 
 refused "unknown option" "did you mean --year?" coarse.cfg --yaer 1990
 refused "year without a value" "needs a value" coarse.cfg --year
+refused "rows of nothing" "add --sensitivity" coarse.cfg --rows 5
+refused "overwrite of nothing" "add --json or -o" coarse.cfg --overwrite
 refused "year no number" "is no number" coarse.cfg --year soon
 refused "year not whole" "no whole number" coarse.cfg --year 1990.5
 refused "year outside the schedule" "CFC-11 has values for" coarse.cfg --year 2300
