@@ -18,6 +18,7 @@
 #include "photolysis.h"
 
 #include <math.h>
+#include <omp.h>
 #include <stdint.h>
 #include <stdlib.h>
 #include <string.h>
@@ -61,7 +62,8 @@ struct Photolysis {
     double *direct, *ground_direct; /* [suns][layers][stride], [suns][stride] */
     double *flux, *ground;          /* actinic flux [suns][layers][stride]; irradiance [suns][stride] */
     double *column;                 /* [layers + 1] vertical columns, scratch */
-    double *work;                   /* of radiation_solve */
+    int threads;                    /* that may solve for the scattered light at once */
+    double *work;                   /* [threads] of radiation_solve */
 };
 
 /* ---- making ---- */
@@ -102,7 +104,7 @@ static size_t lay_out(Photolysis *p, char *base)
     p->flux = take(base, &used, suns * field);
     p->ground = take(base, &used, suns * stride);
     p->column = take(base, &used, layers + 1);
-    p->work = take(base, &used, radiation_work(p->layers, p->stride, p->suns, STREAMS));
+    p->work = take(base, &used, (size_t)p->threads * radiation_work(p->layers, p->stride, p->suns, STREAMS));
     return used;
 }
 
@@ -168,6 +170,7 @@ int photolysis_make(Photolysis **made, const Mechanism *mechanism, const Spectra
     p->layers = layers;
     p->padded = padded;
     p->suns = suns;
+    p->threads = omp_get_max_threads();
     p->bins = spectra->bins;
     p->stride = PACK_ROUND(spectra->bins);
     p->reactions = mechanism->surface_first - mechanism->photolysis_first;
@@ -541,6 +544,17 @@ void photolysis_nitric_oxide(Photolysis *photolysis, const double *nitric_oxide,
         }
 }
 
+/* Actinic flux of every sun, the wavelengths shared out among the threads. */
+static void scatter_light(Photolysis *p)
+{
+    size_t work = radiation_work(p->layers, p->stride, p->suns, STREAMS);
+#pragma omp parallel for schedule(dynamic, 1) num_threads(p->threads)
+    for (int first = 0; first < p->stride; first += PACK)
+        radiation_solve_part(p->suns, p->layers, p->stride, first, first + PACK, p->absorb, p->scatter,
+                             p->direct, p->ground_direct, p->cosine, p->albedo, STREAMS, p->flux, p->ground,
+                             p->work + (size_t)omp_get_thread_num() * work);
+}
+
 void photolysis_rates(Photolysis *photolysis, const double *ozone, const double *nitrogen_dioxide,
                       const double *nitric_oxide, double earth_sun, double *rate)
 {
@@ -548,8 +562,7 @@ void photolysis_rates(Photolysis *photolysis, const double *ozone, const double 
     size_t stride = (size_t)p->stride;
     add_gases(p, ozone, nitrogen_dioxide);
     beams(p);
-    radiation_solve(p->suns, p->layers, p->stride, p->absorb, p->scatter, p->direct, p->ground_direct,
-                    p->cosine, p->albedo, STREAMS, p->flux, p->ground, p->work);
+    scatter_light(p);
 #pragma omp parallel for schedule(static)
     for (size_t row = 0; row < (size_t)p->suns * (size_t)p->layers; row++)
         for (size_t b = 0; b < stride; b++)

@@ -374,7 +374,8 @@ static inline __attribute__((always_inline)) void substitute(const Block *block,
 static inline __attribute__((always_inline)) void solve(Block *block, int n, const double *absorption,
                                                         const double *scattering, const double *direct,
                                                         const double *direct_ground, const double *cosine,
-                                                        double *flux, double *down_ground)
+                                                        double *flux, double *down_ground, size_t first,
+                                                        size_t end)
 {
     const size_t width = block->width, field = (size_t)block->layers * width;
     for (int i = 0; i < n; i++) {
@@ -383,7 +384,7 @@ static inline __attribute__((always_inline)) void solve(Block *block, int n, con
             block->scatter[i * n + k] =
                 phase(n, gauss_cosine[n - 1][i], gauss_cosine[n - 1][k]) * gauss_weight[n - 1][k];
     }
-    for (size_t lane = 0; lane < width; lane += LANES) {
+    for (size_t lane = first; lane < end; lane += LANES) {
         factorise(block, n, absorption + lane, scattering + lane);
         for (size_t s = 0; s < (size_t)block->suns; s++)
             substitute(block, n, direct + s * field + lane, direct_ground + s * width + lane, cosine[s],
@@ -403,6 +404,16 @@ void radiation_solve(int suns, int layers, int width, const double *absorption, 
                      const double *direct, const double *direct_ground, const double *cosine, double albedo,
                      int streams, double *flux, double *down_ground, double *work)
 {
+    radiation_solve_part(suns, layers, width, 0, width, absorption, scattering, direct, direct_ground, cosine,
+                         albedo, streams, flux, down_ground, work);
+}
+
+void radiation_solve_part(int suns, int layers, int width, int first, int end, const double *absorption,
+                          const double *scattering, const double *direct, const double *direct_ground,
+                          const double *cosine, double albedo, int streams, double *flux, double *down_ground,
+                          double *work)
+{
+    size_t from = (size_t)first, to = (size_t)end;
     size_t n = (size_t)streams, count = (size_t)layers;
     Block block = {.n = streams, .layers = layers, .suns = suns, .width = (size_t)width, .albedo = albedo};
     block.gain = work;
@@ -412,11 +423,17 @@ void radiation_solve(int suns, int layers, int width, const double *absorption, 
     block.ground = block.gap + LANES * count;
     block.conduct = block.ground + LANES * (n + 1);
     switch (streams) { /* a constant number of streams lets the compiler unroll */
-    case 1: solve(&block, 1, absorption, scattering, direct, direct_ground, cosine, flux, down_ground); break;
-    case 2: solve(&block, 2, absorption, scattering, direct, direct_ground, cosine, flux, down_ground); break;
-    case 3: solve(&block, 3, absorption, scattering, direct, direct_ground, cosine, flux, down_ground); break;
+    case 1:
+        solve(&block, 1, absorption, scattering, direct, direct_ground, cosine, flux, down_ground, from, to);
+        break;
+    case 2:
+        solve(&block, 2, absorption, scattering, direct, direct_ground, cosine, flux, down_ground, from, to);
+        break;
+    case 3:
+        solve(&block, 3, absorption, scattering, direct, direct_ground, cosine, flux, down_ground, from, to);
+        break;
     default:
-        solve(&block, 4, absorption, scattering, direct, direct_ground, cosine, flux, down_ground);
+        solve(&block, 4, absorption, scattering, direct, direct_ground, cosine, flux, down_ground, from, to);
         break;
     }
 }

@@ -39,6 +39,12 @@ const double *slant_path(const Slant *slant, int sun, int target, int *lowest);
 void radiation_solve(int suns, int layers, int width, const double *absorption, const double *scattering,
                      const double *direct, const double *direct_ground, const double *cosine, double albedo,
                      int streams, double *flux, double *down_ground, double *work);
+/* The same for wavelengths first to end - 1 alone, both multiples of PACK: parts
+ * do not know each other and may be solved at the same time, each with work of its own. */
+void radiation_solve_part(int suns, int layers, int width, int first, int end, const double *absorption,
+                          const double *scattering, const double *direct, const double *direct_ground,
+                          const double *cosine, double albedo, int streams, double *flux, double *down_ground,
+                          double *work);
 size_t radiation_work(int layers, int width, int suns, int streams);
 
 /* Rayleigh scattering cross section of air, cm2, at wavelength nm (Bucholtz 1995). */

@@ -171,6 +171,7 @@ void budget_rates(const Model *model, const double *air, const double *x, const 
 {
     const Mechanism *mechanism = model->mechanism;
     int padded = model->grid.padded;
+#pragma omp parallel for schedule(static)
     for (int r = 0; r < mechanism->reactions; r++) {
         const Reaction *reaction = &mechanism->reaction[r];
         size_t row = FIELD(padded, r, 0);

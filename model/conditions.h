@@ -49,7 +49,7 @@ void conditions_free(Conditions *conditions); /* accepts NULL */
  * the time of year, which goes on when the years stand still in a spin-up). Returns which parts changed,
  * ConditionsPart added up; 0 most of the time. Temperature and sunlight move in small steps
  * (CONDITIONS_KELVIN, CONDITIONS_SOLAR_STEP), since tables must be made afresh when they do. */
-#define CONDITIONS_KELVIN 0.005     /* in a steady state about 0.005 % of the ozone at 40 km, where most */
+#define CONDITIONS_KELVIN 0.02      /* in a steady state about 0.02 % of the ozone at 40 km, where most */
 #define CONDITIONS_SOLAR_STEP 0.05  /* of the phase of the solar cycle: about 0.1 % of the ozone column */
 #define CONDITIONS_SUN_DEGREES 0.25 /* of declination: a day's length at 45 degrees to 2 minutes */
 #define CONDITIONS_SUN_DAYS 15 /* at a solstice the distance of the sun still changes, 0.1 % in this time */

@@ -76,7 +76,7 @@ static int dispatch(int argc, char **argv)
  * as it is: only slower. */
 static void start_with_quiet_libraries(char **argv)
 {
-    static const char *const quiet[][2] = {{"GOMP_SPINCOUNT", "1000"}, {"OPENBLAS_NUM_THREADS", "1"}};
+    static const char *const quiet[][2] = {{"GOMP_SPINCOUNT", "20000"}, {"OPENBLAS_NUM_THREADS", "1"}};
     int missing = 0;
     for (size_t i = 0; i < sizeof quiet / sizeof quiet[0]; i++)
         if (!getenv(quiet[i][0]) && !(i == 0 && getenv("OMP_WAIT_POLICY")))

@@ -265,7 +265,7 @@ int stepper_refresh(Stepper *stepper, Column *column, int with_day, Fault *fault
     renew_light(stepper, column);
     if (!with_day || stepper->model->settings.day == DAY_MEAN)
         return 0;
-    int code = stepper_repeat_day(stepper, column, fault);
+    int code = stepper_repeat_day(stepper, column, DAY_SETTLED, fault);
     if (!code)
         renew_light(stepper, column); /* by the new shares of daylight */
     return code;

@@ -92,7 +92,7 @@ int stepper_carry_day(Stepper *stepper, Column *column, double years, Fault *fau
 }
 
 /* Repeat the day of the column's state until it gives the same factors. */
-int stepper_repeat_day(Stepper *stepper, Column *column, Fault *fault)
+int stepper_repeat_day(Stepper *stepper, Column *column, double enough, Fault *fault)
 {
     const Model *model = stepper->model;
     Day *day = stepper->day;
@@ -108,7 +108,7 @@ int stepper_repeat_day(Stepper *stepper, Column *column, Fault *fault)
         if (code)
             return code;
         settled = day_take(day, stepper->light, sample->x, pack_lit_time(stepper->light),
-                           stepper->coefficient) < DAY_SETTLED;
+                           stepper->coefficient) < enough;
         days++;
     }
     day_settle(day, column->x);
@@ -125,5 +125,5 @@ int stepper_follow_day(Stepper *stepper, Column *column, Fault *fault)
     if (settings->day != DAY_FACTORS || (stepper->since_factors < settings->refresh_years * YEAR_SECONDS &&
                                          !day_stale(stepper->day, column->x)))
         return 0;
-    return stepper_repeat_day(stepper, column, fault);
+    return stepper_repeat_day(stepper, column, DAY_FOLLOWED, fault);
 }

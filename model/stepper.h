@@ -66,8 +66,8 @@ int stepper_settle_packs(Stepper *stepper, Column *column, Fault *fault);
 /* From midnight to midnight. Leaves the time integrals in stepper->day. years: what the schedule's clock
  * moves by. */
 int stepper_carry_day(Stepper *stepper, Column *column, double years, Fault *fault);
-/* Repeat the day of the column's state until it gives the same factors. */
-int stepper_repeat_day(Stepper *stepper, Column *column, Fault *fault);
+/* Repeat the day of the column's state until no factor that matters changes by more than enough of itself. */
+int stepper_repeat_day(Stepper *stepper, Column *column, double enough, Fault *fault);
 /* Factors made afresh where they are stale. */
 int stepper_follow_day(Stepper *stepper, Column *column, Fault *fault);
 
