@@ -258,8 +258,11 @@ static void weigh(const Photolysis *p, int r, int layer, double *yield, double *
 static void set_weights(Photolysis *p)
 {
     size_t stride = (size_t)p->stride, reactions = (size_t)p->reactions;
-    double *yield = p->ground; /* free between calls, and as long as the bins */
+    size_t work = radiation_work(p->layers, p->stride, p->suns, STREAMS);
+#pragma omp parallel for schedule(dynamic, 1) num_threads(p->threads)
     for (int r = 0; r < p->reactions; r++) {
+        double *yield =
+            p->work + (size_t)omp_get_thread_num() * work; /* free between calls, and longer than the bins */
         p->first[r] = p->stride;
         p->end[r] = 0;
         for (int k = 0; k < p->layers; k++) {
@@ -302,16 +305,19 @@ static void set_depths(Photolysis *p)
     }
 }
 
+static void set_efficiency(Photolysis *p)
+{
+    for (int k = 0; k < p->layers; k++)
+        for (int i = 0; i < NITRIC_OXIDE_INTERVALS; i++)
+            p->efficiency[k * NITRIC_OXIDE_INTERVALS + i] = nitric_oxide_efficiency(
+                &p->spectra->nitric_oxide->interval[i], p->nitrogen_share * p->air[k]);
+}
+
 static void set_oxygen(Photolysis *p)
 {
     const Spectra *spectra = p->spectra;
-    for (int k = 0; k < p->layers; k++) {
+    for (int k = 0; k < p->layers; k++)
         p->column[k] = p->oxygen_share * p->air[k] * p->depth[k];
-        for (int i = 0; i < NITRIC_OXIDE_INTERVALS; i++) {
-            p->efficiency[k * NITRIC_OXIDE_INTERVALS + i] =
-                nitric_oxide_efficiency(&spectra->nitric_oxide->interval[i], p->nitrogen_share * p->air[k]);
-        }
-    }
     for (int s = 0; s < p->suns; s++)
         for (int k = 0; k <= p->layers; k++) {
             double column = slant_column(p->slant, s, k, p->column, p->oxygen_share * p->above);
@@ -340,6 +346,10 @@ void photolysis_set_air(Photolysis *photolysis, const double *temperature, const
 {
     Photolysis *p = photolysis;
     size_t stride = (size_t)p->stride, length = (size_t)p->layers * sizeof *air;
+    /* layers that keep their mass keep what O2 and Rayleigh scattering do to the light */
+    int same = p->above == air_above_top && p->spectra->spectrum[p->spectra->oxygen].temperatures == 1;
+    for (int k = 0; same && k < p->layers; k++)
+        same = fabs(air[k] * depth[k] - p->air[k] * p->depth[k]) <= 1e-12 * p->air[k] * p->depth[k];
     memcpy(p->temperature, temperature, length);
     memcpy(p->air, air, length);
     memcpy(p->depth, depth, length);
@@ -352,6 +362,9 @@ void photolysis_set_air(Photolysis *photolysis, const double *temperature, const
                        p->sigma_dioxide + (size_t)k * stride);
     }
     set_weights(p);
+    set_efficiency(p);
+    if (same)
+        return;
     set_depths(p);
     set_oxygen(p);
 }

@@ -199,7 +199,7 @@ static void take_air(Light *light)
     const Conditions *now = light->conditions;
     size_t size = (size_t)light->model->grid.padded * sizeof(double);
     memcpy(light->air, now->air, size);
-    if (!(temperature_moved(light) > LIGHT_KELVIN))
+    if (!(temperature_moved(light) > 0.0))
         return;
     photolysis_set_air(light->photolysis, now->temperature, now->air, now->depth,
                        light->model->air.column_above_top);
