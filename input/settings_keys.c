@@ -128,8 +128,8 @@ static const SettingKey keys[] = {
          "gases held or taken up at the ground; a list given here replaces the built-in one; a gas of "
          "the schedule needs no entry"),
 
-    REAL("numerics", "outer_step_days", outer_step_days, 30.4375 / 3, 0.01, 366, "days",
-         "step of the splitting between transport and chemistry; the default is a third of a mean month"),
+    REAL("numerics", "outer_step_days", outer_step_days, 30.4375 / 4, 0.01, 366, "days",
+         "step of the splitting between transport and chemistry; the default is a quarter of a mean month"),
     REAL("numerics", "relative_tolerance", relative_tolerance, 1e-2, 1e-10, 0.1, "",
          "error allowed per step of the chemistry"),
     REAL("numerics", "absolute_tolerance_cm3", absolute_tolerance_cm3, 1e2, 1e-6, 1e8, "molecules cm-3",

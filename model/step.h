@@ -39,7 +39,8 @@ int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, F
  * factors, which such a run does without, tell what the day makes of the means (stepper_day). */
 int stepper_refresh(Stepper *stepper, Column *column, int with_day, Fault *fault);
 
-/* Set the balance to that of a column at rest: what transport does to it now. */
+/* Set the balance to that of a column at rest: what transport does to it now. Not for a column that is not:
+ * the balance of one that moves is found step by step. */
 void stepper_balance(const Stepper *stepper, Column *column);
 
 /* Mean mole fractions over the last step [solved][padded]: of its two ends, or of the explicit day. */

@@ -55,8 +55,9 @@ static void compare_days(const Model *model, const double *factors, const double
     }
 }
 
-/* A year with factors under the values of mid-year, then both ways from there for another. Ozone below some
- * 25 km lives longer than that: there the difference is a year's worth of error, above it is the whole. */
+/* Five years with factors under the values of mid-year, in which the balance of the step is found again, then
+ * both ways from there for another. Ozone below some 25 km lives longer than that: there the difference is a
+ * year's worth of error, above it is the whole. */
 static int measure_day(const Run *baseline, int year, DayError *error, Fault *fault)
 {
     Settings settings = baseline->model->settings;
@@ -66,7 +67,7 @@ static int measure_day(const Run *baseline, int year, DayError *error, Fault *fa
     fprintf(stderr, "explicit days of %d\n", year);
     int code = carried_make(&factors, baseline->model, run_fields(baseline, year), year + 0.5, fault);
     if (!code)
-        code = projection_spin_up(baseline->model, factors.stepper, factors.column, 1.0, 1.0, &nobody, fault);
+        code = projection_spin_up(baseline->model, factors.stepper, factors.column, 5.0, 1.0, &nobody, fault);
     settings.day = DAY_EXPLICIT;
     if (!code)
         code = model_make(&model, &settings, fault);

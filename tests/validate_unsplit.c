@@ -56,6 +56,7 @@ int splitting_error(const Settings *from, int first_year, int years, double *col
     if (!code && !(x = malloc(field * sizeof(double))))
         code = fault_memory(fault, "the unsplit column");
     if (!code) {
+        stepper_balance(stepper, column);
         memcpy(x, column->x, field * sizeof(double));
         code = carry_both(model, unsplit, stepper, column, x, years, fault);
     }
