@@ -115,10 +115,7 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
     static const char *const names[] = {"--year",    "--at",     "--reactions", "--csv",
                                         "--json",    "--output", "--overwrite", "--quiet",
                                         "--threads", "--help",   NULL};
-    size_t used = (size_t)snprintf(request->command_line, sizeof request->command_line, "skymend");
-    for (int i = 0; i < argc && used < sizeof request->command_line; i++)
-        used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s",
-                                 argv[i]);
+    join_command_line(argc, argv, request->command_line, sizeof request->command_line);
     int found, before = 1;
     opterr = 0;
     optind = 1;

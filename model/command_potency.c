@@ -1,7 +1,6 @@
 /* skymend potency: the ozone depletion potentials of the gases of a case. */
 #include <getopt.h>
 #include <omp.h>
-#include <signal.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
@@ -9,22 +8,6 @@
 #include "commands.h"
 #include "potency_text.h"
 #include "progress.h"
-
-static volatile sig_atomic_t stop_asked;
-
-static void ask_stop(int signal_number)
-{
-    (void)signal_number;
-    stop_asked = 1;
-}
-
-static void catch_signals(void)
-{
-    struct sigaction action = {.sa_handler = ask_stop};
-    sigemptyset(&action.sa_mask);
-    sigaction(SIGINT, &action, NULL);
-    sigaction(SIGTERM, &action, NULL);
-}
 
 typedef struct {
     const char *case_path, *csv, *json, *reference;
@@ -54,17 +37,6 @@ static void print_help(void)
         "An interrupted run (Ctrl-C) writes nothing.\n");
 }
 
-static int whole_number(const char *option, const char *text, double low, double high, int *to, Fault *fault)
-{
-    double value;
-    if (option_number(option, text, low, high, &value, fault))
-        return fault->code;
-    *to = (int)value;
-    if (*to != value)
-        return fault_set(fault, FAULT_INPUT, "%s: %s is no whole number", option, text);
-    return 0;
-}
-
 static int take_option(Request *request, int found, Fault *fault)
 {
     switch (found) {
@@ -75,10 +47,10 @@ static int take_option(Request *request, int found, Fault *fault)
     case 'w': request->overwrite = 1; break;
     case 'q': request->quiet = 1; break;
     case 'h': request->help = 1; break;
-    case 't': return whole_number("--threads", optarg, 1, 1024, &request->threads, fault);
+    case 't': return option_whole("--threads", optarg, 1, 1024, &request->threads, fault);
     case 'y':
         request->year_given = 1;
-        return whole_number("--year", optarg, 1750, 2500, &request->year, fault);
+        return option_whole("--year", optarg, 1750, 2500, &request->year, fault);
     }
     return 0;
 }
@@ -141,7 +113,7 @@ static int work(const Request *request, const Model *model, int year, Unsplit *u
     Potencies *potencies = NULL;
     ProgressBar bar;
     const PotencyAsk ask = {.reference = request->reference, .frozen = request->adjoint};
-    const Watcher watcher = {.progress = show_progress, .context = &bar, .stop = &stop_asked};
+    const Watcher watcher = {.progress = show_progress, .context = &bar, .stop = catch_stop()};
     int code = steady_find(unsplit, stepper, column, year + 0.5, &steady, fault);
     if (code)
         return code;
@@ -200,7 +172,7 @@ int command_potency(int argc, char **argv)
         print_help();
         return 0;
     }
-    catch_signals();
+    catch_stop(); /* before any file is begun */
     if (!code)
         code = run(&request, &fault);
     return code ? report_fault(&fault) : 0;

@@ -9,28 +9,6 @@
 #include "commands.h"
 #include "progress.h"
 
-static volatile sig_atomic_t stop_asked;
-
-static void ask_stop(int signal_number)
-{
-    (void)signal_number;
-    stop_asked = 1;
-}
-
-static void catch_signals(void)
-{
-    struct sigaction action = {.sa_handler = ask_stop};
-    sigemptyset(&action.sa_mask);
-    sigaction(SIGINT, &action, NULL);
-    sigaction(SIGTERM, &action, NULL);
-#ifdef SIGXFSZ
-    struct sigaction ignore = {.sa_handler =
-                                   SIG_IGN}; /* a file at its size limit is a write error, not a death */
-    sigemptyset(&ignore.sa_mask);
-    sigaction(SIGXFSZ, &ignore, NULL);
-#endif
-}
-
 typedef struct {
     const char *case_path, *output;
     int overwrite, quiet, threads, help;
@@ -60,10 +38,7 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
         {"quiet", no_argument, NULL, 'q'},        {"threads", required_argument, NULL, 't'},
         {"help", no_argument, NULL, 'h'},         {NULL, 0, NULL, 0}};
     static const char *const names[] = {"--output", "--overwrite", "--quiet", "--threads", "--help", NULL};
-    size_t used = (size_t)snprintf(request->command_line, sizeof request->command_line, "skymend");
-    for (int i = 0; i < argc && used < sizeof request->command_line; i++)
-        used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s",
-                                 argv[i]);
+    join_command_line(argc, argv, request->command_line, sizeof request->command_line);
     int found, before = 1;
     opterr = 0;
     optind = 1;
@@ -165,7 +140,7 @@ static int run(const Request *request, Fault *fault)
         code = archive_create(&outlets.archive, model, request->output, request->overwrite,
                               request->command_line, fault);
     if (!code) {
-        Watcher watcher = {write_record, show_progress, &outlets, &stop_asked};
+        Watcher watcher = {write_record, show_progress, &outlets, catch_stop()};
         progress_open(&outlets.bar, request->quiet);
         code = projection_run(model, stepper, column, &watcher, fault);
         progress_close(&outlets.bar);
@@ -197,7 +172,7 @@ int command_project(int argc, char **argv)
         print_help();
         return 0;
     }
-    catch_signals();
+    catch_stop(); /* before any file is begun */
     if (!code)
         code = run(&request, &fault);
     return code ? report_fault(&fault) : 0;

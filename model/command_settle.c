@@ -38,17 +38,6 @@ static void print_help(void)
            "Sensitivities are first-order, of the column settled anew; diurnal factors stay as they are.\n");
 }
 
-static int whole_number(const char *option, const char *text, double low, double high, int *to, Fault *fault)
-{
-    double value;
-    if (option_number(option, text, low, high, &value, fault))
-        return fault->code;
-    *to = (int)value;
-    if (*to != value)
-        return fault_set(fault, FAULT_INPUT, "%s: %s is no whole number", option, text);
-    return 0;
-}
-
 static int read_request(Request *request, int argc, char **argv, Fault *fault)
 {
     static const struct option options[] = {{"output", required_argument, NULL, 'f'},
@@ -66,10 +55,7 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
                                         "--csv",       "--threads",     "--help", "--output",
                                         "--overwrite", "--json",        NULL};
     int found, before = 1, code = 0;
-    size_t used = (size_t)snprintf(request->command_line, sizeof request->command_line, "skymend");
-    for (int i = 0; i < argc && used < sizeof request->command_line; i++)
-        used += (size_t)snprintf(request->command_line + used, sizeof request->command_line - used, " %s",
-                                 argv[i]);
+    join_command_line(argc, argv, request->command_line, sizeof request->command_line);
     opterr = 0;
     optind = 1;
     while (!code && (found = getopt_long(argc, argv, ":o:h", options, NULL)) != -1) {
@@ -82,10 +68,10 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
         case 'c': request->csv = 1; break;
         case 'j': request->json = optarg; break;
         case 'h': request->help = 1; break;
-        case 'r': code = whole_number("--rows", optarg, 1, 10000, &request->rows, fault); break;
-        case 't': code = whole_number("--threads", optarg, 1, 1024, &request->threads, fault); break;
+        case 'r': code = option_whole("--rows", optarg, 1, 10000, &request->rows, fault); break;
+        case 't': code = option_whole("--threads", optarg, 1, 1024, &request->threads, fault); break;
         case 'y':
-            code = whole_number("--year", optarg, 1750, 2500, &request->year, fault);
+            code = option_whole("--year", optarg, 1750, 2500, &request->year, fault);
             request->year_given = 1;
             break;
         default:

@@ -157,3 +157,43 @@ int close_text(FILE *out, const char *path, Fault *fault)
         return fault_set(fault, FAULT_OUTPUT, "%s: could not be written to its end; free some space", path);
     return 0;
 }
+
+int option_whole(const char *option, const char *text, double low, double high, int *value, Fault *fault)
+{
+    double number;
+    if (option_number(option, text, low, high, &number, fault))
+        return fault->code;
+    *value = (int)number;
+    if (*value != number)
+        return fault_set(fault, FAULT_INPUT, "%s: %s is no whole number", option, text);
+    return 0;
+}
+
+void join_command_line(int argc, char *const *argv, char *text, size_t size)
+{
+    size_t used = (size_t)snprintf(text, size, "skymend");
+    for (int i = 0; i < argc && used < size; i++)
+        used += (size_t)snprintf(text + used, size - used, " %s", argv[i]);
+}
+
+static volatile sig_atomic_t stop_asked;
+
+static void ask_stop(int signal_number)
+{
+    (void)signal_number;
+    stop_asked = 1;
+}
+
+volatile sig_atomic_t *catch_stop(void)
+{
+    struct sigaction action = {.sa_handler = ask_stop};
+    sigemptyset(&action.sa_mask);
+    sigaction(SIGINT, &action, NULL);
+    sigaction(SIGTERM, &action, NULL);
+#ifdef SIGXFSZ
+    struct sigaction ignore = {.sa_handler = SIG_IGN};
+    sigemptyset(&ignore.sa_mask);
+    sigaction(SIGXFSZ, &ignore, NULL);
+#endif
+    return &stop_asked;
+}

@@ -3,6 +3,7 @@
 #ifndef SKYMEND_COMMANDS_H
 #define SKYMEND_COMMANDS_H
 
+#include <signal.h>
 #include <stdio.h>
 
 #include "../input/fault.h"
@@ -27,12 +28,18 @@ int load_case(Settings *settings, const char *path, Fault *fault);
 int report_fault(const Fault *fault);
 /* Numbers from the command line; a fault names the option. */
 int option_number(const char *option, const char *text, double low, double high, double *value, Fault *fault);
+int option_whole(const char *option, const char *text, double low, double high, int *value, Fault *fault);
 /* A fault for an option the verb does not know or that lacks its value; names lists the verb's options, NULL
  * at the end. */
 int option_fault(const char *verb, char *const *argv, int optind_before, int found, const char *const *names,
                  Fault *fault);
 /* At most one operand; FAULT_INPUT otherwise. *operand NULL when there is none. */
 int one_operand(const char *verb, int argc, char *const *argv, int first, const char **operand, Fault *fault);
+/* "skymend VERB ..." as it was given, cut at size: for the history of a file. */
+void join_command_line(int argc, char *const *argv, char *text, size_t size);
+/* From now on an interrupt or a request to end sets what is returned, and a file at its size limit is a write
+ * error, not a death. */
+volatile sig_atomic_t *catch_stop(void);
 
 typedef struct {
     const char *option, *path; /* path NULL: not asked for */
