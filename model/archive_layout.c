@@ -271,7 +271,8 @@ static int define_species(const Layout *out, const Dimensions *dim, Fault *fault
         else
             snprintf(longer, sizeof longer, "mole fraction of %s in air", species->name);
         if (layout_variable(out, &d, 2, field, chunk, &out->fraction[s], fault) ||
-            put_text(out, out->fraction[s], "species", species->name, fault))
+            put_text(out, out->fraction[s], "species", species->name, fault) ||
+            put_text(out, out->fraction[s], "formula", species->formula, fault))
             return fault->code;
     }
     return 0;

@@ -7,6 +7,7 @@
 
 #include "answers.h"
 #include "commands.h"
+#include "equivalent_chlorine.h"
 #include "progress.h"
 
 typedef struct {
@@ -149,6 +150,8 @@ static int run(const Request *request, Fault *fault)
         else
             code = archive_close(outlets.archive, column, fault);
     }
+    if (!code)
+        code = chlorine_store(request->output, settings->data_dir, fault);
     if (!code && !request->quiet) {
         printf("%s\n\n", settings->title);
         code = print_answers(request->output, fault);
