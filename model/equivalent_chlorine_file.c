@@ -210,6 +210,14 @@ int equivalent_chlorine_read(EquivalentChlorine *out, const char *path, const ch
 
 /* ---- writing ---- */
 
+static int store_fault(const char *path, const char *why, Fault *fault)
+{
+    return fault_set(fault, FAULT_OUTPUT,
+                     "%s: cannot add equivalent chlorine: %s; the file is whole without it; free some space "
+                     "or write elsewhere",
+                     path, why);
+}
+
 enum { TIME_CHUNK = 512 }; /* records per chunk, as for the other series of the file */
 
 static int put_text(int file, int variable, const char *name, const char *text)
@@ -293,13 +301,13 @@ static int put_one(int file, const EquivalentChlorine *chlorine)
     return status;
 }
 
-static int put_all(const char *copy, const SurfaceSeries *series, const ReleaseTable *table, Fault *fault)
+/* Of every mean age, into the copy; path: for messages. */
+static int put_all(const char *path, const char *copy, const SurfaceSeries *series, const ReleaseTable *table,
+                   Fault *fault)
 {
     int file, status = nc_open(copy, NC_WRITE, &file);
-    if (status != NC_NOERR)
-        return fault_set(fault, FAULT_OUTPUT, "%s: cannot be opened to add equivalent chlorine: %s", copy,
-                         nc_strerror(status));
-    for (int a = 0; a < table->ages && status == NC_NOERR && !fault->code; a++) {
+    int opened = status == NC_NOERR;
+    for (int a = 0; a < table->ages && status == NC_NOERR; a++) {
         EquivalentChlorine one;
         if (equivalent_chlorine_compute(&one, series, table, table->mean_age[a], fault))
             break;
@@ -308,13 +316,10 @@ static int put_all(const char *copy, const SurfaceSeries *series, const ReleaseT
             status = put_one(file, &one);
         equivalent_chlorine_free(&one);
     }
-    int closed = nc_close(file);
+    int closed = opened ? nc_close(file) : NC_NOERR;
     if (status == NC_NOERR)
         status = closed;
-    if (status != NC_NOERR)
-        return fault_set(fault, FAULT_OUTPUT, "%s: cannot write equivalent chlorine: %s", copy,
-                         nc_strerror(status));
-    return fault->code;
+    return status == NC_NOERR ? fault->code : store_fault(path, nc_strerror(status), fault);
 }
 
 /* Every byte of path into a new file of the same permissions, on the disk. An errno value. */
@@ -369,17 +374,13 @@ static int exchange(const char *path, const SurfaceSeries *series, const Release
     }
     snprintf(copy, size, "%s.part-%ld", real, (long)getpid());
     int error = copy_file(real, copy);
-    if (!error && !put_all(copy, series, table, fault)) {
+    if (!error && !put_all(path, copy, series, table, fault)) {
         error = bring_to_disk(copy);
         if (!error && rename(copy, real))
             error = errno;
     }
     if (error)
-        fault_set(
-            fault, FAULT_OUTPUT,
-            "%s: cannot add equivalent chlorine: %s; the file is whole without it; free some space or write "
-            "elsewhere",
-            path, strerror(error));
+        store_fault(path, strerror(error), fault);
     if (fault->code && error != EEXIST) /* a file of that name that is not ours stays */
         unlink(copy);
     free(real);
