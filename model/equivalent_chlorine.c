@@ -138,6 +138,14 @@ int release_read(ReleaseTable *table, const char *path, Fault *fault)
     return code;
 }
 
+int release_find_and_read(ReleaseTable *table, const char *data_dir, Fault *fault)
+{
+    char path[4096];
+    memset(table, 0, sizeof *table);
+    int code = table_locate("fractional release", RELEASE_FILE, "", data_dir, path, sizeof path, fault);
+    return code ? code : release_read(table, path, fault);
+}
+
 void release_free(ReleaseTable *table)
 {
     if (!table)

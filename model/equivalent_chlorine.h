@@ -44,6 +44,8 @@ typedef struct {
  * file and line: unknown quantity, value out of range (release 0 to 1, alpha 0 to 1000), a row given twice, a
  * mean age without alpha. Owner: caller, release_free. */
 int release_read(ReleaseTable *table, const char *path, Fault *fault);
+/* The same of RELEASE_FILE in the data folder. */
+int release_find_and_read(ReleaseTable *table, const char *data_dir, Fault *fault);
 void release_free(ReleaseTable *table);
 /* Fractional release of gas at a mean age; 1 if the table has it. */
 int release_find(const ReleaseTable *table, double mean_age, const char *gas, double *value);

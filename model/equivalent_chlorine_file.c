@@ -11,7 +11,6 @@
 
 #include <netcdf.h>
 
-#include "../input/table.h"
 #include "answers.h"
 #include "equivalent_chlorine.h"
 
@@ -184,21 +183,13 @@ int surface_read(SurfaceSeries *series, const char *path, Fault *fault)
     return code;
 }
 
-static int read_table(ReleaseTable *table, const char *data_dir, Fault *fault)
-{
-    char path[4096];
-    memset(table, 0, sizeof *table);
-    int code = table_locate("fractional release", RELEASE_FILE, "", data_dir, path, sizeof path, fault);
-    return code ? code : release_read(table, path, fault);
-}
-
 int equivalent_chlorine_read(EquivalentChlorine *out, const char *path, const char *data_dir, double mean_age,
                              Fault *fault)
 {
     ReleaseTable table;
     SurfaceSeries series = {0};
     memset(out, 0, sizeof *out);
-    int code = read_table(&table, data_dir, fault);
+    int code = release_find_and_read(&table, data_dir, fault);
     if (!code)
         code = surface_read(&series, path, fault);
     if (!code)
@@ -392,7 +383,7 @@ int chlorine_store(const char *path, const char *data_dir, Fault *fault)
 {
     ReleaseTable table;
     SurfaceSeries series = {0};
-    int code = read_table(&table, data_dir, fault);
+    int code = release_find_and_read(&table, data_dir, fault);
     if (!code)
         code = surface_read(&series, path, fault);
     if (!code)

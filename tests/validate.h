@@ -120,6 +120,12 @@ int row_perturbed(const Evidence *evidence, const char *id, double *value, char 
 /* The model's value of a row "noon-A/B-KM"; -1 for any other id. note as in row_compute. */
 int row_moments(const Evidence *evidence, const char *id, double *value, char *note, Fault *fault);
 
+/* ---- validate_chlorine.c: equivalent chlorine ---- */
+
+/* The model's value of a row "eesc-1980-mid" or "eesc-1980-polar"; -1 for any other id. note as in
+ * row_compute. */
+int row_chlorine(const Evidence *evidence, const char *id, double *value, char *note, Fault *fault);
+
 /* ---- validate_potency.c: depletion potentials ---- */
 
 /* Settle the column at STEADY_YEAR and look beside it. Owner: caller. */

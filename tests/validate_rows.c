@@ -405,7 +405,7 @@ static int ozone_strong(const Ask *ask, double *value)
 int row_compute(const Evidence *evidence, const char *id, const char *conditions, int *state, double *value,
                 char *note_text, Fault *fault)
 {
-    static const char *const later[] = {"eesc-", "uv-raf", "uvi-overhead", "uv-bands"};
+    static const char *const later[] = {"uv-raf", "uvi-overhead", "uv-bands"};
     const Ask ask = {evidence->run, evidence, evidence->run->model, id, conditions, note_text, fault};
     note_text[0] = '\0';
     *value = NAN;
@@ -437,6 +437,7 @@ int row_compute(const Evidence *evidence, const char *id, const char *conditions
     else if ((code = row_potency(evidence, id, value, note_text, fault)) == -1 &&
              (code = row_moments(evidence, id, value, note_text, fault)) == -1 &&
              (code = row_perturbed(evidence, id, value, note_text)) == -1 &&
+             (code = row_chlorine(evidence, id, value, note_text, fault)) == -1 &&
              (code = composition(&ask, value)) == -1)
         code = ozone(&ask, value);
     if (code == -1)
