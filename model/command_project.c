@@ -126,9 +126,12 @@ static int run(const Request *request, Fault *fault)
     Column *column = NULL;
     Stepper *stepper = NULL;
     Outlets outlets = {0};
+    ReleaseTable release = {0};
     if (!settings)
         return fault_memory(fault, "settings");
     int code = load_case(settings, request->case_path, fault);
+    if (!code)
+        code = release_find_and_read(&release, settings->data_dir, fault);
     if (!code)
         code = model_make(&model, settings, fault);
     if (!code)
@@ -151,7 +154,7 @@ static int run(const Request *request, Fault *fault)
             code = archive_close(outlets.archive, column, fault);
     }
     if (!code)
-        code = chlorine_store(request->output, settings->data_dir, fault);
+        code = chlorine_store(request->output, &release, fault);
     if (!code && !request->quiet) {
         printf("%s\n\n", settings->title);
         code = print_answers(request->output, fault);
@@ -159,6 +162,7 @@ static int run(const Request *request, Fault *fault)
         print_summary(model, column);
         printf("written: %s\n", request->output);
     }
+    release_free(&release);
     stepper_free(stepper);
     column_free(column);
     model_free(model);

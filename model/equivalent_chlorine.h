@@ -113,6 +113,6 @@ int equivalent_chlorine_read(EquivalentChlorine *out, const char *path, const ch
  * equivalent_chlorine_55yr(time) and, with _known behind the name, the share known. What is there already is
  * replaced. The file is changed in a copy beside it, which then takes its place: whatever goes wrong it stays
  * whole. FAULT_OUTPUT when it cannot be written. */
-int chlorine_store(const char *path, const char *data_dir, Fault *fault);
+int chlorine_store(const char *path, const ReleaseTable *table, Fault *fault);
 
 #endif

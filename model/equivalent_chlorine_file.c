@@ -379,16 +379,12 @@ static int exchange(const char *path, const SurfaceSeries *series, const Release
     return fault->code;
 }
 
-int chlorine_store(const char *path, const char *data_dir, Fault *fault)
+int chlorine_store(const char *path, const ReleaseTable *table, Fault *fault)
 {
-    ReleaseTable table;
     SurfaceSeries series = {0};
-    int code = release_find_and_read(&table, data_dir, fault);
+    int code = surface_read(&series, path, fault);
     if (!code)
-        code = surface_read(&series, path, fault);
-    if (!code)
-        code = exchange(path, &series, &table, fault);
+        code = exchange(path, &series, table, fault);
     surface_free(&series);
-    release_free(&table);
     return code;
 }

@@ -25,6 +25,16 @@ static int files_in(const char *folder)
     return count;
 }
 
+static int store(const char *path, Fault *fault)
+{
+    ReleaseTable table;
+    if (release_find_and_read(&table, data_dir(), fault))
+        return fault->code;
+    int code = chlorine_store(path, &table, fault);
+    release_free(&table);
+    return code;
+}
+
 /* EESC of the made archive by hand: CFC-11 is its species 2, halon-1301 its species 7; the lowest layer is 0.
  */
 static double by_hand(int record, const AgeSpectrum *spectrum, double cfc, double halon)
@@ -86,7 +96,7 @@ static void stored_beside_what_was_there(void **state)
     assert_int_equal(symlink(path, link), 0);
     for (int pass = 0; pass < 2; pass++) {
         Fault fault = {0};
-        if (chlorine_store(pass ? link : path, data_dir(), &fault))
+        if (store(pass ? link : path, &fault))
             fail_msg("%s", fault.text);
         check_records(path, made, RECORDS);
         assert_int_equal(files_in(*state), 2);
@@ -159,7 +169,7 @@ static void full_disk_leaves_the_file_whole(void **state)
             const struct rlimit most = {limit, limit};
             signal(SIGXFSZ, SIG_IGN);
             setrlimit(RLIMIT_FSIZE, &most);
-            int code = chlorine_store(path, data_dir(), &fault);
+            int code = store(path, &fault);
             _exit(code == FAULT_OUTPUT && !strstr(fault.text, "the file is whole without it") ? 99 : code);
         }
         int status;
@@ -207,11 +217,11 @@ static void what_cannot_be_used_is_refused(void **state)
     check_fault(&fault, RELEASE_FILE, (char *)*state, NULL);
     fault = (Fault){0};
     path_in(state, "absent.nc", other);
-    assert_int_equal(chlorine_store(other, data_dir(), &fault), FAULT_INPUT);
+    assert_int_equal(store(other, &fault), FAULT_INPUT);
     check_fault(&fault, "absent.nc", "cannot be opened", NULL);
     fault = (Fault){0};
     write_file(state, "text.nc", "no file of a projection\n", other);
-    assert_int_equal(chlorine_store(other, data_dir(), &fault), FAULT_INPUT);
+    assert_int_equal(store(other, &fault), FAULT_INPUT);
     check_fault(&fault, "text.nc", "NetCDF", NULL);
     fault = (Fault){0};
     without(path, "CFC_11", "formula");
