@@ -1,39 +1,70 @@
-/* schedule: abundances of source gases by year.
+/* schedule: what the ground is given by year: abundances of source gases, or their emissions line by line.
  *
- * Tidy CSV, a row per year, gas and line:  year,gas,kind,amount,unit,line
- *   kind    abundance   (emission comes with a later version and is refused with a clear word)
- *   unit    ppt | ppb | ppm | mol/mol
- *   line    the schedule's own label
- * Years of a gas must be whole, without a gap and without a duplicate; a value stands for mid-year.
+ * Tidy CSV, a row per year, gas and line:  year,gas,kind,amount,unit,line  (language: README, "Schedule").
+ * Several files are layered: the first is the base, each further one adds lines or changes what stands below.
+ *
+ * A gas is driven by its abundance up to its first year of emission at the ground and by its emissions from
+ * the start of that year on. An abundance stands for mid-year; an emission is the mass of a calendar year,
+ * given off evenly through it. A gas that has emissions only is not in the air before them.
  */
 #ifndef SKYMEND_SCHEDULE_H
 #define SKYMEND_SCHEDULE_H
 
 #include "fault.h"
 
+/* One line of emissions of one gas, after layers, rules and banks have been worked out. */
+typedef struct {
+    int gas;               /* index */
+    char *label;           /* the schedule's own word for it */
+    char element[4];       /* "": amounts are masses of the gas itself; "N": of that element in it */
+    double from_km, to_km; /* 0, 0: at the ground; else spread evenly over this height */
+    int first_year, years;
+    double *amount; /* [years] kg in the calendar year; never below 0 */
+    int file, row;  /* where its first row stands: index in path[], line of the file */
+    double *stock;  /* [years + 1] kg in the bank at the start of each year and at the end; NULL: no bank */
+} ScheduleLine;
+
 typedef struct {
     int gases;
     char (*gas)[32];             /* [gases] names, in order of first appearance */
-    int *first_year;             /* [gases] */
-    int *years;                  /* [gases] number of consecutive years */
+    int *first_year;             /* [gases] of its abundances */
+    int *years;                  /* [gases] number of consecutive years of abundance; 0: emissions only */
+    int *file;                   /* [gases] file of the rows named next, index in path[] */
     int *first_line, *last_line; /* [gases] lines of the first and the last year, for messages */
     double **abundance;          /* [gases][years] mole fraction, mol mol-1, global mean at mid-year */
-    char *path;
-    char *header; /* commented header, for the archive */
+    int *emission_from; /* [gases] from the start of this year on emissions at the ground drive it; 0: never.
+                           Emissions aloft do not count here: they come on top of whatever the ground does */
+    int lines;
+    ScheduleLine *line; /* [lines] in order of gas, then of first appearance */
+    int files;
+    char **path;   /* [files] */
+    char **header; /* [files] commented headers, for the archive */
 } Schedule;
 
-int schedule_read(Schedule *schedule, const char *path, Fault *fault);
+/* path [count]: base first. Rows outside the run are read and checked as well. Owner: caller. */
+int schedule_read(Schedule *schedule, const char *const *path, int count, Fault *fault);
 void schedule_free(Schedule *schedule);
 
 /* Index of gas or -1. */
 int schedule_find(const Schedule *schedule, const char *gas);
 
-/* Mole fraction of gas at decimal year time (1980.5 = mid-1980): linear between mid-years, constant
- * for the half year before the first and after the last mid-year. The caller makes sure with
- * schedule_covers that the run lies inside. */
+/* Mole fraction of gas at decimal year time (1980.5 = mid-1980): linear between mid-years; constant for the
+ * half year before the first. After the last mid-year: constant, but for a gas that its emissions
+ * take over at the end of that year, which goes on with its last slope (never below 0), so that the
+ * take-over has no kink. 0 of a gas without abundances. The caller makes sure with schedule_covers that the
+ * run lies inside. */
 double schedule_abundance(const Schedule *schedule, int gas, double time);
 
-/* Fault naming the gas unless every gas has values for first_year..last_year. */
+/* What drives the ground of gas at time: 1 its emissions, 0 its abundance. */
+int schedule_emits(const Schedule *schedule, int gas, double time);
+
+/* kg per year (365.25 days) that a line gives off at time: the amount of its calendar year, evenly; 0 outside
+ * its years. */
+double schedule_emission(const Schedule *schedule, int line, double time);
+
+/* Fault naming the gas unless every gas has abundances from first_year to the year before its emissions take
+ * over (or last_year), and some line of emission at the ground (0 may be written) in every year from then to
+ * last_year. A gas without abundances is exempt before its first emission. */
 int schedule_covers(const Schedule *schedule, int first_year, int last_year, Fault *fault);
 
 #endif
