@@ -1,235 +1,207 @@
-/* schedule: see schedule.h. */
+/* schedule: the files read and put together; contract in schedule.h. */
 #define _POSIX_C_SOURCE 200809L
 #include "schedule.h"
 
-#include <math.h>
-#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
-#include "table.h"
+#include "schedule_reading.h"
 
-enum { EARLIEST_YEAR = 1700, LATEST_YEAR = 2500 };
+/* ---- from series to the schedule ---- */
 
-enum Column { YEAR, GAS, KIND, AMOUNT, UNIT, LINE, COLUMNS };
-static const char *const column_names[COLUMNS] = {"year", "gas", "kind", "amount", "unit", "line"};
-
-static const char *const kinds[] = {"abundance", "emission"};
-
-static const char *const units[] = {"ppt", "ppb", "ppm", "mol/mol"};
-static const double unit_size[] = {1e-12, 1e-9, 1e-6, 1};
-enum { UNITS = sizeof units / sizeof units[0] };
-
-typedef struct {
-    int gas, year, line;
-    double abundance;
-} Entry;
-
-/* ---- one row ---- */
-
-static int find_columns(const Csv *csv, const char *path, size_t *place, Fault *fault)
+static int make_arrays(Schedule *schedule, Fault *fault)
 {
-    size_t count = csv->first[1];
-    for (int k = 0; k < COLUMNS; k++)
-        place[k] = count;
-    for (size_t c = 0; c < count; c++) {
-        int k = 0;
-        while (k < COLUMNS && strcmp(csv->cell[c], column_names[k]) != 0)
-            k++;
-        if (k == COLUMNS) {
-            const char *near = fault_nearest(csv->cell[c], column_names, COLUMNS);
-            return fault_at(fault, path, csv->line[0], "unknown column \"%.60s\"; %s%s%s", csv->cell[c],
-                            near ? "did you mean " : "the columns are year,gas,kind,amount,unit,line",
-                            near ? near : "", near ? "?" : "");
-        }
-        if (place[k] != count)
-            return fault_at(fault, path, csv->line[0], "two columns are called %s; remove one",
-                            column_names[k]);
-        place[k] = c;
-    }
-    for (int k = 0; k < COLUMNS; k++)
-        if (place[k] == count)
-            return fault_at(fault, path, csv->line[0],
-                            "no column %s; the columns are year,gas,kind,amount,unit,line", column_names[k]);
-    return 0;
-}
-
-static int read_year(const char *path, int line, const char *cell, int *year, Fault *fault)
-{
-    double value;
-    if (csv_number(path, line, "year", cell, &value, fault))
-        return fault->code;
-    if (value != floor(value) || value < EARLIEST_YEAR || value > LATEST_YEAR)
-        return fault_at(fault, path, line, "year is %s; write a whole year from %d to %d", cell,
-                        EARLIEST_YEAR, LATEST_YEAR);
-    *year = (int)value;
-    return 0;
-}
-
-static int read_amount(const char *path, int line, const char *cell, const char *unit, double *abundance,
-                       Fault *fault)
-{
-    double amount;
-    if (csv_number(path, line, "amount", cell, &amount, fault))
-        return fault->code;
-    int u = 0;
-    while (u < UNITS && strcmp(unit, units[u]) != 0)
-        u++;
-    if (u == UNITS) {
-        const char *near = fault_nearest(unit, units, UNITS);
-        return fault_at(fault, path, line, "unit is \"%.60s\"; write ppt, ppb, ppm or mol/mol%s%s%s", unit,
-                        near ? " (did you mean " : "", near ? near : "", near ? "?)" : "");
-    }
-    if (amount < 0)
-        return fault_at(fault, path, line, "amount is %s; an abundance cannot be negative", cell);
-    *abundance = amount * unit_size[u];
-    if (*abundance > 1)
-        return fault_at(fault, path, line, "amount is %s %s, more than the air itself; check the unit", cell,
-                        unit);
-    return 0;
-}
-
-static int check_kind(const char *path, int line, const char *kind, Fault *fault)
-{
-    if (strcmp(kind, kinds[0]) == 0)
-        return 0;
-    if (strcmp(kind, kinds[1]) == 0)
-        return fault_at(fault, path, line,
-                        "kind is emission, which this version does not run; give abundances");
-    const char *near = fault_nearest(kind, kinds, 2);
-    return fault_at(fault, path, line, "kind is \"%.60s\"; %s", kind,
-                    near == kinds[0] ? "did you mean abundance?" : "write abundance");
-}
-
-/* Index of the gas, added when new. The names have room for one per row. */
-static int place_gas(Schedule *schedule, const char *name, int line, int *gas, Fault *fault)
-{
-    if (name[0] == '\0')
-        return fault_at(fault, schedule->path, line, "gas is empty; name a species");
-    if (strlen(name) >= sizeof schedule->gas[0])
-        return fault_at(fault, schedule->path, line, "gas \"%.60s\" has more than %zu letters; shorten it",
-                        name, sizeof schedule->gas[0] - 1);
-    *gas = schedule_find(schedule, name);
-    if (*gas < 0) {
-        *gas = schedule->gases++;
-        strcpy(schedule->gas[*gas], name);
-    }
-    return 0;
-}
-
-static int read_entry(Schedule *schedule, const Csv *csv, size_t row, const size_t *place, Entry *entry,
-                      Fault *fault)
-{
-    char *const *cell = csv->cell + csv->first[row];
-    entry->line = csv->line[row];
-    if (read_year(schedule->path, entry->line, cell[place[YEAR]], &entry->year, fault) ||
-        check_kind(schedule->path, entry->line, cell[place[KIND]], fault) ||
-        read_amount(schedule->path, entry->line, cell[place[AMOUNT]], cell[place[UNIT]], &entry->abundance,
-                    fault) ||
-        place_gas(schedule, cell[place[GAS]], entry->line, &entry->gas, fault))
-        return fault->code;
-    if (cell[place[LINE]][0] == '\0')
-        return fault_at(fault, schedule->path, entry->line,
-                        "line is empty; write a label that says where the figure comes from");
-    return 0;
-}
-
-/* ---- series ---- */
-
-static int compare_entries(const void *a, const void *b)
-{
-    const Entry *x = a, *y = b;
-    if (x->gas != y->gas)
-        return x->gas < y->gas ? -1 : 1;
-    if (x->year != y->year)
-        return x->year < y->year ? -1 : 1;
-    return (x->line > y->line) - (x->line < y->line);
-}
-
-/* entry[count] holds the years of one gas in order. */
-static int check_series(const Schedule *schedule, const Entry *entry, size_t count, Fault *fault)
-{
-    for (size_t e = 1; e < count; e++) {
-        const char *gas = schedule->gas[entry[e].gas];
-        int before = entry[e - 1].year, year = entry[e].year;
-        if (year == before)
-            return fault_at(fault, schedule->path, entry[e].line,
-                            "%s has year %d twice, first on line %d; keep one", gas, year, entry[e - 1].line);
-        if (year == before + 2)
-            return fault_at(fault, schedule->path, entry[e].line, "%s lacks the year %d; add a row for it",
-                            gas, before + 1);
-        if (year != before + 1)
-            return fault_at(fault, schedule->path, entry[e].line,
-                            "%s lacks the years %d to %d; add a row for each", gas, before + 1, year - 1);
-    }
-    return 0;
-}
-
-/* Cut the sorted entries into one series per gas. */
-static int build_series(Schedule *schedule, const Entry *entry, size_t count, Fault *fault)
-{
-    size_t gases = (size_t)schedule->gases;
+    size_t gases = (size_t)schedule->gases + 1; /* never 0 */
     schedule->first_year = calloc(gases, sizeof *schedule->first_year);
     schedule->years = calloc(gases, sizeof *schedule->years);
+    schedule->file = calloc(gases, sizeof *schedule->file);
     schedule->first_line = calloc(gases, sizeof *schedule->first_line);
     schedule->last_line = calloc(gases, sizeof *schedule->last_line);
     schedule->abundance = calloc(gases, sizeof *schedule->abundance);
-    if (!schedule->first_year || !schedule->years || !schedule->first_line || !schedule->last_line ||
-        !schedule->abundance)
-        return fault_memory(fault, schedule->path);
-    for (size_t start = 0, end; start < count; start = end) {
-        int gas = entry[start].gas;
-        end = start + 1;
-        while (end < count && entry[end].gas == gas)
-            end++;
-        if (check_series(schedule, entry + start, end - start, fault))
-            return fault->code;
-        double *series = malloc((end - start) * sizeof *series);
-        if (!series)
-            return fault_memory(fault, schedule->path);
-        for (size_t e = start; e < end; e++)
-            series[e - start] = entry[e].abundance;
-        schedule->abundance[gas] = series;
-        schedule->first_year[gas] = entry[start].year;
-        schedule->years[gas] = (int)(end - start);
-        schedule->first_line[gas] = entry[start].line;
-        schedule->last_line[gas] = entry[end - 1].line;
+    schedule->emission_from = calloc(gases, sizeof *schedule->emission_from);
+    if (!schedule->first_year || !schedule->years || !schedule->file || !schedule->first_line ||
+        !schedule->last_line || !schedule->abundance || !schedule->emission_from)
+        return fault_memory(fault, "schedule");
+    return 0;
+}
+
+/* Plain emissions of one series. */
+static int make_line(const Reading *reading, const Series *series, ScheduleLine *line, Fault *fault)
+{
+    int first, last;
+    if (series_whole(reading, series, fault) || !series_span(series, &first, &last))
+        return fault->code;
+    line->first_year = EARLIEST_YEAR + first;
+    line->years = last - first + 1;
+    line->amount = malloc((size_t)line->years * sizeof *line->amount);
+    if (!line->amount)
+        return fault_memory(fault, "emissions of the schedule");
+    for (int y = first; y <= last; y++)
+        line->amount[y - first] = series->cell[y].value;
+    return 0;
+}
+
+static int make_lines(const Reading *reading, Fault *fault)
+{
+    Schedule *schedule = reading->schedule;
+    schedule->line = calloc((size_t)reading->count + 1, sizeof *schedule->line);
+    if (!schedule->line)
+        return fault_memory(fault, "lines of the schedule");
+    for (int g = 0; g < schedule->gases; g++)
+        for (int s = 0; s < reading->count; s++) {
+            const Series *series = reading->series[s];
+            if (series->gas != g || (series->kind != EMISSION && series->kind != BANK))
+                continue;
+            ScheduleLine *line = &schedule->line[schedule->lines++];
+            line->gas = g;
+            line->label = strdup(series->label);
+            if (!line->label)
+                return fault_memory(fault, "lines of the schedule");
+            strcpy(line->element, series->element);
+            line->from_km = series->from_km;
+            line->to_km = series->to_km;
+            line->file = series->first.file;
+            line->row = series->first.line;
+            if (series->kind == BANK ? schedule_bank(reading, series, line, fault)
+                                     : make_line(reading, series, line, fault))
+                return fault->code;
+            if (!(line->to_km > 0) &&
+                (!schedule->emission_from[g] || line->first_year < schedule->emission_from[g]))
+                schedule->emission_from[g] = line->first_year;
+        }
+    return 0;
+}
+
+/* No abundance may stand in or after the first year of emission but from a file below that of the emission.
+ */
+static int check_both_ways(const Reading *reading, const Series *abundance, Fault *fault)
+{
+    const Schedule *schedule = reading->schedule;
+    for (int s = 0; s < reading->count; s++) {
+        const Series *other = reading->series[s];
+        int first, last;
+        if (other->gas != abundance->gas || other->to_km > 0 ||
+            (other->kind != EMISSION && other->kind != BANK) || !series_span(other, &first, &last))
+            continue;
+        for (int y = first; y < SERIES_YEARS; y++) {
+            Place by = abundance->cell[y].last, from = other->cell[first].made;
+            if (abundance->cell[y].stands && by.file >= from.file)
+                return fault_at(
+                    fault, schedule->path[by.file], by.line,
+                    "%s has an abundance for %d, but %s:%d has emissions from %d on; remove one of "
+                    "the two",
+                    schedule->gas[other->gas], EARLIEST_YEAR + y, schedule->path[from.file], from.line,
+                    EARLIEST_YEAR + first);
+        }
     }
     return 0;
 }
 
-static int build(Schedule *schedule, const Csv *csv, const char *path, Entry *entry, Fault *fault)
+/* The abundances of a gas, up to and with the first year of emissions: its mid-year serves the
+ * interpolation through the change. */
+static int make_abundances(const Reading *reading, const Series *series, Fault *fault)
 {
-    size_t place[COLUMNS], rows = csv->rows - 1;
-    schedule->path = strdup(path);
-    schedule->header = strdup(csv->header);
-    schedule->gas = calloc(rows, sizeof *schedule->gas);
-    if (!schedule->path || !schedule->header || !schedule->gas || !entry)
-        return fault_memory(fault, path);
-    if (find_columns(csv, path, place, fault))
+    Schedule *schedule = reading->schedule;
+    int g = series->gas, first, last, from = schedule->emission_from[g];
+    if (series_whole(reading, series, fault) || check_both_ways(reading, series, fault) ||
+        !series_span(series, &first, &last))
         return fault->code;
-    for (size_t r = 0; r < rows; r++)
-        if (read_entry(schedule, csv, r + 1, place, &entry[r], fault))
-            return fault->code;
-    qsort(entry, rows, sizeof *entry, compare_entries);
-    return build_series(schedule, entry, rows, fault);
+    if (from && EARLIEST_YEAR + last > from)
+        last = from - EARLIEST_YEAR;
+    if (last < first)
+        return 0; /* emissions have replaced it from before its first year */
+    double *values = malloc((size_t)(last - first + 1) * sizeof *values);
+    if (!values)
+        return fault_memory(fault, "abundances of the schedule");
+    for (int y = first; y <= last; y++)
+        values[y - first] = series->cell[y].value;
+    schedule->abundance[g] = values;
+    schedule->first_year[g] = EARLIEST_YEAR + first;
+    schedule->years[g] = last - first + 1;
+    return 0;
 }
 
-int schedule_read(Schedule *schedule, const char *path, Fault *fault)
+/* Rows that messages about a gas point to: of its abundances, else of its first line. */
+static void name_rows(const Reading *reading, int gas)
 {
-    memset(schedule, 0, sizeof *schedule);
+    Schedule *schedule = reading->schedule;
+    const Series *series = schedule->years[gas] ? schedule_series(reading, gas, ABUNDANCE, NULL) : NULL;
+    if (series) {
+        const Cell *cell = series->cell + (schedule->first_year[gas] - EARLIEST_YEAR);
+        Place first = cell[0].made, last = cell[schedule->years[gas] - 1].made;
+        schedule->file[gas] = first.file;
+        schedule->first_line[gas] = first.line;
+        schedule->last_line[gas] = last.file == first.file ? last.line : first.line;
+        return;
+    }
+    for (int l = schedule->lines - 1; l >= 0; l--)
+        if (schedule->line[l].gas == gas) {
+            schedule->file[gas] = schedule->line[l].file;
+            schedule->first_line[gas] = schedule->last_line[gas] = schedule->line[l].row;
+        }
+}
+
+static int build(const Reading *reading, Fault *fault)
+{
+    Schedule *schedule = reading->schedule;
+    if (make_arrays(schedule, fault) || schedule_bank_kinds(reading, fault) || make_lines(reading, fault))
+        return fault->code;
+    for (int s = 0; s < reading->count; s++)
+        if (reading->series[s]->kind == ABUNDANCE && make_abundances(reading, reading->series[s], fault))
+            return fault->code;
+    for (int g = 0; g < schedule->gases; g++)
+        name_rows(reading, g);
+    return 0;
+}
+
+/* ---- files ---- */
+
+static int read_file(Reading *reading, int file, Fault *fault)
+{
+    Schedule *schedule = reading->schedule;
+    const char *path = schedule->path[file];
     Csv csv;
+    Row *row = NULL;
+    size_t count;
     if (csv_read(&csv, path, fault))
         return fault->code;
-    int code;
-    if (csv.rows < 2) {
-        code = fault_at(fault, path, csv.line[0], "no rows follow the column names; add them");
-    } else {
-        Entry *entry = malloc((csv.rows - 1) * sizeof *entry);
-        code = build(schedule, &csv, path, entry, fault);
-        free(entry);
-    }
+    schedule->header[file] = strdup(csv.header);
+    if (!schedule->header[file])
+        fault_memory(fault, path);
+    else if (!schedule_rows(&csv, path, file, &row, &count, fault))
+        schedule_apply(reading, row, count, fault);
+    free(row);
     csv_free(&csv);
+    return fault->code;
+}
+
+static int read_files(Reading *reading, const char *const *path, int count, Fault *fault)
+{
+    Schedule *schedule = reading->schedule;
+    schedule->path = calloc((size_t)count, sizeof *schedule->path);
+    schedule->header = calloc((size_t)count, sizeof *schedule->header);
+    if (!schedule->path || !schedule->header)
+        return fault_memory(fault, "schedule");
+    schedule->files = count;
+    for (int f = 0; f < count; f++)
+        if (!(schedule->path[f] = strdup(path[f])))
+            return fault_memory(fault, "schedule");
+    for (int f = 0; f < count; f++)
+        if (read_file(reading, f, fault))
+            return fault->code;
+    return build(reading, fault);
+}
+
+int schedule_read(Schedule *schedule, const char *const *path, int count, Fault *fault)
+{
+    memset(schedule, 0, sizeof *schedule);
+    Reading reading = {.schedule = schedule};
+    int code = read_files(&reading, path, count, fault);
+    for (int s = 0; s < reading.count; s++) {
+        free(reading.series[s]->label);
+        free(reading.series[s]);
+    }
+    free(reading.series);
     if (code)
         schedule_free(schedule);
     return code;
@@ -237,53 +209,27 @@ int schedule_read(Schedule *schedule, const char *path, Fault *fault)
 
 void schedule_free(Schedule *schedule)
 {
-    if (schedule->abundance)
-        for (int g = 0; g < schedule->gases; g++)
-            free(schedule->abundance[g]);
+    for (int g = 0; schedule->abundance && g < schedule->gases; g++)
+        free(schedule->abundance[g]);
+    for (int l = 0; l < schedule->lines; l++) {
+        free(schedule->line[l].label);
+        free(schedule->line[l].amount);
+        free(schedule->line[l].stock);
+    }
+    for (int f = 0; f < schedule->files; f++) {
+        free(schedule->path[f]);
+        free(schedule->header[f]);
+    }
     free(schedule->gas);
     free(schedule->first_year);
     free(schedule->years);
+    free(schedule->file);
     free(schedule->first_line);
     free(schedule->last_line);
     free(schedule->abundance);
+    free(schedule->emission_from);
+    free(schedule->line);
     free(schedule->path);
     free(schedule->header);
     memset(schedule, 0, sizeof *schedule);
-}
-
-/* ---- use ---- */
-
-int schedule_find(const Schedule *schedule, const char *gas)
-{
-    for (int g = 0; g < schedule->gases; g++)
-        if (strcmp(schedule->gas[g], gas) == 0)
-            return g;
-    return -1;
-}
-
-double schedule_abundance(const Schedule *schedule, int gas, double time)
-{
-    const double *series = schedule->abundance[gas];
-    int years = schedule->years[gas];
-    double place = time - 0.5 - schedule->first_year[gas]; /* years after the first mid-year */
-    if (!(place > 0))
-        return series[0];
-    if (place >= years - 1)
-        return series[years - 1];
-    int i = (int)place;
-    return series[i] + (place - i) * (series[i + 1] - series[i]);
-}
-
-int schedule_covers(const Schedule *schedule, int first_year, int last_year, Fault *fault)
-{
-    for (int g = 0; g < schedule->gases; g++) {
-        int first = schedule->first_year[g], last = first + schedule->years[g] - 1;
-        if (first > first_year || last < last_year)
-            return fault_at(fault, schedule->path,
-                            first > first_year ? schedule->first_line[g] : schedule->last_line[g],
-                            "%s has values for %d to %d, but the run needs %d to %d; add the missing "
-                            "years or change years.first and years.last",
-                            schedule->gas[g], first, last, first_year, last_year);
-    }
-    return 0;
 }

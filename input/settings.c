@@ -242,6 +242,31 @@ static int read_bounds(const Reading *reading, const config_setting_t *setting, 
     return 0;
 }
 
+static int read_layers(const Reading *reading, const config_setting_t *setting, const char *label)
+{
+    Settings *settings = reading->settings;
+    const char *file = file_of(reading, setting);
+    if (!is_list(setting))
+        return wrong_type(reading, setting, label,
+                          "a list of file names, such as [\"late.csv\", \"leak.csv\"]");
+    int count = config_setting_length(setting);
+    if (count > SETTINGS_MAX_LAYERS)
+        return fault_at(reading->fault, file, line_of(setting), "%s lists %d files; at most %d fit", label,
+                        count, SETTINGS_MAX_LAYERS);
+    settings->schedule_layers = 0;
+    for (int l = 0; l < count; l++) {
+        const config_setting_t *element = config_setting_get_elem(setting, (unsigned)l);
+        if (read_text(reading, element, label, 0, settings->schedule_layer[l], SETTINGS_PATH))
+            return reading->fault->code;
+        for (int a = 0; a < l; a++)
+            if (strcmp(settings->schedule_layer[a], settings->schedule_layer[l]) == 0)
+                return fault_at(reading->fault, file, line_of(element), "%s names %s twice; keep one", label,
+                                settings->schedule_layer[l]);
+        settings->schedule_layers = l + 1;
+    }
+    return 0;
+}
+
 /* ---- keys and groups ---- */
 
 static int read_key(Reading *reading, const config_setting_t *setting, const SettingKey *key, size_t index)
@@ -256,6 +281,7 @@ static int read_key(Reading *reading, const config_setting_t *setting, const Set
     case KEY_TEXT: return read_text(reading, setting, label, key->low < 1, member, key->size);
     case KEY_CHOICE: return read_choice(reading, setting, label, key->choices, (int *)(void *)member);
     case KEY_EDGES: return read_edges(reading, setting, label, key);
+    case KEY_LAYERS: return read_layers(reading, setting, label);
     default: return read_bounds(reading, setting, label);
     }
 }
@@ -344,6 +370,18 @@ static int clash(const Reading *reading, const char *group, const char *one, con
                     text);
 }
 
+static int check_file(const Reading *reading, const config_setting_t *setting, const char *key,
+                      const char *name)
+{
+    const Settings *settings = reading->settings;
+    char found[2 * SETTINGS_PATH + 2], what[100];
+    Fault missing = {0};
+    snprintf(what, sizeof what, "files.%s", key);
+    if (table_locate(what, name, settings->case_dir, settings->data_dir, found, sizeof found, &missing))
+        return fault_at(reading->fault, file_of(reading, setting), line_of(setting), "%s", missing.text);
+    return 0;
+}
+
 /* Every file the case names can be read; table_locate alone knows no line of the case. */
 static int check_files(const Reading *reading)
 {
@@ -353,13 +391,16 @@ static int check_files(const Reading *reading)
     for (size_t k = 0; k < count; k++) {
         const config_setting_t *setting = reading->given[k];
         const char *name = (const char *)settings + keys[k].offset;
-        if (!setting || strcmp(keys[k].group, "files") != 0 || !*name)
+        if (!setting || strcmp(keys[k].group, "files") != 0)
             continue;
-        char found[2 * SETTINGS_PATH + 2], what[100];
-        Fault missing = {0};
-        snprintf(what, sizeof what, "files.%s", keys[k].name);
-        if (table_locate(what, name, settings->case_dir, settings->data_dir, found, sizeof found, &missing))
-            return fault_at(reading->fault, file_of(reading, setting), line_of(setting), "%s", missing.text);
+        if (keys[k].type == KEY_LAYERS) {
+            for (int l = 0; l < settings->schedule_layers; l++)
+                if (check_file(reading, config_setting_get_elem(setting, (unsigned)l), keys[k].name,
+                               settings->schedule_layer[l]))
+                    return reading->fault->code;
+        } else if (*name && check_file(reading, setting, keys[k].name, name)) {
+            return reading->fault->code;
+        }
     }
     return 0;
 }

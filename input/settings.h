@@ -17,6 +17,7 @@
 #define SETTINGS_PATH 512
 #define SETTINGS_MAX_EDGES 512
 #define SETTINGS_MAX_BOUNDS 64
+#define SETTINGS_MAX_LAYERS 32
 
 enum DayMode { DAY_MEAN, DAY_FACTORS, DAY_EXPLICIT };
 enum MomentsOut { MOMENTS_NONE, MOMENTS_ALL };
@@ -48,10 +49,12 @@ typedef struct {
                                            then the last of them */
 
     /* files (resolved by table_locate when used) */
-    char air_file[SETTINGS_PATH];                /* "" = U.S. Standard Atmosphere 1976 */
-    char eddy_file[SETTINGS_PATH];               /* eddy-diffusion.csv */
-    char mechanism_file[SETTINGS_PATH];          /* mechanism.cfg */
-    char schedule_file[SETTINGS_PATH];           /* baseline-schedule.csv */
+    char air_file[SETTINGS_PATH];       /* "" = U.S. Standard Atmosphere 1976 */
+    char eddy_file[SETTINGS_PATH];      /* eddy-diffusion.csv */
+    char mechanism_file[SETTINGS_PATH]; /* mechanism.cfg */
+    char schedule_file[SETTINGS_PATH];  /* baseline-schedule.csv */
+    int schedule_layers;                /* files laid over it, in this order */
+    char schedule_layer[SETTINGS_MAX_LAYERS][SETTINGS_PATH];
     char aerosol_file[SETTINGS_PATH];            /* aerosol-surface.csv */
     char bins_file[SETTINGS_PATH];               /* wavelength-bins.csv */
     char solar_file[SETTINGS_PATH];              /* solar-irradiance.csv */

@@ -55,7 +55,10 @@ static const SettingKey keys[] = {
     NAMED("files", "eddy", eddy_file, "eddy-diffusion.csv", "CSV profile of the eddy coefficient"),
     NAMED("files", "mechanism", mechanism_file, "mechanism.cfg", "species and reactions"),
     NAMED("files", "schedule", schedule_file, "baseline-schedule.csv",
-          "CSV of source-gas abundances by year"),
+          "CSV of source-gas abundances and emissions by year"),
+    LIST("files", "schedule_layers", KEY_LAYERS, 0, 0, "",
+         "CSVs laid over the schedule one after the other, such as [ \"late.csv\", \"leak.csv\" ]: each adds "
+         "lines or changes what stands below"),
     NAMED("files", "aerosol", aerosol_file, "aerosol-surface.csv", "CSV profile of sulfate surface area"),
     NAMED("files", "bins", bins_file, "wavelength-bins.csv", "CSV of wavelength intervals"),
     NAMED("files", "solar", solar_file, "solar-irradiance.csv", "CSV of sunlight above the atmosphere"),

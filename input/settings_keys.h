@@ -12,14 +12,15 @@ enum KeyType {
     KEY_TEXT,   /* char[size] */
     KEY_CHOICE, /* int, the index of the word in choices */
     KEY_EDGES,  /* list of numbers into edge_km, their count into edges; each in low..high */
-    KEY_BOUNDS  /* list of groups into bound, their count into bounds */
+    KEY_BOUNDS, /* list of groups into bound, their count into bounds */
+    KEY_LAYERS  /* list of file names into schedule_layer, their count into schedule_layers */
 };
 
 typedef struct {
     const char *group; /* "" for a key outside any group */
     const char *name;
     int type;                   /* enum KeyType */
-    size_t offset;              /* of the member in Settings (unused for KEY_EDGES, KEY_BOUNDS) */
+    size_t offset;              /* of the member in Settings (unused for KEY_EDGES, KEY_BOUNDS, KEY_LAYERS) */
     size_t size;                /* of the array, KEY_TEXT */
     double standard;            /* default of KEY_WHOLE, KEY_REAL, KEY_CHOICE */
     const char *text;           /* default of KEY_TEXT */

@@ -108,6 +108,16 @@ static void print_edges(const Settings *settings, FILE *out)
     fputs(" ]", out);
 }
 
+static void print_layers(const Settings *settings, FILE *out)
+{
+    fputs("[", out);
+    for (int l = 0; l < settings->schedule_layers; l++) {
+        fputs(l == 0 ? " " : ", ", out);
+        print_quoted(settings->schedule_layer[l], out);
+    }
+    fputs(" ]", out);
+}
+
 static void print_help(const SettingKey *key, const char *indent, FILE *out)
 {
     fprintf(out, "%s# %s", indent, key->help);
@@ -132,6 +142,7 @@ static void print_key(const Settings *settings, const SettingKey *key, int help,
     case KEY_TEXT: print_quoted(member, out); break;
     case KEY_CHOICE: print_quoted(key->choices[*(const int *)member], out); break;
     case KEY_EDGES: print_edges(settings, out); break;
+    case KEY_LAYERS: print_layers(settings, out); break;
     default: print_bounds(settings, help, out); break;
     }
     fputs(";\n", out);

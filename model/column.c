@@ -179,12 +179,12 @@ static int set_ground(Model *model, Fault *fault)
         int s = mechanism_solved(mechanism, gas);
         if (s < 0)
             return fault_at(
-                fault, model->schedule.path, model->schedule.first_line[g],
+                fault, model->schedule.path[model->schedule.file[g]], model->schedule.first_line[g],
                 "gas %s is not an active species of mechanism %s; correct the name or add the species", gas,
                 mechanism->path);
         if (model_holds(model, s))
             return fault_at(
-                fault, model->schedule.path, model->schedule.first_line[g],
+                fault, model->schedule.path[model->schedule.file[g]], model->schedule.first_line[g],
                 "gas %s is also held up to the tropopause by a table of the case; remove one of the two",
                 gas);
         model->surface_kind[s] = SURFACE_SCHEDULE;
@@ -205,11 +205,13 @@ static int set_ground(Model *model, Fault *fault)
                             "the built-in surface.bounds holds %s, which the schedule %s carries; give "
                             "surface.bounds without it, "
                             "or take it out of the schedule",
-                            bound->species, model->schedule.path);
+                            bound->species,
+                            model->schedule.path[model->schedule.file[model->surface_gas[s]]]);
         if (model->surface_kind[s] == SURFACE_SCHEDULE)
             return fault_at(fault, file, bound->line,
                             "surface.bounds names %s, which the schedule %s carries; keep one of the two",
-                            bound->species, model->schedule.path);
+                            bound->species,
+                            model->schedule.path[model->schedule.file[model->surface_gas[s]]]);
         if (model_holds(model, s))
             return fault_at(
                 fault, file, bound->line,
@@ -304,6 +306,27 @@ static int make_fields(Model *model, Fault *fault)
     return 0;
 }
 
+static int make_schedule(Model *model, Fault *fault)
+{
+    const Settings *settings = &model->settings;
+    char(*path)[SETTINGS_PATH] = calloc(SETTINGS_MAX_LAYERS + 1, sizeof *path);
+    const char *paths[SETTINGS_MAX_LAYERS + 1];
+    if (!path)
+        return fault_memory(fault, "paths of the schedule");
+    int files = 1 + settings->schedule_layers;
+    int code = locate(settings, "schedule", settings->schedule_file, path[0], fault);
+    for (int f = 1; !code && f < files; f++)
+        code = locate(settings, "schedule layer", settings->schedule_layer[f - 1], path[f], fault);
+    for (int f = 0; f < files; f++)
+        paths[f] = path[f];
+    if (!code)
+        code = schedule_read(&model->schedule, paths, files, fault);
+    for (int f = 0; !code && f < files; f++)
+        code = add_source(model, fault, f ? "schedule layer" : "schedule", model->schedule.header[f]);
+    free(path);
+    return code;
+}
+
 int model_make(Model **made, const Settings *settings, Fault *fault)
 {
     *made = NULL;
@@ -311,7 +334,6 @@ int model_make(Model **made, const Settings *settings, Fault *fault)
     if (!model)
         return fault_memory(fault, "model");
     model->settings = *settings;
-    char path[SETTINGS_PATH];
     double hours[MOMENTS];
     int code = settings->moments == MOMENTS_NONE ? 0 : moments_hours(settings, hours, fault);
     if (!code)
@@ -321,11 +343,7 @@ int model_make(Model **made, const Settings *settings, Fault *fault)
     if (!code)
         code = make_fields(model, fault);
     if (!code)
-        code = locate(settings, "schedule", settings->schedule_file, path, fault);
-    if (!code)
-        code = schedule_read(&model->schedule, path, fault);
-    if (!code)
-        code = add_source(model, fault, "schedule", model->schedule.header);
+        code = make_schedule(model, fault);
     if (!code)
         code = read_troposphere(model, fault);
     if (!code)

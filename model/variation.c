@@ -42,7 +42,7 @@ static int find_co2(Variation *variation, const Model *model, Fault *fault)
     int gas = schedule_find(schedule, "CO2");
     if (gas < 0)
         return fault_at(
-            fault, schedule->path, 0,
+            fault, schedule->path[0], 0,
             "the schedule has no CO2, which temperature.mode = \"co2\" goes by; add the gas, or set "
             "temperature.mode = \"fixed\"");
     variation->co2 = gas;
@@ -50,7 +50,7 @@ static int find_co2(Variation *variation, const Model *model, Fault *fault)
     for (int y = 0; y < schedule->years[gas]; y++)
         if (!(schedule->abundance[gas][y] > 0.0))
             return fault_at(
-                fault, schedule->path, schedule->first_line[gas],
+                fault, schedule->path[schedule->file[gas]], schedule->first_line[gas],
                 "CO2 is %g in %d; temperature.mode = \"co2\" goes by its logarithm: correct it, or "
                 "set temperature.mode = \"fixed\"",
                 schedule->abundance[gas][y], schedule->first_year[gas] + y);
@@ -276,7 +276,8 @@ static int check_range(const Variation *variation, const Model *model, Fault *fa
             double kelvin = base[l] + change;
             if (!(kelvin >= least && kelvin <= most))
                 return fault_at(
-                    fault, co2 >= 0 ? model->schedule.path : variation->change.path, 0,
+                    fault,
+                    co2 >= 0 ? model->schedule.path[model->schedule.file[co2]] : variation->change.path, 0,
                     "the temperature at %g km would be %.0f K in %g; it must lie between %g and %g K: "
                     "correct the table, or set temperature.mode = \"fixed\"",
                     KM_PER_CM * model->grid.middle[l], kelvin,

@@ -210,7 +210,7 @@ refused "negative abundance" scheduled.cfg "schedule.csv:$at: " -3 negative
 sed "/$row/s/,ppt,/,ppq,/" "$baseline" >schedule.csv
 refused "unknown unit" scheduled.cfg "schedule.csv:$at: " ppq ppt
 sed "/$row/s/abundance/emission/" "$baseline" >schedule.csv
-refused "emission" scheduled.cfg "schedule.csv:$at: " emission abundance
+refused "emission in units of abundance" scheduled.cfg "schedule.csv:$at: " emission ppt kt
 sed "/$row/s/,ppt,.*/,ppt/" "$baseline" >schedule.csv
 refused "missing cell" scheduled.cfg "schedule.csv:$at: " "5 cells"
 { cat "$baseline"; echo '1990,CFC-1,abundance,1,ppt,invented'; } >schedule.csv

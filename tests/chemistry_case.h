@@ -73,7 +73,7 @@ static inline int case_start(ChemistryCase *c, Fault *fault)
     if (table_read(&table, case_data("initial-profiles.csv", path), fault))
         return fault->code;
     const double *altitude = table_values(&table, 0);
-    if (schedule_read(&schedule, case_data("baseline-schedule.csv", path), fault)) {
+    if (schedule_read(&schedule, (const char *const[]){case_data("baseline-schedule.csv", path)}, 1, fault)) {
         table_free(&table);
         return fault->code;
     }

@@ -249,10 +249,10 @@ static void schedule_interpolates(void **state)
                path);
     Schedule schedule;
     Fault fault = {0}, uncovered = {0};
-    assert_int_equal(schedule_read(&schedule, path, &fault), 0);
+    assert_int_equal(schedule_read(&schedule, (const char *const[]){path}, 1, &fault), 0);
     assert_int_equal(schedule.gases, 2);
     assert_string_equal(schedule.gas[0], "CO2");
-    assert_string_equal(schedule.header, "title: mine");
+    assert_string_equal(schedule.header[0], "title: mine");
     int carbon = schedule_find(&schedule, "CO2"), freon = schedule_find(&schedule, "CFC-11");
     assert_int_equal(schedule_find(&schedule, "CFC-12"), -1);
     check_near(schedule_abundance(&schedule, carbon, 1960.5), 300e-6, 1e-15);
@@ -301,7 +301,7 @@ static void schedule_refuses_bad_rows(void **state)
         write_file(state, "bad.csv", cases[c].text, path);
         Schedule schedule;
         Fault fault = {0};
-        assert_int_equal(schedule_read(&schedule, path, &fault), FAULT_INPUT);
+        assert_int_equal(schedule_read(&schedule, (const char *const[]){path}, 1, &fault), FAULT_INPUT);
         check_fault(&fault, path, cases[c].place, cases[c].what, (char *)NULL);
         assert_null(schedule.abundance);
     }
@@ -338,7 +338,7 @@ static void baseline_holds_the_published_figures(void **state)
     Fault fault = {0};
     assert_int_equal(
         table_locate("schedule", "baseline-schedule.csv", "", data_dir(), path, sizeof path, &fault), 0);
-    if (schedule_read(&schedule, path, &fault))
+    if (schedule_read(&schedule, (const char *const[]){path}, 1, &fault))
         fail_msg("%s", fault.text);
     assert_int_equal(schedule.gases, 23);
     assert_int_equal(schedule_covers(&schedule, 1955, 2100, &fault), 0);
@@ -367,8 +367,8 @@ static void demonstration_is_marked_invented(void **state)
         assert_non_null(strstr(csv.cell[csv.first[r] + 5], "INVENTED"));
     csv_free(&csv);
     Schedule demo, base;
-    assert_int_equal(schedule_read(&demo, path, &fault), 0);
-    assert_int_equal(schedule_read(&base, base_path, &fault), 0);
+    assert_int_equal(schedule_read(&demo, (const char *const[]){path}, 1, &fault), 0);
+    assert_int_equal(schedule_read(&base, (const char *const[]){base_path}, 1, &fault), 0);
     for (int g = 0; g < demo.gases; g++)
         for (int year = 1955; year <= 2100; year++) {
             double is = shipped(&demo, demo.gas[g], year), was = shipped(&base, demo.gas[g], year);

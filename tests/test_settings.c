@@ -266,7 +266,7 @@ static void settings_defaults_fit_the_data(void **state)
     Fault fault = {0};
     Schedule schedule;
     snprintf(path, sizeof path, "%s/%s", data_dir(), settings.schedule_file);
-    if (schedule_read(&schedule, path, &fault) ||
+    if (schedule_read(&schedule, (const char *const[]){path}, 1, &fault) ||
         schedule_covers(&schedule, settings.first_year, settings.last_year, &fault))
         fail_msg("%s", fault.text);
     snprintf(path, sizeof path, "%s/%s", data_dir(), settings.mechanism_file);
