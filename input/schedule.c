@@ -229,6 +229,7 @@ void schedule_free(Schedule *schedule)
     free(schedule->abundance);
     free(schedule->emission_from);
     free(schedule->line);
+    free(schedule->span);
     free(schedule->path);
     free(schedule->header);
     memset(schedule, 0, sizeof *schedule);

@@ -10,6 +10,8 @@
 #ifndef SKYMEND_SCHEDULE_H
 #define SKYMEND_SCHEDULE_H
 
+#include <stdio.h>
+
 #include "fault.h"
 
 /* One line of emissions of one gas, after layers, rules and banks have been worked out. */
@@ -21,8 +23,15 @@ typedef struct {
     int first_year, years;
     double *amount; /* [years] kg in the calendar year; never below 0 */
     int file, row;  /* where its first row stands: index in path[], line of the file */
-    double *stock;  /* [years + 1] kg in the bank at the start of each year and at the end; NULL: no bank */
+    double *stock;  /* [years + 1] kg in the bank at the start of each year (with what is put in then) and at
+                       the end; NULL: no bank */
 } ScheduleLine;
+
+/* The years that a file after the first speaks of, for one gas, kind and line. */
+typedef struct {
+    int file, row; /* of the first such row */
+    int first_year, last_year;
+} ScheduleSpan;
 
 typedef struct {
     int gases;
@@ -30,12 +39,15 @@ typedef struct {
     int *first_year;             /* [gases] of its abundances */
     int *years;                  /* [gases] number of consecutive years of abundance; 0: emissions only */
     int *file;                   /* [gases] file of the rows named next, index in path[] */
-    int *first_line, *last_line; /* [gases] lines of the first and the last year, for messages */
+    int *first_line, *last_line; /* [gases] lines of the first and the last year of abundance (without any:
+                                    first row of its first line), for messages */
     double **abundance;          /* [gases][years] mole fraction, mol mol-1, global mean at mid-year */
     int *emission_from; /* [gases] from the start of this year on emissions at the ground drive it; 0: never.
                            Emissions aloft do not count here: they come on top of whatever the ground does */
     int lines;
     ScheduleLine *line; /* [lines] in order of gas, then of first appearance */
+    int spans;
+    ScheduleSpan *span; /* [spans] see schedule_meets */
     int files;
     char **path;   /* [files] */
     char **header; /* [files] commented headers, for the archive */
@@ -64,7 +76,16 @@ double schedule_emission(const Schedule *schedule, int line, double time);
 
 /* Fault naming the gas unless every gas has abundances from first_year to the year before its emissions take
  * over (or last_year), and some line of emission at the ground (0 may be written) in every year from then to
- * last_year. A gas without abundances is exempt before its first emission. */
+ * last_year. A gas without abundances is exempt before its first emission. Fault also for a bank whose years
+ * end before last_year while it still holds something. */
 int schedule_covers(const Schedule *schedule, int first_year, int last_year, Fault *fault);
+
+/* Fault naming the row when a file after the first changes or adds a line in years that all lie outside
+ * first_year..last_year, so that a run of these years would never see it. What concerns a bank counts also
+ * when it lies before, since a stock carries on. For runs, not for questions about one year. */
+int schedule_meets(const Schedule *schedule, int first_year, int last_year, Fault *fault);
+
+/* What drives each gas when, and the lines with years and totals, every line of text led by prefix. */
+void schedule_print(const Schedule *schedule, const char *prefix, FILE *out);
 
 #endif

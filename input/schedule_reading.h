@@ -1,8 +1,8 @@
 /* schedule_reading: how a schedule is put together. Private to schedule*.c.
  *
  * Each file is cut into rows (schedule_row.c); the rows of a file are applied, in order of their first year,
- * to series of yearly values that the files share (schedule_layers.c); the series make the Schedule
- * (schedule.c, banks in schedule_bank.c).
+ * to series of yearly values that the files share (schedule_layers.c, values in schedule_rules.c); the series
+ * make the Schedule (schedule.c, banks in schedule_bank.c).
  */
 #ifndef SKYMEND_SCHEDULE_READING_H
 #define SKYMEND_SCHEDULE_READING_H
@@ -63,14 +63,44 @@ typedef struct {
     int count, room, gas_room;
 } Reading;
 
+/* ---- schedule_units.c ---- */
+
+enum UnitType { UNIT_FRACTION, UNIT_MASS, UNIT_SHARE };
+
+typedef struct {
+    int type;             /* enum UnitType */
+    double size;          /* mol mol-1, kg, or share of 1 that one of it is */
+    int per_year, per_km; /* 1 where the text says so */
+    char element[4];      /* "" or the element that the mass is of */
+} Unit;
+
+/* 0 when the text is a unit of any kind. */
+int schedule_unit(const char *text, Unit *unit);
+int schedule_unit_fits(int kind, const Unit *unit);
+/* "an abundance write ppt, ...", and the unit of the kind that text may be a slip of, or NULL. */
+const char *schedule_unit_advice(int kind);
+const char *schedule_unit_near(int kind, const char *text);
+/* Past blanks; index of word in words or count. */
+const char *schedule_skip(const char *p);
+int schedule_word(const char *word, const char *const *words, int count);
+
 /* ---- schedule_row.c ---- */
 
 /* The rows after the column names. *rows: owner caller, free; they point into csv. */
 int schedule_rows(const Csv *csv, const char *path, int file, Row **rows, size_t *count, Fault *fault);
 
+/* ---- schedule_rules.c ---- */
+
+/* Give the years of the row their values: of a change those that stand (all must, unless star is 1). Adds the
+ * number of years to *hits. Element, measure and height must be those of the series, which takes them from
+ * its first row. */
+int schedule_rule(const Reading *reading, Series *series, const Row *row, int star, int *hits, Fault *fault);
+/* That check of element, measure and height alone. */
+int schedule_same(const Reading *reading, Series *series, const Row *row, Fault *fault);
+
 /* ---- schedule_layers.c ---- */
 
-/* Apply one file. Sorts the rows. */
+/* Apply one file and note its spans. Sorts the rows. */
 int schedule_apply(Reading *reading, Row *row, size_t count, Fault *fault);
 /* Series of a gas, kind and label (label NULL: any), or NULL. */
 Series *schedule_series(const Reading *reading, int gas, int kind, const char *label);

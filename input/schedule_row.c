@@ -33,6 +33,16 @@ static int find_columns(Sheet *sheet)
         sheet->place[k] = count;
     for (size_t c = 0; c < count; c++) {
         int k = 0;
+        if (!csv->cell[c][0]) { /* a spreadsheet may have added empty columns */
+            size_t r = 1;
+            while (r < csv->rows && !csv->cell[csv->first[r] + c][0])
+                r++;
+            if (r == csv->rows)
+                continue;
+            return fault_at(sheet->fault, sheet->path, csv->line[r],
+                            "\"%.60s\" stands in a column without a name; name the column, or empty the cell",
+                            csv->cell[csv->first[r] + c]);
+        }
         while (k < COLUMNS && strcmp(csv->cell[c], column_names[k]) != 0)
             k++;
         if (k == COLUMNS) {
@@ -63,30 +73,17 @@ static const char *cell_of(const Sheet *sheet, size_t row, int column)
     return sheet->place[column] < csv->first[1] ? csv->cell[csv->first[row] + sheet->place[column]] : "";
 }
 
-static int is_one_of(const char *word, const char *const *words, int count)
-{
-    int k = 0;
-    while (k < count && strcmp(word, words[k]) != 0)
-        k++;
-    return k;
-}
-
 /* ---- years ---- */
-
-static const char *skip_blank(const char *p)
-{
-    return p + strspn(p, " \t");
-}
 
 /* The second year of "2030-2060", with a hyphen or the dash a word processor makes of it; NULL otherwise. */
 static const char *second_year(const char *cell)
 {
-    const char *p = skip_blank(cell + strspn(cell, "0123456789"));
+    const char *p = schedule_skip(cell + strspn(cell, "0123456789"));
     if (p == cell)
         return NULL;
     if (*p == '-')
-        return skip_blank(p + 1);
-    return strncmp(p, "\xe2\x80\x93", 3) == 0 ? skip_blank(p + 3) : NULL;
+        return schedule_skip(p + 1);
+    return strncmp(p, "\xe2\x80\x93", 3) == 0 ? schedule_skip(p + 3) : NULL;
 }
 
 static int read_years(const Sheet *sheet, const char *cell, Row *row)
@@ -118,124 +115,7 @@ static int read_years(const Sheet *sheet, const char *cell, Row *row)
     return 0;
 }
 
-/* ---- units ---- */
-
-enum UnitType { UNIT_FRACTION, UNIT_MASS, UNIT_SHARE };
-
-typedef struct {
-    int type; /* enum UnitType */
-    double size;
-    int per_year, per_km;
-    char element[4];
-} Unit;
-
-typedef struct {
-    const char *name;
-    int type;
-    double size;
-} BaseUnit;
-
-static const BaseUnit base_units[] = {
-    {"ppt", UNIT_FRACTION, 1e-12},   {"ppb", UNIT_FRACTION, 1e-9},
-    {"ppm", UNIT_FRACTION, 1e-6},    {"mol/mol", UNIT_FRACTION, 1},
-    {"mol mol-1", UNIT_FRACTION, 1}, {"kg", UNIT_MASS, 1},
-    {"t", UNIT_MASS, 1e3},           {"Mg", UNIT_MASS, 1e3},
-    {"kt", UNIT_MASS, 1e6},          {"Gg", UNIT_MASS, 1e6},
-    {"Mt", UNIT_MASS, 1e9},          {"Tg", UNIT_MASS, 1e9},
-    {"%", UNIT_SHARE, 0.01},         {"1", UNIT_SHARE, 1},
-};
-enum { BASE_UNITS = sizeof base_units / sizeof base_units[0] };
-
-static const char *const elements[] = {"H", "C", "N", "O", "F", "S", "Cl", "Br", "I"};
-static const char *const years[] = {"yr", "year", "a", "yr-1", "year-1", "a-1"};
-
-/* Next word of a unit into word ("/" is a word of its own); its end, or NULL after the last. */
-static const char *next_word(const char *p, char word[16])
-{
-    p = skip_blank(p);
-    size_t n = *p == '/' ? 1 : strcspn(p, " \t/");
-    if (n == 0 || n > 15)
-        return NULL;
-    memcpy(word, p, n);
-    word[n] = '\0';
-    return p + n;
-}
-
-/* What follows the base unit: an element, then per year and per km in any order. 0 when it is understood. */
-static int read_unit_tail(const char *p, Unit *unit)
-{
-    char word[16];
-    while (*skip_blank(p)) {
-        if (!(p = next_word(p, word)))
-            return 1;
-        int element = is_one_of(word, elements, 9), per = strcmp(word, "/") == 0 || strcmp(word, "per") == 0;
-        if (element < 9) {
-            if (unit->type != UNIT_MASS || unit->element[0] || unit->per_year || unit->per_km)
-                return 1;
-            strcpy(unit->element, word);
-            continue;
-        }
-        if (per && !(p = next_word(p, word)))
-            return 1;
-        int year = is_one_of(word, years, 6);
-        int *which = year < 6 && (year < 3) == per        ? &unit->per_year
-                     : !strcmp(word, per ? "km" : "km-1") ? &unit->per_km
-                                                          : NULL;
-        if (!which || *which)
-            return 1;
-        *which = 1;
-    }
-    return 0;
-}
-
-/* 0 when the text is a unit at all. */
-static int read_unit(const char *text, Unit *unit)
-{
-    *unit = (Unit){0};
-    if (strcmp(text, "yr-1") == 0) {
-        *unit = (Unit){.type = UNIT_SHARE, .size = 1, .per_year = 1};
-        return 0;
-    }
-    for (int u = 0; u < BASE_UNITS; u++) {
-        size_t n = strlen(base_units[u].name);
-        if (strncmp(text, base_units[u].name, n) != 0 || isalnum((unsigned char)text[n]))
-            continue;
-        unit->type = base_units[u].type;
-        unit->size = base_units[u].size;
-        return unit->type == UNIT_FRACTION ? text[n] != '\0' : read_unit_tail(text + n, unit);
-    }
-    return 1;
-}
-
-/* Units of a kind as a message lists them, and those that a slip is compared with. */
-static const struct {
-    const char *wanted;
-    const char *const near[10];
-} kind_units[KINDS] = {
-    [ABUNDANCE] = {"an abundance write ppt, ppb, ppm or mol/mol", {"ppt", "ppb", "ppm", "mol/mol"}},
-    [EMISSION] =
-        {"an emission write kg, t, Mg, kt, Gg, Mt or Tg, with the element where it is the mass of one "
-         "(kt N), then /km where it is of each km of height; it is per year",
-         {"kg", "t", "Mg", "kt", "Gg", "Mt", "Tg", "kt/yr", "kt/km", "kt N"}},
-    [BANK] = {"a bank write kg, t, Mg, kt, Gg, Mt or Tg", {"kg", "t", "Mg", "kt", "Gg", "Mt", "Tg"}},
-    [FILLING] = {"a filling write kg, t, Mg, kt, Gg, Mt or Tg; it is per year",
-                 {"kg", "t", "Mg", "kt", "Gg", "Mt", "Tg", "kt/yr"}},
-    [RELEASE] = {"a release write %/yr or 1/yr, the share of the stock that escapes", {"%/yr", "1/yr"}},
-    [DESTRUCTION] = {"a destruction write %/yr, 1/yr, or a mass such as kt/yr",
-                     {"%/yr", "1/yr", "kt/yr", "kt"}},
-};
-
-static int unit_fits(int kind, const Unit *unit)
-{
-    switch (kind) {
-    case ABUNDANCE: return unit->type == UNIT_FRACTION;
-    case EMISSION: return unit->type == UNIT_MASS;
-    case BANK: return unit->type == UNIT_MASS && !unit->per_year && !unit->per_km;
-    case FILLING: return unit->type == UNIT_MASS && !unit->per_km;
-    case RELEASE: return unit->type == UNIT_SHARE && !unit->per_km;
-    default: return unit->type != UNIT_FRACTION && !unit->per_km;
-    }
-}
+/* ---- amounts ---- */
 
 /* size: what an amount in this unit is multiplied by. */
 static int read_row_unit(const Sheet *sheet, const char *cell, Row *row, double *size)
@@ -244,7 +124,7 @@ static int read_row_unit(const Sheet *sheet, const char *cell, Row *row, double 
     *size = 1;
     if (!*cell && (row->rule == HOLD || row->rule == GROWTH))
         return 0;
-    int unknown = read_unit(cell, &unit);
+    int unknown = schedule_unit(cell, &unit);
     if (row->change == SCALE) {
         if (unknown || unit.type != UNIT_SHARE || unit.per_year || unit.per_km)
             return fault_at(sheet->fault, sheet->path, row->place.line,
@@ -253,13 +133,10 @@ static int read_row_unit(const Sheet *sheet, const char *cell, Row *row, double 
         *size = unit.size;
         return 0;
     }
-    if (unknown || !unit_fits(row->kind, &unit)) {
-        size_t count = 0;
-        while (count < 10 && kind_units[row->kind].near[count])
-            count++;
-        const char *near = unknown ? fault_nearest(cell, kind_units[row->kind].near, count) : NULL;
+    if (unknown || !schedule_unit_fits(row->kind, &unit)) {
+        const char *near = unknown ? schedule_unit_near(row->kind, cell) : NULL;
         return fault_at(sheet->fault, sheet->path, row->place.line, "unit is \"%.60s\"; for %s%s%s%s", cell,
-                        kind_units[row->kind].wanted, near ? " (did you mean " : "", near ? near : "",
+                        schedule_unit_advice(row->kind), near ? " (did you mean " : "", near ? near : "",
                         near ? "?)" : "");
     }
     row->has_unit = 1;
@@ -270,15 +147,13 @@ static int read_row_unit(const Sheet *sheet, const char *cell, Row *row, double 
     return 0;
 }
 
-/* ---- amounts ---- */
-
 /* What follows p when it starts with word and a blank (or its end), else NULL. */
 static const char *after_word(const char *p, const char *word)
 {
     size_t n = strlen(word);
     if (strncmp(p, word, n) != 0 || (p[n] != '\0' && p[n] != ' ' && p[n] != '\t'))
         return NULL;
-    return skip_blank(p + n);
+    return schedule_skip(p + n);
 }
 
 /* "+2 % per year", "-5 %/yr", "up 2 % per year", "down 5 % per year" (a spreadsheet takes a leading sign for
@@ -298,10 +173,10 @@ static int read_growth(const char *cell, double *growth)
         return 1;
     char *end;
     *growth = sign * strtod(p, &end) / 100;
-    p = skip_blank(end);
+    p = schedule_skip(end);
     if (*p != '%')
         return 1;
-    p = skip_blank(p + 1);
+    p = schedule_skip(p + 1);
     return strcmp(p, "per year") != 0 && strcmp(p, "/yr") != 0 && strcmp(p, "/year") != 0 &&
            strcmp(p, "per yr") != 0;
 }
@@ -349,7 +224,7 @@ static int read_amount(const Sheet *sheet, const char *cell, Row *row)
 
 static int read_kind(const Sheet *sheet, const char *cell, Row *row)
 {
-    row->kind = is_one_of(cell, schedule_kinds, KINDS);
+    row->kind = schedule_word(cell, schedule_kinds, KINDS);
     if (row->kind < KINDS)
         return 0;
     const char *near = fault_nearest(cell, schedule_kinds, KINDS);
@@ -361,7 +236,7 @@ static int read_kind(const Sheet *sheet, const char *cell, Row *row)
 
 static int read_change(const Sheet *sheet, const char *cell, Row *row)
 {
-    row->change = *cell ? is_one_of(cell, changes, CHANGES) : NEW;
+    row->change = *cell ? schedule_word(cell, changes, CHANGES) : NEW;
     if (row->change == CHANGES) {
         const char *near = fault_nearest(cell, changes, CHANGES);
         return fault_at(sheet->fault, sheet->path, row->place.line, "change is \"%.60s\"; %s%s%s", cell,
@@ -457,24 +332,38 @@ static int read_row(const Sheet *sheet, size_t at, Row *row)
     return check_change(sheet, row);
 }
 
+/* A row of commas alone, as a spreadsheet leaves it. */
+static int is_blank(const Csv *csv, size_t row)
+{
+    for (size_t c = csv->first[row]; c < csv->first[row + 1]; c++)
+        if (csv->cell[c][0])
+            return 0;
+    return 1;
+}
+
 int schedule_rows(const Csv *csv, const char *path, int file, Row **rows, size_t *count, Fault *fault)
 {
     Sheet sheet = {.path = path, .csv = csv, .fault = fault};
     *rows = NULL;
-    *count = csv->rows - 1;
+    *count = 0;
     if (find_columns(&sheet))
         return fault->code;
-    if (csv->rows < 2)
-        return fault_at(fault, path, csv->line[0], "no rows follow the column names; add them");
-    Row *made = calloc(*count, sizeof *made);
+    Row *made = calloc(csv->rows, sizeof *made);
     if (!made)
         return fault_memory(fault, path);
-    for (size_t r = 0; r < *count; r++) {
-        made[r].place = (Place){file, csv->line[r + 1]};
-        if (read_row(&sheet, r + 1, &made[r])) {
+    for (size_t r = 1; r < csv->rows; r++) {
+        if (is_blank(csv, r))
+            continue;
+        made[*count].place = (Place){file, csv->line[r]};
+        if (read_row(&sheet, r, &made[*count])) {
             free(made);
             return fault->code;
         }
+        ++*count;
+    }
+    if (*count == 0) {
+        free(made);
+        return fault_at(fault, path, csv->line[0], "no rows follow the column names; add them");
     }
     *rows = made;
     return 0;

@@ -76,6 +76,23 @@ static int has_line(const Schedule *schedule, int g, int year, int *last)
     return 0;
 }
 
+/* A bank does not stop giving off because its rows stop. */
+static int covers_banks(const Schedule *schedule, int last_year, Fault *fault)
+{
+    for (int l = 0; l < schedule->lines; l++) {
+        const ScheduleLine *line = &schedule->line[l];
+        int end = line->first_year + line->years - 1;
+        if (line->stock && end < last_year && line->stock[line->years] > 0)
+            return fault_at(
+                fault, schedule->path[line->file], line->row,
+                "the bank of %s, line \"%.60s\", still holds %.6g kt%s%s at the end of %d, while the "
+                "run goes to %d; carry its release on (0 for none), or change years.last",
+                schedule->gas[line->gas], line->label, line->stock[line->years] * 1e-6,
+                line->element[0] ? " " : "", line->element, end, last_year);
+    }
+    return 0;
+}
+
 int schedule_covers(const Schedule *schedule, int first_year, int last_year, Fault *fault)
 {
     for (int g = 0; g < schedule->gases; g++) {
@@ -93,6 +110,20 @@ int schedule_covers(const Schedule *schedule, int first_year, int last_year, Fau
                     "%s is driven by emissions from %d on, but no line has any in %d, while the run "
                     "goes to %d; add rows (0 for none) or change years.last",
                     schedule->gas[g], from, year, last_year);
+    }
+    return covers_banks(schedule, last_year, fault);
+}
+
+int schedule_meets(const Schedule *schedule, int first_year, int last_year, Fault *fault)
+{
+    for (int s = 0; s < schedule->spans; s++) {
+        const ScheduleSpan *span = &schedule->span[s];
+        if (span->last_year < first_year || span->first_year > last_year)
+            return fault_at(
+                fault, schedule->path[span->file], span->row,
+                "this line is given for %d to %d, outside the run's %d to %d, which would never see "
+                "it; correct the years, change years.first and years.last, or leave the rows out",
+                span->first_year, span->last_year, first_year, last_year);
     }
     return 0;
 }

@@ -73,6 +73,8 @@ static int run_check(const Look *look, Fault *fault)
     if (!code)
         code = model_make(&model, settings, fault);
     if (!code)
+        code = schedule_meets(&model->schedule, settings->first_year, settings->last_year, fault);
+    if (!code)
         code = column_make(&column, model, fault);
     if (!code) {
         const Mechanism *mechanism = model->mechanism;
@@ -84,6 +86,7 @@ static int run_check(const Look *look, Fault *fault)
                mechanism->photolysis_first, mechanism->surface_first - mechanism->photolysis_first,
                mechanism->washout_first - mechanism->surface_first, model->spectra->bins,
                model->schedule.gases, column_ozone_du(model, column->x));
+        schedule_print(&model->schedule, "// ", stdout);
     }
     column_free(column);
     model_free(model);

@@ -135,6 +135,8 @@ static int run(const Request *request, Fault *fault)
     if (!code)
         code = model_make(&model, settings, fault);
     if (!code)
+        code = schedule_meets(&model->schedule, settings->first_year, settings->last_year, fault);
+    if (!code)
         code = column_make(&column, model, fault);
     if (!code && request->threads)
         omp_set_num_threads(request->threads);

@@ -45,6 +45,11 @@ static int find_co2(Variation *variation, const Model *model, Fault *fault)
             fault, schedule->path[0], 0,
             "the schedule has no CO2, which temperature.mode = \"co2\" goes by; add the gas, or set "
             "temperature.mode = \"fixed\"");
+    if (schedule->emission_from[gas] || schedule->years[gas] == 0)
+        return fault_at(
+            fault, schedule->path[schedule->file[gas]], schedule->first_line[gas],
+            "CO2 is given as emissions, but temperature.mode = \"co2\" goes by its abundance; give "
+            "abundances, or set temperature.mode = \"fixed\"");
     variation->co2 = gas;
     variation->co2_reference = 1e-6 * model->settings.reference_co2_ppm;
     for (int y = 0; y < schedule->years[gas]; y++)
