@@ -1,9 +1,9 @@
-/* Tests of input/: faults, tables, schedules and the shipped data. Settings are in test_settings.c.
+/* Tests of input/: faults, tables and the shipped data. Settings are in test_settings.c, schedules in
+ * test_schedule.c.
  * Run from the project's folder; SKYMEND_DATA overrides the place of the data. */
 #define _XOPEN_SOURCE 700 /* mkdtemp */
 #include "scratch.h"
 
-#include "../input/schedule.h"
 #include "../input/table.h"
 
 /* ---- fault ---- */
@@ -234,151 +234,6 @@ static void files_are_located(void **state)
     assert_int_equal(table_locate("test", "here.csv", *state, data, found, 8, &small), FAULT_INPUT);
 }
 
-/* ---- schedules ---- */
-
-#define COLUMN_LINE "year,gas,kind,amount,unit,line\n"
-
-static void schedule_interpolates(void **state)
-{
-    char path[300];
-    write_file(state, "s.csv",
-               "# title: mine\nline,unit,gas,amount,year,kind\n"
-               "a,ppm,CO2,320,1962,abundance\na,ppm,CO2,300,1960,abundance\n"
-               "b,ppt,CFC-11,10,1960,abundance\n\"c, d\",ppb,CFC-11,0.02,1961,abundance\n"
-               "a,mol/mol,CO2,3.1e-4,1961,abundance\n",
-               path);
-    Schedule schedule;
-    Fault fault = {0}, uncovered = {0};
-    assert_int_equal(schedule_read(&schedule, (const char *const[]){path}, 1, &fault), 0);
-    assert_int_equal(schedule.gases, 2);
-    assert_string_equal(schedule.gas[0], "CO2");
-    assert_string_equal(schedule.header[0], "title: mine");
-    int carbon = schedule_find(&schedule, "CO2"), freon = schedule_find(&schedule, "CFC-11");
-    assert_int_equal(schedule_find(&schedule, "CFC-12"), -1);
-    check_near(schedule_abundance(&schedule, carbon, 1960.5), 300e-6, 1e-15);
-    check_near(schedule_abundance(&schedule, carbon, 1961.0), 305e-6, 1e-14);
-    check_near(schedule_abundance(&schedule, carbon, 1962.25), 317.5e-6, 1e-14);
-    check_near(schedule_abundance(&schedule, carbon, 1960.0), 300e-6, 1e-15);
-    check_near(schedule_abundance(&schedule, carbon, 1963.0), 320e-6, 1e-15);
-    check_near(schedule_abundance(&schedule, freon, 1961.25), 17.5e-12, 1e-14);
-    assert_int_equal(schedule_covers(&schedule, 1960, 1961, &fault), 0);
-    schedule_covers(&schedule, 1960, 1962, &uncovered);
-    check_fault(&uncovered, path, ":6: ", "CFC-11", "1960 to 1961", "1960 to 1962", (char *)NULL);
-    schedule_free(&schedule);
-}
-
-static void schedule_refuses_bad_rows(void **state)
-{
-    static const struct {
-        const char *text, *place, *what;
-    } cases[] = {
-        {COLUMN_LINE, ":1: ", "no rows"},
-        {"year,gas,kind,amount,unit\n1960,A,abundance,1,ppt\n", ":1: ", "no column line"},
-        {"year,gas,kind,amuont,unit,line\n1960,A,abundance,1,ppt,x\n", ":1: ", "did you mean amount"},
-        {"year,gas,kind,amount,unit,unit\n1960,A,abundance,1,ppt,x\n", ":1: ", "two columns"},
-        {COLUMN_LINE "1960,A,emission,1,ppt,x\n", ":2: ", "emission"},
-        {COLUMN_LINE "1960,A,abundanse,1,ppt,x\n", ":2: ", "did you mean abundance"},
-        {COLUMN_LINE "1960,A,abundance,1,pptv,x\n", ":2: ", "did you mean ppt"},
-        {COLUMN_LINE "1960,A,abundance,1,kt,x\n", ":2: ", "write ppt, ppb, ppm or mol/mol"},
-        {COLUMN_LINE "1960,A,abundance,-1,ppt,x\n", ":2: ", "negative"},
-        {COLUMN_LINE "1960,A,abundance,2e6,ppm,x\n", ":2: ", "more than the air"},
-        {COLUMN_LINE "1960,A,abundance,,ppt,x\n", ":2: ", "empty"},
-        {COLUMN_LINE "1960,A,abundance,n/a,ppt,x\n", ":2: ", "no number"},
-        {COLUMN_LINE "1960.5,A,abundance,1,ppt,x\n", ":2: ", "whole year"},
-        {COLUMN_LINE "60,A,abundance,1,ppt,x\n", ":2: ", "whole year"},
-        {COLUMN_LINE "1960,,abundance,1,ppt,x\n", ":2: ", "gas is empty"},
-        {COLUMN_LINE "1960,A,abundance,1,ppt,\n", ":2: ", "line is empty"},
-        {COLUMN_LINE "1960,a-name-with-far-more-than-31-letters,abundance,1,ppt,x\n", ":2: ", "shorten"},
-        {COLUMN_LINE "1960,A,abundance,1,ppt,x\n1961,A,abundance,1,ppt,x\n1960,A,abundance,2,ppt,x\n",
-         ":4: ", "year 1960 twice, first on line 2"},
-        {COLUMN_LINE "1960,A,abundance,1,ppt,x\n1962,A,abundance,1,ppt,x\n", ":3: ", "lacks the year 1961"},
-        {COLUMN_LINE "1960,A,abundance,1,ppt,x\n1965,A,abundance,1,ppt,x\n",
-         ":3: ", "lacks the years 1961 to 1964"},
-        {COLUMN_LINE "1960,A,abundance,1\n", ":2: ", "4 cells"},
-    };
-    for (size_t c = 0; c < sizeof cases / sizeof cases[0]; c++) {
-        char path[300];
-        write_file(state, "bad.csv", cases[c].text, path);
-        Schedule schedule;
-        Fault fault = {0};
-        assert_int_equal(schedule_read(&schedule, (const char *const[]){path}, 1, &fault), FAULT_INPUT);
-        check_fault(&fault, path, cases[c].place, cases[c].what, (char *)NULL);
-        assert_null(schedule.abundance);
-    }
-}
-
-static double shipped(const Schedule *schedule, const char *gas, int year)
-{
-    int index = schedule_find(schedule, gas);
-    assert_true(index >= 0);
-    return schedule_abundance(schedule, index, year + 0.5);
-}
-
-/* Figures of WMO/UNEP 2022, chapter 7 baseline (ppt), and of the Indicators of Global Climate Change. */
-static const struct {
-    const char *gas;
-    int year;
-    double amount;
-} published[] = {
-    {"CFC-11", 1955, 3.29e-12},     {"CFC-11", 1980, 162.31e-12},   {"CFC-11", 2100, 69.5e-12},
-    {"CFC-12", 1993, 510.1e-12},    {"CFC-113", 1993, 81.36e-12},   {"CFC-114", 1990, 15.06e-12},
-    {"CFC-115", 1992, 6.14e-12},    {"CCl4", 1990, 106.08e-12},     {"CH3CCl3", 1992, 133.1e-12},
-    {"HCFC-22", 2100, 17.04e-12},   {"HCFC-141b", 1976, 0.06e-12},  {"HCFC-142b", 2100, 6.36e-12},
-    {"halon-1211", 1990, 2.38e-12}, {"halon-1202", 1993, 0.03e-12}, {"halon-1301", 1993, 2.41e-12},
-    {"halon-2402", 1991, 0.41e-12}, {"CH3Br", 1993, 8.97e-12},      {"CH3Cl", 2100, 539.5e-12},
-    {"CO2", 2000, 368.96e-6},       {"CH4", 2000, 1773.14e-9},      {"N2O", 2024, 337.92e-9},
-    {"CH4", 1955, 1206.51e-9},      {"CH2Cl2", 2020, 42.0689e-12},  {"CHCl3", 1990, 10.3271e-12},
-};
-
-static void baseline_holds_the_published_figures(void **state)
-{
-    (void)state;
-    char path[500];
-    Schedule schedule;
-    Fault fault = {0};
-    assert_int_equal(
-        table_locate("schedule", "baseline-schedule.csv", "", data_dir(), path, sizeof path, &fault), 0);
-    if (schedule_read(&schedule, (const char *const[]){path}, 1, &fault))
-        fail_msg("%s", fault.text);
-    assert_int_equal(schedule.gases, 23);
-    assert_int_equal(schedule_covers(&schedule, 1955, 2100, &fault), 0);
-    for (size_t p = 0; p < sizeof published / sizeof published[0]; p++)
-        check_near(shipped(&schedule, published[p].gas, published[p].year), published[p].amount, 1e-14);
-    /* the pathway joins the observations without a jump: a step no larger than 1 % a year */
-    static const char *const joined[] = {"CO2", "CH4", "N2O"};
-    for (int g = 0; g < 3; g++)
-        for (int year = 2020; year < 2100; year++)
-            check_near(shipped(&schedule, joined[g], year + 1), shipped(&schedule, joined[g], year), 0.01);
-    schedule_free(&schedule);
-}
-
-/* The invented schedule says so in its header and in every row, and keeps the past as it was. */
-static void demonstration_is_marked_invented(void **state)
-{
-    (void)state;
-    char path[500], base_path[500];
-    Fault fault = {0};
-    snprintf(path, sizeof path, "%s/demo-schedule.csv", data_dir());
-    snprintf(base_path, sizeof base_path, "%s/baseline-schedule.csv", data_dir());
-    Csv csv;
-    assert_int_equal(csv_read(&csv, path, &fault), 0);
-    assert_non_null(strstr(csv.header, "INVENTED"));
-    for (size_t r = 1; r < csv.rows; r++)
-        assert_non_null(strstr(csv.cell[csv.first[r] + 5], "INVENTED"));
-    csv_free(&csv);
-    Schedule demo, base;
-    assert_int_equal(schedule_read(&demo, (const char *const[]){path}, 1, &fault), 0);
-    assert_int_equal(schedule_read(&base, (const char *const[]){base_path}, 1, &fault), 0);
-    for (int g = 0; g < demo.gases; g++)
-        for (int year = 1955; year <= 2100; year++) {
-            double is = shipped(&demo, demo.gas[g], year), was = shipped(&base, demo.gas[g], year);
-            assert_true(year <= 2025 ? is == was : is >= was);
-        }
-    assert_true(shipped(&demo, "CFC-11", 2045) > 1.2 * shipped(&base, "CFC-11", 2045));
-    schedule_free(&demo);
-    schedule_free(&base);
-}
-
 /* ---- shipped profiles ---- */
 
 static void shipped_profiles_are_sound(void **state)
@@ -419,20 +274,11 @@ static void shipped_profiles_are_sound(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(fault_keeps_the_first),
-        cmocka_unit_test(fault_survives_long_text),
-        cmocka_unit_test(fault_finds_the_nearest_word),
-        WITH_FOLDER(table_reads_plain_text),
-        WITH_FOLDER(table_undoes_a_spreadsheet),
-        WITH_FOLDER(table_refuses_bad_text),
-        WITH_FOLDER(table_refuses_what_is_no_text),
-        WITH_FOLDER(table_names_what_is_wrong),
-        cmocka_unit_test(interpolation_has_closed_forms),
-        WITH_FOLDER(files_are_located),
-        WITH_FOLDER(schedule_interpolates),
-        WITH_FOLDER(schedule_refuses_bad_rows),
-        cmocka_unit_test(baseline_holds_the_published_figures),
-        cmocka_unit_test(demonstration_is_marked_invented),
+        cmocka_unit_test(fault_keeps_the_first),          cmocka_unit_test(fault_survives_long_text),
+        cmocka_unit_test(fault_finds_the_nearest_word),   WITH_FOLDER(table_reads_plain_text),
+        WITH_FOLDER(table_undoes_a_spreadsheet),          WITH_FOLDER(table_refuses_bad_text),
+        WITH_FOLDER(table_refuses_what_is_no_text),       WITH_FOLDER(table_names_what_is_wrong),
+        cmocka_unit_test(interpolation_has_closed_forms), WITH_FOLDER(files_are_located),
         cmocka_unit_test(shipped_profiles_are_sound),
     };
     return cmocka_run_group_tests_name("input", tests, NULL, NULL);
