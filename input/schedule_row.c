@@ -122,7 +122,7 @@ static int read_row_unit(const Sheet *sheet, const char *cell, Row *row, double 
 {
     Unit unit;
     *size = 1;
-    if (!*cell && (row->rule == HOLD || row->rule == GROWTH))
+    if (!*cell && (row->rule == HOLD || row->rule == GROWTH || (row->rule == LINEAR && row->amount == 0)))
         return 0;
     int unknown = schedule_unit(cell, &unit);
     if (row->change == SCALE) {

@@ -27,6 +27,9 @@ static void settings_prints_what_it_reads(void **state)
         first.edge_km[e] = 5.1 * e + 0.3 * e * e;
     first.top_km = first.edge_km[5];
     first.bound[1].value = 1.1e-7 / 3;
+    first.schedule_layers = 2;
+    strcpy(first.schedule_layer[0], "demo-schedule.csv");
+    strcpy(first.schedule_layer[1], "baseline-schedule.csv");
     for (int help = 0; help < 2; help++) {
         char path[300];
         snprintf(path, sizeof path, "%s/printed.cfg", (char *)*state);
@@ -48,6 +51,9 @@ static void settings_prints_what_it_reads(void **state)
         assert_string_equal(second.title, first.title);
         assert_true(second.relative_tolerance == first.relative_tolerance);
         assert_memory_equal(second.edge_km, first.edge_km, sizeof first.edge_km);
+        assert_int_equal(second.schedule_layers, 2);
+        assert_string_equal(second.schedule_layer[0], "demo-schedule.csv");
+        assert_string_equal(second.schedule_layer[1], "baseline-schedule.csv");
         assert_int_equal(second.bounds, first.bounds);
         for (int k = 0; k < first.bounds; k++) {
             assert_string_equal(second.bound[k].species, first.bound[k].species);
@@ -94,6 +100,8 @@ static void settings_takes_a_case(void **state)
 
 #define BOUND(text) "surface = { bounds = ( { " text " } ); };"
 
+#define TEN_NAMES "\"x\",\"x\",\"x\",\"x\",\"x\",\"x\",\"x\",\"x\",\"x\",\"x\""
+
 static void settings_refuses_a_bad_case(void **state)
 {
     static const struct {
@@ -114,6 +122,14 @@ static void settings_refuses_a_bad_case(void **state)
         {"day = { mode = 1; };", ":1: ", "double quotes"},
         {"files = {\n eddy = \"nowhere.csv\"; };", ":2: ", "nowhere.csv: not found (files.eddy)"},
         {"files = { schedule = \"/nowhere/s.csv\"; };", ":1: ", "cannot be read (files.schedule)"},
+        {"files = { schedule_layers = \"s.csv\"; };", ":1: ", "files.schedule_layers is text; write a list"},
+        {"files = { schedule_layers = [ 1 ]; };", ":1: ", "text in double quotes"},
+        {"files = { schedule_layers = [ \"\" ]; };", ":1: ", "files.schedule_layers is empty"},
+        {"files = { schedule_layers = [\n\"demo-schedule.csv\",\n\"no.csv\" ]; };",
+         ":3: ", "no.csv: not found (files.schedule_layers)"},
+        {"files = { schedule_layers = [ \"a.csv\", \"a.csv\" ]; };", ":1: ", "names a.csv twice"},
+        {"files = { schedule_layers = [" TEN_NAMES "," TEN_NAMES "," TEN_NAMES ", \"y\", \"y\", \"y\" ]; };",
+         ":1: ", "lists 33 files; at most 32 fit"},
         {"\n\nfiles = { mechanism = \"\"; };", ":3: ", "files.mechanism is empty"},
         {"\ntemperature = { mode = \"file\"; };", ":2: ", "files.temperature_change"},
         {"files = { temperature_change = \"co2-cooling.csv\"; };", ":1: ", "temperature.mode"},
