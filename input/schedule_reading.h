@@ -41,9 +41,10 @@ typedef struct {
 
 typedef struct {
     double value;
-    int stands; /* 0: no value for the year */
-    Place made; /* row that first gave the year a value */
-    Place last; /* row that gave it this value */
+    int stands;  /* 0: no value for the year */
+    Place made;  /* row that first gave the year a value */
+    Place last;  /* row that gave it this value */
+    Place given; /* last row that spoke of this gas by name */
 } Cell;
 
 /* Values by year of one gas, kind and label. The abundances of a gas are one series whatever the labels. */

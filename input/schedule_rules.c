@@ -172,6 +172,8 @@ int schedule_rule(const Reading *reading, Series *series, const Row *row, int st
         cell->value = value;
         cell->stands = 1;
         cell->last = row->place;
+        if (strcmp(row->gas, "*") != 0)
+            cell->given = row->place;
         ++*hits;
     }
     return 0;
