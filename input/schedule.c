@@ -72,8 +72,8 @@ static int make_lines(const Reading *reading, Fault *fault)
     return 0;
 }
 
-/* No abundance may stand in or after the first year of emission but from a file below that of the emission.
- */
+/* No abundance may stand in or after the first year of emission but from a file below that of the
+ * emission. Scaling all gases says nothing of the one. */
 static int check_both_ways(const Reading *reading, const Series *abundance, Fault *fault)
 {
     const Schedule *schedule = reading->schedule;
@@ -84,7 +84,7 @@ static int check_both_ways(const Reading *reading, const Series *abundance, Faul
             (other->kind != EMISSION && other->kind != BANK) || !series_span(other, &first, &last))
             continue;
         for (int y = first; y < SERIES_YEARS; y++) {
-            Place by = abundance->cell[y].last, from = other->cell[first].made;
+            Place by = abundance->cell[y].given, from = other->cell[first].made;
             if (abundance->cell[y].stands && by.file >= from.file)
                 return fault_at(
                     fault, schedule->path[by.file], by.line,

@@ -91,6 +91,8 @@ layer ',2026-2060,CFC-11,emission,2,ppt,x,,'
 refused "unit that does not fit" later.csv:2: 'unit is "ppt"' 'for an emission write kg'
 layer ',2026-2060,CFC-11,emission,2,kt,x,,' ',2030,CFC-11,emission,3,kt,x,,'
 refused "a line twice" later.csv:3: '2030 twice, first on line 2'
+layer ',2026-2060,CO2,emission,36,Gg,x,,'
+refused "temperature by CO2 that is emitted" 'CO2 is given as emissions' 'temperature.mode = "fixed"'
 printf 'year;gas;kind;amount;unit;line\n2026;CFC-11;emission;1,5;kt;x\n' >later.csv
 refused "semicolons" later.csv:1: 'separated by semicolons' 'points in numbers'
 rm later.csv

@@ -272,6 +272,21 @@ static void layers_change_what_lies_below(void **state)
     schedule_free(&schedule);
 }
 
+/* All abundances scaled: also those of a gas up to its emissions, which go on as they are. */
+static void all_abundances_scaled(void **state)
+{
+    Schedule schedule = made_of(
+        state, COLUMN_LINE "2000-2010,A,abundance,10,ppt,a\n2000-2010,B,abundance,20,ppt,b\n",
+        COLUMN_LINE "2005-2010,A,emission,3,kt,x\n", CHANGE_LINE "scale,2002-2100,*,abundance,110,%,*\n");
+    assert_int_equal(schedule.emission_from[0], 2005);
+    check_near(abundance_of(&schedule, "A", 2001), 10e-12, 1e-14);
+    check_near(abundance_of(&schedule, "A", 2004), 11e-12, 1e-14);
+    check_near(schedule_abundance(&schedule, 0, 2005.0), 11e-12, 1e-14);
+    check_near(abundance_of(&schedule, "B", 2010), 22e-12, 1e-14);
+    check_near(amount_of(&schedule, "A", "x", 2010), 3e6, 1e-14);
+    schedule_free(&schedule);
+}
+
 /* A height need not be said again in a change, and the amount is that of the unit it is written in. */
 static void changes_at_altitude(void **state)
 {
@@ -519,6 +534,7 @@ int main(void)
         WITH_FOLDER(emissions_take_over),
         WITH_FOLDER(gas_of_emissions_alone),
         WITH_FOLDER(layers_change_what_lies_below),
+        WITH_FOLDER(all_abundances_scaled),
         WITH_FOLDER(changes_at_altitude),
         WITH_FOLDER(bank_empties_as_a_power),
         WITH_FOLDER(bank_with_filling_and_destruction),
