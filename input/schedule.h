@@ -41,7 +41,8 @@ typedef struct {
     int *file;                   /* [gases] file of the rows named next, index in path[] */
     int *first_line, *last_line; /* [gases] lines of the first and the last year of abundance (without any:
                                     first row of its first line), for messages */
-    double **abundance;          /* [gases][years] mole fraction, mol mol-1, global mean at mid-year */
+    double **abundance; /* [gases][years] mole fraction, mol mol-1, global mean at mid-year; none beyond
+                           the first year of emissions, whose own serves the way to it if there is one */
     int *emission_from; /* [gases] from the start of this year on emissions at the ground drive it; 0: never.
                            Emissions aloft do not count here: they come on top of whatever the ground does */
     int lines;
