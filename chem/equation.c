@@ -19,7 +19,7 @@ static const struct {
     {"Kr", 83.798}, {"I", 126.90},  {"Xe", 131.29}, {"Hg", 200.59}, {"Rn", 222.0},
 };
 
-static double weight_of(const char *symbol)
+double equation_atomic_weight(const char *symbol)
 {
     for (size_t i = 0; i < sizeof atomic_weights / sizeof *atomic_weights; i++)
         if (strcmp(atomic_weights[i].symbol, symbol) == 0)
@@ -29,7 +29,7 @@ static double weight_of(const char *symbol)
 
 int formula_known_element(const char *symbol)
 {
-    return weight_of(symbol) > 0.0;
+    return equation_atomic_weight(symbol) > 0.0;
 }
 
 int formula_read(const Mechanism *mechanism, const char *formula, const Place *place, int *atoms,
@@ -66,7 +66,7 @@ int formula_read(const Mechanism *mechanism, const char *formula, const Place *p
                 "or correct the formula",
                 place->label, formula, symbol);
         atoms[element] += (int)count;
-        *molar_mass += (double)count * weight_of(symbol);
+        *molar_mass += (double)count * equation_atomic_weight(symbol);
     }
     return 0;
 }

@@ -45,6 +45,8 @@ int formula_read(const Mechanism *mechanism, const char *formula, const Place *p
                  double *molar_mass, Fault *fault);
 /* Is symbol a chemical element the program has an atomic weight of? */
 int formula_known_element(const char *symbol);
+/* That weight, g mol-1; 0 of an element the program does not know. */
+double equation_atomic_weight(const char *symbol);
 
 /* Parse text against the species of the mechanism. Faults: bad notation, unknown species (nearest suggested),
  * inert species on the left, other than fixed species in braces, (+M) or M on one side only, too long. */

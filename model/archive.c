@@ -95,6 +95,7 @@ static void archive_free(Archive *archive)
     free(archive->out.fraction);
     free(archive->out.course);
     free(archive->out.lifetime);
+    free(archive->out.emission);
     free(archive->out.budget);
     ox_book_free(archive->out.book);
     free(archive);
@@ -135,8 +136,9 @@ int archive_create(Archive **made, const Model *model, const char *path, int ove
     archive->last_end = -INFINITY;
     archive->out.fraction = calloc((size_t)model->mechanism->solved + 1, sizeof *archive->out.fraction);
     archive->out.lifetime = calloc((size_t)model->mechanism->solved + 1, sizeof *archive->out.lifetime);
+    archive->out.emission = calloc((size_t)model->mechanism->solved + 1, sizeof *archive->out.emission);
     archive->out.budget = calloc((BUDGET_TERMS + 1) * (size_t)model->grid.padded, sizeof(double));
-    if (!archive->out.fraction || !archive->out.lifetime || !archive->out.budget)
+    if (!archive->out.fraction || !archive->out.lifetime || !archive->out.emission || !archive->out.budget)
         fault_memory(fault, "the archive");
     else if (ox_book_possible(model->mechanism, NULL))
         ox_book_make(&archive->out.book, model->mechanism, fault);
@@ -153,7 +155,7 @@ int archive_create(Archive **made, const Model *model, const char *path, int ove
         return fault->code;
     }
     size_t variables = (size_t)model->mechanism->solved * (model->settings.moments == MOMENTS_NONE ? 1 : 2) +
-                       layout_budget_variables(&archive->out);
+                       layout_budget_variables(&archive->out) + layout_emission_variables(&archive->out);
     size_t bytes = SUMMARY_BYTES + variables * INDEX_BYTES;
     int status = NC_NOERR;
     if (!reserve_space(archive, bytes, fault))
@@ -265,6 +267,8 @@ static int put_record(Archive *archive, const Record *record, Fault *fault)
     }
     if (library_fault(archive, layout_budget_put(&archive->out, archive->records, record), "the budget",
                       fault) ||
+        library_fault(archive, layout_emission_put(&archive->out, archive->records, record), "the emissions",
+                      fault) ||
         library_fault(
             archive,
             nc_put_vara_double(archive->out.file, archive->out.column, start, one, &record->ozone_column),
@@ -292,7 +296,8 @@ static int take_place(Archive *archive, Fault *fault)
 int archive_append(Archive *archive, const Record *record, Fault *fault)
 {
     const Model *model = archive->out.model;
-    size_t variables = (size_t)model->mechanism->solved + 4 + layout_budget_variables(&archive->out);
+    size_t variables = (size_t)model->mechanism->solved + 4 + layout_budget_variables(&archive->out) +
+                       layout_emission_variables(&archive->out);
     size_t bytes = 2 * variables * (size_t)model->grid.layers * sizeof(double) + variables * INDEX_BYTES;
     if (record->moments)
         bytes += (size_t)model->mechanism->solved *

@@ -21,6 +21,9 @@ typedef struct {
                            of this record */
     const double *temperature_change; /* [layers] K against the base atmosphere, mean over the interval; NULL:
                                          not known, left as missing */
+    const double *emission; /* [solved] what is given off, molecules cm-2 s-1, mean over the interval: of a
+                               gas that the ground keeps at a value what comes through the ground and is
+                               emitted besides, of others what is emitted; NULL: not known, left as missing */
 } Record;
 
 /* command_line goes into history. Fault FAULT_OUTPUT (exit 4) when the path cannot be written, FAULT_INPUT

@@ -78,7 +78,7 @@ int layout_budget_put(const Layout *out, size_t index, const Record *record)
         GasBudget gas;
         if (out->lifetime[s] < 0)
             continue;
-        budget_gas(model, record->x, record->rate, s, &gas);
+        budget_gas(model, record->x, record->rate, s, model_keeps(model, s, record->time), &gas);
         double years = budget_lifetime(&gas, gas.loss, GAS_LOSSES);
         if (isfinite(years)) /* what is not lost, or not there, keeps the fill value */
             status = nc_put_vara_double(out->file, out->lifetime[s], start, count, &years);

@@ -24,7 +24,9 @@ typedef struct {
     OxBook *book;               /* NULL: the mechanism has no odd oxygen and the file no budget */
     int term[BUDGET_TERMS + 1]; /* variable ids of the odd-oxygen budget, the net last */
     int *lifetime;              /* [solved] variable ids, -1 for a gas that is no source gas */
-    double *budget;             /* [BUDGET_TERMS + 1][padded] work */
+    int *emission;  /* [solved] variable ids, -1 for a gas that neither schedule nor ground gives */
+    int line;       /* variable id of the emission by line of the schedule, -1: it has none */
+    double *budget; /* [BUDGET_TERMS + 1][padded] work */
 } Layout;
 
 /* A variable with its attributes; NULL: left out. */
@@ -57,5 +59,14 @@ size_t layout_budget_variables(const Layout *out);
 int layout_budget_define(Layout *out, int time, int altitude, size_t time_chunk, Fault *fault);
 /* Write those of one record; nothing when book or record->rate is NULL. A NetCDF status. */
 int layout_budget_put(const Layout *out, size_t index, const Record *record);
+
+/* ---- archive_emission.c: emissions by gas and by line ---- */
+
+/* Number of variables layout_emission_define makes. */
+size_t layout_emission_variables(const Layout *out);
+/* Define them (time: dimension id). */
+int layout_emission_define(Layout *out, int time, size_t time_chunk, Fault *fault);
+/* Write those of one record. A NetCDF status. */
+int layout_emission_put(const Layout *out, size_t index, const Record *record);
 
 #endif

@@ -126,8 +126,10 @@ typedef struct {
     double aloft[GAS_LOSSES]; /* the part above the tropopause of the case */
 } GasBudget;
 
-/* Gross losses of a species; what makes it anew is not taken off. */
-void budget_gas(const Model *model, const double *x, const double *rate, int solved, GasBudget *gas);
+/* Gross losses of a species; kept: the ground keeps it at a value and takes none of it up; what makes it anew
+ * is not taken off. */
+void budget_gas(const Model *model, const double *x, const double *rate, int solved, int kept,
+                GasBudget *gas);
 /* Global burden over the sum of loss (gas->loss, gas->aloft, or one part of them, which the caller puts into
  * an array of count), in years of 365.25 days; infinite when nothing is lost. */
 double budget_lifetime(const GasBudget *gas, const double *loss, int count);

@@ -83,7 +83,7 @@ static int loss_part(const Mechanism *mechanism, const Reaction *reaction, int s
     return LOSS_OTHER;
 }
 
-void budget_gas(const Model *model, const double *x, const double *rate, int solved, GasBudget *gas)
+void budget_gas(const Model *model, const double *x, const double *rate, int solved, int kept, GasBudget *gas)
 {
     const Mechanism *mechanism = model->mechanism;
     const Grid *grid = &model->grid;
@@ -104,9 +104,9 @@ void budget_gas(const Model *model, const double *x, const double *rate, int sol
                 gas->aloft[part] += lost;
         }
     }
-    if (model->surface_kind[solved] == SURFACE_DEPOSITION) /* -F of transport/diffusion.h */
-        gas->loss[LOSS_GROUND] =
-            model->surface_value[solved] * model->air.number_density[0] * x[FIELD(grid->padded, solved, 0)];
+    if (!kept) /* -F of transport/diffusion.h */
+        gas->loss[LOSS_GROUND] = model_deposition(model, solved) * model->air.number_density[0] *
+                                 x[FIELD(grid->padded, solved, 0)];
 }
 
 double budget_lifetime(const GasBudget *gas, const double *loss, int count)

@@ -10,6 +10,7 @@
 #include "../input/constants.h"
 #include "../input/table.h"
 #include "conditions.h"
+#include "emission.h"
 #include "moments.h"
 #include "variation.h"
 
@@ -166,6 +167,39 @@ int model_holds(const Model *model, int solved)
     return 0;
 }
 
+int model_keeps(const Model *model, int solved, double time)
+{
+    int kind = model->surface_kind[solved];
+    if (model_holds(model, solved))
+        return 0;
+    return kind == SURFACE_FIXED ||
+           (kind == SURFACE_SCHEDULE && !schedule_emits(&model->schedule, model->surface_gas[solved], time));
+}
+
+double model_deposition(const Model *model, int solved)
+{
+    int kind = model->surface_kind[solved];
+    return kind == SURFACE_DEPOSITION || kind == SURFACE_SCHEDULE ? model->surface_value[solved] : 0.0;
+}
+
+int model_check_start(const Model *model, Fault *fault)
+{
+    const Schedule *schedule = &model->schedule;
+    int start = model->settings.first_year;
+    for (int i = 0; i < schedule->lines; i++) {
+        const ScheduleLine *line = &schedule->line[i];
+        int from = schedule->emission_from[line->gas];
+        if (from == 0 || from >= start)
+            continue;
+        return fault_at(
+            fault, schedule->path[line->file], line->row,
+            "emissions drive %s from %d on, but the run begins in %d and does not know how much of it is in "
+            "the air then; begin in %d or earlier (years.first), or let its abundance stand to %d",
+            schedule->gas[line->gas], from, start, from, start - 1);
+    }
+    return 0;
+}
+
 static int set_ground(Model *model, Fault *fault)
 {
     const Settings *settings = &model->settings;
@@ -177,6 +211,8 @@ static int set_ground(Model *model, Fault *fault)
     for (int g = 0; g < model->schedule.gases; g++) {
         const char *gas = model->schedule.gas[g];
         int s = mechanism_solved(mechanism, gas);
+        if (!model->schedule.years[g] && !model->schedule.emission_from[g])
+            continue; /* given off aloft only, which the ground knows nothing of */
         if (s < 0)
             return fault_at(
                 fault, model->schedule.path[model->schedule.file[g]], model->schedule.first_line[g],
@@ -200,6 +236,12 @@ static int set_ground(Model *model, Fault *fault)
             return fault_at(fault, file, bound->line,
                             "surface.bounds names %s, which is no active species of %s; correct the name",
                             bound->species, mechanism->path);
+        int emitted = model->surface_kind[s] == SURFACE_SCHEDULE &&
+                      model->schedule.emission_from[model->surface_gas[s]] > 0;
+        if (emitted && bound->kind == BOUND_DEPOSITION) {
+            model->surface_value[s] = bound->value;
+            continue;
+        }
         if (model->surface_kind[s] == SURFACE_SCHEDULE && built_in)
             return fault_at(fault, file, 0,
                             "the built-in surface.bounds holds %s, which the schedule %s carries; give "
@@ -220,7 +262,9 @@ static int set_ground(Model *model, Fault *fault)
         model->surface_kind[s] = bound->kind == BOUND_FIXED ? SURFACE_FIXED : SURFACE_DEPOSITION;
         model->surface_value[s] = bound->value;
     }
-    return schedule_covers(&model->schedule, settings->first_year, settings->last_year, fault);
+    if (schedule_covers(&model->schedule, settings->first_year, settings->last_year, fault))
+        return fault->code;
+    return emissions_make(&model->emissions, model, fault);
 }
 
 /* ---- the model ---- */
@@ -382,6 +426,7 @@ void model_free(Model *model)
     free(model->surface_kind);
     free(model->surface_gas);
     free(model->surface_value);
+    emissions_free(model->emissions);
     free(model->held_species);
     free(model->held_free);
     free(model->held_fraction);
@@ -441,12 +486,13 @@ int column_make(Column **made, const Model *model, Fault *fault)
     column->x = aligned_alloc(64, solved * padded * sizeof(double));
     column->balance = calloc(solved * padded, sizeof(double));
     column->received = calloc(solved, sizeof(double));
+    column->emitted = calloc(solved, sizeof(double));
     column->exchanged = calloc(solved, sizeof(double));
     column->washed = calloc(solved, sizeof(double));
     column->escaped = calloc(MECHANISM_ELEMENTS, sizeof(double));
     int code = 0;
-    if (!column->x || !column->balance || !column->received || !column->exchanged || !column->washed ||
-        !column->escaped)
+    if (!column->x || !column->balance || !column->received || !column->emitted || !column->exchanged ||
+        !column->washed || !column->escaped)
         code = fault_memory(fault, "column");
     column->time = model->settings.first_year;
     if (!code)
@@ -467,6 +513,7 @@ void column_free(Column *column)
     free(column->x);
     free(column->balance);
     free(column->received);
+    free(column->emitted);
     free(column->exchanged);
     free(column->washed);
     free(column->escaped);
@@ -479,6 +526,7 @@ void column_open_ledger(const Model *model, Column *column)
 {
     size_t bytes = (size_t)model->mechanism->solved * sizeof(double);
     memset(column->received, 0, bytes);
+    memset(column->emitted, 0, bytes);
     memset(column->exchanged, 0, bytes);
     memset(column->washed, 0, bytes);
     memset(column->escaped, 0, MECHANISM_ELEMENTS * sizeof(double));
@@ -521,7 +569,7 @@ double column_ledger_atoms(const Model *model, const Column *column, int element
     double sum = 0.0;
     for (int s = 0; s < model->mechanism->solved; s++)
         sum += mechanism_atoms(model->mechanism, s, element) *
-               (column->received[s] + column->exchanged[s] - column->washed[s]);
+               (column->received[s] + column->emitted[s] + column->exchanged[s] - column->washed[s]);
     for (int c = 0; c < model->kernel->counters; c++)
         if (model->kernel->counter_element[c] == element)
             sum -= column->escaped[c];

@@ -23,8 +23,11 @@
 /* The one place that knows the layout of fields over species (or reactions) and layers. */
 #define FIELD(padded, row, layer) ((size_t)(row) * (size_t)(padded) + (size_t)(layer))
 
+/* What the ground does with a gas: nothing; keeps the schedule's abundance, until emissions take over, from
+ * when on they flow in (emission.h); keeps a value of the case; takes up. */
 enum SurfaceKind { SURFACE_CLOSED, SURFACE_SCHEDULE, SURFACE_FIXED, SURFACE_DEPOSITION };
 
+typedef struct Emissions Emissions;   /* what lines of the schedule give off: emission.h */
 typedef struct Variation Variation;   /* what changes with time: variation.h */
 typedef struct Conditions Conditions; /* what surrounds the chemistry at a moment: conditions.h */
 
@@ -45,7 +48,9 @@ typedef struct {
     /* ground condition by solved species */
     int *surface_kind;     /* [solved] enum SurfaceKind */
     int *surface_gas;      /* [solved] index in the schedule or -1 */
-    double *surface_value; /* [solved] mole fraction or deposition velocity, cm s-1 */
+    double *surface_value; /* [solved] mole fraction (SURFACE_FIXED) or deposition velocity, cm s-1 (that of a
+                              SURFACE_SCHEDULE gas acts when emissions drive it) */
+    Emissions *emissions;
 
     /* held species: prescribed below the tropopause */
 #define MODEL_HELD_MOST 3 /* H2O, OH, NO2 */
@@ -70,6 +75,7 @@ typedef struct {
 
     /* ledger per solved species, molecules cm-2 since the start of the run */
     double *received;  /* through the ground by transport, incl. what keeping the surface value supplied */
+    double *emitted;   /* put in by the schedule's emissions, at the ground and aloft */
     double *exchanged; /* given by the reservoirs that hold prescribed species (negative: taken) */
     double *washed;    /* removed by washout */
     double
@@ -86,6 +92,14 @@ int model_make(Model **made, const Settings *settings, Fault *fault);
 void model_free(Model *model);
 /* 1 when a table of the case prescribes solved species s below the tropopause. */
 int model_holds(const Model *model, int solved);
+/* 1 when at decimal year time the ground keeps solved species s, which no table holds, at a value. */
+int model_keeps(const Model *model, int solved, double time);
+/* Velocity, cm s-1, at which the ground takes solved species s up where it does not keep it; 0: it does not.
+ */
+double model_deposition(const Model *model, int solved);
+/* Whether a run can start with the first year of the case: FAULT_INPUT, naming the row, when emissions have
+ * driven a gas since before, whose abundance at the start nobody has said. */
+int model_check_start(const Model *model, Fault *fault);
 
 /* A column at the initial profiles with the surface values of the run's first year. */
 int column_make(Column **made, const Model *model, Fault *fault);
@@ -98,8 +112,8 @@ void column_open_ledger(const Model *model, Column *column);
  * for ozone_column). */
 double column_burden(const Model *model, const double *x, int solved);
 double column_ozone_du(const Model *model, const double *x);
-/* Atoms cm-2 of an element in all solved species, and atoms that entered by the ledger (received + exchanged
- * - washed - escaped). */
+/* Atoms cm-2 of an element in all solved species, and atoms that entered by the ledger (received + emitted +
+ * exchanged - washed - escaped). */
 double column_atoms(const Model *model, const double *x, int element);
 double column_ledger_atoms(const Model *model, const Column *column, int element);
 /* (atoms now - atoms when the ledger was opened - ledger) / atoms now: 0 up to round-off, and 0 of no atoms

@@ -303,7 +303,7 @@ static int account(const Request *request, const Model *model, const State *stat
         budget_odd_oxygen(book, &model->grid, rate, field, net);
         budget_chain_lengths(book, &model->grid, rate, field, chain);
         for (int s = 0; s < (int)solved; s++)
-            budget_gas(model, view.x, rate, s, &gas[s]);
+            budget_gas(model, view.x, rate, s, model_keeps(model, s, state->column->time), &gas[s]);
         code = put_out(request, state, &view, rate, fault);
     }
     free(rate);

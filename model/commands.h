@@ -16,6 +16,7 @@ int command_sunlight(int argc, char **argv);
 int command_answers(int argc, char **argv);
 int command_budget(int argc, char **argv);
 int command_potency(int argc, char **argv);
+int command_schedule(int argc, char **argv);
 
 /* ---- shared by the verbs (commands.c) ---- */
 

@@ -25,10 +25,11 @@ int conditions_make(Conditions **made, const Model *model, Fault *fault)
     conditions->aerosol_radius = malloc(bytes);
     conditions->held_fraction = malloc(MODEL_HELD_MOST * bytes);
     conditions->solar = malloc(bins * sizeof(double));
+    conditions->kept = malloc((size_t)model->mechanism->solved);
     conditions->work = malloc(2 * bytes);
     if (!conditions->temperature || !conditions->air || !conditions->depth || !conditions->aerosol_area ||
         !conditions->aerosol_radius || !conditions->held_fraction || !conditions->solar ||
-        !conditions->work) {
+        !conditions->kept || !conditions->work) {
         conditions_free(conditions);
         return fault_memory(fault, "conditions");
     }
@@ -40,6 +41,8 @@ int conditions_make(Conditions **made, const Model *model, Fault *fault)
     memcpy(conditions->held_fraction, model->held_fraction, MODEL_HELD_MOST * bytes);
     for (size_t b = 0; b < bins; b++)
         conditions->solar[b] = 1.0;
+    for (int s = 0; s < model->mechanism->solved; s++)
+        conditions->kept[s] = (unsigned char)model_keeps(model, s, model->settings.first_year - 1.0);
     conditions->phase = NAN;
     conditions->day_of_year = model->settings.day_of_year;
     *made = conditions;
@@ -57,6 +60,7 @@ void conditions_free(Conditions *conditions)
     free(conditions->aerosol_radius);
     free(conditions->held_fraction);
     free(conditions->solar);
+    free(conditions->kept);
     free(conditions->work);
     free(conditions);
 }
@@ -183,9 +187,24 @@ static int move_held(Conditions *conditions, const Model *model, double season)
     return moved;
 }
 
+static int move_ground(Conditions *conditions, const Model *model, double time)
+{
+    int moved = 0;
+    for (int s = 0; s < model->mechanism->solved; s++) {
+        if (model->surface_kind[s] != SURFACE_SCHEDULE)
+            continue;
+        unsigned char kept = (unsigned char)model_keeps(model, s, time);
+        if (kept != conditions->kept[s])
+            moved = CONDITIONS_GROUND;
+        conditions->kept[s] = kept;
+    }
+    return moved;
+}
+
 int conditions_move(Conditions *conditions, const Model *model, double time, double season)
 {
     int moved = move_air(conditions, model, time, season) | move_aerosol(conditions, model, time) |
-                move_light(conditions, model, time) | move_sun(conditions, model, season);
+                move_light(conditions, model, time) | move_sun(conditions, model, season) |
+                move_ground(conditions, model, time);
     return moved | move_held(conditions, model, season);
 }

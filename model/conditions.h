@@ -23,7 +23,8 @@ enum ConditionsPart {
     CONDITIONS_LIGHT = 2, /* solar */
     CONDITIONS_SUN = 4,   /* day_of_year */
     CONDITIONS_AEROSOL = 8,
-    CONDITIONS_HELD = 16
+    CONDITIONS_HELD = 16,
+    CONDITIONS_GROUND = 32 /* kept */
 };
 
 struct Conditions {
@@ -34,13 +35,14 @@ struct Conditions {
     double *aerosol_radius; /* [padded] cm, effective */
     double *held_fraction;  /* [MODEL_HELD_MOST][padded] mole fraction where held, 0 where free */
     double *solar;          /* [bins] sunlight relative to the table of the case */
+    unsigned char *kept;    /* [solved] 1: the ground keeps the species at a value; emissions may take over */
     double phase;           /* of the solar cycle, when there is one; NaN before the first move */
     double day_of_year;     /* 1..366.25, of the sun's place */
     double *work;           /* [2][padded] */
 };
 
-/* The model's base values; also for model_make itself, when everything but Model.base is there. Owner:
- * caller.
+/* The model's base values, with the ground as it is just before the first year; also for model_make itself,
+ * when everything but Model.base is there. Owner: caller.
  */
 int conditions_make(Conditions **made, const Model *model, Fault *fault);
 void conditions_free(Conditions *conditions); /* accepts NULL */

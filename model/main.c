@@ -21,6 +21,7 @@ static const struct {
     {"sunlight", command_sunlight, "print photolysis rates by altitude, as CSV"},
     {"budget", command_budget, "what makes and destroys ozone, by catalytic family; how long gases live"},
     {"potency", command_potency, "ozone depletion potentials and lifetimes of the gases of a case"},
+    {"schedule", command_schedule, "turn abundances into emissions, or emissions into abundances"},
     {"answers", command_answers, "print the table of answers of a finished or interrupted file"},
 };
 enum { VERBS = sizeof verbs / sizeof verbs[0] };

@@ -18,36 +18,58 @@ struct Mixing {
     double **work;    /* [threads] */
     double *received; /* [solved] */
     int grounds;
-    Ground *ground;             /* [grounds] */
-    int *ground_of;             /* [solved], -1: not carried */
-    double ready[MIXING_SLOTS]; /* step in s the factors are for, 0: none */
-    Diffusion *above;           /* the column from held_top up; NULL when nothing is held */
-    int held_top;               /* highest layer that is prescribed */
+    Ground *ground;                 /* [grounds] */
+    int *ground_of;                 /* [solved], -1: not carried */
+    int *kept_ground, *open_ground; /* [solved] that of a gas the ground keeps, and of one it does not; the
+                                       same where nothing changes */
+    unsigned char *kept;            /* [solved] */
+    double ready[MIXING_SLOTS];     /* step in s the factors are for, 0: none */
+    Diffusion *above;               /* the column from held_top up; NULL when nothing is held */
+    int held_top;                   /* highest layer that is prescribed */
 };
+
+static int place_ground(Mixing *mixing, Ground ground)
+{
+    int g = 0;
+    while (g < mixing->grounds &&
+           (mixing->ground[g].kind != ground.kind || mixing->ground[g].held != ground.held ||
+            mixing->ground[g].velocity != ground.velocity))
+        g++;
+    if (g == mixing->grounds)
+        mixing->ground[mixing->grounds++] = ground;
+    return g;
+}
 
 static void list_grounds(Mixing *mixing)
 {
     const Model *model = mixing->model;
     for (int s = 0; s < model->mechanism->solved; s++) {
-        mixing->ground_of[s] = -1;
+        mixing->kept_ground[s] = mixing->open_ground[s] = -1;
         if (!model->mechanism->item[model->mechanism->solved_item[s]].transport)
             continue;
-        Ground ground = {.kind = GROUND_CLOSED, .held = model_holds(model, s)};
-        if (ground.held || model->surface_kind[s] == SURFACE_SCHEDULE ||
-            model->surface_kind[s] == SURFACE_FIXED)
-            ground.kind = GROUND_FIXED;
-        else if (model->surface_kind[s] == SURFACE_DEPOSITION) {
-            ground.kind = GROUND_DEPOSITION;
-            ground.velocity = model->surface_value[s];
-        }
-        int g = 0;
-        while (g < mixing->grounds &&
-               (mixing->ground[g].kind != ground.kind || mixing->ground[g].held != ground.held ||
-                mixing->ground[g].velocity != ground.velocity))
-            g++;
-        if (g == mixing->grounds)
-            mixing->ground[mixing->grounds++] = ground;
-        mixing->ground_of[s] = g;
+        double velocity = model_deposition(model, s);
+        Ground fixed = {.kind = GROUND_FIXED, .held = model_holds(model, s)};
+        Ground open = {.kind = velocity > 0.0 ? GROUND_DEPOSITION : GROUND_CLOSED, .velocity = velocity};
+        int kind = model->surface_kind[s];
+        int kept = fixed.held || kind == SURFACE_SCHEDULE || kind == SURFACE_FIXED;
+        int opens = !kept || (!fixed.held && kind == SURFACE_SCHEDULE &&
+                              model->schedule.emission_from[model->surface_gas[s]] > 0);
+        if (kept)
+            mixing->kept_ground[s] = place_ground(mixing, fixed);
+        if (opens)
+            mixing->open_ground[s] = place_ground(mixing, open);
+        if (!kept)
+            mixing->kept_ground[s] = mixing->open_ground[s];
+        if (!opens)
+            mixing->open_ground[s] = mixing->kept_ground[s];
+    }
+}
+
+void mixing_follow(Mixing *mixing, const Conditions *conditions)
+{
+    for (int s = 0; s < mixing->model->mechanism->solved; s++) {
+        mixing->kept[s] = conditions->kept[s];
+        mixing->ground_of[s] = conditions->kept[s] ? mixing->kept_ground[s] : mixing->open_ground[s];
     }
 }
 
@@ -74,13 +96,19 @@ int mixing_make(Mixing **made, const Model *model, int threads, Fault *fault)
     mixing->threads = threads;
     mixing->work = calloc((size_t)threads, sizeof *mixing->work);
     mixing->received = calloc(solved, sizeof(double));
-    mixing->ground = calloc(solved, sizeof *mixing->ground);
+    mixing->ground = calloc(2 * solved, sizeof *mixing->ground);
     mixing->ground_of = calloc(solved, sizeof(int));
+    mixing->kept_ground = calloc(solved, sizeof(int));
+    mixing->open_ground = calloc(solved, sizeof(int));
+    mixing->kept = calloc(solved, 1);
     int code = 0;
-    if (!mixing->work || !mixing->received || !mixing->ground || !mixing->ground_of)
+    if (!mixing->work || !mixing->received || !mixing->ground || !mixing->ground_of || !mixing->kept_ground ||
+        !mixing->open_ground || !mixing->kept)
         code = fault_memory(fault, "mixing");
-    if (!code)
+    if (!code) {
         list_grounds(mixing);
+        mixing_follow(mixing, model->base);
+    }
     if (!code)
         code = make_above(mixing, fault);
     if (code) {
@@ -105,6 +133,9 @@ void mixing_free(Mixing *mixing)
     free(mixing->received);
     free(mixing->ground);
     free(mixing->ground_of);
+    free(mixing->kept_ground);
+    free(mixing->open_ground);
+    free(mixing->kept);
     free(mixing);
 }
 
@@ -189,16 +220,17 @@ void mixing_mask(const Mixing *mixing, double *rate)
     }
 }
 
-void mixing_set_ground(const Model *model, Column *column, double time)
+void mixing_set_ground(const Mixing *mixing, Column *column, double time)
 {
+    const Model *model = mixing->model;
     int padded = model->grid.padded;
     double cell = model->air.number_density[0] * model->grid.depth[0];
     for (int s = 0; s < model->mechanism->solved; s++) {
-        double value = model->surface_value[s];
-        if (model->surface_kind[s] == SURFACE_SCHEDULE)
-            value = schedule_abundance(&model->schedule, model->surface_gas[s], time);
-        else if (model->surface_kind[s] != SURFACE_FIXED)
+        if (!mixing->kept[s])
             continue;
+        double value = model->surface_kind[s] == SURFACE_SCHEDULE
+                           ? schedule_abundance(&model->schedule, model->surface_gas[s], time)
+                           : model->surface_value[s];
         double *x = &column->x[FIELD(padded, s, 0)];
         column->received[s] += (value - *x) * cell;
         *x = value;

@@ -8,7 +8,7 @@
 #ifndef SKYMEND_MIXING_H
 #define SKYMEND_MIXING_H
 
-#include "column.h"
+#include "conditions.h"
 
 #define MIXING_SLOTS 10 /* step lengths that can be kept ready at once */
 
@@ -18,6 +18,8 @@ typedef struct Mixing Mixing;
 int mixing_make(Mixing **made, const Model *model, int threads, Fault *fault);
 void mixing_free(Mixing *mixing);
 
+/* Take over which gases the ground keeps (Conditions.kept); at making, as the base conditions have it. */
+void mixing_follow(Mixing *mixing, const Conditions *conditions);
 /* Make slot ready for steps of a length in s; nothing is done when it is. */
 int mixing_prepare(Mixing *mixing, int slot, double step, Fault *fault);
 /* One step of the length slot is ready for. sink: as in diffusion_step, [solved][padded], or NULL. Padding
@@ -31,8 +33,8 @@ void mixing_tendency(const Mixing *mixing, const double *x, int s, double *rate)
  */
 void mixing_mask(const Mixing *mixing, double *rate);
 
-/* Give the lowest layer its scheduled (at decimal year time) or fixed values; what that adds has come through
- * the ground. */
-void mixing_set_ground(const Model *model, Column *column, double time);
+/* Give the lowest layer its scheduled (at decimal year time) or fixed values, of gases that the ground keeps;
+ * what that adds has come through the ground. */
+void mixing_set_ground(const Mixing *mixing, Column *column, double time);
 
 #endif

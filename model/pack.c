@@ -132,12 +132,6 @@ static void restore_atoms(PackWork *work, const Model *model)
     }
 }
 
-static int kept_by_ground(const Model *model, int s)
-{
-    int kind = model->surface_kind[s];
-    return (kind == SURFACE_SCHEDULE || kind == SURFACE_FIXED) && !model_holds(model, s);
-}
-
 void pack_load(PackWork *work, const Model *model, int first, const double *x)
 {
     int padded = model->grid.padded, solved = model->mechanism->solved;
@@ -163,7 +157,7 @@ void pack_load(PackWork *work, const Model *model, int first, const double *x)
             work->held_species[work->held++] = model->held_species[h];
     }
     for (int s = 0; first == 0 && s < solved; s++) {
-        if (!kept_by_ground(model, s))
+        if (!work->conditions->kept[s])
             continue;
         double *free_here = work->held_free + work->held * PACK,
                *value = work->held_value + work->held * PACK;
@@ -228,7 +222,7 @@ void pack_store(PackWork *work, const Model *model, int first, double *x, PackLe
         if (first)
             continue;
         ledger->received[s] = 0.0;
-        if (!kept_by_ground(model, s))
+        if (!work->conditions->kept[s])
             continue;
         ledger->received[s] = (kept * air[0] - work->y[s * PACK]) * depth[0];
         row[0] = kept;

@@ -267,8 +267,8 @@ static int describe(const Work *work, const double *rate, Potency *gas, Fault *f
     int s = gas->species;
     gas->molar_mass = model->mechanism->item[model->mechanism->solved_item[s]].molar_mass;
     gas->abundance = work->base[FIELD(model->grid.padded, s, 0)];
-    gas->flux = unsplit->kept[s] ? net_loss(work, s) : unsplit->emission[s];
-    budget_gas(model, work->base, rate, s, &gas->budget);
+    gas->flux = unsplit->kept[s] ? net_loss(work, s) : unsplit->emission[s] + unsplit->given[s];
+    budget_gas(model, work->base, rate, s, unsplit->kept[s], &gas->budget);
     gas->lifetime =
         gas->budget.burden > 0.0 ? budget_lifetime(&gas->budget, gas->budget.loss, GAS_LOSSES) : NAN;
     gas->anew = gas->noise = gas->bend = NAN;

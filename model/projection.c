@@ -66,6 +66,8 @@ typedef struct {
     double *rate;                 /* [reactions][padded] rates of reaction, cm-3 s-1 */
     double *course; /* [MOMENTS][solved][padded] by time of day; NULL when the case does not ask for them */
     double *step_rate, *step_course; /* those of one step */
+    double *emission;                /* [solved] given off, molecules cm-2 s-1 */
+    double *emitted, *received;      /* [solved] the ledger at the start of the interval */
     double *change;                  /* [padded] temperature less that of the base atmosphere, K */
     double *block;
 } Means;
@@ -76,14 +78,19 @@ static int means_make(Means *means, const Model *model, Fault *fault)
     means->field = (size_t)model->mechanism->solved * padded;
     means->rates = (size_t)model->mechanism->reactions * padded;
     means->moments = model->settings.moments == MOMENTS_NONE ? 0 : MOMENTS * means->field;
-    means->block = malloc((means->field + 2 * means->rates + 2 * means->moments + padded) * sizeof(double));
+    means->block = malloc((means->field + 2 * means->rates + 2 * means->moments + padded +
+                           3 * (size_t)model->mechanism->solved) *
+                          sizeof(double));
     if (!means->block)
         return fault_memory(fault, "means of an interval");
     means->x = means->block;
     means->rate = means->x + means->field;
     means->step_rate = means->rate + means->rates;
     means->change = means->step_rate + means->rates;
-    means->course = means->moments ? means->change + padded : NULL;
+    means->emission = means->change + padded;
+    means->emitted = means->emission + model->mechanism->solved;
+    means->received = means->emitted + model->mechanism->solved;
+    means->course = means->moments ? means->received + model->mechanism->solved : NULL;
     means->step_course = means->moments ? means->course + means->moments : NULL;
     return 0;
 }
@@ -92,6 +99,27 @@ static void add(double *sum, const double *part, size_t count)
 {
     for (size_t i = 0; i < count; i++)
         sum[i] += part[i];
+}
+
+/* What is given off from here on is counted from here. */
+static void mark_given_off(const Means *means, const Model *model, const Column *column)
+{
+    size_t bytes = (size_t)model->mechanism->solved * sizeof(double);
+    memcpy(means->emitted, column->emitted, bytes);
+    memcpy(means->received, column->received, bytes);
+}
+
+/* Mean over length years since. A gas goes from one kind to the other only between intervals. */
+static void take_given_off(const Means *means, const Model *model, const Stepper *stepper,
+                           const Column *column, double length)
+{
+    const unsigned char *kept = stepper_conditions(stepper)->kept;
+    for (int s = 0; s < model->mechanism->solved; s++) {
+        double given = column->emitted[s] - means->emitted[s];
+        if (kept[s])
+            given += column->received[s] - means->received[s];
+        means->emission[s] = given / (length * YEAR_SECONDS);
+    }
 }
 
 static void divide(double *sum, size_t count, double by)
@@ -112,6 +140,7 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
     if (means->course)
         memset(means->course, 0, means->moments * sizeof(double));
     memset(means->change, 0, (size_t)model->grid.layers * sizeof(double));
+    mark_given_off(means, model, column);
     for (long i = 0; i < steps; i++) {
         int code = stepper_advance(stepper, column, step, 0, fault);
         if (code)
@@ -137,6 +166,7 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
     divide(means->rate, means->rates, (double)steps);
     divide(means->course, means->moments, (double)steps);
     divide(means->change, (size_t)model->grid.layers, (double)steps);
+    take_given_off(means, model, stepper, column, (double)steps * step / YEAR_SECONDS);
     column->time = end; /* no drift from adding steps */
     if (!watcher->record)
         return 0;
@@ -147,6 +177,7 @@ static int run_interval(const Model *model, Stepper *stepper, Column *column, do
                      .ozone_column = column_ozone_du(model, means->x),
                      .moments = means->course,
                      .rate = means->rate,
+                     .emission = means->emission,
                      .temperature_change = means->change};
     return watcher->record(watcher->context, &record, fault);
 }
@@ -192,7 +223,12 @@ int projection_run(const Model *model, Stepper *stepper, Column *column, const W
     int years = settings->last_year - settings->first_year + 1, per_year = settings->outputs_per_year;
     double spinup = settings->start == START_SPINUP ? settings->spinup_years : 0.0;
     double spin_share = spinup / (spinup + years);
-    int code = begin(model, stepper, column, spin_share, watcher, fault);
+    int code = model_check_start(model, fault);
+    if (!code) {
+        column->time = nextafter(column->time, 0.0); /* emissions of the first year have not begun */
+        code = begin(model, stepper, column, spin_share, watcher, fault);
+        column->time = settings->first_year;
+    }
     column_open_ledger(model, column);
     long intervals = (long)years * per_year;
     for (long i = 0; !code && i < intervals; i++) {

@@ -201,8 +201,8 @@ static int advance_means(Stepper *stepper, Column *column, double step, double y
     if (code)
         return code;
     add_turn(stepper, column, -2.0);
-    mixing_set_ground(model, column, column->time + 0.5 * years);
-    mixing_step(stepper->mixing, 0, column, column->balance);
+    mixing_set_ground(stepper->mixing, column, column->time + 0.5 * years);
+    stepper_mix(stepper, column, 0, step, column->balance);
     add_turn(stepper, column, 2.0);
     charge(&stepper->clock.transport, &since);
     code = chemistry(stepper, column, 0.5 * step, 1, fault);
@@ -211,7 +211,7 @@ static int advance_means(Stepper *stepper, Column *column, double step, double y
         return code;
     add_turn(stepper, column, -1.0);
     rebalance(stepper, column, step);
-    mixing_set_ground(model, column, column->time + years);
+    mixing_set_ground(stepper->mixing, column, column->time + years);
     for (size_t i = 0; i < field; i++)
         stepper->mean[i] = 0.5 * (stepper->mean[i] + column->x[i]);
     return 0;

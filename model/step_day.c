@@ -59,7 +59,7 @@ static int carry_border(Stepper *stepper, Column *column, int part, double lengt
     int slot = 1 + (part < PACK_DAY_PARTS / 2 ? part : PACK_DAY_PARTS - part);
     int code = mixing_prepare(stepper->mixing, slot, length, fault);
     if (!code)
-        mixing_step(stepper->mixing, slot, column, NULL);
+        stepper_mix(stepper, column, slot, length, NULL);
     return code;
 }
 
@@ -74,7 +74,7 @@ int stepper_carry_day(Stepper *stepper, Column *column, double years, Fault *fau
         moments_see(stepper->moments, part, column->x);
         if (!(length > 0.0))
             continue;
-        mixing_set_ground(stepper->model, column, column->time + elapsed / DAY_SECONDS * years);
+        mixing_set_ground(stepper->mixing, column, column->time + elapsed / DAY_SECONDS * years);
         int code = carry_border(stepper, column, part, half + 0.5 * length, fault);
         if (!code)
             code = carry_part(stepper, column, part, fault);
@@ -87,7 +87,7 @@ int stepper_carry_day(Stepper *stepper, Column *column, double years, Fault *fau
     if (code)
         return code;
     moments_see(stepper->moments, PACK_DAY_PARTS, column->x);
-    mixing_set_ground(stepper->model, column, column->time + years);
+    mixing_set_ground(stepper->mixing, column, column->time + years);
     return 0;
 }
 

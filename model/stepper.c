@@ -8,6 +8,7 @@
 #include "../chem/rates.h"
 #include "../chem/surface.h"
 #include "../input/constants.h"
+#include "emission.h"
 
 /* ---- making ---- */
 
@@ -31,9 +32,14 @@ static int allocate(Stepper *stepper, Fault *fault)
     stepper->made = calloc(solved * padded, sizeof(double));
     stepper->lost = calloc(solved * padded, sizeof(double));
     stepper->daylight = calloc(solved * padded, sizeof(double));
+    stepper->given = calloc(solved * padded, sizeof(double));
+    stepper->sink = calloc(solved * padded, sizeof(double));
+    stepper->flux = calloc(solved, sizeof(double));
+    stepper->absorbed = calloc(solved, sizeof(double));
     if (!stepper->work || !stepper->outcome || !stepper->order || !stepper->ledgers || !stepper->half_step ||
         !stepper->part_step || !stepper->coefficient || !stepper->density || !stepper->mean ||
-        !stepper->balanced || !stepper->turn || !stepper->made || !stepper->lost || !stepper->daylight)
+        !stepper->balanced || !stepper->turn || !stepper->made || !stepper->lost || !stepper->daylight ||
+        !stepper->given || !stepper->sink || !stepper->flux || !stepper->absorbed)
         return fault_memory(fault, "stepper");
     for (size_t i = 0; i < (2 + PACK_DAY_PARTS) * packs; i++)
         stepper->order[i] = (int)(i % packs);
@@ -135,6 +141,10 @@ void stepper_free(Stepper *stepper)
     free(stepper->made);
     free(stepper->lost);
     free(stepper->daylight);
+    free(stepper->given);
+    free(stepper->sink);
+    free(stepper->flux);
+    free(stepper->absorbed);
     free(stepper);
 }
 
@@ -148,10 +158,68 @@ static void take_light(Stepper *stepper)
            stepper->light->mean, (size_t)stepper->light->reactions * padded * sizeof(double));
 }
 
+/* What the schedule's lines give off at decimal year time. What falls where a value is prescribed is the
+ * reservoir's behind it. */
+static void follow_emissions(Stepper *stepper, double time)
+{
+    const Model *model = stepper->model;
+    const Emissions *emissions = model->emissions;
+    int padded = model->grid.padded;
+    stepper->giving = emissions->given > 0;
+    if (!stepper->giving)
+        return;
+    emissions_at(model, time, stepper->flux, NULL, stepper->given);
+    for (int g = 0; g < emissions->given; g++) {
+        int s = emissions->given_species[g];
+        stepper->absorbed[s] = 0.0;
+        for (int l = 0; l < model->grid.layers; l++)
+            stepper->absorbed[s] += stepper->given[FIELD(padded, s, l)];
+    }
+    mixing_mask(stepper->mixing, stepper->given);
+    for (int g = 0; g < emissions->given; g++) {
+        int s = emissions->given_species[g];
+        double *row = stepper->given + FIELD(padded, s, 0), free_part = 0.0;
+        for (int l = 0; l < model->grid.layers; l++) {
+            free_part += row[l];
+            row[l] /= model->air.number_density[l] * model->grid.depth[l];
+        }
+        stepper->absorbed[s] -= free_part;
+    }
+}
+
+void stepper_mix(Stepper *stepper, Column *column, int slot, double length, const double *balance)
+{
+    const Model *model = stepper->model;
+    const Emissions *emissions = model->emissions;
+    size_t padded = (size_t)model->grid.padded, field = (size_t)model->mechanism->solved * padded;
+    if (!stepper->giving) {
+        mixing_step(stepper->mixing, slot, column, balance);
+        return;
+    }
+    if (balance)
+        memcpy(stepper->sink, balance, field * sizeof(double));
+    else
+        memset(stepper->sink, 0, field * sizeof(double));
+    for (int g = 0; g < emissions->given; g++) {
+        int s = emissions->given_species[g];
+        double *sink = stepper->sink + FIELD(padded, s, 0);
+        const double *given = stepper->given + FIELD(padded, s, 0);
+        for (size_t l = 0; l < padded; l++)
+            sink[l] -= given[l];
+        column->emitted[s] += stepper->flux[s] * length;
+        *(model_holds(model, s) ? &column->exchanged[s] : &column->received[s]) -=
+            stepper->absorbed[s] * length;
+    }
+    mixing_step(stepper->mixing, slot, column, stepper->sink);
+}
+
 /* Bring the conditions to decimal year time, and what is made of them. */
 void stepper_move(Stepper *stepper, double time, double season)
 {
     int moved = conditions_move(stepper->conditions, stepper->model, time, season);
+    if (moved & CONDITIONS_GROUND)
+        mixing_follow(stepper->mixing, stepper->conditions);
+    follow_emissions(stepper, time);
     if (!moved)
         return;
     if (moved & CONDITIONS_AIR)

@@ -38,7 +38,13 @@ struct Stepper {
     double *made, *lost; /* [solved][padded] by the chemistry at the end of a step, mole fraction s-1 */
     double *daylight;    /* [solved][padded] explicit days: mean of the last day while the sun was up */
     int daylight_known;
-    double since_factors; /* s of the run since the diurnal factors were made */
+    double
+        *given; /* [solved][padded] what emissions give, mole fraction s-1; 0 where a value is prescribed */
+    double *flux, *absorbed; /* [solved] all they give, and the part that falls where a value is prescribed,
+                                molecules cm-2 s-1 */
+    int giving;              /* 1: some line gives off something now */
+    double *sink;            /* [solved][padded] work */
+    double since_factors;    /* s of the run since the diurnal factors were made */
     StepClock clock;
 };
 
@@ -50,6 +56,9 @@ void stepper_thermal(Stepper *stepper);
 void stepper_move(Stepper *stepper, double time, double season);
 /* Coefficients that hang on species of their own layer. */
 void stepper_local_coefficients(Stepper *stepper, const Column *column);
+/* Transport with the emissions of now, booked. slot: made ready for steps of length s. balance: as
+ * Column.balance, or NULL. */
+void stepper_mix(Stepper *stepper, Column *column, int slot, double length, const double *balance);
 /* Photolysis rates made afresh where they are stale. */
 void stepper_follow_light(Stepper *stepper, Column *column);
 

@@ -8,6 +8,7 @@
 #include "../chem/rates.h"
 #include "../chem/surface.h"
 #include "../input/constants.h"
+#include "emission.h"
 
 /* Relative shift of a density for the derivative of a coefficient: half the digits of a double. */
 static const double PARTNER_SHIFT = 1e-6;
@@ -40,14 +41,12 @@ static void mark_kept(Unsplit *unsplit)
     const Model *model = unsplit->model;
     int solved = unsplit->solved;
     for (int s = 0; s < solved; s++) {
-        int kind = model->surface_kind[s];
         unsplit->carried[s] = model->mechanism->item[model->mechanism->solved_item[s]].transport != 0;
         if (model_holds(model, s))
             continue;
-        unsplit->kept[s] = kind == SURFACE_SCHEDULE || kind == SURFACE_FIXED;
-        unsplit->value[s] = kind == SURFACE_FIXED ? model->surface_value[s] : 0.0;
-        unsplit->deposit[s] =
-            kind == SURFACE_DEPOSITION && unsplit->carried[s] ? model->surface_value[s] : 0.0;
+        unsplit->kept[s] = unsplit->conditions->kept[s];
+        unsplit->value[s] = model->surface_kind[s] == SURFACE_FIXED ? model->surface_value[s] : 0.0;
+        unsplit->deposit[s] = !unsplit->kept[s] && unsplit->carried[s] ? model_deposition(model, s) : 0.0;
     }
     keep_held(unsplit);
 }
@@ -96,6 +95,7 @@ static int allocate(Unsplit *unsplit, Fault *fault)
                 {&unsplit->conductance, layers + 1},
                 {&unsplit->deposit, solved},
                 {&unsplit->emission, solved},
+                {&unsplit->given, solved * layers},
                 {&unsplit->value, solved * layers},
                 {&unsplit->shifted, reactions * padded},
                 {&unsplit->bend, solved * reactions * padded},
@@ -177,11 +177,11 @@ void unsplit_free(Unsplit *unsplit)
     conditions_free(unsplit->conditions);
     pack_free(unsplit->pack);
     unsplit_matrix_free(unsplit->matrix);
-    double *array[] = {unsplit->emission,    unsplit->factor,  unsplit->lit,   unsplit->coefficient,
-                       unsplit->k,           unsplit->product, unsplit->rate,  unsplit->density,
-                       unsplit->jacobian,    unsplit->block_f, unsplit->block, unsplit->mass,
-                       unsplit->conductance, unsplit->deposit, unsplit->value, unsplit->shifted,
-                       unsplit->bend,        unsplit->slope};
+    double *array[] = {unsplit->emission,    unsplit->given,       unsplit->factor,  unsplit->lit,
+                       unsplit->coefficient, unsplit->k,           unsplit->product, unsplit->rate,
+                       unsplit->density,     unsplit->jacobian,    unsplit->block_f, unsplit->block,
+                       unsplit->mass,        unsplit->conductance, unsplit->deposit, unsplit->value,
+                       unsplit->shifted,     unsplit->bend,        unsplit->slope};
     for (size_t i = 0; i < sizeof array / sizeof array[0]; i++)
         free(array[i]);
     free(unsplit->carried);
@@ -206,6 +206,18 @@ void unsplit_take_factors(Unsplit *unsplit, const Day *day)
     unsplit->absorbers = 0;
 }
 
+static void take_emissions(Unsplit *unsplit, double time)
+{
+    const Model *model = unsplit->model;
+    if (!model->emissions->given)
+        return;
+    size_t padded = (size_t)model->grid.padded;
+    double *layer = unsplit->density; /* made anew by the evaluation that follows a change of time */
+    emissions_at(model, time, NULL, NULL, layer);
+    for (int i = 0; i < unsplit->unknowns; i++)
+        unsplit->given[i] = layer[FIELD(padded, i % unsplit->solved, i / unsplit->solved)];
+}
+
 void unsplit_set_time(Unsplit *unsplit, double time)
 {
     const Model *model = unsplit->model;
@@ -216,9 +228,12 @@ void unsplit_set_time(Unsplit *unsplit, double time)
         keep_held(unsplit);
     if (moved)
         light_follow(unsplit->light, unsplit->conditions, moved);
+    if (moved & CONDITIONS_GROUND)
+        mark_kept(unsplit);
     for (int s = 0; s < unsplit->solved; s++)
-        if (model->surface_kind[s] == SURFACE_SCHEDULE)
+        if (model->surface_kind[s] == SURFACE_SCHEDULE && unsplit->conditions->kept[s])
             unsplit->value[s] = schedule_abundance(&model->schedule, model->surface_gas[s], time);
+    take_emissions(unsplit, time);
 }
 
 void unsplit_emit(Unsplit *unsplit, int s, double flux)
@@ -385,7 +400,7 @@ static void add_transport(const Unsplit *unsplit, const double *x, double *tende
         for (int l = 0; l < unsplit->layers; l++) {
             double above =
                 l + 1 < unsplit->layers ? unsplit->conductance[l + 1] * (row[l + 1] - row[l]) : 0.0;
-            tendency[l * solved + s] += (above - below) / unsplit->mass[l];
+            tendency[l * solved + s] += (above - below + unsplit->given[l * solved + s]) / unsplit->mass[l];
             below = above;
         }
     }
@@ -432,6 +447,7 @@ void unsplit_turnover(const Unsplit *unsplit, const double *x, double *turnover)
             }
             if (!unsplit->carried[s])
                 continue;
+            *to += unsplit->given[l * solved + s] / unsplit->mass[l];
             if (l == 0)
                 *to += fabs(unsplit->deposit[s] * row[0]) / model->grid.depth[0] +
                        fabs(unsplit->emission[s]) / unsplit->mass[0];

@@ -48,10 +48,11 @@ typedef struct {
 
     double *block_f, *block; /* work: one pack of the kernel's species */
 
-    double *mass;           /* [layers] N dz, molecules cm-2 */
-    double *conductance;    /* [layers + 1] K N / distance of middles, molecules cm-2 s-1; 0 at the ends */
-    double *deposit;        /* [solved] deposition velocity, cm s-1 */
-    double *emission;       /* [solved] molecules cm-2 s-1 into the lowest layer; 0 until unsplit_emit */
+    double *mass;        /* [layers] N dz, molecules cm-2 */
+    double *conductance; /* [layers + 1] K N / distance of middles, molecules cm-2 s-1; 0 at the ends */
+    double *deposit;     /* [solved] deposition velocity, cm s-1 */
+    double *given; /* [unknowns] molecules cm-2 s-1 that the schedule's lines give, at the ground and aloft */
+    double *emission; /* [solved] molecules cm-2 s-1 into the lowest layer besides; 0 until unsplit_emit */
     unsigned char *carried; /* [solved] 1: diffuses */
     unsigned char *kept;    /* [unknowns] 1: the equation is value - x = 0 */
     double *value;          /* [unknowns] that value */
@@ -73,7 +74,7 @@ void unsplit_free(Unsplit *unsplit);
 
 /* Diurnal factors and daylight ratios as they now are, by copy; NULL: none (daily means). */
 void unsplit_take_factors(Unsplit *unsplit, const Day *day);
-/* What the ground keeps, and the conditions (conditions.h), at decimal year time. */
+/* What the ground keeps and emissions give, and the conditions (conditions.h), at decimal year time. */
 void unsplit_set_time(Unsplit *unsplit, double time);
 /* Let a flux into the lowest layer, molecules cm-2 s-1, drive the carried species s, and not a value that the
  * ground keeps. */

@@ -377,7 +377,7 @@ static void test_lifetime(void **state)
         else
             aloft += n * model->grid.depth[l];
     }
-    budget_gas(model, x, rate, gas, &budget);
+    budget_gas(model, x, rate, gas, 1, &budget);
     check_near(budget_lifetime(&budget, &budget.loss[LOSS_PHOTOLYSIS], 1), 1e9 / YEAR_SECONDS, 1e-13);
     assert_true(budget.aloft[LOSS_O1D] == 0.0 && budget.loss[LOSS_OH] == 0.0);
     check_near(budget.aloft[LOSS_PHOTOLYSIS], 1e-9 * aloft, 1e-13);
@@ -390,7 +390,7 @@ static void test_lifetime(void **state)
     assert_true(budget_is_source(model, gas) && !budget_is_source(model, ozone));
     /* deposition: velocity times number density at the ground */
     assert_int_equal(model->surface_kind[ozone], SURFACE_DEPOSITION);
-    budget_gas(model, x, rate, ozone, &budget);
+    budget_gas(model, x, rate, ozone, 0, &budget);
     check_near(budget.loss[LOSS_GROUND],
                model->surface_value[ozone] * x[FIELD(padded, ozone, 0)] * model->air.number_density[0],
                1e-14);

@@ -138,7 +138,8 @@ static int lifetime(const Ask *ask, double *value)
     GasBudget budget;
     if (solved(ask, gas, &species))
         return ask->fault->code;
-    budget_gas(ask->model, ask->evidence->x, ask->evidence->rate, species, &budget);
+    budget_gas(ask->model, ask->evidence->x, ask->evidence->rate, species,
+               model_keeps(ask->model, species, 2000.0), &budget);
     *value = budget_lifetime(&budget, aloft ? budget.aloft : budget.loss, GAS_LOSSES);
     if (!isfinite(*value))
         return fault_set(ask->fault, FAULT_NUMERICS, "%s: %s is not lost", ask->id, gas);

@@ -74,7 +74,7 @@ static double total_at(const Model *model, const double *x, int total, double km
 static double life(const Model *model, const double *x, const double *rate, const char *gas)
 {
     GasBudget budget;
-    budget_gas(model, x, rate, mechanism_solved(model->mechanism, gas), &budget);
+    budget_gas(model, x, rate, mechanism_solved(model->mechanism, gas), 1, &budget);
     return budget_lifetime(&budget, budget.loss, GAS_LOSSES);
 }
 

@@ -1,0 +1,36 @@
+/* conversion: the abundances of a case as emissions, its emissions as abundances, both as the column itself
+ * has them.
+ *
+ * The column is carried through the years of its case in two intervals a year. What comes through the ground
+ * of a gas whose abundance is given is the emission that keeps it there, loss by the column's own chemistry
+ * included; the lowest layer at mid-year is the abundance that emissions lead to.
+ */
+#ifndef SKYMEND_CONVERSION_H
+#define SKYMEND_CONVERSION_H
+
+#include "projection.h"
+
+typedef struct {
+    int first_year, years; /* finished ones */
+    int solved;
+    double *emission;  /* [solved][years of the case] kg in the year, of gases that the schedule carries */
+    double *abundance; /* [solved][years of the case] mole fraction of the lowest layer at mid-year */
+    int room;          /* years of the case */
+} Conversion;
+
+/* Settings of the case with the intervals that conversion_run needs. */
+void conversion_settings(Settings *settings);
+/* Run the model, made of such settings. progress and stop of watcher are used. FAULT_INTERRUPTED leaves
+ * nothing. Owner: caller. */
+int conversion_run(Conversion **made, const Model *model, Stepper *stepper, Column *column,
+                   const Watcher *watcher, Fault *fault);
+void conversion_free(Conversion *conversion);
+
+/* Of solved species s in a year of the run. */
+double conversion_emission(const Conversion *conversion, int s, int year);
+double conversion_abundance(const Conversion *conversion, int s, int year);
+/* First year from `from` on in which the implied emission of s is below zero (its abundance falls faster than
+ * this column takes it away); 0 when there is none. */
+int conversion_uptake(const Conversion *conversion, int s, int from);
+
+#endif
