@@ -6,6 +6,7 @@
 #include <netcdf.h>
 
 #include "../model/archive.h"
+#include "../model/emission.h"
 #include "scratch.h"
 
 enum { SPECIES = 8, ELEMENTS = 5, PATH = 300 };
@@ -29,6 +30,8 @@ typedef struct {
     Kernel kernel;
     Species item[SPECIES];
     int solved_item[SPECIES];
+    int surface_kind[SPECIES]; /* all closed */
+    Emissions emissions;       /* none */
     char sources[100];
 } Made;
 
@@ -60,6 +63,8 @@ static inline Made *made_model(void)
     model->sources = made->sources;
     model->mechanism = &made->mechanism;
     model->kernel = &made->kernel; /* no counters */
+    model->surface_kind = made->surface_kind;
+    model->emissions = &made->emissions;
     made->mechanism.title = "eight species";
     made->mechanism.version = "7";
     made->mechanism.item = made->item;
