@@ -196,17 +196,23 @@ static void test_summary(void **state)
     Fault fault = {0};
     char path[PATH];
     double *x = calloc((size_t)SPECIES * (size_t)grid->padded, sizeof *x), air = 0.0;
-    double received[SPECIES] = {0}, exchanged[SPECIES] = {0}, washed[SPECIES] = {0};
+    double received[SPECIES] = {0}, emitted[SPECIES] = {0}, exchanged[SPECIES] = {0}, washed[SPECIES] = {0};
     assert_non_null(x);
     for (int i = 0; i < grid->layers; i++)
         air += made->model.air.number_density[i] * grid->depth[i];
     for (int s = 0; s < SPECIES; s++)
         for (int i = 0; i < grid->layers; i++)
             x[FIELD(grid->padded, s, i)] = 1e-9 * (s + 1);
-    received[2] = 5e15;  /* CFC-11: 3 Cl each */
+    received[2] = 4e15; /* CFC-11: 3 Cl each */
+    emitted[2] = 1e15;
     washed[3] = 1e15;    /* HCl */
     exchanged[6] = 2e15; /* CH4 */
-    Column column = {.x = x, .time = 1983.0, .received = received, .exchanged = exchanged, .washed = washed};
+    Column column = {.x = x,
+                     .time = 1983.0,
+                     .received = received,
+                     .emitted = emitted,
+                     .exchanged = exchanged,
+                     .washed = washed};
     column.counts = (SolverCounts){.calls = 11,
                                    .steps = 222,
                                    .rejections = 3,
