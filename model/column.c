@@ -186,6 +186,8 @@ int model_check_start(const Model *model, Fault *fault)
 {
     const Schedule *schedule = &model->schedule;
     int start = model->settings.first_year;
+    if (schedule_meets(schedule, start, model->settings.last_year, fault))
+        return fault->code;
     for (int i = 0; i < schedule->lines; i++) {
         const ScheduleLine *line = &schedule->line[i];
         int from = schedule->emission_from[line->gas];

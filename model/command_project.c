@@ -135,7 +135,7 @@ static int run(const Request *request, Fault *fault)
     if (!code)
         code = model_make(&model, settings, fault);
     if (!code)
-        code = schedule_meets(&model->schedule, settings->first_year, settings->last_year, fault);
+        code = model_check_start(model, fault);
     if (!code)
         code = column_make(&column, model, fault);
     if (!code && request->threads)

@@ -355,6 +355,9 @@ static int run(const Request *request, Fault *fault)
         conversion_settings(settings);
         code = model_make(&model, settings, fault);
     }
+    if (!code) {
+        code = model_check_start(model, fault);
+    }
     if (!code)
         code = column_make(&column, model, fault);
     if (!code && request->threads)
