@@ -508,6 +508,12 @@ static int check_together(Reading *reading)
             reading, "files", "temperature_change", "",
             "files.temperature_change is used with temperature.mode = \"file\" alone; set the mode, or "
             "leave the file out");
+    if (settings->uvb_limit_nm != 315 && settings->uvb_limit_nm != 320) {
+        snprintf(text, sizeof text,
+                 "ultraviolet.uvb_limit_nm is %d; give 315 (ISO 21348, CIE) or 320 (older practice)",
+                 settings->uvb_limit_nm);
+        return clash(reading, "ultraviolet", "uvb_limit_nm", "", text);
+    }
     return check_season(reading) ? reading->fault->code : check_files(reading);
 }
 

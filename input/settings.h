@@ -57,6 +57,7 @@ typedef struct {
     char schedule_layer[SETTINGS_MAX_LAYERS][SETTINGS_PATH];
     char aerosol_file[SETTINGS_PATH];            /* aerosol-surface.csv */
     char bins_file[SETTINGS_PATH];               /* wavelength-bins.csv */
+    char ultraviolet_bins_file[SETTINGS_PATH];   /* ultraviolet-bins.csv */
     char solar_file[SETTINGS_PATH];              /* solar-irradiance.csv */
     char initial_file[SETTINGS_PATH];            /* initial-profiles.csv */
     char tropospheric_oh_file[SETTINGS_PATH];    /* tropospheric-oh.csv; "" = OH computed everywhere */
@@ -83,6 +84,11 @@ typedef struct {
     double latitude_deg;   /* SUN_LATITUDE, SUN_SEASON */
     double day_of_year;    /* SUN_LATITUDE, 1..366 */
     double surface_albedo; /* 0..1 */
+
+    /* ultraviolet at the ground, under a sun of its own */
+    double ultraviolet_latitude_deg, ultraviolet_day_of_year;
+    double ultraviolet_albedo; /* 0..1, clear ground */
+    int uvb_limit_nm;          /* 315 or 320 */
 
     /* day */
     int day;               /* enum DayMode */

@@ -61,6 +61,8 @@ static const SettingKey keys[] = {
          "lines or changes what stands below"),
     NAMED("files", "aerosol", aerosol_file, "aerosol-surface.csv", "CSV profile of sulfate surface area"),
     NAMED("files", "bins", bins_file, "wavelength-bins.csv", "CSV of wavelength intervals"),
+    NAMED("files", "ultraviolet_bins", ultraviolet_bins_file, "ultraviolet-bins.csv",
+          "CSV of wavelength intervals of the ultraviolet at the ground"),
     NAMED("files", "solar", solar_file, "solar-irradiance.csv", "CSV of sunlight above the atmosphere"),
     NAMED("files", "initial", initial_file, "initial-profiles.csv",
           "CSV of the state that spin-up and steady state start from"),
@@ -109,6 +111,18 @@ static const SettingKey keys[] = {
     REAL("sun", "surface_albedo", surface_albedo, 0.3, 0, 1, "",
          "share of light the lower boundary returns; 0.3 is the whole Earth with its clouds "
          "(common practice), clear ground is near 0.1 and less in the ultraviolet"),
+
+    REAL("ultraviolet", "latitude_deg", ultraviolet_latitude_deg, 45, -90, 90, "degrees north",
+         "place of the ultraviolet at the ground, whatever the sun of the column; under clear sky at sea "
+         "level"),
+    REAL("ultraviolet", "day_of_year", ultraviolet_day_of_year, 172, 1, 366, "",
+         "its day; 1 = 1 January, 172 = 21 June"),
+    REAL("ultraviolet", "surface_albedo", ultraviolet_albedo, 0.05, 0, 1, "",
+         "share of ultraviolet the ground there returns: land without snow 0.02 to 0.05, sea 0.05 to 0.1, "
+         "fresh "
+         "snow up to 0.9 (common practice)"),
+    WHOLE("ultraviolet", "uvb_limit_nm", uvb_limit_nm, 315, 315, 320, "nm",
+          "where UV-B ends and UV-A begins: 315 (ISO 21348, CIE) or 320 (older practice)"),
 
     CHOICE("day", "mode", day, DAY_FACTORS, day_choices,
            "mean: constant mean light (wrong for chlorine, for comparison only); factors: diurnal "

@@ -98,6 +98,7 @@ static void archive_free(Archive *archive)
     free(archive->out.emission);
     free(archive->out.budget);
     ox_book_free(archive->out.book);
+    ultraviolet_free(archive->out.ultraviolet);
     free(archive);
 }
 
@@ -142,6 +143,8 @@ int archive_create(Archive **made, const Model *model, const char *path, int ove
         fault_memory(fault, "the archive");
     else if (ox_book_possible(model->mechanism, NULL))
         ox_book_make(&archive->out.book, model->mechanism, fault);
+    if (!fault->code && model->spectra)
+        ultraviolet_make(&archive->out.ultraviolet, model, NULL, fault);
     if (fault->code || choose_path(archive, path, overwrite, fault)) {
         archive_free(archive);
         return fault->code;
@@ -155,7 +158,8 @@ int archive_create(Archive **made, const Model *model, const char *path, int ove
         return fault->code;
     }
     size_t variables = (size_t)model->mechanism->solved * (model->settings.moments == MOMENTS_NONE ? 1 : 2) +
-                       layout_budget_variables(&archive->out) + layout_emission_variables(&archive->out);
+                       layout_budget_variables(&archive->out) + layout_emission_variables(&archive->out) +
+                       LAYOUT_ULTRAVIOLET;
     size_t bytes = SUMMARY_BYTES + variables * INDEX_BYTES;
     int status = NC_NOERR;
     if (!reserve_space(archive, bytes, fault))
@@ -269,6 +273,8 @@ static int put_record(Archive *archive, const Record *record, Fault *fault)
                       fault) ||
         library_fault(archive, layout_emission_put(&archive->out, archive->records, record), "the emissions",
                       fault) ||
+        library_fault(archive, layout_ultraviolet_put(&archive->out, archive->records, record),
+                      "the ultraviolet", fault) ||
         library_fault(
             archive,
             nc_put_vara_double(archive->out.file, archive->out.column, start, one, &record->ozone_column),
@@ -296,8 +302,8 @@ static int take_place(Archive *archive, Fault *fault)
 int archive_append(Archive *archive, const Record *record, Fault *fault)
 {
     const Model *model = archive->out.model;
-    size_t variables = (size_t)model->mechanism->solved + 4 + layout_budget_variables(&archive->out) +
-                       layout_emission_variables(&archive->out);
+    size_t variables = (size_t)model->mechanism->solved + 4 + LAYOUT_ULTRAVIOLET +
+                       layout_budget_variables(&archive->out) + layout_emission_variables(&archive->out);
     size_t bytes = 2 * variables * (size_t)model->grid.layers * sizeof(double) + variables * INDEX_BYTES;
     if (record->moments)
         bytes += (size_t)model->mechanism->solved *

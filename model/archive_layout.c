@@ -372,7 +372,8 @@ int layout_define(Layout *out, const char *command_line, Fault *fault)
         define_series(out, &dim, fault) || put_altitude(out, &dim, fault) || put_profiles(out, &dim, fault) ||
         define_species(out, &dim, fault) || layout_moments(out, dim.time, dim.altitude, fault) ||
         layout_budget_define(out, dim.time, dim.altitude, TIME_CHUNK, fault) ||
-        layout_emission_define(out, dim.time, TIME_CHUNK, fault) || define_change(out, &dim, fault))
+        layout_emission_define(out, dim.time, TIME_CHUNK, fault) ||
+        layout_ultraviolet_define(out, dim.time, TIME_CHUNK, fault) || define_change(out, &dim, fault))
         return fault->code;
     status = nc_enddef(out->file);
     if (status == NC_NOERR)

@@ -9,6 +9,9 @@
 
 #include "archive.h"
 #include "budget.h"
+#include "ultraviolet.h"
+
+#define LAYOUT_ULTRAVIOLET 6 /* series of the ultraviolet at the ground */
 
 /* An open NetCDF-4 file and the variables that records go to. Everything is borrowed. */
 typedef struct {
@@ -24,9 +27,12 @@ typedef struct {
     OxBook *book;               /* NULL: the mechanism has no odd oxygen and the file no budget */
     int term[BUDGET_TERMS + 1]; /* variable ids of the odd-oxygen budget, the net last */
     int *lifetime;              /* [solved] variable ids, -1 for a gas that is no source gas */
-    int *emission;  /* [solved] variable ids, -1 for a gas that neither schedule nor ground gives */
-    int line;       /* variable id of the emission by line of the schedule, -1: it has none */
-    double *budget; /* [BUDGET_TERMS + 1][padded] work */
+    int *emission;            /* [solved] variable ids, -1 for a gas that neither schedule nor ground gives */
+    int line;                 /* variable id of the emission by line of the schedule, -1: it has none */
+    double *budget;           /* [BUDGET_TERMS + 1][padded] work */
+    Ultraviolet *ultraviolet; /* NULL: a model without spectra, and the file has no ultraviolet. Owner:
+                                 archive */
+    int series[LAYOUT_ULTRAVIOLET]; /* variable ids of it */
 } Layout;
 
 /* A variable with its attributes; NULL: left out. */
@@ -68,5 +74,11 @@ size_t layout_emission_variables(const Layout *out);
 int layout_emission_define(Layout *out, int time, size_t time_chunk, Fault *fault);
 /* Write those of one record. A NetCDF status. */
 int layout_emission_put(const Layout *out, size_t index, const Record *record);
+/* ---- archive_ultraviolet.c: the ultraviolet at the ground ---- */
+
+/* Define its LAYOUT_ULTRAVIOLET series; nothing when ultraviolet is NULL. */
+int layout_ultraviolet_define(Layout *out, int time, size_t time_chunk, Fault *fault);
+/* Compute and write those of one record. A NetCDF status. */
+int layout_ultraviolet_put(const Layout *out, size_t index, const Record *record);
 
 #endif

@@ -7,6 +7,7 @@
 #include "answers.h"
 #include "column.h"
 #include "commands.h"
+#include "ultraviolet.h"
 
 typedef struct {
     const char *verb;
@@ -67,6 +68,7 @@ static int run_check(const Look *look, Fault *fault)
     Settings *settings = malloc(sizeof *settings);
     Model *model = NULL;
     Column *column = NULL;
+    Ultraviolet *ultraviolet = NULL;
     if (!settings)
         return fault_memory(fault, "settings");
     int code = load_case(settings, look->operand, fault);
@@ -76,6 +78,8 @@ static int run_check(const Look *look, Fault *fault)
         code = model_check_start(model, fault);
     if (!code)
         code = column_make(&column, model, fault);
+    if (!code)
+        code = ultraviolet_make(&ultraviolet, model, NULL, fault);
     if (!code) {
         const Mechanism *mechanism = model->mechanism;
         settings_print(settings, look->flag, stdout);
@@ -88,6 +92,7 @@ static int run_check(const Look *look, Fault *fault)
                model->schedule.gases, column_ozone_du(model, column->x));
         schedule_print(&model->schedule, "// ", stdout);
     }
+    ultraviolet_free(ultraviolet);
     column_free(column);
     model_free(model);
     free(settings);

@@ -151,6 +151,13 @@ static void settings_refuses_a_bad_case(void **state)
         {"numerics = { start = \"setled\"; };", ":1: ", "did you mean settled?"},
         {"grid = { top_km = 200; };", ":1: ", "between 20 and 86 km"},
         {"sun = { surface_albedo = -0.1; };", ":1: ", "between 0 and 1"},
+        {"\nultraviolet = { uvb_limit_nm = 317; };", ":2: ", "give 315"},
+        {"ultraviolet = { uvb_limit_nm = 300; };", ":1: ", "between 315 and 320 nm"},
+        {"ultraviolet = { uvb_limit_nm = 315.0; };", ":1: ", "write a whole number"},
+        {"ultraviolet = { surface_albedo = 1.1; };", ":1: ", "between 0 and 1"},
+        {"ultraviolet = { latitude_deg = -91; };", ":1: ", "between -90 and 90"},
+        {"ultraviolet = { day_of_year = 0; };", ":1: ", "between 1 and 366"},
+        {"files = { ultraviolet_bins = \"\"; };", ":1: ", "files.ultraviolet_bins is empty"},
         {"numerics = { relative_tolerance = 1e999; };", ":1: ", "between"},
         {"years = { first = 4294969251; };", ":1: ", "too large"},
         {"years = { first = 99999999999999999999999; };", ":1: ", "too large"},
@@ -276,7 +283,7 @@ static void settings_defaults_fit_the_data(void **state)
             fail_msg("%s", fault.text);
         files++;
     }
-    assert_int_equal(files, 12);
+    assert_int_equal(files, 13);
 
     char path[2 * SETTINGS_PATH], *text;
     Fault fault = {0};
