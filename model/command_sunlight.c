@@ -1,4 +1,4 @@
-/* skymend sunlight: photolysis rates by altitude. */
+/* skymend sunlight: photolysis rates by altitude; with --ultraviolet see command_ultraviolet.c. */
 #include <getopt.h>
 #include <math.h>
 #include <stdio.h>
@@ -17,7 +17,8 @@ static const char *const moment_words[MOMENTS + 1] = {"midnight", "sunrise", "no
 typedef struct {
     const char *case_path, *state_path; /* NULL when not given */
     int help, cosine_given, year_given;
-    int moment; /* enum Moment or WHOLE_DAY */
+    int moment;                           /* enum Moment or WHOLE_DAY */
+    int ultraviolet, spectrum, benchmark; /* benchmark: year, 0 when not given */
     double cosine, year;
 } Request;
 
@@ -29,7 +30,9 @@ typedef struct {
 } OneSun;
 
 static const char usage[] =
-    "usage: skymend sunlight [CASE.cfg] [--moment M | --cosine C] [--state FILE.nc --year Y]\n\n"
+    "usage: skymend sunlight [CASE.cfg] [--moment M | --cosine C] [--state FILE.nc --year Y]\n"
+    "       skymend sunlight [CASE.cfg] --ultraviolet [--spectrum | --benchmark Y] [--cosine C]\n"
+    "                        [--state FILE.nc --year Y]\n\n"
     "Photolysis rates by altitude as CSV on standard output: the mean over the day of the case's sun, for "
     "the\n"
     "case's initial profiles. Clear-sky planning figures; no guide to personal exposure.\n\n"
@@ -41,6 +44,14 @@ static const char usage[] =
     "      --state FILE.nc  ozone, NO and NO2 from this file of skymend project, made with the same layers;\n"
     "                       their means over the year of --year\n"
     "      --year Y         a year of that file\n"
+    "      --ultraviolet    instead of photolysis rates what reaches the ground under a clear sky: UV-A, "
+    "UV-B, "
+    "UV-C,\n"
+    "                       erythemal irradiance and UV index at noon, erythemal dose of the day and "
+    "amplification\n"
+    "                       factor, under the sun of the case's group ultraviolet or that of --cosine\n"
+    "      --spectrum       its spectrum at noon instead\n"
+    "      --benchmark Y    beside it the same of another year of --state, and the change against it\n"
     "  -h, --help           this text\n";
 
 static int read_moment(const char *text, int *moment, Fault *fault)
@@ -54,13 +65,37 @@ static int read_moment(const char *text, int *moment, Fault *fault)
                      near ? "; did you mean " : "; give one of them", near ? near : "", near ? "?" : "");
 }
 
+/* What goes with --ultraviolet and what does not. */
+static int check_ultraviolet(const Request *request, Fault *fault)
+{
+    if (!request->ultraviolet && (request->spectrum || request->benchmark))
+        return fault_set(fault, FAULT_INPUT, "sunlight: %s goes with --ultraviolet; add that",
+                         request->spectrum ? "--spectrum" : "--benchmark");
+    if (request->ultraviolet && request->moment != WHOLE_DAY)
+        return fault_set(fault, FAULT_INPUT,
+                         "sunlight: --ultraviolet is that of noon and of the whole day under the sun of the "
+                         "case's group ultraviolet; leave --moment out, or give --cosine");
+    if (request->spectrum && request->benchmark)
+        return fault_set(fault, FAULT_INPUT, "sunlight: --spectrum has no change; leave --benchmark out");
+    if (request->benchmark && !request->state_path)
+        return fault_set(fault, FAULT_INPUT,
+                         "sunlight: --benchmark is a year of a file; add --state FILE.nc --year Y");
+    return 0;
+}
+
 static int read_request(Request *request, int argc, char **argv, Fault *fault)
 {
-    static const struct option options[] = {
-        {"moment", required_argument, NULL, 'm'}, {"cosine", required_argument, NULL, 'c'},
-        {"state", required_argument, NULL, 's'},  {"year", required_argument, NULL, 'y'},
-        {"help", no_argument, NULL, 'h'},         {NULL, 0, NULL, 0}};
-    static const char *const names[] = {"--moment", "--cosine", "--state", "--year", "--help", NULL};
+    static const struct option options[] = {{"moment", required_argument, NULL, 'm'},
+                                            {"cosine", required_argument, NULL, 'c'},
+                                            {"state", required_argument, NULL, 's'},
+                                            {"year", required_argument, NULL, 'y'},
+                                            {"ultraviolet", no_argument, NULL, 'u'},
+                                            {"spectrum", no_argument, NULL, 'p'},
+                                            {"benchmark", required_argument, NULL, 'b'},
+                                            {"help", no_argument, NULL, 'h'},
+                                            {NULL, 0, NULL, 0}};
+    static const char *const names[] = {"--moment",   "--cosine",    "--state", "--year", "--ultraviolet",
+                                        "--spectrum", "--benchmark", "--help",  NULL};
     int found, before = 1, code = 0;
     *request = (Request){.moment = WHOLE_DAY};
     opterr = 0;
@@ -74,6 +109,9 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
             code = option_number("--cosine", optarg, -0.2, 1.0, &request->cosine, fault);
             break;
         case 's': request->state_path = optarg; break;
+        case 'u': request->ultraviolet = 1; break;
+        case 'p': request->spectrum = 1; break;
+        case 'b': code = option_whole("--benchmark", optarg, 1, 9999, &request->benchmark, fault); break;
         case 'y':
             request->year_given = 1;
             code = option_number("--year", optarg, 1, 9999, &request->year, fault);
@@ -95,6 +133,8 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
     if ((request->state_path != NULL) != request->year_given)
         return fault_set(fault, FAULT_INPUT, "sunlight: --state and --year go together; add %s",
                          request->state_path ? "--year" : "--state FILE.nc");
+    if (check_ultraviolet(request, fault))
+        return fault->code;
     return one_operand("sunlight", argc, argv, optind, &request->case_path, fault);
 }
 
@@ -249,7 +289,15 @@ int command_sunlight(int argc, char **argv)
     int code = read_request(&request, argc, argv, &fault);
     if (!code && request.help)
         fputs(usage, stdout);
-    else if (!code)
+    else if (!code && request.ultraviolet) {
+        const UltravioletRequest asked = {.case_path = request.case_path,
+                                          .state_path = request.state_path,
+                                          .year = (int)request.year,
+                                          .benchmark = request.benchmark,
+                                          .cosine = request.cosine_given ? &request.cosine : NULL,
+                                          .spectrum = request.spectrum};
+        code = sunlight_ultraviolet(&asked, &fault);
+    } else if (!code)
         code = run(&request, &fault);
     return code ? report_fault(&fault) : 0;
 }

@@ -18,6 +18,16 @@ int command_budget(int argc, char **argv);
 int command_potency(int argc, char **argv);
 int command_schedule(int argc, char **argv);
 
+/* ---- command_ultraviolet.c: the part of sunlight that asks for the ultraviolet at the ground ---- */
+
+typedef struct {
+    const char *case_path, *state_path; /* NULL when not given */
+    int year, benchmark;                /* of state_path; benchmark 0: none */
+    const double *cosine;               /* of one sun; NULL: that of the case's group ultraviolet */
+    int spectrum;                       /* 1: by wavelength, 0: the table of quantities */
+} UltravioletRequest;
+int sunlight_ultraviolet(const UltravioletRequest *request, Fault *fault);
+
 /* ---- shared by the verbs (commands.c) ---- */
 
 /* Folder of the data: SKYMEND_DATA if set, else share/skymend beside the program's folder, else input/data
