@@ -133,6 +133,13 @@ int potencies_measure(const Model *model, Potencies **made, Fault *fault);
 /* The model's value of a row "odp-GAS"; -1 for any other id. note as in row_compute. */
 int row_potency(const Evidence *evidence, const char *id, double *value, char *note, Fault *fault);
 
+/* ---- validate_ultraviolet.c: ultraviolet ---- */
+
+/* The model's value of a row "uv-toa-...", "uv-raf" or "uvi-overhead"; -1 for any other id. note as in
+ * row_compute.
+ */
+int row_ultraviolet(const Evidence *evidence, const char *id, double *value, char *note, Fault *fault);
+
 /* ---- validate_numerics.c: the size of the numerical errors ---- */
 
 typedef struct {

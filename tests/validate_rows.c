@@ -9,7 +9,6 @@
 #include "../chem/oxygen.h"
 #include "../chem/rates.h"
 #include "../input/constants.h"
-#include "../input/table.h"
 #include "../model/answers.h"
 
 typedef struct {
@@ -338,36 +337,6 @@ static int composition(const Ask *ask, double *value)
 
 /* ---- sunlight ---- */
 
-/* Integral of the solar table, whose values are means over intervals that reach half-way to the neighbours.
- */
-static int sunlight_above(const Ask *ask, double *value)
-{
-    const Settings *settings = &ask->model->settings;
-    char path[SETTINGS_PATH];
-    Table table = {0};
-    size_t wavelength, irradiance;
-    double low, high;
-    if (sscanf(ask->id, "uv-toa-%lf-%lf", &low, &high) != 2)
-        return -1;
-    int code = table_locate("solar spectrum", settings->solar_file, settings->case_dir, settings->data_dir,
-                            path, sizeof path, ask->fault);
-    if (!code)
-        code = table_read(&table, path, ask->fault);
-    if (!code)
-        code = table_column(&table, "wavelength_nm", &wavelength, ask->fault);
-    if (!code)
-        code = table_column(&table, "irradiance_W_m-2_nm-1", &irradiance, ask->fault);
-    *value = 0.0;
-    for (size_t i = 1; !code && i + 1 < table.rows; i++) {
-        const double *x = table_values(&table, wavelength), *y = table_values(&table, irradiance);
-        double from = fmax(low, 0.5 * (x[i - 1] + x[i])), to = fmin(high, 0.5 * (x[i] + x[i + 1]));
-        if (to > from)
-            *value += y[i] * (to - from);
-    }
-    table_free(&table);
-    return code ? code : plain_note(ask, "the solar table, steps of its intervals");
-}
-
 /* The longest wavelength at which the program dissociates O2. */
 static int oxygen_threshold(const Ask *ask, double *value)
 {
@@ -406,7 +375,7 @@ static int ozone_strong(const Ask *ask, double *value)
 int row_compute(const Evidence *evidence, const char *id, const char *conditions, int *state, double *value,
                 char *note_text, Fault *fault)
 {
-    static const char *const later[] = {"uv-raf", "uvi-overhead", "uv-bands"};
+    static const char *const later[] = {"uv-bands"};
     const Ask ask = {evidence->run, evidence, evidence->run->model, id, conditions, note_text, fault};
     note_text[0] = '\0';
     *value = NAN;
@@ -429,8 +398,6 @@ int row_compute(const Evidence *evidence, const char *id, const char *conditions
         code = odd_oxygen(&ask, value);
     else if (!strcmp(id, "return-1980"))
         code = return_year(&ask, value);
-    else if (begins(id, "uv-toa-"))
-        code = sunlight_above(&ask, value);
     else if (!strcmp(id, "O2-threshold"))
         code = oxygen_threshold(&ask, value);
     else if (!strcmp(id, "O3-strong"))
@@ -439,6 +406,7 @@ int row_compute(const Evidence *evidence, const char *id, const char *conditions
              (code = row_moments(evidence, id, value, note_text, fault)) == -1 &&
              (code = row_perturbed(evidence, id, value, note_text)) == -1 &&
              (code = row_chlorine(evidence, id, value, note_text, fault)) == -1 &&
+             (code = row_ultraviolet(evidence, id, value, note_text, fault)) == -1 &&
              (code = composition(&ask, value)) == -1)
         code = ozone(&ask, value);
     if (code == -1)
