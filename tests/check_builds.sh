@@ -49,3 +49,5 @@ END
 check "sanitizers find nothing in a short run with diurnal factors" \
     build-sanitized/skymend project "$TEST_DIR/short.cfg" -o "$TEST_DIR/short.nc" --threads 2
 check "sanitizers find nothing in sunlight" build-sanitized/skymend sunlight "$TEST_DIR/short.cfg" --cosine -0.05
+check "sanitizers find nothing in ultraviolet" build-sanitized/skymend sunlight "$TEST_DIR/short.cfg" --ultraviolet \
+    --state "$TEST_DIR/short.nc" --year 1980 --benchmark 1980
