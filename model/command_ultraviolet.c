@@ -19,13 +19,15 @@ static int look_at(const Model *model, Ultraviolet *ultraviolet, const Ultraviol
 {
     static const char *const absorber[] = {"O3", "NO2"};
     Column *column;
+    double change[SETTINGS_MAX_EDGES] = {0};
     if (column_make(&column, model, fault))
         return fault->code;
     if (!request->state_path ||
-        !record_read(model, request->state_path, year, absorber, 2, column->x, fault)) {
+        (!record_read(model, request->state_path, year, absorber, 2, column->x, fault) &&
+         !record_read_change(model, request->state_path, year, change, fault))) {
         look->column = column_ozone_du(model, column->x);
-        look->amplification = ultraviolet_amplification(ultraviolet, column->x, NULL);
-        ultraviolet_day(ultraviolet, column->x, NULL, &look->day);
+        look->amplification = ultraviolet_amplification(ultraviolet, column->x, change);
+        ultraviolet_day(ultraviolet, column->x, change, &look->day);
     }
     column_free(column);
     return fault->code;
@@ -52,7 +54,10 @@ static void print_head(const Model *model, const UltravioletRequest *request, co
             "au\n",
             settings->ultraviolet_latitude_deg, settings->ultraviolet_day_of_year, now->day.cosine,
             now->day.earth_sun);
-    printf("# air: the base atmosphere, temperature.mode or months not applied; sunlight as tabulated\n");
+    printf("# air: %s; sunlight as tabulated\n", request->state_path
+                                                     ? "temperature of the state"
+                                                     : "the base atmosphere, temperature.mode or months not "
+                                                       "applied");
     if (request->state_path)
         printf("# state: mean of %d in %s, ozone column %.1f DU", request->year, request->state_path,
                now->column);

@@ -1,4 +1,4 @@
-/* record: mole fractions out of a file. */
+/* record: mole fractions and temperature out of a file. */
 #include "record.h"
 
 #include <errno.h>
@@ -78,8 +78,35 @@ static int read_gas(const Model *model, int file, const char *path, const char *
     return 0;
 }
 
+/* Mean change of temperature over the same records. */
+static int read_change(const Model *model, int file, const char *path, size_t records, const int *in,
+                       double *all, double *change, Fault *fault)
+{
+    static const char name[] = "temperature_change";
+    size_t layers = (size_t)model->grid.layers;
+    int variable;
+    memset(change, 0, layers * sizeof *change);
+    if (nc_inq_varid(file, name, &variable) != NC_NOERR)
+        return 0;
+    if (read_whole(file, path, name, records * layers, all, fault))
+        return fault->code;
+    for (size_t l = 0; l < layers; l++) {
+        double taken = 0.0;
+        for (size_t r = 0; r < records; r++) {
+            change[l] += in[r] ? all[r * layers + l] : 0.0;
+            taken += in[r];
+        }
+        change[l] /= taken;
+        if (!(fabs(change[l]) < 1000.0)) /* the fill value is far above */
+            return fault_set(fault, FAULT_INPUT, "%s: %s is %g at %g km, which is no temperature", path, name,
+                             change[l], 1e-5 * model->grid.middle[l]);
+    }
+    return 0;
+}
+
+/* x, change: NULL when not asked for. */
 static int read_open(const Model *model, int file, const char *path, int year, const char *const *names,
-                     int count, double *x, Fault *fault)
+                     int count, double *x, double *change, Fault *fault)
 {
     int dimension, found = 0;
     size_t records = 0;
@@ -103,18 +130,31 @@ static int read_open(const Model *model, int file, const char *path, int year, c
             code = read_gas(model, file, path, names[n], records, in, all,
                             x + FIELD(model->grid.padded, s, 0), fault);
     }
+    if (!code && change)
+        code = read_change(model, file, path, records, in, all, change, fault);
     free(all);
     free(in);
+    return code;
+}
+
+static int read_path(const Model *model, const char *path, int year, const char *const *names, int count,
+                     double *x, double *change, Fault *fault)
+{
+    int file, status = nc_open(path, NC_NOWRITE, &file);
+    if (status != NC_NOERR)
+        return fault_set(fault, FAULT_INPUT, "%s: cannot be read: %s", path, nc_strerror(status));
+    int code = read_open(model, file, path, year, names, count, x, change, fault);
+    nc_close(file);
     return code;
 }
 
 int record_read(const Model *model, const char *path, int year, const char *const *names, int count,
                 double *x, Fault *fault)
 {
-    int file, status = nc_open(path, NC_NOWRITE, &file);
-    if (status != NC_NOERR)
-        return fault_set(fault, FAULT_INPUT, "%s: cannot be read: %s", path, nc_strerror(status));
-    int code = read_open(model, file, path, year, names, count, x, fault);
-    nc_close(file);
-    return code;
+    return read_path(model, path, year, names, count, x, NULL, fault);
+}
+
+int record_read_change(const Model *model, const char *path, int year, double *change, Fault *fault)
+{
+    return read_path(model, path, year, NULL, 0, NULL, change, fault);
 }

@@ -1,4 +1,4 @@
-/* record: mole fractions out of a file that skymend project wrote. */
+/* record: mole fractions and temperature out of a file that skymend project wrote. */
 #ifndef SKYMEND_RECORD_H
 #define SKYMEND_RECORD_H
 
@@ -9,5 +9,8 @@
  * none, has other layers than the model, or no record in that year. */
 int record_read(const Model *model, const char *path, int year, const char *const *names, int count,
                 double *x, Fault *fault);
+/* The mean over the year of the temperature less that of the base atmosphere, K, into change [layers]; 0 when
+ * the file is of a run whose temperature does not vary. Faults as above. */
+int record_read_change(const Model *model, const char *path, int year, double *change, Fault *fault);
 
 #endif

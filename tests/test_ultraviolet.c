@@ -11,6 +11,7 @@
 #include "../input/constants.h"
 #include "../input/table.h"
 #include "../model/archive.h"
+#include "../model/record.h"
 #include "../model/sun.h"
 #include "../model/ultraviolet.h"
 #include "standard_light.h"
@@ -492,6 +493,10 @@ static void file_holds_the_series(void **state)
     assert_int_equal(nc_get_var_double(file, id, &latitude), 0);
     assert_true(latitude == -35);
     nc_close(file);
+    double back[SETTINGS_MAX_EDGES] = {0}; /* the temperature it goes by can be had again */
+    well(record_read_change(model, path, 2000, back, &fault), &fault);
+    assert_memory_equal(back, change, (size_t)model->grid.layers * sizeof *back);
+    assert_int_equal(record_read_change(model, path, 2001, back, &fault), FAULT_INPUT);
     place(45, 172);
     free(x);
 }
