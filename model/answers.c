@@ -1,320 +1,336 @@
-/* answers: see answers.h.
- *
- * Works on the series of interval means alone, so that a file gives the same answers when it is finished,
- * read back later, or cut and joined with other tools.
- */
+/* answers: the list, and what one file gives. */
 #include "answers.h"
 
-#include <errno.h>
 #include <math.h>
+#include <stdarg.h>
 #include <stdlib.h>
 #include <string.h>
-#include <sys/stat.h>
 
-#include <netcdf.h>
+/* ---- the list ---- */
 
-#include "calendar.h"
-
-enum { DECADE = 10, SHORT_FILE = 15 /* years */ };
-
-/* ---- reading ---- */
-
-static int read_text(int file, int variable, const char *name, char *text, size_t size)
+FileAnswer *answers_add(Answers *answers, const char *unit, Fault *fault, const char *id, ...)
 {
-    nc_type type;
-    size_t length;
-    char *given = NULL;
-    text[0] = '\0';
-    if (nc_inq_att(file, variable, name, &type, &length) != NC_NOERR)
-        return 0;
-    if (type == NC_STRING && length == 1) { /* as xarray and others write it */
-        if (nc_get_att_string(file, variable, name, &given) != NC_NOERR)
-            return 0;
-        snprintf(text, size, "%s", given ? given : "");
-        nc_free_string(1, &given);
-        return 1;
-    }
-    if (type != NC_CHAR || length >= size || nc_get_att_text(file, variable, name, text) != NC_NOERR)
-        return 0;
-    text[length] = '\0';
-    return 1;
-}
-
-/* A variable with one value per record; dimensions of length 1, which tools like to add, do not matter. */
-static int read_series(int file, const char *path, const char *name, size_t records, double *values,
-                       int *variable, Fault *fault)
-{
-    int dimensions, dimension[NC_MAX_VAR_DIMS];
-    size_t size = 1;
-    if (nc_inq_varid(file, name, variable) != NC_NOERR)
-        return fault_set(fault, FAULT_INPUT, "%s has no variable %s: is it a Skymend file?", path, name);
-    int status = nc_inq_var(file, *variable, NULL, NULL, &dimensions, dimension, NULL);
-    for (int d = 0; d < dimensions && status == NC_NOERR; d++) {
-        size_t length;
-        status = nc_inq_dimlen(file, dimension[d], &length);
-        size *= status == NC_NOERR ? length : 1;
-    }
-    if (status == NC_NOERR && size != records)
-        return fault_set(fault, FAULT_INPUT, "%s: %s has %zu values for %zu times", path, name, size,
-                         records);
-    if (status == NC_NOERR)
-        status = nc_get_var_double(file, *variable, values);
-    if (status != NC_NOERR)
-        return fault_set(fault, FAULT_INPUT, "%s: cannot read %s: %s", path, name, nc_strerror(status));
-    return 0;
-}
-
-/* How a time axis counts: value * day + base = days since 0001-01-01. */
-static int read_clock(int file, int variable, const char *path, double *day, double *base, Fault *fault)
-{
-    static const struct {
-        const char *name;
-        double day;
-    } units[] = {{"days", 1.0},
-                 {"day", 1.0},
-                 {"hours", 1.0 / 24.0},
-                 {"hour", 1.0 / 24.0},
-                 {"minutes", 1.0 / 1440.0},
-                 {"minute", 1.0 / 1440.0},
-                 {"seconds", 1.0 / 86400.0},
-                 {"second", 1.0 / 86400.0}};
-    char text[128], unit[32], calendar[64];
-    int year, month, date, hour = 0, minute = 0;
-    double second = 0.0;
-    if (!read_text(file, variable, "units", text, sizeof text) ||
-        sscanf(text, "%31s since %d-%d-%d%*[ T]%d:%d:%lf", unit, &year, &month, &date, &hour, &minute,
-               &second) < 4 ||
-        year < 1583 || month < 1 || month > 12 || date < 1 || date > 31)
-        return fault_set(fault, FAULT_INPUT, "%s: time is in \"%s\"; \"days since YYYY-MM-DD\" is wanted",
-                         path, text);
-    if (read_text(file, variable, "calendar", calendar, sizeof calendar) &&
-        strcmp(calendar, "standard") != 0 && strcmp(calendar, "gregorian") != 0 &&
-        strcmp(calendar, "proleptic_gregorian") != 0)
-        return fault_set(fault, FAULT_INPUT, "%s: time is in the calendar \"%s\"; \"standard\" is wanted",
-                         path, calendar);
-    *base = calendar_date(year, month, date) + (hour * 3600.0 + minute * 60.0 + second) / 86400.0;
-    for (size_t u = 0; u < sizeof units / sizeof *units; u++)
-        if (strcmp(units[u].name, unit) == 0) {
-            *day = units[u].day;
-            return 0;
+    if (answers->count == answers->room) {
+        int room = answers->room ? 2 * answers->room : 64;
+        FileAnswer *larger = realloc(answers->item, (size_t)room * sizeof *larger);
+        if (!larger) {
+            fault_memory(fault, "the answers");
+            return NULL;
         }
-    return fault_set(fault, FAULT_INPUT, "%s: time is in \"%s\"; days, hours, minutes or seconds are wanted",
-                     path, text);
-}
-
-static int check_series(const ColumnSeries *series, const char *path, Fault *fault)
-{
-    for (int i = 0; i < series->count; i++) {
-        /* The upper bound also catches the fill value of a record that was never written. */
-        if (!(series->column[i] > 0.0 && series->column[i] < 1e5))
-            return fault_set(fault, FAULT_INPUT, "%s: record %d: ozone_column is %g DU", path, i + 1,
-                             series->column[i]);
-        if (i > 0 && !(series->time[i] > series->time[i - 1]))
-            return fault_set(fault, FAULT_INPUT, "%s: record %d: time does not increase", path, i + 1);
+        answers->item = larger;
+        answers->room = room;
     }
-    return 0;
+    FileAnswer *answer = &answers->item[answers->count++];
+    *answer = (FileAnswer){.value = NAN, .error = NAN};
+    snprintf(answer->unit, sizeof answer->unit, "%s", unit);
+    va_list values;
+    va_start(values, id);
+    vsnprintf(answer->id, sizeof answer->id, id, values);
+    va_end(values);
+    return answer;
 }
 
-static int read_open(ColumnSeries *series, int file, const char *path, Fault *fault)
+const FileAnswer *answers_find(const Answers *answers, const char *id, ...)
 {
-    int dimension, variable;
-    size_t records;
-    double day = 0.0, base = 0.0;
-    char units[32];
-    if (nc_inq_dimid(file, "time", &dimension) != NC_NOERR ||
-        nc_inq_dimlen(file, dimension, &records) != NC_NOERR)
-        return fault_set(fault, FAULT_INPUT, "%s has no dimension time: is it a Skymend file?", path);
-    if (records < 1 || records > 100000000)
-        return fault_set(fault, FAULT_INPUT, "%s holds %zu records", path, records);
-    series->time = malloc(records * sizeof *series->time);
-    series->column = malloc(records * sizeof *series->column);
-    if (!series->time || !series->column)
-        return fault_memory(fault, "the column series");
-    series->count = (int)records;
-    if (read_series(file, path, "ozone_column", records, series->column, &variable, fault))
-        return fault->code;
-    if (!read_text(file, variable, "units", units, sizeof units) || strcmp(units, "DU") != 0)
-        return fault_set(fault, FAULT_INPUT, "%s: ozone_column is in \"%s\"; DU is wanted", path, units);
-    if (read_series(file, path, "time", records, series->time, &variable, fault) ||
-        read_clock(file, variable, path, &day, &base, fault))
-        return fault->code;
-    for (int i = 0; i < series->count; i++) {
-        double days = base + day * series->time[i];
-        if (!(days >= 0.0 && days < 4e6)) /* years 1 to some 11000 */
-            return fault_set(fault, FAULT_INPUT, "%s: record %d: time is %g", path, i + 1, series->time[i]);
-        series->time[i] = calendar_decimal_year(days);
-    }
-    return check_series(series, path, fault);
+    char wanted[sizeof answers->item->id];
+    va_list values;
+    va_start(values, id);
+    vsnprintf(wanted, sizeof wanted, id, values);
+    va_end(values);
+    for (int i = 0; i < answers->count; i++)
+        if (!strcmp(answers->item[i].id, wanted))
+            return &answers->item[i];
+    return NULL;
 }
 
-int series_read(ColumnSeries *series, const char *path, Fault *fault)
+void answers_free(Answers *answers)
 {
-    struct stat found;
-    int file;
-    memset(series, 0, sizeof *series);
-    if (stat(path, &found))
-        return fault_set(fault, FAULT_INPUT, "%s: cannot be opened: %s; give a file made by skymend project",
-                         path, strerror(errno));
-    if (!S_ISREG(found.st_mode))
-        return fault_set(fault, FAULT_INPUT, "%s is not a file", path);
-    int status = nc_open(path, NC_NOWRITE, &file);
-    if (status != NC_NOERR)
-        return fault_set(fault, FAULT_INPUT,
-                         "%s cannot be read as NetCDF (%s); give a file made by skymend project", path,
-                         nc_strerror(status));
-    int code = read_open(series, file, path, fault);
-    nc_close(file);
-    if (code)
-        series_free(series);
-    return code;
-}
-
-void series_free(ColumnSeries *series)
-{
-    if (!series)
+    if (!answers)
         return;
-    free(series->time);
-    free(series->column);
-    memset(series, 0, sizeof *series);
+    free(answers->item);
+    *answers = (Answers){0};
 }
 
-/* ---- computing ---- */
-
-/* Mean of the intervals whose middle lies in a calendar year; 1 if they fill it. An interval is taken to be
- * as long as the smallest step to a neighbour: a file that breaks off in June has no mean of that year. */
-static int year_mean(const ColumnSeries *series, int year, double *mean)
+const char *answers_ending(int smoothed)
 {
-    double sum = 0.0, length = INFINITY;
-    int inside = 0;
-    for (int i = 0; i < series->count; i++) {
-        if (floor(series->time[i]) != year)
-            continue;
-        sum += series->column[i];
-        inside++;
-        if (i > 0)
-            length = fmin(length, series->time[i] - series->time[i - 1]);
-        if (i + 1 < series->count)
-            length = fmin(length, series->time[i + 1] - series->time[i]);
-    }
-    if (inside == 0 || inside * length < 0.99)
-        return 0;
-    *mean = sum / inside;
-    return 1;
+    return smoothed ? "_smoothed" : "";
 }
 
-/* Lowest interval at or after `from`; -1 when there is none. */
-static int lowest(const ColumnSeries *series, double from)
+Series answers_series(const Answers *answers, const FileSeries *file, int kind, int smoothed, double *store)
 {
-    int found = -1;
-    for (int i = 0; i < series->count; i++)
-        if (series->time[i] >= from && (found < 0 || series->column[i] < series->column[found]))
-            found = i;
-    return found;
+    Series series = series_view(file, kind);
+    return smoothed ? series_smooth(&series, answers->smooth_years, store) : series;
 }
 
-/* The interval before which the column crosses value upward, looking from interval `from` on; -1 if never. */
-static int crossing(const ColumnSeries *series, int from, double value)
+/* ---- one series ---- */
+
+/* What one series is asked, and with which errors. */
+typedef struct {
+    Answers *answers;
+    const FileSeries *file;
+    Series series; /* smoothed or not */
+    int kind, smoothed;
+    double level, change; /* numerical errors */
+    SeriesReturn back;
+    char of[160]; /* words for the method: of which means */
+    Fault *fault;
+} Ask;
+
+static const char *extreme_word(int kind)
 {
-    for (int i = from + 1; i < series->count; i++)
-        if (series->column[i - 1] < value && series->column[i] >= value)
-            return i;
-    return -1;
+    return series_facts(kind)->sign > 0 ? "lowest" : "highest";
 }
 
-int answers_compute(Answers *answers, const ColumnSeries *series, int benchmark_year, Fault *fault)
+/* An entry with its label; note says why there is no value, when there is none. */
+static FileAnswer *entry(const Ask *ask, const char *unit, const char *what, const char *label)
 {
-    memset(answers, 0, sizeof *answers);
-    answers->benchmark_year = benchmark_year;
-    answers->benchmark = answers->return_year = answers->minimum = answers->minimum_year = NAN;
-    answers->returns = -1;
-    if (series->count < 1)
-        return fault_set(fault, FAULT_INPUT,
-                         "the file holds no finished interval, so there is nothing to answer from");
-    int low = lowest(series, -INFINITY);
-    answers->has_minimum = 1;
-    answers->minimum_year = series->time[low];
-    answers->minimum = series->column[low];
-    if (!year_mean(series, benchmark_year, &answers->benchmark)) {
-        answers->benchmark = NAN;
-        return 0;
-    }
-    /* What was low before the benchmark year is no loss to recover from: the return is looked for after the
-     * lowest interval that follows that year, which is the minimum itself in every ordinary projection. */
-    int dip = lowest(series, benchmark_year + 1.0);
-    if (dip < 0 || series->column[dip] >= answers->benchmark)
-        return 0;
-    int up = crossing(series, dip, answers->benchmark);
-    answers->returns = up > 0;
-    if (up > 0) {
-        double below = series->column[up - 1], above = series->column[up];
-        double share = (answers->benchmark - below) / (above - below);
-        answers->return_year = series->time[up - 1] + share * (series->time[up] - series->time[up - 1]);
-    }
-    return 0;
-}
-
-/* ---- printing ---- */
-
-static void print_row(const Answers *answers, int year, double column, FILE *out)
-{
-    fprintf(out, "  %4d    %8.2f", year, column);
-    if (isfinite(answers->benchmark))
-        fprintf(out, "  %+8.2f  %+8.2f", column - answers->benchmark,
-                100.0 * (column - answers->benchmark) / answers->benchmark);
+    const SeriesFacts *facts = series_facts(ask->kind);
+    FileAnswer *answer = answers_add(ask->answers, unit, ask->fault, "%s_%s%s", facts->id, what,
+                                     answers_ending(ask->smoothed));
+    if (!answer)
+        return NULL;
+    if (ask->smoothed)
+        snprintf(answer->label, sizeof answer->label, "%s: %s, running mean", facts->label, label);
     else
-        fprintf(out, "  %8s  %8s", "-", "-");
-    fprintf(out, "%s\n", year == (int)answers->benchmark_year ? "  benchmark" : "");
+        snprintf(answer->label, sizeof answer->label, "%s: %s", facts->label, label);
+    if (ask->series.count == 0)
+        snprintf(answer->note, sizeof answer->note, "no window of %g years fits into the file",
+                 ask->answers->smooth_years);
+    return answer;
 }
 
-static void print_decades(const Answers *answers, const ColumnSeries *series, FILE *out)
+static void no_benchmark(const Ask *ask, FileAnswer *answer)
 {
-    int first = (int)floor(series->time[0]), last = (int)floor(series->time[series->count - 1]);
-    double column;
-    fprintf(out, "  year   column/DU  change/DU  change/%%\n");
-    int every = last - first < SHORT_FILE ? 1 : DECADE; /* a short file may hold no decade at all */
-    for (int year = first; year <= last; year++)
-        if ((year % every == 0 || year == first || year == last || year == (int)answers->benchmark_year) &&
-            year_mean(series, year, &column))
-            print_row(answers, year, column, out);
+    if (!answer->note[0])
+        snprintf(answer->note, sizeof answer->note, "the %s not cover the whole of %d",
+                 ask->smoothed ? "running means do" : "file does", ask->answers->benchmark_year);
 }
 
-static void print_return(const Answers *answers, const ColumnSeries *series, FILE *out)
+static int add_benchmark(const Ask *ask)
 {
-    int benchmark = (int)answers->benchmark_year;
-    if (!isfinite(answers->benchmark)) {
-        fprintf(out, "return to %d     not known: the file does not cover the whole of %d\n", benchmark,
-                benchmark);
-    } else if (answers->returns < 0) {
-        fprintf(out, "return to %d     no return to speak of: the column is never below %.2f DU after %d\n",
-                benchmark, answers->benchmark, benchmark);
-    } else if (answers->returns == 0) {
-        fprintf(out, "return to %d     not by the end of the file (%.2f): still %.2f DU below\n", benchmark,
-                series->time[series->count - 1], answers->benchmark - series->column[series->count - 1]);
+    char label[80];
+    snprintf(label, sizeof label, "mean of %d", ask->answers->benchmark_year);
+    FileAnswer *answer = entry(ask, ask->file->unit[ask->kind], "benchmark", label);
+    if (!answer)
+        return ask->fault->code;
+    answer->value = ask->back.value;
+    answer->error = isfinite(answer->value) ? ask->level : NAN;
+    if (isnan(answer->value))
+        no_benchmark(ask, answer);
+    snprintf(answer->method, sizeof answer->method, "mean over calendar year %d of the %s",
+             ask->answers->benchmark_year, ask->of);
+    return 0;
+}
+
+static int add_extreme(const Ask *ask, int at)
+{
+    const char *word = extreme_word(ask->kind);
+    int sign = series_facts(ask->kind)->sign;
+    char year[20];
+    FileAnswer *answer = entry(ask, ask->file->unit[ask->kind], word, word);
+    if (!answer)
+        return ask->fault->code;
+    snprintf(answer->method, sizeof answer->method, "%s of the %s", word, ask->of);
+    if (at >= 0) {
+        answer->value = ask->series.value[at];
+        answer->error = ask->level;
+    }
+    snprintf(year, sizeof year, "%s_year", word);
+    answer = entry(ask, "year", year, "its year");
+    if (!answer)
+        return ask->fault->code;
+    snprintf(
+        answer->method, sizeof answer->method,
+        "middle, in decimal years, of the %s of the %s; error: how far off the intervals lie that twice the "
+        "error of a change could make the %s",
+        word, ask->of, word);
+    if (at >= 0) {
+        answer->value = ask->series.middle[at];
+        answer->error =
+            isfinite(ask->change) ? series_extreme_spread(&ask->series, sign, at, 2.0 * ask->change) : NAN;
+    }
+    return 0;
+}
+
+/* value less benchmark, absolute and in per cent. */
+static int add_change(const Ask *ask, const char *what, const char *label, const char *of, double value,
+                      const char *none)
+{
+    char percent[40];
+    double benchmark = ask->back.value, change = value - benchmark;
+    snprintf(percent, sizeof percent, "%s_percent", what);
+    for (int relative = 0; relative < 2; relative++) {
+        FileAnswer *answer =
+            entry(ask, relative ? "percent" : ask->file->unit[ask->kind], relative ? percent : what, label);
+        if (!answer)
+            return ask->fault->code;
+        snprintf(answer->method, sizeof answer->method, "%s less the mean of %d%s", of,
+                 ask->answers->benchmark_year, relative ? ", in per cent of that" : "");
+        if (isnan(benchmark)) {
+            no_benchmark(ask, answer);
+            continue;
+        }
+        if (isnan(value)) {
+            snprintf(answer->note, sizeof answer->note, "%s", none);
+            continue;
+        }
+        if (relative && benchmark == 0.0) {
+            snprintf(answer->note, sizeof answer->note, "the benchmark is 0");
+            continue;
+        }
+        answer->value = relative ? 100.0 * change / benchmark : change;
+        answer->error = relative ? 100.0 * (ask->change / fabs(benchmark) +
+                                            fabs(change) * ask->level / (benchmark * benchmark))
+                                 : ask->change;
+    }
+    return 0;
+}
+
+static int add_changes(const Ask *ask, int at)
+{
+    char of[240], label[80], none[120];
+    double last = NAN;
+    int year = 0;
+    snprintf(of, sizeof of, "the %s of the %s", extreme_word(ask->kind), ask->of);
+    snprintf(label, sizeof label, "%s less %d", extreme_word(ask->kind), ask->answers->benchmark_year);
+    if (add_change(ask, "change", label, of, at >= 0 ? ask->series.value[at] : NAN, "no value"))
+        return ask->fault->code;
+    /* the last calendar year that is covered: that of the last interval, or the one before */
+    if (ask->series.count > 0) {
+        year = (int)floor(ask->series.middle[ask->series.count - 1]);
+        last = series_year_mean(&ask->series, year);
+        if (isnan(last))
+            last = series_year_mean(&ask->series, --year);
+    }
+    snprintf(of, sizeof of, "the mean of %d, the last calendar year covered, of the %s", year, ask->of);
+    snprintf(none, sizeof none, "no calendar year is covered");
+    snprintf(label, sizeof label, "last year (%d) less %d", year, ask->answers->benchmark_year);
+    return add_change(ask, "last_change", label, of, last, none);
+}
+
+static void remark_return(const Ask *ask, FileAnswer *answer)
+{
+    const Series *series = &ask->series;
+    int benchmark = ask->answers->benchmark_year, sign = series_facts(ask->kind)->sign;
+    const char *unit = ask->file->unit[ask->kind];
+    double gap;
+    switch (ask->back.state) {
+    case RETURN_UNKNOWN: no_benchmark(ask, answer); break;
+    case RETURN_NEVER_AWAY:
+        snprintf(answer->note, sizeof answer->note, "no return to speak of: never %s %.4g %s after %d",
+                 sign > 0 ? "below" : "above", ask->back.value, unit, benchmark);
+        break;
+    case RETURN_LATER:
+        gap = fabs(ask->back.value - series->value[series->count - 1]);
+        snprintf(answer->note, sizeof answer->note, "not by the end of the %s (%.1f): still %.*f %s %s",
+                 ask->smoothed ? "running means" : "file", series->end[series->count - 1], gap < 0.1 ? 4 : 2,
+                 gap, unit, sign > 0 ? "below" : "above");
+        break;
+    case RETURN_FOUND:
+        if (ask->back.again >= 0)
+            snprintf(answer->note, sizeof answer->note, "but %s it again in %.2f (by %.4g %s)",
+                     sign > 0 ? "below" : "above", series->middle[ask->back.again],
+                     fabs(series->value[ask->back.again] - ask->back.value), unit);
+        break;
+    }
+}
+
+static int add_return(const Ask *ask)
+{
+    char label[80];
+    snprintf(label, sizeof label, "return to %d", ask->answers->benchmark_year);
+    FileAnswer *answer = entry(ask, "year", "return_year", label);
+    if (!answer)
+        return ask->fault->code;
+    snprintf(answer->method, sizeof answer->method,
+             "%s, in decimal years linear between interval middles, at which the %s are back at their mean "
+             "over %d, "
+             "after their %s later than %d; error: that of a change over the slope there",
+             "first time", ask->of, ask->answers->benchmark_year, extreme_word(ask->kind),
+             ask->answers->benchmark_year);
+    answer->value = ask->back.year;
+    if (ask->back.state == RETURN_FOUND)
+        answer->error = ask->change / fabs(ask->back.slope);
+    remark_return(ask, answer);
+    return 0;
+}
+
+static int add_series(Answers *answers, const FileSeries *file, int kind, int smoothed,
+                      const NumericalErrors *errors, Fault *fault)
+{
+    double *store = malloc(4 * (size_t)file->count * sizeof *store);
+    if (!store)
+        return fault_memory(fault, "running means");
+    Ask ask = {.answers = answers,
+               .file = file,
+               .kind = kind,
+               .smoothed = smoothed,
+               .level = errors->level[kind],
+               .change = errors->change[kind],
+               .fault = fault};
+    int sign = series_facts(kind)->sign;
+    ask.series = answers_series(answers, file, kind, smoothed, store);
+    ask.back = series_return(&ask.series, sign, answers->benchmark_year);
+    if (smoothed)
+        snprintf(ask.of, sizeof ask.of,
+                 "running means over %g years, centred, where the file covers the whole window",
+                 answers->smooth_years);
+    else
+        snprintf(ask.of, sizeof ask.of, "interval means of the file, unsmoothed");
+    int at = series_extreme(&ask.series, sign, -INFINITY);
+    if (!add_benchmark(&ask) && !add_extreme(&ask, at) && !add_changes(&ask, at))
+        add_return(&ask);
+    free(store);
+    return fault->code;
+}
+
+/* ---- the share above the tropopause ---- */
+
+static int add_share(Answers *answers, const FileSeries *file, const NumericalErrors *errors, Fault *fault)
+{
+    Series column = series_view(file, SERIES_COLUMN), below = series_view(file, SERIES_TROPOSPHERE);
+    FileAnswer *answer = answers_add(answers, "percent", fault, "ozone_column_share_above_tropopause");
+    if (!answer)
+        return fault->code;
+    /* of the benchmark year, or of the whole file where that year is not in it */
+    double total = series_year_mean(&column, answers->benchmark_year);
+    double part = series_year_mean(&below, answers->benchmark_year);
+    if (isnan(total) || isnan(part)) {
+        double length = 0.0;
+        total = part = 0.0;
+        for (int i = 0; i < file->count; i++) {
+            double weight = file->count == 1 ? 1.0 : file->end[i] - file->start[i];
+            total += weight * column.value[i];
+            part += weight * below.value[i];
+            length += weight;
+        }
+        total /= length;
+        part /= length;
+        snprintf(answer->note, sizeof answer->note, "mean of the whole file");
     } else {
-        fprintf(out, "return to %d     %.1f (to %.2f DU, linear between intervals)\n", benchmark,
-                answers->return_year, answers->benchmark);
-        for (int i = 0; i < series->count; i++)
-            if (series->time[i] > answers->return_year && series->column[i] < answers->benchmark) {
-                fprintf(out, "                   but below it again in %.2f (%.2f DU)\n", series->time[i],
-                        series->column[i]);
-                break;
-            }
+        snprintf(answer->note, sizeof answer->note, "mean of %d", answers->benchmark_year);
     }
+    snprintf(answer->label, sizeof answer->label, "share of the ozone column above the tropopause");
+    snprintf(answer->method, sizeof answer->method,
+             "1 less the partial column up to %g km over the ozone column, unsmoothed; error: those of both, "
+             "added",
+             file->limit_km[0]);
+    answer->value = 100.0 * (1.0 - part / total);
+    answer->error = 100.0 * (errors->level[SERIES_TROPOSPHERE] / total +
+                             part * errors->level[SERIES_COLUMN] / (total * total));
+    return 0;
 }
 
-void answers_print(const Answers *answers, const ColumnSeries *series, FILE *out)
+int answers_compute(Answers *answers, const FileSeries *file, const AnswerWish *wish,
+                    const NumericalErrors *errors, Fault *fault)
 {
-    if (!answers->has_minimum || series->count < 1) {
-        fprintf(out, "no finished interval: no answers\n");
-        return;
-    }
-    fprintf(out, "Ozone column, near-global mean\n\n");
-    fprintf(out, "lowest interval    %.2f DU in %.2f\n", answers->minimum, answers->minimum_year);
-    print_return(answers, series, out);
-    fprintf(out, "\nmeans of calendar years; change is against %d\n", (int)answers->benchmark_year);
-    print_decades(answers, series, out);
-    fprintf(out,
-            "\nCaution: one near-global column, without polar winter, ozone hole, change of circulation, or\n"
-            "temperature that answers to ozone; a planning figure. Health and regulatory decisions defer to\n"
-            "the competent authority and its methods.\n");
+    *answers = (Answers){.benchmark_year = wish->benchmark_year, .smooth_years = wish->smooth_years};
+    for (int kind = 0; kind < SERIES_KINDS && !fault->code; kind++)
+        for (int smoothed = 0; smoothed < 2 && !fault->code && file->value[kind]; smoothed++)
+            add_series(answers, file, kind, smoothed, errors, fault);
+    if (!fault->code && file->value[SERIES_TROPOSPHERE])
+        add_share(answers, file, errors, fault);
+    if (fault->code)
+        answers_free(answers);
+    return fault->code;
 }

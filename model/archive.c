@@ -27,6 +27,7 @@
 #include "archive_layout.h"
 #include "calendar.h"
 #include "moments.h"
+#include "room.h"
 
 #define CM_PER_KM 1e5
 
@@ -62,19 +63,10 @@ static int system_fault(const char *path, const char *what, int error, Fault *fa
                      strerror(error));
 }
 
-/* Whether the file has room to grow by bytes: reserve them, then give them back. Growing and shrinking
- * touches nothing that the library has written, which all lies below the present size. */
+/* Whether the file has room to grow by bytes. */
 static int reserve_space(const Archive *archive, size_t bytes, Fault *fault)
 {
-    struct stat now;
-    if (fstat(archive->probe, &now))
-        return system_fault(archive->path, "examine the file", errno, fault);
-    int error;
-    do
-        error = posix_fallocate(archive->probe, now.st_size, (off_t)bytes);
-    while (error == EINTR); /* Ctrl-C is no lack of room; the run stops at its next step */
-    if (ftruncate(archive->probe, now.st_size) && !error)
-        error = errno;
+    int error = room_reserve(archive->probe, bytes);
     if (error)
         return fault_set(
             fault, FAULT_OUTPUT,

@@ -321,6 +321,15 @@ static int put_altitude(const Layout *out, const Dimensions *dim, Fault *fault)
     return 0;
 }
 
+/* Define and write one number, a variable without dimensions. */
+static int put_scalar(const Layout *out, const Description *d, double value, Fault *fault)
+{
+    int variable;
+    return layout_variable(out, d, 0, NULL, NULL, &variable, fault)
+               ? fault->code
+               : layout_fault(out->path, nc_put_var_double(out->file, variable, &value), d->name, fault);
+}
+
 static int put_profiles(const Layout *out, const Dimensions *dim, Fault *fault)
 {
     static const Description temperature = {
@@ -333,9 +342,17 @@ static int put_profiles(const Layout *out, const Dimensions *dim, Fault *fault)
                                         NULL};
     static const Description eddy = {"eddy_diffusion", "cm2 s-1", NULL, "vertical eddy diffusion coefficient",
                                      NULL};
+    static const Description above = {"air_column_above_top", "cm-2", NULL,
+                                      "air molecules above the top of the grid, where ozone has the mole "
+                                      "fraction of the top layer",
+                                      NULL};
+    static const Description tropopause = {"tropopause_altitude", "km", "tropopause_altitude",
+                                           "tropopause of the case, surface.tropopause_km", NULL};
     const Model *model = out->model;
     int layers = model->grid.layers, variable;
-    if (put_fixed(out, &temperature, dim->altitude, model->air.temperature, layers, 1.0, &variable, fault) ||
+    if (put_scalar(out, &above, model->air.column_above_top, fault) ||
+        put_scalar(out, &tropopause, model->settings.tropopause_km, fault) ||
+        put_fixed(out, &temperature, dim->altitude, model->air.temperature, layers, 1.0, &variable, fault) ||
         put_fixed(out, &pressure, dim->altitude, model->air.pressure, layers, 1.0, &variable, fault) ||
         put_fixed(out, &density, dim->altitude, model->air.number_density, layers, 1.0, &variable, fault) ||
         put_fixed(out, &eddy, dim->edge, model->eddy, layers + 1, 1.0, &variable, fault))

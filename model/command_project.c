@@ -5,10 +5,10 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "answers.h"
 #include "commands.h"
 #include "equivalent_chlorine.h"
 #include "progress.h"
+#include "projection.h"
 
 typedef struct {
     const char *case_path, *output;
@@ -106,19 +106,6 @@ static void print_summary(const Model *model, const Column *column)
     printf("\n");
 }
 
-static int print_answers(const char *path, Fault *fault)
-{
-    ColumnSeries series = {0};
-    Answers answers;
-    int code = series_read(&series, path, fault);
-    if (!code)
-        code = answers_compute(&answers, &series, 1980, fault);
-    if (!code)
-        answers_print(&answers, &series, stdout);
-    series_free(&series);
-    return code;
-}
-
 static int run(const Request *request, Fault *fault)
 {
     Settings *settings = malloc(sizeof *settings);
@@ -127,9 +114,13 @@ static int run(const Request *request, Fault *fault)
     Stepper *stepper = NULL;
     Outlets outlets = {0};
     ReleaseTable release = {0};
+    NumericalErrors errors;
+    char source[200];
     if (!settings)
         return fault_memory(fault, "settings");
     int code = load_case(settings, request->case_path, fault);
+    if (!code) /* now, not after the run */
+        code = answers_baseline_errors(&errors, source, sizeof source, fault);
     if (!code)
         code = release_find_and_read(&release, settings->data_dir, fault);
     if (!code)
@@ -157,9 +148,11 @@ static int run(const Request *request, Fault *fault)
     }
     if (!code)
         code = chlorine_store(request->output, &release, fault);
-    if (!code && !request->quiet) {
+    if (!code && !request->quiet)
         printf("%s\n\n", settings->title);
-        code = print_answers(request->output, fault);
+    if (!code)
+        code = answers_of_run(request->output, &errors, source, !request->quiet, fault);
+    if (!code && !request->quiet) {
         printf("\n");
         print_summary(model, column);
         printf("written: %s\n", request->output);

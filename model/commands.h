@@ -8,6 +8,7 @@
 
 #include "../input/fault.h"
 #include "../input/settings.h"
+#include "answers.h"
 
 int command_project(int argc, char **argv);
 int command_settle(int argc, char **argv);
@@ -61,5 +62,14 @@ int check_outputs(const Output *output, int count, int overwrite, Fault *fault);
 /* A text file to write; NULL on a fault. close_text tells whether all of it got there. */
 FILE *open_text(const char *path, int overwrite, Fault *fault);
 int close_text(FILE *out, const char *path, Fault *fault);
+
+/* ---- answers (command_answers.c) ---- */
+
+/* The numerical errors measured on the baseline, numerical-error.csv of the data; source: [size] what to say
+ * of them. */
+int answers_baseline_errors(NumericalErrors *errors, char *source, size_t size, Fault *fault);
+/* The answers of the finished file at path, stored in it, and printed when print is set. */
+int answers_of_run(const char *path, const NumericalErrors *errors, const char *source, int print,
+                   Fault *fault);
 
 #endif

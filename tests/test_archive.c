@@ -8,9 +8,9 @@
 #include <netcdf.h>
 
 #include "../input/constants.h"
-#include "../model/answers.h"
 #include "../model/archive.h"
 #include "../model/calendar.h"
+#include "../model/series.h"
 #include "made_archive.h"
 
 /* ---- reading back ---- */
@@ -289,7 +289,7 @@ static void test_repeatable(void **state)
 static void test_series(void **state)
 {
     Made *made = made_model();
-    ColumnSeries series;
+    FileSeries series;
     Fault fault = {0};
     char path[PATH];
     path_in(state, "series.nc", path);
@@ -297,14 +297,14 @@ static void test_series(void **state)
     for (int r = 0; r < 48; r++)
         assert_int_equal(append(archive, made, r, 1979.0, 1.0 / 12.0, &fault), 0);
     assert_int_equal(archive_close(archive, NULL, &fault), 0);
-    assert_int_equal(series_read(&series, path, &fault), 0);
+    assert_int_equal(series_read(&series, path, NULL, &fault), 0);
     assert_int_equal(series.count, 48);
     for (int r = 0; r < 48; r++) {
-        assert_true(series.column[r] == made_column(r));
-        assert_true(fabs(series.time[r] - (1979.0 + (r + 0.5) / 12.0)) < 1.0 / YEAR_SECONDS);
+        assert_true(series.value[SERIES_COLUMN][r] == made_column(r));
+        assert_true(fabs(series.middle[r] - (1979.0 + (r + 0.5) / 12.0)) < 1.0 / YEAR_SECONDS);
     }
     series_free(&series);
-    assert_null(series.time);
+    assert_null(series.middle);
     series_free(&series);
     made_free(made);
 }

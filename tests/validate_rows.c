@@ -9,7 +9,8 @@
 #include "../chem/oxygen.h"
 #include "../chem/rates.h"
 #include "../input/constants.h"
-#include "../model/answers.h"
+#include "../input/table.h"
+#include "../model/series.h"
 
 typedef struct {
     const Run *run;
@@ -280,15 +281,23 @@ static int ozone(const Ask *ask, double *value)
 
 static int return_year(const Ask *ask, double *value)
 {
-    ColumnSeries series = {ask->run->years, ask->run->time, ask->run->column};
-    Answers answers;
-    if (answers_compute(&answers, &series, 1980, ask->fault))
-        return ask->fault->code;
-    *value = answers.returns == 1 ? answers.return_year : NAN;
-    return note(ask,
-                answers.returns == 1 ? "lowest year mean %.2f DU"
-                                     : "no return by 2100; lowest year mean %.2f DU",
-                answers.minimum);
+    const Run *run = ask->run;
+    double *edge = malloc(2 * (size_t)run->years * sizeof *edge);
+    if (!edge)
+        return fault_memory(ask->fault, "the ends of years");
+    for (int i = 0; i < run->years; i++) {
+        edge[i] = run->first_year + i;
+        edge[run->years + i] = run->first_year + i + 1.0;
+    }
+    const Series series = {run->years, edge, run->time, edge + run->years, run->column};
+    SeriesReturn back = series_return(&series, 1, 1980);
+    *value = back.year;
+    note(ask,
+         back.state == RETURN_FOUND ? "lowest year mean %.2f DU"
+                                    : "no return by 2100; lowest year mean %.2f DU",
+         run->column[series_extreme(&series, 1, -INFINITY)]);
+    free(edge);
+    return 0;
 }
 
 /* ---- other gases, year 2000 ---- */
