@@ -217,7 +217,7 @@ static void remark_return(const Ask *ask, FileAnswer *answer)
     switch (ask->back.state) {
     case RETURN_UNKNOWN: no_benchmark(ask, answer); break;
     case RETURN_NEVER_AWAY:
-        snprintf(answer->note, sizeof answer->note, "no return to speak of: never %s %.4g %s after %d",
+        snprintf(answer->note, sizeof answer->note, "no return to speak of: never %s %.5g %s after %d",
                  sign > 0 ? "below" : "above", ask->back.value, unit, benchmark);
         break;
     case RETURN_LATER:

@@ -182,10 +182,11 @@ static int read_bounds(FileSeries *series, int file, int variable, double day, d
 
 static int check_time(const FileSeries *series, Fault *fault)
 {
-    for (int i = 0; i < series->count; i++) {
-        if (i > 0 && !(series->middle[i] > series->middle[i - 1]))
+    for (int i = 1; i < series->count; i++)
+        if (!(series->middle[i] > series->middle[i - 1]))
             return fault_set(fault, FAULT_INPUT, "%s: record %d: time does not increase", series->path,
                              i + 1);
+    for (int i = 0; i < series->count; i++) {
         if (!(series->start[i] <= series->middle[i] && series->middle[i] <= series->end[i]))
             return fault_set(fault, FAULT_INPUT, "%s: record %d: time %.4f is not within its bounds",
                              series->path, i + 1, series->middle[i]);

@@ -26,7 +26,7 @@ else
 fi
 
 # Tests of the model floor take too long here; a coarse run of the program stands in for them.
-tests="input settings transport mechanism surface kernel archive answers sun"
+tests="input settings transport mechanism surface kernel archive series answers sun"
 programs=
 for name in $tests; do programs="$programs build-sanitized/tests/test_$name"; done
 # shellcheck disable=SC2086 # words on purpose

@@ -1,0 +1,241 @@
+#!/bin/sh
+# skymend answers from the command line: what it prints and writes, that its forms say the same as the file itself read
+# with other tools, what it refuses, one file against another, finer numerics.
+#
+# Environment: SKYMEND the program, SKYMEND_DATA the folder of the data, TEST_DIR a scratch folder.
+# Prints "ok NAME" or "not ok NAME" per check. Every expected text is this program's own contract (README.md); figures
+# are worked out anew from the file by numpy.
+
+: "${SKYMEND:?path of the program}" "${SKYMEND_DATA:?folder of the data}" "${TEST_DIR:?scratch folder}"
+SKYMEND=$(cd "$(dirname "$SKYMEND")" && pwd)/$(basename "$SKYMEND")
+SKYMEND_DATA=$(cd "$SKYMEND_DATA" && pwd)
+export SKYMEND_DATA
+python=${PYTHON:-/usr/bin/python3}
+cd "$TEST_DIR" || exit 1
+failures=0
+
+truth() {
+    name=$1
+    shift
+    if "$@" >said 2>&1; then
+        printf 'ok %s\n' "$name"
+    else
+        printf 'not ok %s\n# untrue: %s\n' "$name" "$*"
+        sed 's/^/#   /' said | tail -n 5
+        failures=$((failures + 1))
+    fi
+}
+
+# refused NAME PIECE OPTION...: exit 2, one line on standard error that holds the piece, nothing else
+refused() {
+    name=$1
+    piece=$2
+    shift 2
+    "$SKYMEND" answers "$@" >output 2>errors </dev/null
+    status=$?
+    truth "$name" eval '[ $status -eq 2 ] && [ "$(wc -l <errors)" -eq 1 ] && grep -qF -e "$piece" errors && [ ! -s output ]'
+}
+
+# made NAME LINE...: a coarse case of 1996 to 1999 and its file
+made() {
+    base=$1
+    shift
+    {
+        # shellcheck disable=SC2028 # the case reads the backslashes
+        echo 'title = "a \"coarse\" case, with signs that JSON and CSV must escape";'
+        echo 'grid = { top_km = 80; spacing_km = 4; };'
+        printf '%s\n' "$@"
+    } >"$base.cfg"
+    "$SKYMEND" project "$base.cfg" -o "$base.nc" --threads 1 >"$base.out" 2>"$base.errors" </dev/null
+    truth "project runs $base" eval "[ $? -eq 0 ] && [ -s $base.out ]"
+}
+
+four='years = { first = 1996; last = 1999; }; output = { per_year = 4; };'
+mean='day = { mode = "mean"; };'
+start='numerics = { start = "spinup"; spinup_years = 0;'
+made own "$four" "$mean" "$start };"
+made other "$four" "$mean" "$start }; surface = { tropopause_km = 12; washout_per_day = 0.3; };"
+made finer "$four" "$mean" "$start outer_step_days = 3.8; };"
+made finer-other "$four" "$mean" "$start outer_step_days = 3.8; }; surface = { washout_per_day = 0.3; };"
+made later 'years = { first = 2010; last = 2011; }; output = { per_year = 4; };' "$mean" "$start };"
+made yearly 'years = { first = 1996; last = 1999; };' "$mean" "$start };"
+
+# ---- requests ----
+
+refused "no file" "no file named"
+refused "unknown option" "did you mean --against?" own.nc --aganst other.nc
+refused "two files" "name one" own.nc other.nc
+refused "missing file" "none.nc" none.nc
+refused "missing reference" "none.nc" own.nc --against none.nc
+refused "what is no NetCDF" "own.cfg" own.cfg
+refused "benchmark that is no year" "soon" own.nc --benchmark soon
+refused "benchmark that is not whole" "no whole number" own.nc --benchmark 1996.5
+refused "window of no length" "--smooth" own.nc --smooth 0
+refused "two limits" "three altitudes" own.nc --limits 12,24
+refused "four limits" "three altitudes" own.nc --limits 12,24,32,40
+refused "limits that do not increase" "do not increase" own.nc --limits 12,32,24
+refused "limits that are no numbers" "no number" own.nc --limits 12,high,32
+refused "finer run without its reference" "--finer-against" own.nc --against other.nc --finer finer.nc
+refused "finer reference without a reference" "--against" own.nc --finer-against finer.nc
+refused "no time in common" "no time in common" own.nc --against later.nc
+refused "different intervals" "different intervals" own.nc --against yearly.nc
+refused "a finer run that is another case" "another case" own.nc --finer other.nc
+refused "a finer run that is none" "same numerics" own.nc --finer own.nc
+printf 'x\n' >there.csv
+refused "keeps a file that is there" "exists already" own.nc --csv there.csv
+refused "one file for two forms" "both name" own.nc --csv a --json a
+"$SKYMEND" answers own.nc --csv nowhere/a.csv >output 2>errors </dev/null
+truth "a folder that is not there: exit 4" eval "[ $? -eq 4 ] && grep -q nowhere errors"
+"$SKYMEND" answers --help >output 2>errors
+truth "help" eval '[ $? -eq 0 ] && grep -q "usage: skymend answers" output && [ ! -s errors ]'
+
+# ---- one file ----
+
+"$SKYMEND" answers own.nc --benchmark 1996 --smooth 2 --csv own.csv --json own.json >output 2>errors
+truth "it succeeds" eval "[ $? -eq 0 ] && [ ! -s errors ]"
+truth "the table has its parts, its caution and a word on the season" eval \
+    'grep -q "12-24 km" output && grep -q "competent authority" output && grep -q "hold the season" output'
+"$SKYMEND" answers own.nc --quiet --csv own.csv --overwrite >output 2>errors
+truth "quiet is silent, and overwrites when told to" eval "[ $? -eq 0 ] && [ ! -s errors ] && [ ! -s output ]"
+"$SKYMEND" answers own.nc --benchmark 1996 --smooth 2 --csv own.csv --overwrite --quiet
+truth "project says the same as answers" eval 'lines=$(grep -c "^  199" own.out) && "$SKYMEND" answers own.nc >again &&
+    [ "$(grep "^  199" own.out)" = "$(grep "^  199" again)" ] && [ "$lines" -eq 4 ]'
+
+cat >forms.py <<'PY'
+import csv
+import json
+
+import netCDF4
+import numpy as np
+
+with open("own.json", encoding="utf-8") as text:
+    told = json.load(text)
+with open("own.csv", encoding="utf-8") as text:
+    rows = {row["id"]: row for row in csv.DictReader(line for line in text if not line.startswith("#"))}
+assert told["title"] == 'a "coarse" case, with signs that JSON and CSV must escape', told["title"]
+answers = told["answers"]
+assert list(rows) == list(answers) and len(rows) > 60, len(rows)
+for name, row in rows.items():
+    answer = answers[name]
+    assert None not in row and row["method"] == answer["method"] != "", row
+    assert row["unit"] == answer["unit"] and row["note"] == answer["note"], name
+    for key, cell in (("value", row["value"]), ("numerical_error", row["numerical_error"])):
+        assert (cell == "") == (answer[key] is None), (name, key)
+        assert cell == "" or float(cell) == answer[key], (name, key)
+    assert answer["value"] is not None or answer["note"], name + " is none and does not say why"
+
+data = netCDF4.Dataset("own.nc")
+column, ozone = data["ozone_column"][:], data["O3"][:]
+edge, air = data["altitude_edge"][:], data["air_number_density"][:]
+layer = ozone * air * np.diff(edge) * 1e5 / 2.6867e16
+tropopause = float(data["tropopause_altitude"][...])
+assert tropopause == 12.0
+parts = [layer[:, (edge[:-1] >= low) & (edge[:-1] < high)].sum(axis=1)
+         for low, high in ((0, 12), (12, 24), (24, 32), (32, 80))]  # layers of 4 km end at the limits
+parts[3] += ozone[:, -1] * float(data["air_column_above_top"][...]) / 2.6867e16
+assert np.allclose(sum(parts), column, rtol=1e-12)
+names = ["ozone_column"] + ["ozone_column_" + part for part in ("troposphere", "lower_stratosphere",
+                                                                  "middle_stratosphere", "upper_stratosphere")]
+
+
+def near(name, value, relative=2e-8):  # nine digits are written
+    got = answers[name]["value"]
+    assert abs(got - value) <= relative * abs(value), (name, got, value)
+
+
+for name, values in zip(names, [column] + parts):
+    near(name + "_lowest", values.min())
+    near(name + "_benchmark", values[:4].mean())
+    near(name + "_lowest_year", 1996.125 + 0.25 * values.argmin(), 1e-7)
+    near(name + "_change", values.min() - values[:4].mean(), 1e-6)
+    near(name + "_last_change", values[-4:].mean() - values[:4].mean(), 1e-6)
+    # two years centred on an interval: seven whole ones and half of the two at the ends
+    smooth = np.convolve(values, [0.5] + 7 * [1.0] + [0.5], "valid") / 8.0
+    near(name + "_lowest_smoothed", smooth.min())
+    assert np.allclose(told["calendar_year_means"][name], values.reshape(4, 4).mean(axis=1), rtol=1e-8), name
+assert told["calendar_year_means"]["year"] == [1996, 1997, 1998, 1999]
+near("ozone_column_share_above_tropopause", 100.0 * (1.0 - parts[0][:4].mean() / column[:4].mean()))
+PY
+truth "CSV, JSON and the file itself agree" "$python" forms.py
+
+# ---- stored in the file ----
+
+cat >stored.py <<'PY'
+import json
+import subprocess
+import os
+import warnings
+
+import netCDF4
+import numpy as np
+import xarray as xr
+
+assert netCDF4.__version__
+warnings.simplefilter("error")
+subprocess.run([os.environ["SKYMEND"], "answers", "own.nc", "--json", "default.json", "--quiet"], check=True)
+with open("default.json", encoding="utf-8") as text:
+    told = json.load(text)
+with xr.open_dataset("own.nc") as data:
+    assert data.attrs["answers_numerical_error"] == told["errors"]
+    stored = [name[len("answer_"):] for name in data.data_vars if name.startswith("answer_")]
+    assert stored == list(told["answers"]), "not the same answers"
+    for name, answer in told["answers"].items():
+        variable = data["answer_" + name]
+        assert variable.dims == (), name
+        attributes = variable.attrs
+        assert attributes["units"] == answer["unit"] and attributes["long_name"] == answer["label"], name
+        assert attributes["method"] == answer["method"] and attributes.get("note", "") == answer["note"], name
+        value = float(variable)
+        assert np.isnan(value) if answer["value"] is None else np.isclose(value, answer["value"], rtol=1e-8), name
+        error = answer["numerical_error"]
+        assert ("numerical_error" in attributes) == (error is not None), name
+        assert error is None or np.isclose(attributes["numerical_error"], error, rtol=1e-8), name
+    assert float(data["answer_ozone_column_lowest"]) == float(data["ozone_column"].min())
+PY
+truth "project stores the answers; xarray opens the file" env SKYMEND="$SKYMEND" "$python" stored.py
+
+# ---- against, finer ----
+
+"$SKYMEND" answers own.nc --against other.nc --benchmark 1996 --json pair.json >output 2>errors
+truth "against another file" eval "[ $? -eq 0 ] && [ ! -s errors ] && grep -q 'against other.nc' output"
+"$SKYMEND" answers own.nc --against own.nc --json self.json --quiet
+"$SKYMEND" answers own.nc --against other.nc --benchmark 1996 --finer finer.nc --finer-against finer-other.nc \
+    --limits 12,24,32 --json fine.json --quiet
+truth "against another file, both with finer twins" [ $? -eq 0 ]
+cat >pair.py <<'PY'
+import json
+
+import netCDF4
+import numpy as np
+
+
+def answers(name):
+    with open(name, encoding="utf-8") as text:
+        return json.load(text)["answers"]
+
+
+def column(name):
+    return netCDF4.Dataset(name)["ozone_column"][:].filled()
+
+
+pair, itself, fine = answers("pair.json"), answers("self.json"), answers("fine.json")
+less = column("other.nc") - column("own.nc")
+assert (less != 0.0).any()
+assert np.isclose(pair["ozone_column_integrated_depletion"]["value"], 0.25 * less.sum(), rtol=1e-6, atol=1e-9)
+assert np.isclose(pair["ozone_column_integrated_depletion_where_less"]["value"], 0.25 * less[less > 0].sum(),
+                  rtol=1e-6, atol=1e-9)
+most = abs(less).argmax()
+assert np.isclose(pair["ozone_column_difference_largest"]["value"], -less[most], rtol=1e-6)
+assert abs(pair["ozone_column_difference_largest_year"]["value"] - (1996.125 + 0.25 * most)) < 1e-6
+for name, answer in itself.items():
+    if "integrated" in name or "difference" in name or "delay" in name:
+        assert answer["value"] in (0.0, None), name
+finer = column("finer-other.nc") - column("finer.nc")
+assert np.isclose(fine["ozone_column_integrated_depletion"]["numerical_error"], abs(0.25 * (less - finer).sum()),
+                  rtol=1e-5, atol=1e-9)
+assert np.isclose(fine["ozone_column_lowest"]["numerical_error"], abs(column("own.nc").min() - column("finer.nc").min()),
+                  rtol=1e-6)
+PY
+truth "differences, integrals and errors are those of the files" "$python" pair.py
+
+[ "$failures" -eq 0 ]
