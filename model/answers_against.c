@@ -179,10 +179,10 @@ static int add_delay(const Pair *pair, int smoothed, double *store)
                  "file not by its end",
                  pair->file->end[pair->file->count - 1] - early.year, early.year);
     } else {
-        snprintf(answer->note, sizeof answer->note, "%s no year of return",
-                 late.state == RETURN_FOUND    ? "the reference has"
-                 : early.state == RETURN_FOUND ? "this file has"
-                                               : "neither file has");
+        snprintf(answer->note, sizeof answer->note, "no year of return in %s",
+                 late.state == RETURN_FOUND    ? "the reference"
+                 : early.state == RETURN_FOUND ? "this file"
+                                               : "either file");
     }
     return 0;
 }

@@ -52,19 +52,27 @@ static void print_remarks(FILE *out, const Remarks *remarks)
         fprintf(out, "  (%d) %s\n", i + 1, remarks->of[i]);
 }
 
+/* Digits behind the point, so that about five are shown. */
+static int decimals_of(double value)
+{
+    double size = fabs(value);
+    return size >= 1000.0 ? 1 : size >= 20.0 ? 2 : size >= 1.0 ? 3 : 4;
+}
+
 static void name_series(char *name, size_t size, const FileSeries *file, int kind)
 {
     const double *limit = file->limit_km;
+    const char *unit = file->unit[kind];
     switch (kind) {
     case SERIES_TROPOSPHERE: snprintf(name, size, "  0-%g km (troposphere)", limit[0]); break;
     case SERIES_LOWER: snprintf(name, size, "  %g-%g km", limit[0], limit[1]); break;
     case SERIES_MIDDLE: snprintf(name, size, "  %g-%g km", limit[1], limit[2]); break;
     case SERIES_UPPER: snprintf(name, size, "  above %g km", limit[2]); break;
-    default: snprintf(name, size, "%s", series_facts(kind)->label);
+    case SERIES_UV: snprintf(name, size, "noon UV index"); break;
+    case SERIES_EESC3: snprintf(name, size, "equiv. chlorine 3 yr, %s", unit); break;
+    case SERIES_EESC55: snprintf(name, size, "equiv. chlorine 5.5 yr, %s", unit); break;
+    default: snprintf(name, size, "%s, %s", series_facts(kind)->label, unit);
     }
-    size_t used = strlen(name);
-    if (kind == SERIES_COLUMN || kind > SERIES_UPPER)
-        snprintf(name + used, size - used, ", %s", file->unit[kind]);
 }
 
 /* ---- one file ---- */
@@ -84,7 +92,7 @@ static void print_series(const Answers *answers, const FileSeries *file, int kin
     char name[80];
     if (!benchmark || !extreme || !year || !change || !percent || !last || !back)
         return;
-    int decimals = fabs(extreme->value) >= 1000.0 ? 1 : 2;
+    int decimals = decimals_of(extreme->value);
     name_series(name, sizeof name, file, kind);
     fprintf(out, "  %-29s", name);
     number(out, 8, decimals, 0, benchmark->value);
@@ -198,16 +206,16 @@ static void print_pair(const Answers *answers, const FileSeries *file, int kind,
         return;
     name_series(name, sizeof name, file, kind);
     fprintf(out, "  %-29s", name);
-    number(out, 9, 3, 1, integral->value);
+    number(out, 9, decimals_of(integral->value), 1, integral->value);
     plus_minus(out, integral);
-    number(out, 8, 4, 1, mean->value);
-    number(out, 8, 4, 1, largest->value);
+    number(out, 8, decimals_of(mean->value), 1, mean->value);
+    number(out, 8, decimals_of(largest->value), 1, largest->value);
     number(out, 7, 1, 0, year->value);
     number(out, 6, 2, 1, delay[0]->value);
     plus_minus(out, delay[0]);
-    mark(out, remarks, delay[0]);
-    number(out, 5, 2, 1, delay[1]->value);
+    number(out, 6, 2, 1, delay[1]->value);
     plus_minus(out, delay[1]);
+    mark(out, remarks, delay[0]);
     fputc('\n', out);
 }
 
@@ -219,8 +227,8 @@ static void print_against(const Answers *answers, const FileSeries *file, const 
     const FileAnswer *more = answers_find(answers, "ozone_column_integrated_depletion_where_more");
     fprintf(out, "against %s%s%s; difference: this file less the reference\n", reference->path,
             reference->title[0] ? ": " : "", reference->title);
-    fprintf(out, "  %-29s %16s %8s %8s %7s %13s      %s\n", "", "integral +-error", "mean", "largest", "in",
-            "delay, years", "smoothed");
+    fprintf(out, "  %-29s %9s %-8s %8s %8s %7s %6s %-8s %s\n", "", "integral", "", "mean", "largest", "in",
+            "delay,", "years", "smoothed");
     for (int kind = 0; kind < SERIES_KINDS; kind++)
         print_pair(answers, file, kind, &remarks, out);
     if (less && more && more->value > 0.0)

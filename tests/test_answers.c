@@ -393,7 +393,7 @@ static void test_table(void **state)
     remember(&memory, 0.5, 0.25);
     remember(&other, 0.5, 0.3);
     check_printed(&memory.file, 1980, &other.file,
-                  (const char *[]){"against memory.nc: made up", "+252.500 +-1.5", "+6.67 +-0.12", NULL});
+                  (const char *[]){"against memory.nc: made up", "+252.50 +-1.5", "+6.67 +-0.12", NULL});
 }
 
 static void test_store(void **state)
