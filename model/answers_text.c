@@ -121,8 +121,8 @@ static void print_block(const Answers *answers, const FileSeries *file, int smoo
         fprintf(out, "  %s: %s\n\n", title, lowest ? lowest->note : "none");
         return;
     }
-    fprintf(out, "  %-29s %8d %8s %7s %8s %-8s %6s %8s %7s\n", title, answers->benchmark_year, "extreme",
-            "in", "change", "", "%", "at end", "back in");
+    fprintf(out, "  %-29s %8d %8s %7s %8s %-8s %6s %8s %7s +-error\n", title, answers->benchmark_year,
+            "extreme", "in", "change", "+-error", "%", "at end", "back in");
     for (int kind = 0; kind < SERIES_KINDS; kind++)
         if (file->value[kind])
             print_series(answers, file, kind, smoothed, remarks, out);
@@ -227,8 +227,8 @@ static void print_against(const Answers *answers, const FileSeries *file, const 
     const FileAnswer *more = answers_find(answers, "ozone_column_integrated_depletion_where_more");
     fprintf(out, "against %s%s%s; difference: this file less the reference\n", reference->path,
             reference->title[0] ? ": " : "", reference->title);
-    fprintf(out, "  %-29s %9s %-8s %8s %8s %7s %6s %-8s %s\n", "", "integral", "", "mean", "largest", "in",
-            "delay,", "years", "smoothed");
+    fprintf(out, "  %-29s %9s %-8s %8s %8s %7s %6s %-8s %s\n", "", "integral", "+-error", "mean", "largest",
+            "in", "delay,", "years", "smoothed");
     for (int kind = 0; kind < SERIES_KINDS; kind++)
         print_pair(answers, file, kind, &remarks, out);
     if (less && more && more->value > 0.0)
@@ -250,6 +250,7 @@ void answers_print(const Answers *answers, const FileSeries *file, const FileSer
 {
     Remarks remarks = {.count = 0};
     const FileAnswer *share = answers_find(answers, "ozone_column_share_above_tropopause");
+    fprintf(out, "%s%s%s\n\n", file->title, file->title[0] ? ", " : "", file->path);
     fprintf(out, "Ozone column, near-global mean, %.0f to %.0f: change against %d and return to it\n\n",
             floor(file->middle[0]), floor(file->middle[file->count - 1]), answers->benchmark_year);
     print_block(answers, file, 0, &remarks, out);

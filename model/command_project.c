@@ -148,8 +148,6 @@ static int run(const Request *request, Fault *fault)
     }
     if (!code)
         code = chlorine_store(request->output, &release, fault);
-    if (!code && !request->quiet)
-        printf("%s\n\n", settings->title);
     if (!code)
         code = answers_of_run(request->output, &errors, source, !request->quiet, fault);
     if (!code && !request->quiet) {

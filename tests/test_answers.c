@@ -3,6 +3,9 @@
 #define _XOPEN_SOURCE 700
 #include "made_archive.h"
 
+#include <signal.h>
+#include <sys/resource.h>
+
 #include "../model/answers.h"
 #include "made_series.h"
 
@@ -436,11 +439,47 @@ static void test_store(void **state)
     assert_int_equal(series_read(&again, path, NULL, &fault), 0);
     assert_memory_equal(again.value[SERIES_COLUMN], series.value[SERIES_COLUMN], 30 * sizeof(double));
     series_free(&again);
+    assert_int_equal(answers_store(&answers, path, &fault), FAULT_OUTPUT); /* they are there already */
+    fault = (Fault){0};
     path_in(state, "nowhere.nc", path);
     assert_int_equal(answers_store(&answers, path, &fault), FAULT_OUTPUT);
     answers_free(&answers);
     series_free(&series);
     made_free(made);
+}
+
+/* A file that may not grow stays as it was, to the byte. */
+static void test_store_full(void **state)
+{
+    Made *made = made_model();
+    FileSeries series;
+    Answers answers;
+    NumericalErrors errors = some_errors();
+    Fault fault = {0};
+    char path[PATH];
+    size_t size, later;
+    struct rlimit before, limit;
+    path_in(state, "full.nc", path);
+    write_years(made, path, 30);
+    made_free(made);
+    assert_int_equal(series_read(&series, path, NULL, &fault), 0);
+    compute(&answers, &series, &errors);
+    char *bytes = bytes_of(path, &size);
+    signal(SIGXFSZ, SIG_IGN);
+    assert_int_equal(getrlimit(RLIMIT_FSIZE, &before), 0);
+    limit = before;
+    limit.rlim_cur = size + 20000; /* what they take is more */
+    assert_int_equal(setrlimit(RLIMIT_FSIZE, &limit), 0);
+    assert_int_equal(answers_store(&answers, path, &fault), FAULT_OUTPUT);
+    assert_int_equal(setrlimit(RLIMIT_FSIZE, &before), 0);
+    assert_non_null(strstr(fault.text, "no room for its answers"));
+    char *after = bytes_of(path, &later);
+    assert_int_equal(later, size);
+    assert_memory_equal(after, bytes, size);
+    free(bytes);
+    free(after);
+    answers_free(&answers);
+    series_free(&series);
 }
 
 int main(void)
@@ -450,7 +489,7 @@ int main(void)
         cmocka_unit_test(test_against),    cmocka_unit_test(test_against_itself),
         cmocka_unit_test(test_mismatched), cmocka_unit_test(test_finer),
         WITH_FOLDER(test_table_of_errors), cmocka_unit_test(test_table),
-        WITH_FOLDER(test_store),
+        WITH_FOLDER(test_store),           WITH_FOLDER(test_store_full),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
