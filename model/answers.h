@@ -13,7 +13,7 @@
 
 /* How far the numerics may be off, in the unit of each series; NAN: not known. Of a value; of its change
  * against a benchmark year; of the difference between two cases in a year, and of the mean of that difference
- * over all years. */
+ * over many years. */
 typedef struct {
     double level[SERIES_KINDS], change[SERIES_KINDS];
     double difference[SERIES_KINDS], mean_difference[SERIES_KINDS];
