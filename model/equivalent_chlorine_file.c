@@ -11,8 +11,8 @@
 
 #include <netcdf.h>
 
-#include "answers.h"
 #include "equivalent_chlorine.h"
+#include "series.h"
 
 /* ---- reading ---- */
 
@@ -160,14 +160,14 @@ static int read_gases(SurfaceSeries *series, Open *in, Fault *fault)
 
 int surface_read(SurfaceSeries *series, const char *path, Fault *fault)
 {
-    ColumnSeries column = {0};
+    FileSeries column = {0};
     Open in = {.path = path};
     memset(series, 0, sizeof *series);
-    int code = series_read(&column, path, fault); /* the clock of the file, checked */
+    int code = series_read(&column, path, NULL, fault); /* the clock of the file, checked */
     if (!code)
         code = surface_make(series, column.count, 0, fault);
     if (!code)
-        memcpy(series->time, column.time, (size_t)column.count * sizeof *column.time);
+        memcpy(series->time, column.middle, (size_t)column.count * sizeof *column.middle);
     series_free(&column);
     if (!code) {
         int status = nc_open(path, NC_NOWRITE, &in.file);
