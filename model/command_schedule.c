@@ -15,6 +15,9 @@
 #define SKYMEND_VERSION "unknown"
 #endif
 
+/* Of the emissions above zero: what may be missing below without a word more than one. */
+static const double UPTAKE_SHARE = 0.01;
+
 enum Kind { AS_NOTHING, AS_EMISSION, AS_ABUNDANCE };
 
 typedef struct {
@@ -25,29 +28,32 @@ typedef struct {
 
 static void print_help(void)
 {
-    printf("usage: skymend schedule [CASE.cfg] --as emission|abundance -o FILE.csv [options]\n\n"
-           "Turns the abundances of a case into emissions, or its emissions into abundances, as this column "
-           "has\n"
-           "them, and writes a complete schedule. Without a case: the built-in baseline.\n\n"
-           "      --as emission     what must be given off each year to keep a gas at its abundances, losses "
-           "by\n"
-           "                        the column's own chemistry included\n"
-           "      --as abundance    what emissions lead to in the lowest layer at mid-year\n"
-           "      --from YEAR       emissions begin in this year, abundances stand before it (default: the "
-           "second\n"
-           "                        year of the case)\n"
-           "      --gas G[,G...]    only these gases (default: every one but those of C, O and F alone); "
-           "others\n"
-           "                        are written as they are\n"
-           "  -o, --output FILE.csv the file to write\n"
-           "      --overwrite       replace it if it is there\n"
-           "      --threads N       threads to use (default: OMP_NUM_THREADS or all); results do not depend "
-           "on it\n"
-           "      --quiet           no progress, no table\n"
-           "  -h, --help            this text\n\n"
-           "A gas whose abundance falls faster than this column takes it away would need a negative "
-           "emission; it is\n"
-           "left as it is and named. An interrupted run (Ctrl-C) writes nothing.\n");
+    printf(
+        "usage: skymend schedule [CASE.cfg] --as emission|abundance -o FILE.csv [options]\n\n"
+        "Turns the abundances of a case into emissions, or its emissions into abundances, as this column "
+        "has\n"
+        "them, and writes a complete schedule. Without a case: the built-in baseline.\n\n"
+        "      --as emission     what must be given off each year to keep a gas at its abundances, losses "
+        "by\n"
+        "                        the column's own chemistry included\n"
+        "      --as abundance    what emissions lead to in the lowest layer at mid-year\n"
+        "      --from YEAR       emissions begin in this year, abundances stand before it (default: the "
+        "second\n"
+        "                        year of the case)\n"
+        "      --gas G[,G...]    only these gases (default: every one but those of C, O and F alone); "
+        "others\n"
+        "                        are written as they are\n"
+        "  -o, --output FILE.csv the file to write\n"
+        "      --overwrite       replace it if it is there\n"
+        "      --threads N       threads to use (default: OMP_NUM_THREADS or all); results do not depend "
+        "on it\n"
+        "      --quiet           no progress, no table\n"
+        "  -h, --help            this text\n\n"
+        "A gas whose abundance falls faster than this column takes it away would need emissions below zero. "
+        "Where those come\n"
+        "to less than 1 %% of its emissions they are put at 0, else the gas is left as it is; both are "
+        "said.\n"
+        "An interrupted run (Ctrl-C) writes nothing.\n");
 }
 
 static int take_option(Request *request, int found, Fault *fault)
@@ -259,21 +265,30 @@ static int write_schedule(const Request *request, const Model *model, const Conv
     return close_text(out, request->output, fault);
 }
 
-/* Gases that would need a negative emission stay abundances; said on standard error. */
-static void drop_uptake(const Request *request, const Model *model, const Conversion *conversion, int *chosen)
+/* Gases that would need a negative emission: 0 where that is next to nothing, else they stay abundances; said
+ * on standard error. */
+static void settle_uptake(const Request *request, const Model *model, Conversion *conversion, int *chosen)
 {
     int from = request->from ? request->from : conversion->first_year + 1;
     for (int g = 0; request->as == AS_EMISSION && g < model->schedule.gases; g++) {
         int s = mechanism_solved(model->mechanism, model->schedule.gas[g]);
-        int year = chosen[g] ? conversion_uptake(conversion, s, from) : 0;
-        if (!year)
+        Uptake uptake = chosen[g] ? conversion_uptake(conversion, s, from) : (Uptake){0};
+        if (!uptake.year)
             continue;
+        if (uptake.below <= UPTAKE_SHARE * uptake.above) {
+            conversion_lift(conversion, s, from);
+            fprintf(stderr,
+                    "skymend: %s: emissions below zero are put at 0, %.3g kt in all against %.3g kt above "
+                    "(first in %d)\n",
+                    model->schedule.gas[g], 1e-6 * uptake.below, 1e-6 * uptake.above, uptake.year);
+            continue;
+        }
         chosen[g] = 0;
         fprintf(stderr,
-                "skymend: %s is left as abundance: in %d it falls faster than this column takes it away "
-                "(%.3g kt in "
-                "the year)\n",
-                model->schedule.gas[g], year, 1e-6 * conversion_emission(conversion, s, year));
+                "skymend: %s is left as abundance: it falls faster than this column takes it away, from %d "
+                "on by %.3g kt in "
+                "all (emissions above zero: %.3g kt)\n",
+                model->schedule.gas[g], uptake.year, 1e-6 * uptake.below, 1e-6 * uptake.above);
     }
 }
 
@@ -329,7 +344,7 @@ static int put_out(const Request *request, const Model *model, Stepper *stepper,
         progress_close(&bar);
     }
     if (!code) {
-        drop_uptake(request, model, conversion, chosen);
+        settle_uptake(request, model, conversion, chosen);
         code = write_schedule(request, model, conversion, chosen, fault);
     }
     if (!code && !request->quiet)

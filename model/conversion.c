@@ -22,6 +22,18 @@ typedef struct {
     int records;
 } Collector;
 
+/* Whether the abundance of s is constant through this half of the year only because there is none beyond. */
+static int stands_still(const Model *model, int s, int year, int half, int years)
+{
+    const Schedule *schedule = &model->schedule;
+    int g = model->surface_gas[s];
+    if (g < 0 || schedule->years[g] < 2)
+        return 0;
+    int now = model->settings.first_year + year, last = schedule->first_year[g] + schedule->years[g] - 1;
+    int emits = schedule->emission_from[g] > 0;
+    return half ? now == last && year == years - 1 && !emits : now == schedule->first_year[g];
+}
+
 static int collect(void *context, const Record *record, Fault *fault)
 {
     (void)fault;
@@ -31,7 +43,10 @@ static int collect(void *context, const Record *record, Fault *fault)
     int year = collector->records / PER_YEAR, half = collector->records % PER_YEAR;
     for (int s = 0; s < to->solved; s++) {
         size_t at = (size_t)s * (size_t)to->room + (size_t)year;
-        to->emission[at] += emission_kg_year(model, s, record->emission[s]) / PER_YEAR;
+        double given = emission_kg_year(model, s, record->emission[s]) / PER_YEAR;
+        int idle = stands_still(model, s, year, half, to->room),
+            busy = stands_still(model, s, year, !half, to->room);
+        to->emission[at] += idle ? 0.0 : busy ? 2.0 * given : given;
         if (!half) /* the state is that of mid-year */
             to->abundance[at] = collector->column->x[FIELD(model->grid.padded, s, 0)];
     }
@@ -97,10 +112,21 @@ double conversion_abundance(const Conversion *conversion, int s, int year)
     return conversion->abundance[place(conversion, s, year)];
 }
 
-int conversion_uptake(const Conversion *conversion, int s, int from)
+Uptake conversion_uptake(const Conversion *conversion, int s, int from)
+{
+    Uptake uptake = {0};
+    for (int year = from; year < conversion->first_year + conversion->years; year++) {
+        double emission = conversion_emission(conversion, s, year);
+        if (emission < 0.0 && !uptake.year)
+            uptake.year = year;
+        *(emission < 0.0 ? &uptake.below : &uptake.above) += fabs(emission);
+    }
+    return uptake;
+}
+
+void conversion_lift(Conversion *conversion, int s, int from)
 {
     for (int year = from; year < conversion->first_year + conversion->years; year++)
-        if (conversion_emission(conversion, s, year) < 0.0)
-            return year;
-    return 0;
+        conversion->emission[place(conversion, s, year)] =
+            fmax(conversion_emission(conversion, s, year), 0.0);
 }

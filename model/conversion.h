@@ -3,7 +3,9 @@
  *
  * The column is carried through the years of its case in two intervals a year. What comes through the ground
  * of a gas whose abundance is given is the emission that keeps it there, loss by the column's own chemistry
- * included; the lowest layer at mid-year is the abundance that emissions lead to.
+ * included. In the first and the last year, where an abundance stands still for half a year for want of
+ * another, the other half counts for both. The lowest layer at mid-year is the abundance that emissions lead
+ * to.
  */
 #ifndef SKYMEND_CONVERSION_H
 #define SKYMEND_CONVERSION_H
@@ -29,8 +31,15 @@ void conversion_free(Conversion *conversion);
 /* Of solved species s in a year of the run. */
 double conversion_emission(const Conversion *conversion, int s, int year);
 double conversion_abundance(const Conversion *conversion, int s, int year);
-/* First year from `from` on in which the implied emission of s is below zero (its abundance falls faster than
- * this column takes it away); 0 when there is none. */
-int conversion_uptake(const Conversion *conversion, int s, int from);
+/* What a gas whose abundance falls faster than this column takes it away would need: kg below zero (as a
+ * positive number), and above it, in all years from `from` on, and the first year below; 0 when there is
+ * none. */
+typedef struct {
+    double below, above;
+    int year;
+} Uptake;
+Uptake conversion_uptake(const Conversion *conversion, int s, int from);
+/* Put the emission of s at 0 where it is below, from `from` on. */
+void conversion_lift(Conversion *conversion, int s, int from);
 
 #endif
