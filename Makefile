@@ -57,7 +57,7 @@ $(BUILD)/obj/%.o: %.c Makefile
 
 $(BUILD)/obj/chem/rosenbrock.o: EXTRA := $(filter -D% -Wno%,$(KERNEL_FLAGS))
 # one operation order everywhere: sunlight does not depend on the machine
-$(BUILD)/obj/chem/radiation.o $(BUILD)/obj/chem/photolysis.o: EXTRA := -O3 -ffp-contract=off -Wno-psabi
+$(patsubst %,$(BUILD)/obj/chem/%.o,radiation radiation_slopes photolysis photolysis_slopes): EXTRA := -O3 -ffp-contract=off -Wno-psabi
 
 $(BUILD)/obj/chem/rosenbrock_kernel_%.o: chem/rosenbrock_kernel.c Makefile
 	@mkdir -p $(@D)

@@ -275,3 +275,14 @@ double nitric_oxide_cross_section(const NitricOxideInterval *interval, const dou
                    exp(-interval->sigma[i][j] * column);
     return sum;
 }
+
+double nitric_oxide_cross_section_slope(const NitricOxideInterval *interval, const double *passed,
+                                        double column)
+{
+    double sum = 0;
+    for (int i = 0; i < OXYGEN_TERMS; i++)
+        for (int j = 0; j < 2; j++)
+            sum -= passed[i] * interval->weight[i][j] * interval->sigma[i][j] * interval->sigma[i][j] *
+                   exp(-interval->sigma[i][j] * column);
+    return sum;
+}

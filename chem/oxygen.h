@@ -62,5 +62,8 @@ void nitric_oxide_opacity(const NitricOxideInterval *interval, double column, do
 /* Effective cross section of NO, cm2 per photon of the interval outside the atmosphere, below a slant column
  * of NO (cm-2) and O2 that lets the shares passed [OXYGEN_TERMS] through. */
 double nitric_oxide_cross_section(const NitricOxideInterval *interval, const double *passed, double column);
+/* Its derivative by the slant column of NO, cm4. */
+double nitric_oxide_cross_section_slope(const NitricOxideInterval *interval, const double *passed,
+                                        double column);
 
 #endif

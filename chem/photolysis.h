@@ -34,6 +34,20 @@ void photolysis_rates(Photolysis *photolysis, const double *ozone, const double 
 void photolysis_nitric_oxide(Photolysis *photolysis, const double *nitric_oxide, double earth_sun,
                              double *rate);
 
+/* How the rates answer to what absorbs, at the state of the last call of photolysis_rates, by solving for the
+ * change of the light itself (radiation_slopes.h), scattered light included.
+ * Of every reaction j and layer k it takes the sum over suns of share times rate, share
+ * [suns][reactions][padded], which is what a mean over the day is to first order. sum [reactions][padded]:
+ * that sum, and column [2][layers]: molecules cm-2 of O3 and of NO2 in a layer, both to tell what matters;
+ * nitric_oxide [layers]: its number density, earth_sun as there slope [layers k][reactions j][3][layers m]
+ * out: derivative of that sum in layer k by the number density of O3, NO2 and NO in layer m (in the top layer
+ * with what lies above it); of NO only the rates of NO answer. Eight bins are left out where the absorber of
+ * any one layer, all of it, could change the sum through them by less than PHOTOLYSIS_COUNTS of itself. The
+ * same bits for any number of threads. FAULT_MEMORY. */
+#define PHOTOLYSIS_COUNTS 1e-8
+int photolysis_slopes(Photolysis *photolysis, const double *share, const double *sum, const double *column,
+                      const double *nitric_oxide, double earth_sun, double *slope, Fault *fault);
+
 /* Actinic flux of the last call, photons cm-2 s-1 per bin: pointer to [suns][layers][stride] with stride =
  * photolysis_stride() >= bins. */
 const double *photolysis_actinic(const Photolysis *photolysis);

@@ -257,6 +257,59 @@ void light_refresh(Light *light, const double *x, const double *lit)
     light->turned = 0;
 }
 
+/* share [nodes][reactions][padded]: derivative of the mean by the rate at a node, coefficients of fixed
+ * reactants and the sun's distance included. */
+static void take_shares(const Light *light, double *share)
+{
+    int padded = light->model->grid.padded, stride = light->reactions * padded;
+    double distance = light->model->settings.sun == SUN_SEASON ? light->sun.earth_sun : 1.0;
+#pragma omp parallel for schedule(static)
+    for (int i = 0; i < stride; i++) {
+        sun_gradient(&light->sun, light->table + i, stride, share + i, stride);
+        double scale = distance * fixed_density(light, i / padded, i % padded);
+        for (int n = 0; n < light->sun.nodes; n++)
+            share[(size_t)n * (size_t)stride + (size_t)i] *= scale;
+    }
+}
+
+int light_slopes(Light *light, const double *x, const double *lit, double *slope, Fault *fault)
+{
+    static const char *const name[3] = {"O3", "NO2", "NO"};
+    const Model *model = light->model;
+    int layers = model->grid.layers, padded = model->grid.padded;
+    size_t rows = (size_t)layers * (size_t)light->reactions,
+           field = (size_t)light->reactions * (size_t)padded;
+    memset(slope, 0, 3 * rows * (size_t)layers * sizeof *slope);
+    if (!light->sun.nodes || !light->sun.rises)
+        return 0;
+    double *share = malloc(((size_t)light->sun.nodes * field + 2 * (size_t)layers) * sizeof *share);
+    if (!share)
+        return fault_memory(fault, "the slopes of the light");
+    double *column = share + (size_t)light->sun.nodes * field;
+    for (int a = 0; a < 2; a++)
+        for (int l = 0; l < layers; l++)
+            column[a * layers + l] = light->density[a * padded + l] * light->conditions->depth[l];
+    take_shares(light, share);
+    int code = photolysis_slopes(light->photolysis, share, light->mean, column, light->density + 2 * padded,
+                                 table_sun(light), slope, fault);
+    free(share);
+    if (code)
+        return code;
+    double unit[3][SETTINGS_MAX_EDGES]; /* number density per mole fraction */
+    for (int a = 0; a < 3; a++) {
+        int s = mechanism_solved(model->mechanism, name[a]);
+        for (int l = 0; l < layers; l++) {
+            size_t at = s < 0 ? 0 : FIELD(padded, s, l);
+            unit[a][l] = s < 0 || x[at] < 0.0 ? 0.0 : (lit ? lit[at] : 1.0) * light->conditions->air[l];
+        }
+    }
+    for (size_t row = 0; row < rows; row++)
+        for (int a = 0; a < 3; a++)
+            for (int l = 0; l < layers; l++)
+                slope[(row * 3 + (size_t)a) * (size_t)layers + (size_t)l] *= unit[a][l];
+    return 0;
+}
+
 void light_nitric_oxide(Light *light, const double *x, const double *lit)
 {
     const Mechanism *mechanism = light->model->mechanism;

@@ -47,6 +47,12 @@ void light_refresh(Light *light, const double *x, const double *lit);
 /* After light_refresh, at another NO but the same ozone and NO2: the rates of NO, which shields nothing else.
  */
 void light_nitric_oxide(Light *light, const double *x, const double *lit);
+/* After light_refresh at the same state: how mean answers to O3, NO2 and NO, to first order, at the
+ * interpolation's present pieces (sun_gradient); by finite differences it would take as many lights as there
+ * are layers. slope [layers k][reactions j][3][layers m] out: d mean of reaction j in layer k by the mole
+ * fraction of O3, NO2 and NO in layer m, what lies above the top moving with the top layer; 0 where a mole
+ * fraction is negative. Not with a sun that has turned since. FAULT_MEMORY. */
+int light_slopes(Light *light, const double *x, const double *lit, double *slope, Fault *fault);
 /* Photolysis rate itself, s-1, mean over 24 h. */
 double light_mean_rate(const Light *light, int reaction, int layer);
 

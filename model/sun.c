@@ -171,17 +171,61 @@ static double cubic(const double *x, const double *y, const double *m, int i, do
            h * t * u * (m[i] * u - m[i + 1] * t);
 }
 
+/* For cubic at one point: gy and gm += amount times its derivatives by y and m. */
+static void cubic_back(const double *x, int i, double at, double amount, double *gy, double *gm)
+{
+    double h = x[i + 1] - x[i], t = (at - x[i]) / h, u = 1.0 - t;
+    gy[i] += amount * u * u * (1.0 + 2.0 * t);
+    gy[i + 1] += amount * t * t * (3.0 - 2.0 * t);
+    gm[i] += amount * h * t * u * u;
+    gm[i + 1] -= amount * h * t * t * u;
+}
+
+/* For slopes: gy += gm times their derivatives by y, each on the piece it is on. */
+static void slopes_back(int n, const double *x, const double *y, const double *m, const double *gm,
+                        double *gy)
+{
+    double chord[SUN_NODES], gc[SUN_NODES] = {0};
+    for (int i = 0; i + 1 < n; i++)
+        chord[i] = (y[i + 1] - y[i]) / (x[i + 1] - x[i]);
+    for (int i = 1; i + 1 < n; i++) {
+        if (chord[i - 1] * chord[i] <= 0.0)
+            continue;
+        double before = x[i] - x[i - 1], after = x[i + 1] - x[i];
+        double w1 = 2.0 * after + before, w2 = after + 2.0 * before, part = gm[i] * m[i] * m[i] / (w1 + w2);
+        gc[i - 1] += part * w1 / (chord[i - 1] * chord[i - 1]);
+        gc[i] += part * w2 / (chord[i] * chord[i]);
+    }
+    for (int end = 0; end < 2; end++) {
+        int i = end ? n - 1 : 0, c = end ? n - 2 : 0, d = end ? n - 3 : 1;
+        double h0 = fabs(x[i] - x[end ? n - 2 : 1]), h1 = fabs(x[end ? n - 2 : 1] - x[end ? n - 3 : 2]);
+        double plain = ((2.0 * h0 + h1) * chord[c] - h0 * chord[d]) / (h0 + h1);
+        if (plain * chord[c] <= 0.0)
+            continue;
+        if (chord[c] * chord[d] <= 0.0 && fabs(plain) > 3.0 * fabs(chord[c])) {
+            gc[c] += 3.0 * gm[i];
+        } else {
+            gc[c] += gm[i] * (2.0 * h0 + h1) / (h0 + h1);
+            gc[d] -= gm[i] * h0 / (h0 + h1);
+        }
+    }
+    for (int i = 0; i + 1 < n; i++) {
+        gy[i + 1] += gc[i] / (x[i + 1] - x[i]);
+        gy[i] -= gc[i] / (x[i + 1] - x[i]);
+    }
+}
+
+/* A rate below this dissociates nothing within the age of the Earth; it only keeps the logarithm finite. */
+static const double TINY = 1e-60;
+
 double sun_spread(const Sun *sun, const double *table, int node_stride, double *knot, int knot_stride)
 {
-    /* A rate below this dissociates nothing within the age of the Earth; it only keeps the logarithm finite.
-     */
-    const double tiny = 1e-60;
     double y[SUN_NODES], m[SUN_NODES];
     int n = sun->rises ? sun->nodes : 0, at = 0, lit = 0;
     for (int i = 0; i < n; i++) {
         double value = table[(size_t)i * (size_t)node_stride];
         lit |= value > 0.0;
-        y[i] = log(value + tiny);
+        y[i] = log(value + TINY);
     }
     if (!lit) {
         for (int i = 0; i < SUN_KNOTS; i++)
@@ -212,4 +256,35 @@ double sun_spread(const Sun *sun, const double *table, int node_stride, double *
     for (int i = 0; i < SUN_KNOTS; i++)
         knot[(size_t)i * (size_t)knot_stride] *= scale;
     return 2.0 * exact / DAY_SECONDS;
+}
+
+void sun_gradient(const Sun *sun, const double *table, int node_stride, double *gradient, int gradient_stride)
+{
+    double y[SUN_NODES], m[SUN_NODES], gy[SUN_NODES] = {0}, gm[SUN_NODES] = {0};
+    int n = sun->rises ? sun->nodes : 0, at = 0;
+    for (int i = 0; i < sun->nodes; i++)
+        gradient[(size_t)i * (size_t)gradient_stride] = 0.0;
+    if (!n)
+        return;
+    for (int i = 0; i < n; i++)
+        y[i] = log(table[(size_t)i * (size_t)node_stride] + TINY);
+    slopes(n, sun->cosine, y, m);
+    for (int i = 0; i < SUN_KNOTS; i++) { /* Simpson's rule, as in sun_spread */
+        double before = i ? sun->time[i] - sun->time[i - 1] : 0.0;
+        double after = i + 1 < SUN_KNOTS ? sun->time[i + 1] - sun->time[i] : 0.0;
+        if (i) {
+            while (at + 2 < n && sun->cosine[at + 1] < sun->middle[i - 1])
+                at++;
+            double rate = exp(cubic(sun->cosine, y, m, at, sun->middle[i - 1]));
+            cubic_back(sun->cosine, at, sun->middle[i - 1], rate * before * (4.0 / 6.0), gy, gm);
+        }
+        while (at + 2 < n && sun->cosine[at + 1] < sun->knot[i])
+            at++;
+        double rate = exp(cubic(sun->cosine, y, m, at, sun->knot[i]));
+        cubic_back(sun->cosine, at, sun->knot[i], rate * (before + after) / 6.0, gy, gm);
+    }
+    slopes_back(n, sun->cosine, y, m, gm, gy);
+    for (int i = 0; i < n; i++)
+        gradient[(size_t)i * (size_t)gradient_stride] =
+            gy[i] * 2.0 / DAY_SECONDS / (table[(size_t)i * (size_t)node_stride] + TINY);
 }

@@ -46,5 +46,10 @@ double sun_declination(double day_of_year);
  *   knot  [SUN_KNOTS] with stride knot_stride, out: rates at the knots, scaled to the mean
  * Returns the mean over 24 h. */
 double sun_spread(const Sun *sun, const double *table, int node_stride, double *knot, int knot_stride);
+/* Derivative of that mean by the rate at each node: gradient [nodes] with stride gradient_stride, out. The
+ * mean is the sum of gradient times rate, but for what the monotone cubic's switches do between its pieces.
+ */
+void sun_gradient(const Sun *sun, const double *table, int node_stride, double *gradient,
+                  int gradient_stride);
 
 #endif
