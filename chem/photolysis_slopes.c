@@ -16,7 +16,8 @@ typedef struct {
     double *photons; /* [stride] photons cm-2 s-1 of the bin that come in */
     double *deepest; /* [stride] largest optical depth of O3 and NO2 in a layer */
     size_t each;     /* doubles of a thread's work */
-    double *work;    /* [threads] change [layers][suns][PACK], weight [suns][PACK] */
+    double *work;    /* [threads] change [layers][suns][PACK], weight [reactions][suns][PACK] */
+    int *list;       /* [threads][reactions + suns] that matter */
 } Slopes;
 
 static void free_slopes(Slopes *slopes)
@@ -25,6 +26,7 @@ static void free_slopes(Slopes *slopes)
     free(slopes->photons);
     free(slopes->deepest);
     free(slopes->work);
+    free(slopes->list);
 }
 
 static int make_slopes(Slopes *slopes, const Photolysis *p, const double *column, double earth_sun,
@@ -32,11 +34,12 @@ static int make_slopes(Slopes *slopes, const Photolysis *p, const double *column
 {
     size_t stride = (size_t)p->stride, layers = (size_t)p->layers;
     int top = p->layers - 1;
-    *slopes = (Slopes){.each = (layers + 1) * (size_t)p->suns * PACK};
+    *slopes = (Slopes){.each = (layers + (size_t)p->reactions) * (size_t)p->suns * PACK};
     slopes->photons = calloc(stride, sizeof(double));
     slopes->deepest = calloc(stride, sizeof(double));
     slopes->work = malloc((size_t)p->threads * slopes->each * sizeof(double));
-    int code = slopes->photons && slopes->deepest && slopes->work
+    slopes->list = malloc((size_t)p->threads * (size_t)(p->reactions + p->suns) * sizeof(int));
+    int code = slopes->list && slopes->photons && slopes->deepest && slopes->work
                    ? 0
                    : fault_memory(fault, "the slopes of the light");
     if (!code)
@@ -92,17 +95,20 @@ static void weigh(const Photolysis *p, const double *share, int r, int k, int fi
     }
 }
 
-/* Does it matter to a sum in layer k what the absorbers do in these bins? */
+/* Does it matter to a sum in layer k what the absorbers do in these bins? Marks the suns by which it does. */
 static int matters(const Photolysis *p, const Slopes *slopes, const double *weight, int k, int first,
-                   double sum)
+                   double sum, int *marked)
 {
-    double most = 0;
+    int any = 0;
     for (int s = 0; s < p->suns; s++) {
         const double *flux = p->flux + (size_t)(s * p->layers + k) * (size_t)p->stride + (size_t)first;
+        double most = 0;
         for (int l = 0; l < PACK; l++)
             most += fabs(weight[s * PACK + l]) * flux[l] * slopes->deepest[first + l];
+        if (most > PHOTOLYSIS_COUNTS * fabs(sum))
+            any = marked[s] = 1;
     }
-    return most > PHOTOLYSIS_COUNTS * fabs(sum);
+    return any;
 }
 
 static double add_lanes(const double *x)
@@ -110,19 +116,20 @@ static double add_lanes(const double *x)
     return ((x[0] + x[4]) + (x[2] + x[6])) + ((x[1] + x[5]) + (x[3] + x[7]));
 }
 
-/* slope [ABSORBERS][layers] of one reaction += weight times change by depth times what absorbs. */
+/* slope [ABSORBERS][layers] of one reaction += weight [suns][PACK] times change by depth times what
+ * absorbs. */
 static void add_up(const Photolysis *p, const Slopes *slopes, const double *weight, const double *change,
-                   int first, double *slope)
+                   int suns, int first, double *slope)
 {
     const double *photons = slopes->photons + first;
     for (int m = 0; m < p->layers; m++) {
         const double *sigma_ozone = p->sigma_ozone + (size_t)m * (size_t)p->stride + (size_t)first;
         const double *sigma_dioxide = p->sigma_dioxide + (size_t)m * (size_t)p->stride + (size_t)first;
-        const double *here = change + (size_t)(m * p->suns) * PACK;
+        const double *here = change + (size_t)(m * suns) * PACK;
         double sum[PACK] = {0}, ozone[PACK], dioxide[PACK];
-        for (int s = 0; s < p->suns; s++)
+        for (int i = 0; i < suns; i++)
             for (int l = 0; l < PACK; l++)
-                sum[l] += weight[s * PACK + l] * here[s * PACK + l];
+                sum[l] += weight[i * PACK + l] * here[i * PACK + l];
         for (int l = 0; l < PACK; l++) {
             ozone[l] = sum[l] * photons[l] * sigma_ozone[l];
             dioxide[l] = sum[l] * photons[l] * sigma_dioxide[l];
@@ -136,20 +143,34 @@ static void add_up(const Photolysis *p, const Slopes *slopes, const double *weig
 static void one_layer(const Photolysis *p, const Slopes *slopes, const double *share, const double *sum,
                       int k, int first, double *slope)
 {
-    double *change = slopes->work + (size_t)omp_get_thread_num() * slopes->each;
-    double *weight = change + (size_t)(p->layers * p->suns) * PACK;
-    int solved = 0;
+    const int thread = omp_get_thread_num();
+    const size_t each = (size_t)p->suns * PACK;
+    double *change = slopes->work + (size_t)thread * slopes->each;
+    double *weight = change + (size_t)p->layers * each;
+    int *reaction = slopes->list + thread * (p->reactions + p->suns), *sun = reaction + p->reactions;
+    int reactions = 0, suns = 0;
+    memset(sun, 0, (size_t)p->suns * sizeof *sun);
     for (int r = 0; r < p->reactions; r++) {
+        double *to = weight + (size_t)reactions * each;
         if (special_of(p, r) == SPECIAL_NO ||
             (!of_oxygen(p, r) && (first < p->first[r] || first >= p->end[r])))
             continue;
-        weigh(p, share, r, k, first, weight);
-        if (!matters(p, slopes, weight, k, first, sum[r * p->padded + k]))
-            continue;
-        if (!solved)
-            radiation_slopes_layer(slopes->light, k, omp_get_thread_num(), change, NULL);
-        solved = 1;
-        add_up(p, slopes, weight, change, first, slope + (size_t)r * ABSORBERS * (size_t)p->layers);
+        weigh(p, share, r, k, first, to);
+        if (matters(p, slopes, to, k, first, sum[r * p->padded + k], sun))
+            reaction[reactions++] = r;
+    }
+    for (int s = 0; s < p->suns; s++) /* marks into a list */
+        if (sun[s])
+            sun[suns++] = s;
+    if (!reactions)
+        return;
+    radiation_slopes_layer(slopes->light, k, sun, suns, thread, change, NULL);
+    for (int i = 0; i < reactions; i++) {
+        double *of = weight + (size_t)i * each;
+        for (int n = 0; n < suns; n++) /* the suns listed, side by side */
+            memmove(of + n * PACK, of + sun[n] * PACK, PACK * sizeof *of);
+        add_up(p, slopes, of, change, suns, first,
+               slope + (size_t)reaction[i] * ABSORBERS * (size_t)p->layers);
     }
 }
 
@@ -162,14 +183,13 @@ static void nitric_oxide(const Photolysis *p, const Slopes *slopes, const double
     int layers = p->layers, top = layers - 1;
     double branch = p->mechanism->reaction[p->mechanism->photolysis_first + r].branch;
     for (int s = 0; s < p->suns; s++) {
-        const double *path = radiation_slopes_path(slopes->light, s, k);
         const size_t at = (size_t)(s * layers + k);
         const double *clear = p->clear + at * special;
         double part = share[(size_t)(s * p->reactions + r) * (size_t)p->padded + (size_t)k] * branch;
         double column = 0, bend = 0;
         memset(light, 0, special * sizeof *light);
         for (int m = top; m >= 0; m--)
-            column += path[m] * density[m] * p->depth[m];
+            column += radiation_slopes_path(slopes->light, s, k, m) * density[m] * p->depth[m];
         for (int i = 0; i < NITRIC_OXIDE_INTERVALS; i++) {
             const NitricOxideInterval *interval = &p->spectra->nitric_oxide->interval[i];
             const double *opacity = p->opacity + (at * NITRIC_OXIDE_INTERVALS + (size_t)i) * OXYGEN_TERMS;
@@ -184,15 +204,16 @@ static void nitric_oxide(const Photolysis *p, const Slopes *slopes, const double
             }
         }
         for (int m = 0; m < layers; m++) {
+            double length = radiation_slopes_path(slopes->light, s, k, m) * p->depth[m];
             double ozone = 0, dioxide = 0;
             for (size_t b = 0; b < special; b++) {
                 size_t bin = (size_t)m * stride + (size_t)p->parametrised_bin[b];
                 ozone -= light[b] * p->sigma_ozone[bin];
                 dioxide -= light[b] * p->sigma_dioxide[bin];
             }
-            slope[OZONE * layers + m] += path[m] * p->depth[m] * ozone;
-            slope[DIOXIDE * layers + m] += path[m] * p->depth[m] * dioxide;
-            slope[NITRIC_OXIDE * layers + m] += path[m] * p->depth[m] * bend;
+            slope[OZONE * layers + m] += length * ozone;
+            slope[DIOXIDE * layers + m] += length * dioxide;
+            slope[NITRIC_OXIDE * layers + m] += length * bend;
         }
     }
 }

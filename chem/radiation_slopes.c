@@ -22,7 +22,7 @@ struct RadiationSlopes {
     const Slant *slant;
     int layers, suns, threads;
     double *cosine;  /* [suns] */
-    double *path;    /* [suns][layers + 1][layers] */
+    double *path;    /* [suns][layers][layers + 1] by layer on the way, target */
     double *memory;  /* of block */
     double *light;   /* [suns][layers][n][LANES] u */
     double *edge;    /* [suns][layers + 1][n][LANES] V; 0: at the ground */
@@ -67,11 +67,9 @@ static void take_paths(RadiationSlopes *slopes, double above)
     for (int s = 0; s < slopes->suns; s++)
         for (int t = 0; t <= layers; t++) {
             const double *weight = slant_path(slopes->slant, s, t, &lowest);
-            double *to = slopes->path + (size_t)(s * (layers + 1) + t) * (size_t)layers;
-            if (!weight)
-                continue;
-            memcpy(to, weight, (size_t)layers * sizeof *to);
-            to[layers - 1] += above * weight[layers];
+            for (int m = 0; weight && m < layers; m++)
+                slopes->path[(size_t)(s * layers + m) * (size_t)(layers + 1) + (size_t)t] =
+                    weight[m] + (m == layers - 1 ? above * weight[layers] : 0);
         }
 }
 
@@ -125,9 +123,10 @@ void radiation_slopes_free(RadiationSlopes *slopes)
     free(slopes);
 }
 
-const double *radiation_slopes_path(const RadiationSlopes *slopes, int sun, int target)
+double radiation_slopes_path(const RadiationSlopes *slopes, int sun, int target, int layer)
 {
-    return slopes->path + (size_t)(sun * (slopes->layers + 1) + target) * (size_t)slopes->layers;
+    return slopes
+        ->path[(size_t)(sun * slopes->layers + layer) * (size_t)(slopes->layers + 1) + (size_t)target];
 }
 
 /* Light of a source, feed [layers][n], in layers low to high, and of bright, mu0 T at the ground: u
@@ -289,37 +288,37 @@ static int share_out(const RadiationSlopes *slopes, int layer, int s, const Scra
     return count;
 }
 
-/* The beam weakened: to[m] -= sum over targets of path weight[m] times share. Two layers at a time. */
+/* The beam weakened: to[m] = - sum over targets of path weight[m] times share. Two layers at a time. */
 static void weaken(const RadiationSlopes *slopes, int s, const Scratch *w, const int *kept, int count,
-                   double *out)
+                   double *out, int stride)
 {
     const int layers = slopes->layers;
     const double(*share)[LANES] = (const double(*)[LANES])w->share;
     double(*to)[LANES] = (double(*)[LANES])out;
     for (int m = 0; m < layers; m += 2) {
-        int pair = m + 1 < layers;
+        int next = m + 1 < layers ? m + 1 : m;
+        const double *x = slopes->path + (size_t)(s * layers + m) * (size_t)(layers + 1);
+        const double *y = slopes->path + (size_t)(s * layers + next) * (size_t)(layers + 1);
         double a[LANES] = {0}, b[LANES] = {0};
         for (int j = 0; j < count; j++) {
-            const double *path = radiation_slopes_path(slopes, s, kept[j]);
-            double x = path[m], y = pair ? path[m + 1] : 0;
-            if (x == 0 && y == 0)
-                continue;
-            const double *from = share[kept[j]];
+            int t = kept[j];
+            if (t < layers && t > next && slopes->cosine[s] >= 0)
+                break; /* no beam comes up from below; kept is in order but for the ground */
             for (int l = 0; l < LANES; l++) {
-                a[l] += x * from[l];
-                b[l] += y * from[l];
+                a[l] += x[t] * share[t][l];
+                b[l] += y[t] * share[t][l];
             }
         }
-        for (int l = 0; l < LANES; l++)
-            to[m * slopes->suns + s][l] = -a[l];
-        for (int l = 0; pair && l < LANES; l++)
-            to[(m + 1) * slopes->suns + s][l] = -b[l];
+        for (int l = 0; l < LANES; l++) {
+            to[m * stride][l] = -a[l];
+            to[next * stride][l] = -b[l];
+        }
     }
 }
 
 /* The diffuse light absorbed: to[m] -= g' dK u. */
 static inline __attribute__((always_inline)) void absorb(const RadiationSlopes *slopes, int n, int s,
-                                                         const Scratch *w, double *out)
+                                                         const Scratch *w, double *out, int stride)
 {
     const int layers = slopes->layers;
     double(*to)[LANES] = (double(*)[LANES])out;
@@ -339,25 +338,26 @@ static inline __attribute__((always_inline)) void absorb(const RadiationSlopes *
                 here[l] += g[m * n + i][l] * u[m * n + i][l];
             }
         for (int l = 0; l < LANES; l++) {
-            to[m * slopes->suns + s][l] += above[l] + below[l] - here[l];
+            to[m * stride][l] += above[l] + below[l] - here[l];
             below[l] = above[l];
         }
     }
 }
 
 static inline __attribute__((always_inline)) void one_layer(const RadiationSlopes *slopes, int n, int layer,
-                                                            int thread, double *out, double *flux)
+                                                            const int *sun, int suns, int thread, double *out,
+                                                            double *flux)
 {
     Scratch w = lay_scratch(slopes, thread);
     int *kept = slopes->kept + (size_t)thread * (size_t)(slopes->layers + 1);
     double up[LANES], sum[LANES];
     answer(slopes, n, layer, &w, up);
-    for (int s = 0; s < slopes->suns; s++) {
-        int count = share_out(slopes, layer, s, &w, up, kept, sum);
-        weaken(slopes, s, &w, kept, count, out);
-        absorb(slopes, n, s, &w, out);
+    for (int i = 0; i < suns; i++) {
+        int count = share_out(slopes, layer, sun[i], &w, up, kept, sum);
+        weaken(slopes, sun[i], &w, kept, count, out + i * LANES, suns);
+        absorb(slopes, n, sun[i], &w, out + i * LANES, suns);
         if (flux)
-            memcpy(flux + s * LANES, sum, sizeof sum);
+            memcpy(flux + i * LANES, sum, sizeof sum);
     }
 }
 
@@ -377,12 +377,13 @@ void radiation_slopes_load(RadiationSlopes *slopes, int width, int first, const 
     }
 }
 
-void radiation_slopes_layer(RadiationSlopes *slopes, int layer, int thread, double *out, double *flux)
+void radiation_slopes_layer(RadiationSlopes *slopes, int layer, const int *sun, int suns, int thread,
+                            double *out, double *flux)
 {
     switch (slopes->block.n) {
-    case 1: one_layer(slopes, 1, layer, thread, out, flux); break;
-    case 2: one_layer(slopes, 2, layer, thread, out, flux); break;
-    case 3: one_layer(slopes, 3, layer, thread, out, flux); break;
-    default: one_layer(slopes, 4, layer, thread, out, flux); break;
+    case 1: one_layer(slopes, 1, layer, sun, suns, thread, out, flux); break;
+    case 2: one_layer(slopes, 2, layer, sun, suns, thread, out, flux); break;
+    case 3: one_layer(slopes, 3, layer, sun, suns, thread, out, flux); break;
+    default: one_layer(slopes, 4, layer, sun, suns, thread, out, flux); break;
     }
 }

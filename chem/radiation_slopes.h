@@ -32,13 +32,14 @@ void radiation_slopes_free(RadiationSlopes *slopes);
  * 0. */
 void radiation_slopes_load(RadiationSlopes *slopes, int width, int first, const double *absorption,
                            const double *scattering, const double *direct, const double *direct_ground);
-/* out [layers m][suns][PACK]: derivative of the actinic flux at the middle of a layer, relative to the
- * incident flux, by the absorption depth of layer m. Scattering of less than 1e-9 of the flux there is left
- * out. flux [suns][PACK] out: the flux itself, made from g (a check), NULL allowed. Layers do not know each
- * other. */
-void radiation_slopes_layer(RadiationSlopes *slopes, int layer, int thread, double *out, double *flux);
-/* Path weights with above folded into the top layer's: [layers] of a sun and target as in slant_path; zeros
- * in shadow. Owner: slopes. */
-const double *radiation_slopes_path(const RadiationSlopes *slopes, int sun, int target);
+/* For the suns listed, sun [suns] their numbers: out [layers m][suns][PACK], derivative of the actinic flux
+ * at the middle of a layer, relative to the incident flux, by the absorption depth of layer m. Scattering of
+ * less than 1e-9 of the flux there is left out. flux [suns][PACK] out: the flux itself, made from g (a
+ * check), NULL allowed. Layers do not know each other. */
+void radiation_slopes_layer(RadiationSlopes *slopes, int layer, const int *sun, int suns, int thread,
+                            double *out, double *flux);
+/* The path towards a sun from a target (as in slant_path) through a layer, per vertical length, with above
+ * folded into the top layer's; 0 in shadow. */
+double radiation_slopes_path(const RadiationSlopes *slopes, int sun, int target, int layer);
 
 #endif
