@@ -21,11 +21,12 @@ FLAGS = -std=c11 -D_POSIX_C_SOURCE=200809L $(CFLAGS) $(WARNINGS) $(SANITIZE_FLAG
 LIBS = $(PACKAGE_LIBS) -lm
 
 FOLDERS := input transport chem model
-SOURCES := $(filter-out chem/rosenbrock_kernel.c,$(foreach folder,$(FOLDERS),$(wildcard $(folder)/*.c)))
+SOURCES := $(filter-out %_kernel.c,$(foreach folder,$(FOLDERS),$(wildcard $(folder)/*.c)))
 OBJECTS := $(SOURCES:%.c=$(BUILD)/obj/%.o)
 
-# The chemistry kernel is compiled once per vector instruction set and chosen at run time.
-KERNEL_FLAGS := -O3 -ffp-contract=fast -Wno-psabi
+# These loops are compiled once per vector instruction set and chosen at run time.
+KERNELS := rosenbrock radiation_slopes
+KERNEL_FLAGS := -O3 -Wno-psabi
 ifeq ($(shell uname -m),x86_64)
 KERNEL_VARIANTS := baseline avx2 avx512
 KERNEL_FLAGS += -DSKYMEND_X86
@@ -35,7 +36,7 @@ endif
 MARCH_baseline :=
 MARCH_avx2 := -march=x86-64-v3
 MARCH_avx512 := -march=x86-64-v4 -mprefer-vector-width=512
-OBJECTS += $(KERNEL_VARIANTS:%=$(BUILD)/obj/chem/rosenbrock_kernel_%.o)
+OBJECTS += $(foreach kernel,$(KERNELS),$(KERNEL_VARIANTS:%=$(BUILD)/obj/chem/$(kernel)_kernel_%.o))
 LIBRARY_OBJECTS := $(filter-out $(BUILD)/obj/model/main.o,$(OBJECTS))
 
 TESTS := $(patsubst tests/%.c,$(BUILD)/tests/%,$(wildcard tests/test_*.c))
@@ -55,13 +56,18 @@ $(BUILD)/obj/%.o: %.c Makefile
 	@mkdir -p $(@D)
 	$(CC) $(FLAGS) $(PACKAGE_FLAGS) $(EXTRA) -c -o $@ $<
 
-$(BUILD)/obj/chem/rosenbrock.o: EXTRA := $(filter -D% -Wno%,$(KERNEL_FLAGS))
+$(patsubst %,$(BUILD)/obj/chem/%.o,rosenbrock radiation_slopes vector): EXTRA := $(filter -D% -Wno%,$(KERNEL_FLAGS))
 # one operation order everywhere: sunlight does not depend on the machine
-$(patsubst %,$(BUILD)/obj/chem/%.o,radiation radiation_slopes photolysis photolysis_slopes): EXTRA := -O3 -ffp-contract=off -Wno-psabi
+$(patsubst %,$(BUILD)/obj/chem/%.o,radiation photolysis photolysis_slopes): EXTRA := -O3 -ffp-contract=off -Wno-psabi
 
 $(BUILD)/obj/chem/rosenbrock_kernel_%.o: chem/rosenbrock_kernel.c Makefile
 	@mkdir -p $(@D)
-	$(CC) $(FLAGS) $(KERNEL_FLAGS) $(MARCH_$*) -DSOLVER_SUFFIX=$* -c -o $@ $<
+	$(CC) $(FLAGS) $(KERNEL_FLAGS) -ffp-contract=fast $(MARCH_$*) -DSOLVER_SUFFIX=$* -c -o $@ $<
+
+# the same bits from every set
+$(BUILD)/obj/chem/radiation_slopes_kernel_%.o: chem/radiation_slopes_kernel.c Makefile
+	@mkdir -p $(@D)
+	$(CC) $(FLAGS) $(KERNEL_FLAGS) -ffp-contract=off $(MARCH_$*) -DKERNEL_SUFFIX=$* -c -o $@ $<
 
 $(BUILD)/tests/%: tests/%.c $(LIBRARY_OBJECTS) Makefile
 	@mkdir -p $(@D)

@@ -16,8 +16,9 @@ typedef struct {
     double *photons; /* [stride] photons cm-2 s-1 of the bin that come in */
     double *deepest; /* [stride] largest optical depth of O3 and NO2 in a layer */
     size_t each;     /* doubles of a thread's work */
-    double *work;    /* [threads] change [layers][suns][PACK], weight [reactions][suns][PACK] */
-    int *list;       /* [threads][reactions + suns] that matter */
+    double *
+        work; /* [threads] change [layers][suns][PACK], weight [reactions][suns][PACK], sums [layers][PACK] */
+    int *list; /* [threads][reactions + suns] that matter */
 } Slopes;
 
 static void free_slopes(Slopes *slopes)
@@ -34,7 +35,7 @@ static int make_slopes(Slopes *slopes, const Photolysis *p, const double *column
 {
     size_t stride = (size_t)p->stride, layers = (size_t)p->layers;
     int top = p->layers - 1;
-    *slopes = (Slopes){.each = (layers + (size_t)p->reactions) * (size_t)p->suns * PACK};
+    *slopes = (Slopes){.each = ((layers + (size_t)p->reactions) * (size_t)p->suns + layers) * PACK};
     slopes->photons = calloc(stride, sizeof(double));
     slopes->deepest = calloc(stride, sizeof(double));
     slopes->work = malloc((size_t)p->threads * slopes->each * sizeof(double));
@@ -116,23 +117,18 @@ static double add_lanes(const double *x)
     return ((x[0] + x[4]) + (x[2] + x[6])) + ((x[1] + x[5]) + (x[3] + x[7]));
 }
 
-/* slope [ABSORBERS][layers] of one reaction += weight [suns][PACK] times change by depth times what
- * absorbs. */
-static void add_up(const Photolysis *p, const Slopes *slopes, const double *weight, const double *change,
-                   int suns, int first, double *slope)
+/* slope [ABSORBERS][layers] of one reaction += change [layers][PACK] by depth times what absorbs. */
+static void add_up(const Photolysis *p, const Slopes *slopes, const double *change, int first, double *slope)
 {
     const double *photons = slopes->photons + first;
     for (int m = 0; m < p->layers; m++) {
         const double *sigma_ozone = p->sigma_ozone + (size_t)m * (size_t)p->stride + (size_t)first;
         const double *sigma_dioxide = p->sigma_dioxide + (size_t)m * (size_t)p->stride + (size_t)first;
-        const double *here = change + (size_t)(m * suns) * PACK;
-        double sum[PACK] = {0}, ozone[PACK], dioxide[PACK];
-        for (int i = 0; i < suns; i++)
-            for (int l = 0; l < PACK; l++)
-                sum[l] += weight[i * PACK + l] * here[i * PACK + l];
+        double ozone[PACK], dioxide[PACK];
         for (int l = 0; l < PACK; l++) {
-            ozone[l] = sum[l] * photons[l] * sigma_ozone[l];
-            dioxide[l] = sum[l] * photons[l] * sigma_dioxide[l];
+            double here = change[m * PACK + l] * photons[l];
+            ozone[l] = here * sigma_ozone[l];
+            dioxide[l] = here * sigma_dioxide[l];
         }
         slope[OZONE * p->layers + m] += add_lanes(ozone) * p->depth[m];
         slope[DIOXIDE * p->layers + m] += add_lanes(dioxide) * p->depth[m];
@@ -146,7 +142,7 @@ static void one_layer(const Photolysis *p, const Slopes *slopes, const double *s
     const int thread = omp_get_thread_num();
     const size_t each = (size_t)p->suns * PACK;
     double *change = slopes->work + (size_t)thread * slopes->each;
-    double *weight = change + (size_t)p->layers * each;
+    double *weight = change + (size_t)p->layers * each, *together = weight + (size_t)p->reactions * each;
     int *reaction = slopes->list + thread * (p->reactions + p->suns), *sun = reaction + p->reactions;
     int reactions = 0, suns = 0;
     memset(sun, 0, (size_t)p->suns * sizeof *sun);
@@ -169,8 +165,8 @@ static void one_layer(const Photolysis *p, const Slopes *slopes, const double *s
         double *of = weight + (size_t)i * each;
         for (int n = 0; n < suns; n++) /* the suns listed, side by side */
             memmove(of + n * PACK, of + sun[n] * PACK, PACK * sizeof *of);
-        add_up(p, slopes, of, change, suns, first,
-               slope + (size_t)reaction[i] * ABSORBERS * (size_t)p->layers);
+        radiation_slopes_sum(slopes->light, of, change, suns, together);
+        add_up(p, slopes, together, first, slope + (size_t)reaction[i] * ABSORBERS * (size_t)p->layers);
     }
 }
 

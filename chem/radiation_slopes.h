@@ -38,6 +38,9 @@ void radiation_slopes_load(RadiationSlopes *slopes, int width, int first, const 
  * check), NULL allowed. Layers do not know each other. */
 void radiation_slopes_layer(RadiationSlopes *slopes, int layer, const int *sun, int suns, int thread,
                             double *out, double *flux);
+/* Of such a change: sum [layers m][PACK] = sum over suns of weight [suns][PACK] times it. */
+void radiation_slopes_sum(const RadiationSlopes *slopes, const double *weight, const double *change, int suns,
+                          double *sum);
 /* The path towards a sun from a target (as in slant_path) through a layer, per vertical length, with above
  * folded into the top layer's; 0 in shadow. */
 double radiation_slopes_path(const RadiationSlopes *slopes, int sun, int target, int layer);

@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "rosenbrock_kernel.h"
+#include "vector.h"
 
 int solver_work_make(SolverWork **made, const Kernel *kernel, Fault *fault)
 {
@@ -70,16 +71,7 @@ static const SolverVariant every_variant[] = {
 
 static const SolverVariant *widest(void)
 {
-    int use = 0;
-#ifdef SKYMEND_X86
-    if (__builtin_cpu_supports("avx2") && __builtin_cpu_supports("fma") && __builtin_cpu_supports("bmi2"))
-        use = 1;
-    if (use && __builtin_cpu_supports("avx512f") && __builtin_cpu_supports("avx512dq") &&
-        __builtin_cpu_supports("avx512vl") && __builtin_cpu_supports("avx512bw") &&
-        __builtin_cpu_supports("avx512cd"))
-        use = 2;
-#endif
-    return &every_variant[use];
+    return &every_variant[vector_set()];
 }
 
 int solver_variants(SolverVariant variant[SOLVER_VARIANTS])
