@@ -15,6 +15,7 @@ static const RadiationKernel *const every_kernel[] = {
 #endif
 };
 
+/* See Scratch in radiation_slopes_kernel.c. */
 static size_t scratch_size(int layers, int n)
 {
     return LANES * (size_t)(layers * (4 * n + 3) + n + 1);

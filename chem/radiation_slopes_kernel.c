@@ -3,19 +3,23 @@
 
 #include <math.h>
 #include <omp.h>
-#include <string.h>
 
 #define JOIN_(a, b) a##b
 #define JOIN(a, b) JOIN_(a, b)
 
-/* What one thread needs for a layer; all but source in [...][LANES]. */
+#define INLINE inline __attribute__((always_inline))
+
+/* LANES wavelengths as one value, anywhere in an array of double. */
+typedef double Lanes __attribute__((vector_size(LANES * sizeof(double)), aligned(sizeof(double)), may_alias));
+
+/* What one thread needs for a layer. */
 typedef struct {
-    double *source;      /* [layers][n] feed of one sweep */
-    double *beam;        /* [layers][n] */
-    double *light;       /* [layers][n] a g */
-    double *edge;        /* [layers + 1][n] a mu^2 Vg / 2 */
-    double *even, *tilt; /* [layers] g' q per unit of direct beam: even + P2(cosine) tilt */
-    double *share; /* [layers + 1] of one sun: part of the flux by the beam at each target; ground last */
+    Lanes *source;      /* [layers][n] feed of one sweep */
+    Lanes *beam;        /* [layers][n] */
+    Lanes *light;       /* [layers][n] a g */
+    Lanes *edge;        /* [layers + 1][n] a mu^2 Vg / 2 */
+    Lanes *even, *tilt; /* [layers] g' q per unit of direct beam: even + P2(cosine) tilt */
+    Lanes *share; /* [layers + 1] of one sun: part of the flux by the beam at each target; ground last */
 } Scratch;
 
 /* Part of the flux below which scattering is left out. */
@@ -28,246 +32,210 @@ static double legendre(double mu)
 
 static Scratch lay_scratch(const RadiationSlopes *slopes, int thread)
 {
-    size_t n = (size_t)slopes->block.n * LANES, layers = (size_t)slopes->layers;
-    Scratch s = {.source = slopes->scratch + (size_t)thread * slopes->each};
+    int n = slopes->block.n, layers = slopes->layers;
+    Scratch s = {.source = (Lanes *)(slopes->scratch + (size_t)thread * slopes->each)};
     s.beam = s.source + layers * n;
     s.light = s.beam + layers * n;
     s.edge = s.light + layers * n;
     s.even = s.edge + (layers + 1) * n;
-    s.tilt = s.even + layers * LANES;
-    s.share = s.tilt + layers * LANES;
+    s.tilt = s.even + layers;
+    s.share = s.tilt + layers;
     return s;
 }
 
 /* Light of a source, feed [layers][n], in layers low to high, and of bright, mu0 T at the ground: u
- * [layers][n] and V [layers + 1][n]. Returns in up what the ground sends up. V is a quotient of differences:
- * with middles 1e-8 apart 8 digits are left, far more than the term it is part of is worth there. */
-static inline __attribute__((always_inline)) void sweep(const Block *block, int n, int low, int high,
-                                                        const double *feed_from, const double *bright,
-                                                        double *beam_to, double *light, double *edge,
-                                                        double *up)
+ * [layers][n] and V [layers + 1][n]. Returns what the ground sends up. V is a quotient of differences: with
+ * middles 1e-8 apart 8 digits are left, far more than the term it is part of is worth there. */
+static INLINE Lanes sweep(const Block *block, int n, int low, int high, const Lanes *feed, Lanes bright,
+                          Lanes *beam, Lanes *u, Lanes *v)
 {
     const int layers = block->layers;
-    const double(*feed)[LANES] = (const double(*)[LANES])feed_from;
-    double(*gain)[LANES] = (double(*)[LANES])block->gain, (*gap)[LANES] = (double(*)[LANES])block->gap;
-    double(*ground)[LANES] = (double(*)[LANES])block->ground,
-    (*conduct)[LANES] = (double(*)[LANES])block->conduct;
-    double(*beam)[LANES] = (double(*)[LANES])beam_to, (*u)[LANES] = (double(*)[LANES])light,
-    (*v)[LANES] = (double(*)[LANES])edge;
-    double p[MOST_STREAMS][LANES] = {{0}}, next[MOST_STREAMS][LANES];
+    const Lanes *gain = (const Lanes *)block->gain, *gap = (const Lanes *)block->gap;
+    const Lanes *ground = (const Lanes *)block->ground, *conduct = (const Lanes *)block->conduct;
+    Lanes p[MOST_STREAMS] = {{0}}, next[MOST_STREAMS];
     for (int layer = high; layer >= 0; layer--) {
-        double(*t)[LANES] = gain + layer * n * n;
-        for (int i = 0; i < n; i++)
-            for (int l = 0; l < LANES; l++) {
-                double sum = layer >= low ? feed[layer * n + i][l] : 0;
-                for (int k = 0; k < n; k++)
-                    sum += t[i * n + k][l] * p[k][l];
-                next[i][l] = sum;
-            }
-        memcpy(p, next, sizeof(double) * LANES * (size_t)n);
-        memcpy(beam + layer * n, next, sizeof(double) * LANES * (size_t)n);
-    }
-    double sent[LANES];
-    for (int l = 0; l < LANES; l++)
-        sent[l] = up[l] = ground[n][l] * bright[l];
-    double(*last)[LANES] = gain + layers * n * n;
-    for (int i = 0; i < n; i++)
-        for (int l = 0; l < LANES; l++) {
-            double sum = 0;
+        const Lanes *t = gain + layer * n * n;
+        for (int i = 0; i < n; i++) {
+            next[i] = layer >= low ? feed[layer * n + i] : (Lanes){0};
             for (int k = 0; k < n; k++)
-                sum += last[i * n + k][l] * (block->mu[k] * p[k][l] + conduct[k][l] * sent[l]);
-            u[i][l] = sum;
+                next[i] += t[i * n + k] * p[k];
         }
+        for (int i = 0; i < n; i++)
+            beam[layer * n + i] = p[i] = next[i];
+    }
+    const Lanes *last = gain + layers * n * n;
+    Lanes sent = ground[n] * bright, up = sent;
     for (int k = 0; k < n; k++)
-        for (int l = 0; l < LANES; l++)
-            up[l] += ground[k][l] * u[k][l];
+        next[k] = block->mu[k] * p[k] + conduct[k] * sent;
+    for (int i = 0; i < n; i++) {
+        u[i] = last[i * n] * next[0];
+        for (int k = 1; k < n; k++)
+            u[i] += last[i * n + k] * next[k];
+    }
+    for (int k = 0; k < n; k++)
+        up += ground[k] * u[k];
     for (int i = 0; i < n; i++)
-        for (int l = 0; l < LANES; l++)
-            v[i][l] = conduct[i][l] * (up[l] - u[i][l]) / block->mu[i];
+        v[i] = conduct[i] * (up - u[i]) / block->mu[i];
     for (int layer = 0; layer + 1 < layers; layer++) {
-        double(*t)[LANES] = gain + layer * n * n, (*q)[LANES] = beam + (layer + 1) * n;
-        double(*here)[LANES] = u + layer * n, (*above)[LANES] = here + n;
-        for (int i = 0; i < n; i++)
-            for (int l = 0; l < LANES; l++)
-                next[i][l] = here[i][l] + (layer < high ? gap[layer][l] * q[i][l] : 0);
-        for (int i = 0; i < n; i++)
-            for (int l = 0; l < LANES; l++) {
-                double sum = 0;
-                for (int k = 0; k < n; k++)
-                    sum += t[i * n + k][l] * next[k][l];
-                above[i][l] = sum;
-                v[(layer + 1) * n + i][l] = (here[i][l] - sum) / gap[layer][l];
-            }
+        const Lanes *t = gain + layer * n * n, *q = beam + (layer + 1) * n;
+        Lanes *here = u + layer * n, *above = here + n, closer = 1 / gap[layer];
+        for (int i = 0; i < n; i++) {
+            next[i] = here[i];
+            if (layer < high)
+                next[i] += gap[layer] * q[i];
+        }
+        for (int i = 0; i < n; i++) {
+            Lanes sum = t[i * n] * next[0];
+            for (int k = 1; k < n; k++)
+                sum += t[i * n + k] * next[k];
+            above[i] = sum;
+            v[(layer + 1) * n + i] = (here[i] - sum) * closer;
+        }
     }
     for (int i = 0; i < n; i++)
-        for (int l = 0; l < LANES; l++)
-            v[layers * n + i][l] = u[(layers - 1) * n + i][l] / (block->mu[i] + gap[layers - 1][l]);
+        v[layers * n + i] = u[(layers - 1) * n + i] / (block->mu[i] + gap[layers - 1]);
+    return up;
 }
 
-static inline __attribute__((always_inline)) void load(RadiationSlopes *slopes, int n,
-                                                       const double *absorption, const double *scattering)
+/* Wavelengths of one sun in [][width], at row. */
+static INLINE Lanes row_of(const RadiationSlopes *slopes, const double *field, int row)
+{
+    return *(const Lanes *)(field + (size_t)row * slopes->width);
+}
+
+static INLINE void load(RadiationSlopes *slopes, int n, const double *absorption, const double *scattering)
 {
     Block *block = &slopes->block;
     const int layers = slopes->layers;
-    double(*scatter)[LANES] = (double(*)[LANES])slopes->scatter;
     factorise(block, n, absorption, scattering);
     for (int k = 0; k < layers; k++)
-        for (int l = 0; l < LANES; l++)
-            scatter[k][l] = scattering[(size_t)k * slopes->width + (size_t)l] / (4 * PI);
+        ((Lanes *)slopes->scatter)[k] = row_of(slopes, scattering, k) / (4 * PI);
 #pragma omp parallel for schedule(static) num_threads(slopes->threads)
     for (int s = 0; s < slopes->suns; s++) {
         Scratch w = lay_scratch(slopes, omp_get_thread_num());
-        const double *direct = slopes->direct + (size_t)(s * layers) * slopes->width;
-        const double *direct_ground = slopes->direct_ground + (size_t)s * slopes->width;
-        double(*source)[LANES] = (double(*)[LANES])block->source, (*feed)[LANES] = (double(*)[LANES])w.source;
-        double bright[LANES], up[LANES];
-        for (int l = 0; l < LANES; l++)
-            bright[l] = fmax(slopes->cosine[s], 0) * direct_ground[l];
+        const Lanes *source = (const Lanes *)block->source;
         for (int k = 0; k < layers; k++)
             for (int i = 0; i < n; i++)
-                for (int l = 0; l < LANES; l++)
-                    feed[k * n + i][l] = source[k * n + i][l] * phase(n, block->mu[i], slopes->cosine[s]) *
-                                         direct[(size_t)k * slopes->width + (size_t)l];
-        sweep(block, n, 0, layers - 1, w.source, bright, w.beam,
-              slopes->light + (size_t)(s * layers * n) * LANES,
-              slopes->edge + (size_t)(s * (layers + 1) * n) * LANES, up);
+                w.source[k * n + i] = source[k * n + i] * phase(n, block->mu[i], slopes->cosine[s]) *
+                                      row_of(slopes, slopes->direct, s * layers + k);
+        sweep(block, n, 0, layers - 1, w.source,
+              fmax(slopes->cosine[s], 0) * row_of(slopes, slopes->direct_ground, s), w.beam,
+              (Lanes *)slopes->light + s * layers * n, (Lanes *)slopes->edge + s * (layers + 1) * n);
     }
 }
 
-/* Light of an isotropic source in a layer, and what it makes of a beam; up: what the ground sends up. */
-static inline __attribute__((always_inline)) void answer(const RadiationSlopes *slopes, int n, int layer,
-                                                         const Scratch *w, double *up)
+/* Light of an isotropic source in a layer, and what it makes of a beam. Returns what the ground sends up. */
+static INLINE Lanes answer(const RadiationSlopes *slopes, int n, int layer, const Scratch *w)
 {
     const Block *block = &slopes->block;
     const int layers = slopes->layers;
-    const double(*scatter)[LANES] = (const double(*)[LANES])slopes->scatter, dark[LANES] = {0};
-    double(*feed)[LANES] = (double(*)[LANES])w->source;
-    double(*even)[LANES] = (double(*)[LANES])w->even, (*tilt)[LANES] = (double(*)[LANES])w->tilt;
-    double(*g)[LANES] = (double(*)[LANES])w->light, (*v)[LANES] = (double(*)[LANES])w->edge;
-    double half[MOST_STREAMS];
+    const Lanes *scatter = (const Lanes *)slopes->scatter;
+    double half[MOST_STREAMS], slanted[MOST_STREAMS];
     for (int i = 0; i < n; i++) {
         half[i] = 0.5 * gauss_weight[n - 1][i] * block->mu[i] * block->mu[i];
-        for (int l = 0; l < LANES; l++)
-            feed[layer * n + i][l] = 4 * PI / (block->mu[i] * block->mu[i]);
+        slanted[i] = phase(n, block->mu[i], 1) - 1;
+        w->source[layer * n + i] = (Lanes){0} + 4 * PI / (block->mu[i] * block->mu[i]);
     }
-    sweep(block, n, layer, layer, w->source, dark, w->beam, w->light, w->edge, up);
+    Lanes up = sweep(block, n, layer, layer, w->source, (Lanes){0}, w->beam, w->light, w->edge);
     for (int k = 0; k < layers; k++) {
-        for (int l = 0; l < LANES; l++)
-            even[k][l] = tilt[k][l] = 0;
-        for (int i = 0; i < n; i++)
-            for (int l = 0; l < LANES; l++) {
-                g[k * n + i][l] *= gauss_weight[n - 1][i];
-                even[k][l] += scatter[k][l] * g[k * n + i][l];
-                tilt[k][l] += scatter[k][l] * g[k * n + i][l] * (phase(n, block->mu[i], 1) - 1);
-            }
+        Lanes even = {0}, tilt = {0};
+        for (int i = 0; i < n; i++) {
+            Lanes g = w->light[k * n + i] * gauss_weight[n - 1][i];
+            even += g;
+            tilt += g * slanted[i];
+            w->light[k * n + i] = g;
+        }
+        w->even[k] = scatter[k] * even;
+        w->tilt[k] = scatter[k] * tilt;
     }
     for (int k = 0; k <= layers; k++)
         for (int i = 0; i < n; i++)
-            for (int l = 0; l < LANES; l++)
-                v[k * n + i][l] *= half[i];
+            w->edge[k * n + i] *= half[i];
+    return up;
 }
 
 /* share [layers + 1] of one sun, and their sum; kept: targets that count, the ground first. Returns how many.
  */
-static int share_out(const RadiationSlopes *slopes, int layer, int s, const Scratch *w, const double *up,
-                     int *kept, double *sum)
+static int share_out(const RadiationSlopes *slopes, int layer, int s, const Scratch *w, Lanes up, int *kept,
+                     Lanes *sum)
 {
     const int layers = slopes->layers;
-    const double *direct = slopes->direct + (size_t)(s * layers) * slopes->width;
-    const double *direct_ground = slopes->direct_ground + (size_t)s * slopes->width;
-    const double(*even)[LANES] = (const double(*)[LANES])w->even,
-          (*tilt)[LANES] = (const double(*)[LANES])w->tilt;
-    double(*share)[LANES] = (double(*)[LANES])w->share;
     double p2 = legendre(slopes->cosine[s]), bright = fmax(slopes->cosine[s], 0) / (4 * PI);
-    for (int l = 0; l < LANES; l++)
-        sum[l] = share[layers][l] = up[l] * bright * direct_ground[l];
-    for (int t = 0; t < layers; t++)
-        for (int l = 0; l < LANES; l++) {
-            double part = even[t][l] + p2 * tilt[t][l] + (t == layer);
-            share[t][l] = part * direct[(size_t)t * slopes->width + (size_t)l];
-            sum[l] += share[t][l];
-        }
+    Lanes all = w->share[layers] = up * bright * row_of(slopes, slopes->direct_ground, s);
+    for (int t = 0; t < layers; t++) {
+        Lanes part = w->even[t] + p2 * w->tilt[t];
+        if (t == layer)
+            part += 1;
+        w->share[t] = part * row_of(slopes, slopes->direct, s * layers + t);
+        all += w->share[t];
+    }
     int count = 0;
     for (int j = 0; j <= layers; j++) {
         int t = j ? j - 1 : layers, counts = 0;
         for (int l = 0; l < LANES; l++)
-            counts |= fabs(share[t][l]) > COUNTS * sum[l];
+            counts |= fabs(w->share[t][l]) > COUNTS * all[l];
         if (counts)
             kept[count++] = t;
     }
+    *sum = all;
     return count;
 }
 
 /* The beam weakened: to[m] = - sum over targets of path weight[m] times share. Two layers at a time. */
 static void weaken(const RadiationSlopes *slopes, int s, const Scratch *w, const int *kept, int count,
-                   double *out, int stride)
+                   Lanes *to, int stride)
 {
     const int layers = slopes->layers;
-    const double(*share)[LANES] = (const double(*)[LANES])w->share;
-    double(*to)[LANES] = (double(*)[LANES])out;
     for (int m = 0; m < layers; m += 2) {
         int next = m + 1 < layers ? m + 1 : m;
         const double *x = slopes->path + (size_t)(s * layers + m) * (size_t)(layers + 1);
         const double *y = slopes->path + (size_t)(s * layers + next) * (size_t)(layers + 1);
-        double a[LANES] = {0}, b[LANES] = {0};
+        Lanes a = {0}, b = {0};
         for (int j = 0; j < count; j++) {
             int t = kept[j];
             if (t < layers && t > next && slopes->cosine[s] >= 0)
                 break; /* no beam comes up from below; kept is in order but for the ground */
-            for (int l = 0; l < LANES; l++) {
-                a[l] += x[t] * share[t][l];
-                b[l] += y[t] * share[t][l];
-            }
+            a += x[t] * w->share[t];
+            b += y[t] * w->share[t];
         }
-        for (int l = 0; l < LANES; l++) {
-            to[m * stride][l] = -a[l];
-            to[next * stride][l] = -b[l];
-        }
+        to[m * stride] = -a;
+        to[next * stride] = -b;
     }
 }
 
 /* The diffuse light absorbed: to[m] -= g' dK u. */
-static inline __attribute__((always_inline)) void absorb(const RadiationSlopes *slopes, int n, int s,
-                                                         const Scratch *w, double *out, int stride)
+static INLINE void absorb(const RadiationSlopes *slopes, int n, int s, const Scratch *w, Lanes *to,
+                          int stride)
 {
     const int layers = slopes->layers;
-    double(*to)[LANES] = (double(*)[LANES])out;
-    const double(*g)[LANES] = (const double(*)[LANES])w->light,
-          (*vg)[LANES] = (const double(*)[LANES])w->edge;
-    const double(*u)[LANES] = (const double(*)[LANES])slopes->light + s * layers * n;
-    const double(*v)[LANES] = (const double(*)[LANES])slopes->edge + s * (layers + 1) * n;
-    double below[LANES] = {0};
+    const Lanes *g = w->light, *vg = w->edge, *u = (const Lanes *)slopes->light + s * layers * n,
+                *v = (const Lanes *)slopes->edge + s * (layers + 1) * n;
+    Lanes below = {0};
     for (int i = 0; i < n; i++)
-        for (int l = 0; l < LANES; l++)
-            below[l] += vg[i][l] * v[i][l];
+        below += vg[i] * v[i];
     for (int m = 0; m < layers; m++) {
-        double above[LANES] = {0}, here[LANES] = {0};
-        for (int i = 0; i < n; i++)
-            for (int l = 0; l < LANES; l++) {
-                above[l] += vg[(m + 1) * n + i][l] * v[(m + 1) * n + i][l];
-                here[l] += g[m * n + i][l] * u[m * n + i][l];
-            }
-        for (int l = 0; l < LANES; l++) {
-            to[m * stride][l] += above[l] + below[l] - here[l];
-            below[l] = above[l];
+        Lanes above = {0}, here = {0};
+        for (int i = 0; i < n; i++) {
+            above += vg[(m + 1) * n + i] * v[(m + 1) * n + i];
+            here += g[m * n + i] * u[m * n + i];
         }
+        to[m * stride] += above + below - here;
+        below = above;
     }
 }
 
-static inline __attribute__((always_inline)) void one_layer(const RadiationSlopes *slopes, int n, int layer,
-                                                            const int *sun, int suns, int thread, double *out,
-                                                            double *flux)
+static INLINE void one_layer(const RadiationSlopes *slopes, int n, int layer, const int *sun, int suns,
+                             int thread, Lanes *out, Lanes *flux)
 {
     Scratch w = lay_scratch(slopes, thread);
     int *kept = slopes->kept + (size_t)thread * (size_t)(slopes->layers + 1);
-    double up[LANES], sum[LANES];
-    answer(slopes, n, layer, &w, up);
+    Lanes up = answer(slopes, n, layer, &w), sum;
     for (int i = 0; i < suns; i++) {
-        int count = share_out(slopes, layer, sun[i], &w, up, kept, sum);
-        weaken(slopes, sun[i], &w, kept, count, out + i * LANES, suns);
-        absorb(slopes, n, sun[i], &w, out + i * LANES, suns);
+        int count = share_out(slopes, layer, sun[i], &w, up, kept, &sum);
+        weaken(slopes, sun[i], &w, kept, count, out + i, suns);
+        absorb(slopes, n, sun[i], &w, out + i, suns);
         if (flux)
-            memcpy(flux + i * LANES, sum, sizeof sum);
+            flux[i] = sum;
     }
 }
 
@@ -284,24 +252,23 @@ static void load_any(RadiationSlopes *slopes, const double *absorption, const do
 static void layer_any(const RadiationSlopes *slopes, int layer, const int *sun, int suns, int thread,
                       double *out, double *flux)
 {
+    Lanes *to = (Lanes *)out, *whole = (Lanes *)flux;
     switch (slopes->block.n) {
-    case 1: one_layer(slopes, 1, layer, sun, suns, thread, out, flux); break;
-    case 2: one_layer(slopes, 2, layer, sun, suns, thread, out, flux); break;
-    case 3: one_layer(slopes, 3, layer, sun, suns, thread, out, flux); break;
-    default: one_layer(slopes, 4, layer, sun, suns, thread, out, flux); break;
+    case 1: one_layer(slopes, 1, layer, sun, suns, thread, to, whole); break;
+    case 2: one_layer(slopes, 2, layer, sun, suns, thread, to, whole); break;
+    case 3: one_layer(slopes, 3, layer, sun, suns, thread, to, whole); break;
+    default: one_layer(slopes, 4, layer, sun, suns, thread, to, whole); break;
     }
 }
 
 static void sum_suns(int layers, int suns, const double *weight, const double *change, double *sum)
 {
-    const double(*w)[LANES] = (const double(*)[LANES])weight, (*from)[LANES] = (const double(*)[LANES])change;
-    double(*to)[LANES] = (double(*)[LANES])sum;
+    const Lanes *w = (const Lanes *)weight, *from = (const Lanes *)change;
     for (int m = 0; m < layers; m++) {
-        double all[LANES] = {0};
+        Lanes all = {0};
         for (int s = 0; s < suns; s++)
-            for (int l = 0; l < LANES; l++)
-                all[l] += w[s][l] * from[m * suns + s][l];
-        memcpy(to[m], all, sizeof all);
+            all += w[s] * from[m * suns + s];
+        ((Lanes *)sum)[m] = all;
     }
 }
 
