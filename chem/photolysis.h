@@ -44,7 +44,7 @@ void photolysis_nitric_oxide(Photolysis *photolysis, const double *nitric_oxide,
  * with what lies above it); of NO only the rates of NO answer. Eight bins are left out where the absorber of
  * any one layer, all of it, could change the sum through them by less than PHOTOLYSIS_COUNTS of itself. The
  * same bits for any number of threads. FAULT_MEMORY. */
-#define PHOTOLYSIS_COUNTS 1e-8
+#define PHOTOLYSIS_COUNTS 1e-10
 int photolysis_slopes(Photolysis *photolysis, const double *share, const double *sum, const double *column,
                       const double *nitric_oxide, double earth_sun, double *slope, Fault *fault);
 
