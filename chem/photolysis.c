@@ -514,16 +514,6 @@ static void all_rates(Photolysis *p, const double *nitric_oxide, double earth_su
     }
 }
 
-void photolysis_nitric_oxide(Photolysis *photolysis, const double *nitric_oxide, double earth_sun,
-                             double *rate)
-{
-    for (int r = 0; r < photolysis->reactions; r++)
-        if (is_nitric_oxide(photolysis, r)) {
-            nitric_oxide_rates(photolysis, r, nitric_oxide, earth_sun, rate);
-            pad(photolysis, r, rate);
-        }
-}
-
 /* Actinic flux of every sun, the wavelengths shared out among the threads. */
 static void scatter_light(Photolysis *p)
 {

@@ -29,11 +29,6 @@ void photolysis_set_sunlight(Photolysis *photolysis, const double *factor);
 void photolysis_rates(Photolysis *photolysis, const double *ozone, const double *nitrogen_dioxide,
                       const double *nitric_oxide, double earth_sun, double *rate);
 
-/* NO shields nothing but itself: the rates of NO alone, for another nitric_oxide under the ozone and NO2 of
- * the last call of photolysis_rates. Other rows of rate stay. */
-void photolysis_nitric_oxide(Photolysis *photolysis, const double *nitric_oxide, double earth_sun,
-                             double *rate);
-
 /* How the rates answer to what absorbs, at the state of the last call of photolysis_rates, by solving for the
  * change of the light itself (radiation_slopes.h), scattered light included.
  * Of every reaction j and layer k it takes the sum over suns of share times rate, share

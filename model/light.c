@@ -309,18 +309,3 @@ int light_slopes(Light *light, const double *x, const double *lit, double *slope
                 slope[(row * 3 + (size_t)a) * (size_t)layers + (size_t)l] *= unit[a][l];
     return 0;
 }
-
-void light_nitric_oxide(Light *light, const double *x, const double *lit)
-{
-    const Mechanism *mechanism = light->model->mechanism;
-    double *nitric_oxide = light->density + 2 * light->model->grid.padded;
-    if (!light->sun.nodes)
-        return;
-    number_density(light, x, lit, "NO", nitric_oxide);
-    photolysis_nitric_oxide(light->photolysis, nitric_oxide, table_sun(light), light->table);
-    for (int r = 0; r < light->reactions; r++)
-        if (mechanism->reaction[mechanism->photolysis_first + r].special == SPECIAL_NO) {
-            fold_fixed_reactants(light, r);
-            spread(light, r, r + 1);
-        }
-}

@@ -44,9 +44,6 @@ int light_follow(Light *light, const Conditions *conditions, int moved);
  * absorption. light_refresh: compute the rates. */
 int light_stale(const Light *light, const double *x, const double *lit);
 void light_refresh(Light *light, const double *x, const double *lit);
-/* After light_refresh, at another NO but the same ozone and NO2: the rates of NO, which shields nothing else.
- */
-void light_nitric_oxide(Light *light, const double *x, const double *lit);
 /* After light_refresh at the same state: how mean answers to O3, NO2 and NO, to first order, at the
  * interpolation's present pieces (sun_gradient); by finite differences it would take as many lights as there
  * are layers. slope [layers k][reactions j][3][layers m] out: d mean of reaction j in layer k by the mole

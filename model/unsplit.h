@@ -14,7 +14,7 @@
  * differences of the formulas) belong to the blocks. Photolysis in a layer depends on ozone in every layer,
  * and a little on NO2 and NO: a change of low rank, kept apart as U V' with V the absorbers layer by layer,
  * and put in by the formula of Sherman, Morrison and Woodbury (Hager 1989, SIAM Rev. 31, 221). Its slopes are
- * finite differences of the light.
+ * solved for with the light itself (light_slopes).
  *
  * Unknown i of species s in layer l is l * solved + s, its unit mole fraction; derivatives and tendencies in
  * s-1. Everything here belongs to one thread but for the light, which uses OpenMP's.
@@ -85,9 +85,8 @@ void unsplit_keep(const Unsplit *unsplit, double *x);
 /* Light, coefficients and rates at x [solved][padded]; tendency [unknowns] out, kept equations value - x (per
  * second). with_jacobian: the blocks as well. */
 void unsplit_evaluate(Unsplit *unsplit, const double *x, double *tendency, int with_jacobian);
-/* The slopes of photolysis against its absorbers at x, where unsplit_evaluate was last: one light for each O3
- * and NO2 that counts, shared out among OpenMP's threads, each of which needs a light of its own
- * (FAULT_MEMORY); the same bits for any number of them. The blocks belong to factors and light as they are:
+/* The slopes of photolysis against its absorbers at x, where unsplit_evaluate was last (light_slopes); the
+ * same bits for any number of threads. FAULT_MEMORY. The blocks belong to factors and light as they are:
  * evaluate, slopes, factorise, in this order. */
 int unsplit_slopes(Unsplit *unsplit, const double *x, Fault *fault);
 /* Largest gross rate through each unknown at the last evaluation, s-1 times mole fraction: sum of the
