@@ -111,7 +111,7 @@ static void test_sun_gradient(void **state)
         for (int kind = 0; kind < 4; kind++) {
             double table[SUN_NODES], gradient[SUN_NODES], knot[SUN_KNOTS], whole = 0.0;
             for (int i = 0; i < sun.nodes; i++)
-                table[i] = exp(-0.3 * pow(6.0, kind) / (sun.cosine[i] + 0.25));
+                table[i] = exp(-0.3 * pow(6.0, kind) / (sun.cosine[i] + 0.35));
             double mean = sun_spread(&sun, table, 1, knot, 1);
             sun_gradient(&sun, table, 1, gradient, 1);
             for (int i = 0; i < sun.nodes; i++) {
