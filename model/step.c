@@ -252,9 +252,13 @@ static void renew_light(Stepper *stepper, Column *column)
 void stepper_balance(const Stepper *stepper, Column *column)
 {
     int padded = stepper->model->grid.padded;
-    for (int i = 0; i < stepper->balances; i++)
-        mixing_tendency(stepper->mixing, column->x, stepper->balanced[i],
-                        column->balance + FIELD(padded, stepper->balanced[i], 0));
+    for (int i = 0; i < stepper->balances; i++) {
+        double *balance = column->balance + FIELD(padded, stepper->balanced[i], 0);
+        const double *given = stepper->given + FIELD(padded, stepper->balanced[i], 0);
+        mixing_tendency(stepper->mixing, column->x, stepper->balanced[i], balance);
+        for (int l = 0; l < padded; l++) /* emissions come with the transport */
+            balance[l] += given[l];
+    }
     mixing_mask(stepper->mixing, column->balance);
 }
 

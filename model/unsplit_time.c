@@ -27,6 +27,7 @@ static const int ITERATIONS = 10;
 typedef struct {
     double *before, *z0, *z1, *z2, *known, *tendency, *step; /* [unknowns] */
     double *x;                                               /* [solved][padded] */
+    unsigned char *was_kept;                                 /* [unknowns] */
     double *block;
 } Room;
 
@@ -38,8 +39,12 @@ static int make_room(Room *room, const Unsplit *unsplit, Fault *fault)
                         &room->known,  &room->tendency, &room->step};
     size_t arrays = sizeof array / sizeof array[0];
     room->block = calloc(arrays * n + field, sizeof(double));
-    if (!room->block)
+    room->was_kept = calloc(n, 1);
+    if (!room->block || !room->was_kept) {
+        free(room->block);
+        free(room->was_kept);
         return fault_memory(fault, "the unsplit column's steps");
+    }
     for (size_t i = 0; i < arrays; i++)
         *array[i] = room->block + i * n;
     room->x = room->block + arrays * n;
@@ -106,6 +111,13 @@ static double years_at(double time, double seconds, int frozen)
     return frozen ? time : time + seconds / YEAR_SECONDS;
 }
 
+/* The moment itself, but just before it where a year begins. */
+static double before_jump(double time)
+{
+    double year = round(time);
+    return fabs(time - year) < 1e-9 ? nextafter(year, 0.0) : time;
+}
+
 /* Both stages and the error's norm; 1 when a stage does not converge. z0 is h f at the start. */
 static int attempt(Unsplit *unsplit, Room *room, double time, double h, int frozen, double *error,
                    UnsplitStepping *stepping)
@@ -116,7 +128,7 @@ static int attempt(Unsplit *unsplit, Room *room, double time, double h, int froz
         room->known[i] = room->before[i] + D * room->z0[i];
     if (solve_stage(unsplit, room, h, room->z1, stepping))
         return 1;
-    unsplit_set_time(unsplit, years_at(time, h, frozen));
+    unsplit_set_time(unsplit, frozen ? time : before_jump(years_at(time, h, 0)));
     for (int i = 0; i < n; i++)
         room->known[i] = room->before[i] + W * (room->z0[i] + room->z1[i]);
     if (solve_stage(unsplit, room, h, room->z2, stepping))
@@ -143,13 +155,27 @@ static int falls_too_low(const Unsplit *unsplit, const Room *room, double absolu
     return 0;
 }
 
-/* Seconds to the next bend of the schedule, which lie in the middles of years. */
-static double until_bend(double time, double left, int frozen)
+/* When the schedule next bends: abundances in the middles of years; emissions jump where years begin, and may
+ * take over from an abundance there. */
+static double next_bend(const Unsplit *unsplit, double time)
 {
-    if (frozen)
-        return left;
-    double bend = floor(time + 0.5 + 1e-9) + 0.5;
-    return fmin(left, (bend - time) * YEAR_SECONDS);
+    double middle = floor(time + 0.5 + 1e-9) + 0.5, start = floor(time + 1e-9) + 1.0;
+    return unsplit->model->schedule.lines && start < middle ? start : middle;
+}
+
+/* The end of a step belongs to the year before, the start of the next one to the year that begins. Put what
+ * has jumped between the two into z0, which is for steps of h: room->step and was_kept hold what was given
+ * and kept, room->tendency is that of now. */
+static void jump(const Unsplit *unsplit, Room *room, double h)
+{
+    for (int i = 0; i < unsplit->unknowns; i++) {
+        if (unsplit->kept[i])
+            room->z0[i] = 0.0;
+        else if (room->was_kept[i]) /* emissions take over: nothing is known yet */
+            room->z0[i] = h * room->tendency[i];
+        else
+            room->z0[i] += h * (unsplit->given[i] - room->step[i]) / unsplit->mass[i / unsplit->solved];
+    }
 }
 
 static int advance(Unsplit *unsplit, double *x, double *time, double seconds, int frozen,
@@ -161,12 +187,14 @@ static int advance(Unsplit *unsplit, double *x, double *time, double seconds, in
     for (int i = 0; i < n; i++)
         room->z0[i] = NAN; /* until evaluated */
     for (double z0_is_for = 0.0; left > 1e-9 * seconds;) {
-        double most = until_bend(*time, left, frozen), tried = h < 0.9 * most ? h
-                                                               : h < most     ? 0.5 * most
-                                                                              : most;
+        double bend = next_bend(unsplit, *time);
+        double most = frozen ? left : fmin(left, (bend - *time) * YEAR_SECONDS);
+        double tried = h < 0.9 * most ? h : h < most ? 0.5 * most : most;
         if (stepping->fixed > 0.0)
             tried = fmin(stepping->fixed, most);
         if (!fresh) {
+            memcpy(room->step, unsplit->given, (size_t)n * sizeof(double));
+            memcpy(room->was_kept, unsplit->kept, (size_t)n);
             unsplit_set_time(unsplit, *time);
             unsplit_keep(unsplit, x);
             unsplit_evaluate(unsplit, x, room->tendency, 1);
@@ -176,6 +204,8 @@ static int advance(Unsplit *unsplit, double *x, double *time, double seconds, in
                 room->z0[i] = unsplit->kept[i] ? 0.0 : room->tendency[i] * tried;
             if (z0_is_for == 0.0)
                 z0_is_for = tried;
+            else
+                jump(unsplit, room, z0_is_for);
             fresh = 1;
         }
         for (int i = 0; i < n; i++)
@@ -203,6 +233,8 @@ static int advance(Unsplit *unsplit, double *x, double *time, double seconds, in
             room->z0[i] = room->z2[i];
         left -= tried;
         *time = years_at(*time, tried, frozen);
+        if (!frozen && fabs(*time - bend) < 1e-9)
+            *time = bend; /* not a year too early by rounding */
         h = tried * fmin(GROW, fmax(SHRINK, error > 0.0 ? SAFETY / cbrt(error) : GROW));
         stepping->step = h;
         fresh = 0;
@@ -222,5 +254,6 @@ int unsplit_advance(Unsplit *unsplit, double *x, double *time, double years, int
     if (!code && !frozen)
         *time = end; /* no drift from adding steps */
     free(room.block);
+    free(room.was_kept);
     return code;
 }
