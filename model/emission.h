@@ -3,8 +3,9 @@
  * The column stands for the whole Earth: a mass given off anywhere in a year enters it as
  *     kg a-1 / (molar mass) * Avogadro / (365.25 days) / (4 pi R^2)      molecules cm-2 s-1,
  * R the mean radius. At the ground it enters the lowest layer; aloft it is spread evenly by height over the
- * layers it covers. It enters through the transport (as a source of diffusion_step), so nothing is lost in
- * rounding: what a year gives off is what the schedule says to a few parts in 1e15 a step.
+ * layers it covers. It enters as a constant source of the transport (diffusion_step), or of the chemistry
+ * where reactions make the gas as well (stepper_source in stepper.h), so nothing is lost in rounding: what a
+ * year gives off is what the schedule says to a few parts in 1e15 a step.
  *
  * Where the value of a layer is prescribed (the lowest layer of a gas that the ground keeps, the layers in
  * which a table holds a species) the reservoir behind it takes what is put there; the ledger says so.

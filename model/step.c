@@ -70,6 +70,7 @@ static int chemistry(Stepper *stepper, Column *column, double step, int half, Fa
     Tolerance tolerance = stepper_tolerance(model);
     const double *factor = model->settings.day == DAY_FACTORS ? stepper->day->factor : NULL;
     int *order = stepper->order + half * stepper->packs;
+    const double *source = stepper_source(stepper, column);
 #pragma omp parallel for schedule(dynamic, 1) num_threads(stepper->threads)
     for (int i = 0; i < stepper->packs; i++) {
         int p = order[i];
@@ -78,7 +79,7 @@ static int chemistry(Stepper *stepper, Column *column, double step, int half, Fa
         double *first_step = &stepper->half_step[half * stepper->packs + p];
         outcome->counts = (SolverCounts){0};
         pack_load(work, model, p * PACK, column->x);
-        pack_source(work, model, p * PACK, column->balance, step);
+        pack_source(work, model, p * PACK, source, step);
         pack_rates(work, model, p * PACK, stepper->coefficient, stepper->light->mean, factor);
         PackProblem problem = pack_problem(work, 0, *first_step);
         problem.source = work->source;
@@ -252,13 +253,9 @@ static void renew_light(Stepper *stepper, Column *column)
 void stepper_balance(const Stepper *stepper, Column *column)
 {
     int padded = stepper->model->grid.padded;
-    for (int i = 0; i < stepper->balances; i++) {
-        double *balance = column->balance + FIELD(padded, stepper->balanced[i], 0);
-        const double *given = stepper->given + FIELD(padded, stepper->balanced[i], 0);
-        mixing_tendency(stepper->mixing, column->x, stepper->balanced[i], balance);
-        for (int l = 0; l < padded; l++) /* emissions come with the transport */
-            balance[l] += given[l];
-    }
+    for (int i = 0; i < stepper->balances; i++)
+        mixing_tendency(stepper->mixing, column->x, stepper->balanced[i],
+                        column->balance + FIELD(padded, stepper->balanced[i], 0));
     mixing_mask(stepper->mixing, column->balance);
 }
 

@@ -36,10 +36,11 @@ static int allocate(Stepper *stepper, Fault *fault)
     stepper->sink = calloc(solved * padded, sizeof(double));
     stepper->flux = calloc(solved, sizeof(double));
     stepper->absorbed = calloc(solved, sizeof(double));
+    stepper->reacts = calloc(solved, 1);
     if (!stepper->work || !stepper->outcome || !stepper->order || !stepper->ledgers || !stepper->half_step ||
         !stepper->part_step || !stepper->coefficient || !stepper->density || !stepper->mean ||
         !stepper->balanced || !stepper->turn || !stepper->made || !stepper->lost || !stepper->daylight ||
-        !stepper->given || !stepper->sink || !stepper->flux || !stepper->absorbed)
+        !stepper->given || !stepper->sink || !stepper->flux || !stepper->absorbed || !stepper->reacts)
         return fault_memory(fault, "stepper");
     for (size_t i = 0; i < (2 + PACK_DAY_PARTS) * packs; i++)
         stepper->order[i] = (int)(i % packs);
@@ -68,6 +69,19 @@ static void list_balanced(Stepper *stepper)
         if (!other)
             stepper->balanced[stepper->balances++] = s;
     }
+}
+
+/* See stepper_source. */
+static void list_reacting(Stepper *stepper)
+{
+    const Mechanism *mechanism = stepper->model->mechanism;
+    for (int r = 0; r < mechanism->reactions; r++)
+        for (int c = 0; c < mechanism->reaction[r].changes; c++)
+            if (mechanism->reaction[r].change[c] > 0 && mechanism->reaction[r].changed[c] < mechanism->solved)
+                stepper->reacts[mechanism->reaction[r].changed[c]] = 1;
+    for (int s = 0; s < mechanism->solved; s++)
+        if (model_deposition(stepper->model, s) > 0.0)
+            stepper->reacts[s] = 0;
 }
 
 /* All that hang on temperature and air; water enters HO2 + HO2 only and is renewed at every step. */
@@ -105,6 +119,7 @@ int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault)
         return code;
     }
     list_balanced(stepper);
+    list_reacting(stepper);
     for (int t = 0; t < stepper->threads; t++)
         stepper->work[t]->conditions = stepper->conditions;
     stepper->day->conditions = stepper->conditions;
@@ -145,6 +160,7 @@ void stepper_free(Stepper *stepper)
     free(stepper->sink);
     free(stepper->flux);
     free(stepper->absorbed);
+    free(stepper->reacts);
     free(stepper);
 }
 
@@ -187,6 +203,22 @@ static void follow_emissions(Stepper *stepper, double time)
     }
 }
 
+const double *stepper_source(Stepper *stepper, const Column *column)
+{
+    const Model *model = stepper->model;
+    const Emissions *emissions = model->emissions;
+    size_t padded = (size_t)model->grid.padded;
+    if (!stepper->giving)
+        return column->balance;
+    memcpy(stepper->sink, column->balance, (size_t)model->mechanism->solved * padded * sizeof(double));
+    for (int g = 0; g < emissions->given; g++) {
+        int s = emissions->given_species[g];
+        for (size_t l = 0; stepper->reacts[s] && l < padded; l++)
+            stepper->sink[FIELD(padded, s, l)] += stepper->given[FIELD(padded, s, l)];
+    }
+    return stepper->sink;
+}
+
 void stepper_mix(Stepper *stepper, Column *column, int slot, double length, const double *balance)
 {
     const Model *model = stepper->model;
@@ -204,7 +236,8 @@ void stepper_mix(Stepper *stepper, Column *column, int slot, double length, cons
         int s = emissions->given_species[g];
         double *sink = stepper->sink + FIELD(padded, s, 0);
         const double *given = stepper->given + FIELD(padded, s, 0);
-        for (size_t l = 0; l < padded; l++)
+        int with_chemistry = balance && stepper->reacts[s];
+        for (size_t l = 0; !with_chemistry && l < padded; l++)
             sink[l] -= given[l];
         column->emitted[s] += stepper->flux[s] * length;
         *(model_holds(model, s) ? &column->exchanged[s] : &column->received[s]) -=

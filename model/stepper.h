@@ -43,6 +43,7 @@ struct Stepper {
     double *flux, *absorbed; /* [solved] all they give, and the part that falls where a value is prescribed,
                                 molecules cm-2 s-1 */
     int giving;              /* 1: some line gives off something now */
+    unsigned char *reacts;   /* [solved] 1: in a run of means emissions of it come with the chemistry */
     double *sink;            /* [solved][padded] work */
     double since_factors;    /* s of the run since the diurnal factors were made */
     StepClock clock;
@@ -56,9 +57,16 @@ void stepper_thermal(Stepper *stepper);
 void stepper_move(Stepper *stepper, double time, double season);
 /* Coefficients that hang on species of their own layer. */
 void stepper_local_coefficients(Stepper *stepper, const Column *column);
-/* Transport with the emissions of now, booked. slot: made ready for steps of length s. balance: as
- * Column.balance, or NULL. */
+/* Transport with the emissions of now, booked. slot: made ready for steps of length s. balance: that of a run
+ * of means, in which what stepper_source gives is only booked; NULL: the explicit day, whose parts are short.
+ */
 void stepper_mix(Stepper *stepper, Column *column, int slot, double length, const double *balance);
+/* What the chemistry of a run of means gets from outside: Column.balance, and the emissions of species that
+ * reactions make and no ground takes up. Such a gas (NO) may be turned over within minutes; let in by the
+ * transport it would be carried for a whole step before anything turns it into something else. A gas that no
+ * reaction makes comes with the transport that takes it up from the ground. Mole fraction s-1,
+ * [solved][padded]; good until the next call of this or stepper_mix. */
+const double *stepper_source(Stepper *stepper, const Column *column);
 /* Photolysis rates made afresh where they are stale. */
 void stepper_follow_light(Stepper *stepper, Column *column);
 

@@ -4,6 +4,7 @@
 #define _XOPEN_SOURCE 700
 #include "emitting.h"
 
+#include "../model/budget.h"
 #include "../model/conversion.h"
 #include "../model/emission.h"
 
@@ -45,12 +46,21 @@ static int lay_implied(Settings *settings, void **state, const Conversion *impli
     return count;
 }
 
-/* Six years by abundances give emissions; the same years by those from the second on give the abundances
- * back. What an abundance implies is the mean of a year, while the flux behind it moves through the year, and
- * jumps where the line through mid-years bends: some thousandths of an abundance that grows by 10 % a year.
- * Gases that live for weeks are worse: the emission enters with the transport and is lost by the chemistry,
- * each with a constant step of 8 days, and what is in the lowest layer in between depends on which came last:
- * CHBr3, 18 days. */
+/* How far the line through the mid-years of an abundance bends at one of them, as a part of the abundance. */
+static double bend(const Conversion *of, int s, int year)
+{
+    double at = conversion_abundance(of, s, year);
+    return (conversion_abundance(of, s, year - 1) - 2.0 * at + conversion_abundance(of, s, year + 1)) / at;
+}
+
+/* Six years by abundances give emissions; the same years by those from the second on give the abundances back
+ * but for a quarter of the bend of their line in that year: with a the rise in the half year before mid-year
+ * and b in that after it, what is given off evenly in the year is the mean, and at mid-year (b - a) / 4 is
+ * there too early. A table rounded to 0.01 ppt bends by per cents where there is little of a gas. The rest is
+ * below 0.3 %, of which most is the lowest layer being filled from the ground in place of being kept.
+ * Short-lived gases are worse: what is given off enters with the transport and is lost by the chemistry, in
+ * steps of 8 days that take one after the other, and the lowest layer is seen after the chemistry: CHBr3, 2.4
+ * %, which in this column lives for weeks. */
 static void test_round_trip(void **state)
 {
     Settings settings = coarse_case(DAY_MEAN, FIRST);
@@ -64,24 +74,24 @@ static void test_round_trip(void **state)
     double worst = 0.0;
     for (int s = 0; s < run.model->mechanism->solved; s++) {
         const char *gas = mechanism_name(run.model->mechanism, s);
-        double most = 0.0, mass = 0.0;
+        double most = 0.0, rest = 0.0;
         for (int year = FIRST; driven[s] && year <= settings.last_year; year++) {
             double was = conversion_abundance(implied, s, year), is = conversion_abundance(back, s, year);
             most = fmax(most, fabs(is / was - 1.0));
-            double kg = conversion_emission(implied, s, year);
-            if (year > FIRST)
-                mass = fmax(mass, fabs(conversion_emission(back, s, year) / kg - 1.0));
+            if (year == FIRST || year == settings.last_year)
+                continue;
+            rest = fmax(rest, fabs(is / was - 1.0 - 0.25 * bend(implied, s, year)));
+            check_near(conversion_emission(back, s, year), conversion_emission(implied, s, year), 1e-12);
         }
         if (most > 1e-3)
-            print_message("   %s: %.2f %%\n", gas, 100.0 * most);
+            print_message("   %s: %.2f %%, %.2f %% without the bend\n", gas, 100.0 * most, 100.0 * rest);
         if (strcmp(gas, "CHBr3") != 0)
-            worst = fmax(worst, most);
-        assert_true(most < 0.03);
-        assert_true(mass < 1e-12);
+            worst = fmax(worst, rest);
+        assert_true(rest < 0.03);
     }
-    print_message("   %d gases, %.2f %% at most without CHBr3\n", count, 100.0 * worst);
+    print_message("   %d gases, %.2f %% at most without the bend and CHBr3\n", count, 100.0 * worst);
     assert_true(count >= 18);
-    assert_true(worst < 5e-3);
+    assert_true(worst < 3e-3);
     conversion_free(implied);
     conversion_free(back);
     end(&run);
@@ -155,9 +165,11 @@ static void test_change(void **state)
 }
 
 /* Two years under emissions that jump from year to year, with a change in the second, against the unsplit
- * column. Light that follows at every step: what is left is the splitting, as in test_balance, and the errors
- * that both control (1e-4 unsplit). CFC-11 and HCFC-22 are in the air for decades: their lowest layer answers
- * to what entered, which both take from the same line. */
+ * column. Light that follows at every step: what is left is the splitting and the error that the unsplit
+ * column controls (1e-4). CFC-11 and HCFC-22 are in the air for decades: their lowest layer answers to what
+ * entered, which both take from the same line. NO from aircraft makes 3.6 % of the NOy at 13 km. Without it
+ * the splitting is off there by 0.6 % (and by 1.5 % at 11 km, next to the NO2 that is held), with it by 0.1
+ * %; were it let in by the transport, to be carried for 8 days before any of it reacts, by 1.4 %. */
 static void test_unsplit(void **state)
 {
     Settings settings = coarse_case(DAY_MEAN, FIRST);
@@ -190,12 +202,14 @@ static void test_unsplit(void **state)
             print_message(" %s %+.1e", i ? "HCFC-22" : "CFC-11", off);
             assert_true(fabs(off) < 1e-3);
         }
-        size_t no = FIELD(run->model->grid.padded, solved_of(run->model, "NO"), 0);
-        double noy = 0.0;
-        for (int l = 5; l < 9; l++)
-            noy = fmax(noy, fabs(run->column->x[no + (size_t)l] / x[no + (size_t)l] - 1.0));
-        print_message("; NO at 11 to 17 km %.1e\n", noy);
-        assert_true(noy < 0.01);
+        double split[SETTINGS_MAX_EDGES], whole[SETTINGS_MAX_EDGES], worst = 0.0;
+        budget_total(run->model, run->column->x, TOTAL_NOY, split);
+        budget_total(run->model, x, TOTAL_NOY, whole);
+        for (int l = 0; l < run->model->grid.layers; l++)
+            if (1e-5 * run->model->grid.middle[l] > 12.0 && 1e-5 * run->model->grid.middle[l] < 40.0)
+                worst = fmax(worst, fabs(split[l] / whole[l] - 1.0));
+        print_message("; NOy at 13 to 39 km %.1e\n", worst);
+        assert_true(worst < 6e-3);
         assert_true(fabs(column_ozone_du(run->model, run->column->x) - column_ozone_du(run->model, x)) < 0.1);
     }
     print_message("   unsplit: %ld steps, %ld not taken\n", stepping.steps, stepping.rejections);
