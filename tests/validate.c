@@ -266,6 +266,7 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
     Perturbed perturbed = {0};
     OxBook *book = NULL;
     Potencies *potencies = NULL;
+    EmissionEvidence emissions = {0};
     double *rate = calloc((size_t)model->mechanism->reactions * padded, sizeof(double));
     double *term = calloc((BUDGET_TERMS + 1) * padded, sizeof(double));
     int code = rate && term ? 0 : fault_memory(fault, "rates of reaction");
@@ -279,8 +280,11 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
         code = perturb_all(&perturbed, &model->settings, fault);
     if (!code)
         code = potencies_measure(model, &potencies, fault);
+    if (!code)
+        code = emissions_measure(&emissions, &model->settings, model, rest.stepper, rest.column->x, fault);
     if (!code) {
-        const Evidence evidence = {run, rest.stepper, rest.column->x, rate, term, &perturbed, potencies};
+        const Evidence evidence = {run,  rest.stepper, rest.column->x, rate,
+                                   term, &perturbed,   potencies,      &emissions};
         budget_step_rates(model, rest.stepper, evidence.x, rate);
         budget_odd_oxygen(book, &model->grid, rate, term, term + BUDGET_TERMS * padded);
         for (int t = 0; !code && t < TABLES; t++)
@@ -289,6 +293,7 @@ static int judge_all(const Published *tables, const Csv *reasons, const Run *run
     carried_free(&rest);
     ox_book_free(book);
     potency_free(potencies);
+    emissions_evidence_free(&emissions);
     free(rate);
     free(term);
     return code;

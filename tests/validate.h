@@ -10,6 +10,7 @@
 #include <stddef.h>
 
 #include "../model/budget.h"
+#include "../model/conversion.h"
 #include "../model/potency.h"
 #include "../model/projection.h"
 
@@ -88,6 +89,21 @@ typedef struct {
 /* Settle them all, temperature fixed. */
 int perturb_all(Perturbed *perturbed, const Settings *from, Fault *fault);
 
+/* ---- validate_emission.c: emissions ---- */
+
+typedef struct {
+    Model *model;        /* of both conversions, coarser than the baseline; owned */
+    Conversion *implied; /* emissions by the case's abundances; owned */
+    Conversion *led;     /* abundances by tests/cfc11-emissions.csv from its second year on; owned */
+    double feedback_n2o; /* d ln burden / d ln flux of the column at rest */
+} EmissionEvidence;
+
+/* Carry the case from 1955 on, both ways; look at N2O beside the column at rest x [solved][padded] of model
+ * and stepper. Owner: caller, emissions_evidence_free, also after a fault. */
+int emissions_measure(EmissionEvidence *evidence, const Settings *from, const Model *model,
+                      const Stepper *stepper, const double *x, Fault *fault);
+void emissions_evidence_free(EmissionEvidence *evidence);
+
 /* ---- validate_rows.c: the published values ---- */
 
 typedef struct {
@@ -100,6 +116,7 @@ typedef struct {
     const Perturbed *perturbed;
     /* and of the column at rest under the same values: */
     const Potencies *potencies; /* factors made anew */
+    const EmissionEvidence *emissions;
 } Evidence;
 
 #define STEADY_YEAR 2000 /* the conditions of the published lifetimes (SPARC Report 6, 2013) */
@@ -139,6 +156,10 @@ int row_potency(const Evidence *evidence, const char *id, double *value, char *n
  * row_compute.
  */
 int row_ultraviolet(const Evidence *evidence, const char *id, double *value, char *note, Fault *fault);
+
+/* validate_emission.c: the model's value of a row "led-...", "implied-...", "feedback-..." or "air-mass"; -1
+ * for any other id. note as in row_compute. */
+int row_emission(const Evidence *evidence, const char *id, double *value, char *note, Fault *fault);
 
 /* ---- validate_numerics.c: the size of the numerical errors ---- */
 

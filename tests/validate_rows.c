@@ -411,7 +411,8 @@ int row_compute(const Evidence *evidence, const char *id, const char *conditions
         code = oxygen_threshold(&ask, value);
     else if (!strcmp(id, "O3-strong"))
         code = ozone_strong(&ask, value);
-    else if ((code = row_potency(evidence, id, value, note_text, fault)) == -1 &&
+    else if ((code = row_emission(evidence, id, value, note_text, fault)) == -1 &&
+             (code = row_potency(evidence, id, value, note_text, fault)) == -1 &&
              (code = row_moments(evidence, id, value, note_text, fault)) == -1 &&
              (code = row_perturbed(evidence, id, value, note_text)) == -1 &&
              (code = row_chlorine(evidence, id, value, note_text, fault)) == -1 &&
