@@ -94,7 +94,7 @@ int perturb_all(Perturbed *perturbed, const Settings *from, Fault *fault);
 typedef struct {
     Model *model;        /* of both conversions, coarser than the baseline; owned */
     Conversion *implied; /* emissions by the case's abundances; owned */
-    Conversion *led;     /* abundances by tests/cfc11-emissions.csv from its second year on; owned */
+    Conversion *led;     /* abundances by tests/cfc11-emissions.csv from 1955 on; owned */
     double feedback_n2o; /* d ln burden / d ln flux of the column at rest */
 } EmissionEvidence;
 

@@ -12,8 +12,8 @@
 #include "../model/sensitivity.h"
 #include "../model/steady.h"
 
-/* The first is a year of abundance (tests/cfc11-emissions.csv has it for the record); years around a year
- * that are averaged: the difference of two observed years is not good to a tenth of an emission. */
+/* AROUND: years on both sides that are averaged, as the difference of two observed years is not good to a
+ * tenth of an emission. */
 enum { FIRST = 1955, LAST = 2012, LED_LAST = 2010, AROUND = 2 };
 static const double SPACING_KM = 2.0;
 static const double MORE = 1e-3; /* of the flux */
