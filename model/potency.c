@@ -155,7 +155,16 @@ static double net_loss(const Work *work, int s)
     return loss;
 }
 
-/* The parameter: value at the ground, or the flux where none is kept. */
+/* Molecules cm-2 s-1 that the schedule's lines give, at the ground and aloft. */
+static double given_off(const Unsplit *unsplit, int s)
+{
+    double sum = 0.0;
+    for (int l = 0; l < unsplit->layers; l++)
+        sum += unsplit->given[l * unsplit->solved + s];
+    return sum;
+}
+
+/* The parameter: value at the ground, or the flux on top of the schedule's where none is kept. */
 static void put_parameter(Unsplit *unsplit, int s, double value)
 {
     if (unsplit->kept[s])
@@ -176,7 +185,7 @@ static int look_beside(Work *work, int s, double value, double shift, double *co
     put_parameter(unsplit, s, value + shift);
     int code = settle_beside(work, s, moved, fault);
     *column = column_ozone_du(unsplit->model, work->column->x);
-    *flux = unsplit->kept[s] ? net_loss(work, s) : value + shift;
+    *flux = unsplit->kept[s] ? net_loss(work, s) : value + shift + given_off(unsplit, s);
     put_parameter(unsplit, s, value);
     return code;
 }
@@ -267,7 +276,7 @@ static int describe(const Work *work, const double *rate, Potency *gas, Fault *f
     int s = gas->species;
     gas->molar_mass = model->mechanism->item[model->mechanism->solved_item[s]].molar_mass;
     gas->abundance = work->base[FIELD(model->grid.padded, s, 0)];
-    gas->flux = unsplit->kept[s] ? net_loss(work, s) : unsplit->emission[s] + unsplit->given[s];
+    gas->flux = unsplit->kept[s] ? net_loss(work, s) : unsplit->emission[s] + given_off(unsplit, s);
     budget_gas(model, work->base, rate, s, unsplit->kept[s], &gas->budget);
     gas->lifetime =
         gas->budget.burden > 0.0 ? budget_lifetime(&gas->budget, gas->budget.loss, GAS_LOSSES) : NAN;

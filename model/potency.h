@@ -48,7 +48,7 @@ typedef struct {
     int species;       /* solved number */
     double molar_mass; /* g mol-1 */
     double abundance;  /* mole fraction in the lowest layer */
-    double flux;       /* through the ground into the settled column, molecules cm-2 s-1 */
+    double flux; /* into the settled column through the ground, and given off aloft, molecules cm-2 s-1 */
     GasBudget budget;
     double lifetime; /* burden over gross loss, years; NAN where there is none of the gas */
     /* d(ozone column)/d(flux), DU per (molecule cm-2 s-1) */
