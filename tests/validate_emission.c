@@ -1,5 +1,6 @@
 /* validate_emission: abundances that published emissions lead to, emissions that observed abundances imply,
  * and what more of a gas does to its own lifetime. */
+#define _XOPEN_SOURCE 700 /* realpath */
 #include "validate.h"
 
 #include <math.h>
@@ -80,7 +81,15 @@ int emissions_measure(EmissionEvidence *evidence, const Settings *from, const Mo
     settings.last_year = LAST;
     int code = convert(&evidence->implied, &settings, &evidence->model, "emissions implied", fault);
     settings.last_year = LED_LAST;
-    snprintf(settings.schedule_layer[settings.schedule_layers++], SETTINGS_PATH, "tests/cfc11-emissions.csv");
+    if (!code && settings.schedule_layers == SETTINGS_MAX_LAYERS)
+        code = fault_set(fault, FAULT_INPUT, "the case has no room for another layer of its schedule");
+    char *path = realpath("tests/cfc11-emissions.csv", NULL); /* files of a case are not sought from here */
+    if (!code && (!path || strlen(path) >= SETTINGS_PATH))
+        code = fault_set(fault, FAULT_INPUT,
+                         "tests/cfc11-emissions.csv: not found; run from the project's folder");
+    if (!code)
+        strcpy(settings.schedule_layer[settings.schedule_layers++], path);
+    free(path);
     Model *model = NULL; /* the same gases in the same order */
     if (!code)
         code = convert(&evidence->led, &settings, &model, "CFC-11 from emissions", fault);
