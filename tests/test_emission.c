@@ -218,6 +218,21 @@ static void test_years_and_atoms(void **state)
     end(&run);
 }
 
+/* Explicit days over the change of the year: four days of each. */
+static void test_explicit_days(void **state)
+{
+    Settings settings = eventful(state);
+    settings.day = DAY_EXPLICIT;
+    Run run = start(&settings, 1);
+    run.column->time = 1981.0 - 4.0 / 365.25;
+    advance(&run, 1.0, 8, 0);
+    check_closed(&run);
+    int s = solved_of(run.model, "CFC-11");
+    check_near(kt_of(run.model, s, run.column->emitted[s]), (260.0 + 130.0) * 4.0 / 365.25, 1e-12);
+    assert_true(run.column->received[s] == 0.0);
+    end(&run);
+}
+
 /* The chemistry is the same, the ledger too, whoever computes it. */
 static void test_threads(void **state)
 {
@@ -305,7 +320,8 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(test_by_hand),    WITH_FOLDER(test_where_it_goes),
         WITH_FOLDER(test_column_holds_it), WITH_FOLDER(test_mass_of_an_element),
-        WITH_FOLDER(test_years_and_atoms), WITH_FOLDER(test_threads),
-        WITH_FOLDER(test_from_nothing),    WITH_FOLDER(test_refused)};
+        WITH_FOLDER(test_years_and_atoms), WITH_FOLDER(test_explicit_days),
+        WITH_FOLDER(test_threads),         WITH_FOLDER(test_from_nothing),
+        WITH_FOLDER(test_refused)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
