@@ -34,7 +34,7 @@ static int lay_implied(Settings *settings, void **state, const Conversion *impli
     for (int g = 0; g < model->schedule.gases; g++) {
         int s = solved_of(model, model->schedule.gas[g]);
         char years[20];
-        driven[s] = !conversion_uptake(implied, s, from) && strcmp(model->schedule.gas[g], "CO2") != 0;
+        driven[s] = !conversion_uptake(implied, s, from).year && strcmp(model->schedule.gas[g], "CO2") != 0;
         for (int year = from; driven[s] && year <= settings->last_year; year++) {
             snprintf(years, sizeof years, "%d", year);
             ground(&rows, years, model->schedule.gas[g], 1e-6 * conversion_emission(implied, s, year));
