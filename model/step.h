@@ -1,11 +1,11 @@
 /* step: one outer step of the column: half the chemistry, the transport, half the chemistry (Strang 1968).
  *
  * The stiff part comes last (Sportisse 2000): a step leaves radicals in balance with each other instead of
- * smeared by diffusion. In runs of means the two halves are balanced (Speth et al. 2013, SIAM J. Numer. Anal.
- * 51, 3084): the chemistry works with a source b = Column.balance, the transport with -b, b being what
- * transport does on average less what the chemistry does, halved. In the mesosphere diffusion is as fast as
- * the turnover of ozone, and no plain splitting by days comes out right there. With explicit days the step is
- * a day in sixteen parts, each transport, chemistry, transport.
+ * smeared by diffusion. In runs of means the two halves are balanced, for species of O, H and C alone (Speth
+ * et al. 2013, SIAM J. Numer. Anal. 51, 3084): the chemistry works with a source b = Column.balance, the
+ * transport with -b, b being what transport does on average less what the chemistry does, halved. In the
+ * mesosphere diffusion is as fast as the turnover of ozone, and no plain splitting by days comes out right
+ * there. With explicit days the step is a day in sixteen parts, each transport, chemistry, transport.
  *
  * Before the step, photolysis rates, uptake on aerosol and diurnal factors are made afresh where the state
  * has moved enough. Packs of layers are independent within the chemistry and go through it in parallel;

@@ -55,16 +55,17 @@ static int allocate(Stepper *stepper, Fault *fault)
     return code;
 }
 
-/* Which species have a balance: those carried whose atoms are O and H only. Of the other elements the
- * chemistry keeps the sum over a family, whose members, each with a steady sink, would be emptied when the
- * family is. */
+/* Which species have a balance: those carried whose atoms are O, H and C only. Carbon goes one way, from
+ * methane to CO2, so that what is taken from a member comes after from the one before it. Of the other
+ * elements the chemistry keeps the sum over a family, whose members, each with a steady sink, would be
+ * emptied when the family is. */
 static void list_balanced(Stepper *stepper)
 {
     const Mechanism *mechanism = stepper->model->mechanism;
     for (int s = 0; s < mechanism->solved; s++) {
         int other = !mechanism->item[mechanism->solved_item[s]].transport;
         for (int e = 0; e < mechanism->elements; e++)
-            if (strcmp(mechanism->element[e], "O") && strcmp(mechanism->element[e], "H"))
+            if (!strchr("OHC", mechanism->element[e][0]) || mechanism->element[e][1])
                 other |= mechanism_atoms(mechanism, s, e) != 0;
         if (!other)
             stepper->balanced[stepper->balances++] = s;

@@ -2,7 +2,7 @@
  * chem/rosenbrock): what one half of a step is given the other gives back, and where transport is as fast as
  * the chemistry the column does not depend on the step any more. Built-in case on coarse layers. */
 #define _XOPEN_SOURCE 700
-#include "run.h"
+#include "settled.h"
 
 #include <omp.h>
 
@@ -83,8 +83,8 @@ static void test_sink(void **state)
 
 /* ---- the step ---- */
 
-/* Balances belong to carried species of oxygen and hydrogen alone, and never where transport changes nothing.
- */
+/* Carried species of oxygen, hydrogen and carbon alone have a balance, and no other; and none has where
+ * transport changes nothing. */
 static void test_who_has_a_balance(void **state)
 {
     (void)state;
@@ -92,19 +92,23 @@ static void test_who_has_a_balance(void **state)
     Run run = start(&settings, 1);
     advance(&run, settings.outer_step_days, 30, 1);
     const Model *model = run.model;
-    int padded = model->grid.padded, some = 0;
+    const char *balanced[] = {"O",   "O3",    "OH",     "HO2",  "H2O2", "H2O", "H2",
+                              "CH4", "CH3O2", "CH3OOH", "CH2O", "CO",   "CO2"};
+    int padded = model->grid.padded;
     for (int s = 0; s < model->mechanism->solved; s++) {
         const char *name = mechanism_name(model->mechanism, s);
-        int may = !strcmp(name, "O") || !strcmp(name, "O3") || !strcmp(name, "OH") || !strcmp(name, "HO2") ||
-                  !strcmp(name, "H2O2") || !strcmp(name, "H2O") || !strcmp(name, "H2");
+        int may = 0, any = 0;
+        for (size_t i = 0; i < sizeof balanced / sizeof balanced[0]; i++)
+            may |= !strcmp(name, balanced[i]);
         for (int l = 0; l < padded; l++) {
             double b = run.column->balance[FIELD(padded, s, l)];
-            some += b != 0.0;
+            any |= b != 0.0;
             if (b != 0.0 && !may)
                 fail_msg("%s has a balance of %g", name, b);
         }
+        if (may && !any)
+            fail_msg("%s has no balance", name);
     }
-    assert_true(some > 100);
     /* water, OH: prescribed below the tropopause; hydrogen: kept by the ground */
     for (int l = 0; 1e-5 * model->grid.middle[l] < settings.tropopause_km; l++) {
         assert_true(run.column->balance[FIELD(padded, solved(model, "H2O"), l)] == 0.0);
@@ -154,6 +158,42 @@ static void test_step_length_makes_no_difference_at_the_top(void **state)
     assert_true(plain > 4.0 * balanced); /* or the test shows nothing */
 }
 
+/* A column at rest, of which the unsplit equations are the judge, stays at rest in steps: so too methyl
+ * hydroperoxide and formaldehyde, which wash out of the lowest layers as fast as mixing brings them; without
+ * a balance a step ends with half as much again. */
+static void test_rest_stays(void **state)
+{
+    (void)state;
+    Settings settings = coarse_case(DAY_FACTORS, 1990);
+    settings.spacing_km = 1.0;
+    settings.top_km = 40.0;
+    settings.refresh_state = 10.0; /* factors stay */
+    settings.refresh_years = 100.0;
+    settings.refresh_column = 1e-5; /* as the unsplit light */
+    Rest rest = make_rest(&settings);
+    find_rest(&rest);
+    stepper_balance(rest.run.stepper, rest.run.column);
+    const Model *model = rest.run.model;
+    double *before = field_copy(model, rest.run.column->x);
+    advance(&rest.run, 7.609375, 24, 1);
+    const char *name[] = {"O3", "CH3OOH", "CH2O"};
+    /* what is left comes from nitrogen, which has no balance: 0.11, 1.4 and 3.2 %; without
+     * one for carbon methyl hydroperoxide moves by 66 % */
+    double limit[] = {0.003, 0.04, 0.04};
+    for (size_t i = 0; i < sizeof name / sizeof name[0]; i++) {
+        double worst = 0.0;
+        for (int l = 0; l < model->grid.layers; l++) {
+            size_t at = FIELD(model->grid.padded, solved(model, name[i]), l);
+            worst = fmax(worst, fabs(rest.run.column->x[at] / before[at] - 1.0));
+        }
+        print_message("   %s moved by %.4f %%\n", name[i], 100.0 * worst);
+        if (!(worst < limit[i]))
+            fail_msg("%s moved by %.3f %%", name[i], 100.0 * worst);
+    }
+    free(before);
+    end_rest(&rest);
+}
+
 int main(void)
 {
     omp_set_num_threads(1);
@@ -161,6 +201,7 @@ int main(void)
         cmocka_unit_test(test_sink),
         cmocka_unit_test(test_who_has_a_balance),
         cmocka_unit_test(test_step_length_makes_no_difference_at_the_top),
+        cmocka_unit_test(test_rest_stays),
     };
     return cmocka_run_group_tests_name("balance", tests, NULL, NULL);
 }

@@ -8,8 +8,9 @@
 
 #include "../model/steady.h"
 
-/* Light that follows at every step, as it does unsplit, and factors as the settled start has them: what is
- * left is the splitting. */
+/* Light that follows at every step, as it does unsplit: what is left is the splitting, and what it does to
+ * the factors. Those the unsplit column keeps from the settled start; the steps make them anew by
+ * refresh_years, from what stands at the end of a step. */
 static Settings splitting_alone(const Settings *from, int first_year, int years)
 {
     Settings settings = *from;
