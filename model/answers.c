@@ -51,6 +51,12 @@ void answers_free(Answers *answers)
     *answers = (Answers){0};
 }
 
+void answers_unit_word(char *word, size_t size, const char *before, const char *unit)
+{
+    int pure = !strcmp(unit, "1") || !unit[0];
+    snprintf(word, size, "%s%s", pure ? "" : before, pure ? "" : !strcmp(unit, "1e-12") ? "ppt" : unit);
+}
+
 const char *answers_ending(int smoothed)
 {
     return smoothed ? "_smoothed" : "";
@@ -212,23 +218,24 @@ static void remark_return(const Ask *ask, FileAnswer *answer)
 {
     const Series *series = &ask->series;
     int benchmark = ask->answers->benchmark_year, sign = series_facts(ask->kind)->sign;
-    const char *unit = ask->file->unit[ask->kind];
+    char unit[32]; /* with the blank before it */
     double gap;
+    answers_unit_word(unit, sizeof unit, " ", ask->file->unit[ask->kind]);
     switch (ask->back.state) {
     case RETURN_UNKNOWN: no_benchmark(ask, answer); break;
     case RETURN_NEVER_AWAY:
-        snprintf(answer->note, sizeof answer->note, "no return to speak of: never %s %.5g %s after %d",
+        snprintf(answer->note, sizeof answer->note, "no return to speak of: never %s %.5g%s after %d",
                  sign > 0 ? "below" : "above", ask->back.value, unit, benchmark);
         break;
     case RETURN_LATER:
         gap = fabs(ask->back.value - series->value[series->count - 1]);
-        snprintf(answer->note, sizeof answer->note, "not by the end of the %s (%.1f): still %.*f %s %s",
+        snprintf(answer->note, sizeof answer->note, "not by the end of the %s (%.1f): still %.*f%s %s",
                  ask->smoothed ? "running means" : "file", series->end[series->count - 1], gap < 0.1 ? 4 : 2,
                  gap, unit, sign > 0 ? "below" : "above");
         break;
     case RETURN_FOUND:
         if (ask->back.again >= 0)
-            snprintf(answer->note, sizeof answer->note, "but %s it again in %.2f (by %.4g %s)",
+            snprintf(answer->note, sizeof answer->note, "but %s it again in %.2f (by %.4g%s)",
                      sign > 0 ? "below" : "above", series->middle[ask->back.again],
                      fabs(series->value[ask->back.again] - ask->back.value), unit);
         break;

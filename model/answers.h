@@ -76,6 +76,8 @@ FileAnswer *answers_add(Answers *answers, const char *unit, Fault *fault, const 
 /* NULL: no such entry. */
 const FileAnswer *answers_find(const Answers *answers, const char *id, ...)
     __attribute__((format(printf, 2, 3)));
+/* A unit as people read it, led by before: "ppt" of "1e-12"; "" of a pure number. */
+void answers_unit_word(char *word, size_t size, const char *before, const char *unit);
 /* "" or "_smoothed": the end of an id. */
 const char *answers_ending(int smoothed);
 /* Unsmoothed view of a kind, or the smoothed one in store [4 * count]. */

@@ -62,16 +62,18 @@ static int decimals_of(double value)
 static void name_series(char *name, size_t size, const FileSeries *file, int kind)
 {
     const double *limit = file->limit_km;
-    const char *unit = file->unit[kind];
+    char unit[32];
+    answers_unit_word(unit, sizeof unit, ", ", file->unit[kind]);
     switch (kind) {
     case SERIES_TROPOSPHERE: snprintf(name, size, "  0-%g km (troposphere)", limit[0]); break;
     case SERIES_LOWER: snprintf(name, size, "  %g-%g km", limit[0], limit[1]); break;
     case SERIES_MIDDLE: snprintf(name, size, "  %g-%g km", limit[1], limit[2]); break;
     case SERIES_UPPER: snprintf(name, size, "  above %g km", limit[2]); break;
     case SERIES_UV: snprintf(name, size, "noon UV index"); break;
-    case SERIES_EESC3: snprintf(name, size, "equiv. chlorine 3 yr, %s", unit); break;
-    case SERIES_EESC55: snprintf(name, size, "equiv. chlorine 5.5 yr, %s", unit); break;
-    default: snprintf(name, size, "%s, %s", series_facts(kind)->label, unit);
+    case SERIES_DOSE: snprintf(name, size, "erythemal dose%s", unit); break; /* short, for the table */
+    case SERIES_EESC3: snprintf(name, size, "equiv. chlorine 3 yr%s", unit); break;
+    case SERIES_EESC55: snprintf(name, size, "equiv. chlorine 5.5 yr%s", unit); break;
+    default: snprintf(name, size, "%s%s", series_facts(kind)->label, unit);
     }
 }
 
@@ -154,8 +156,8 @@ static void print_year(const Answers *answers, const FileSeries *file, int year,
     double benchmark = series_year_mean(&column, answers->benchmark_year);
     if (isnan(value))
         return;
-    fprintf(out, "  %4d", year);
-    number(out, 11, 2, 0, value);
+    fprintf(out, "  %4d%c", year, year == answers->benchmark_year ? '*' : ' ');
+    number(out, 10, 2, 0, value);
     number(out, 9, 2, 1, value - benchmark);
     number(out, 9, 2, 1, 100.0 * (value - benchmark) / benchmark);
     for (int kind = SERIES_UV; kind < SERIES_KINDS; kind++) {
@@ -164,10 +166,10 @@ static void print_year(const Answers *answers, const FileSeries *file, int year,
             continue;
         value = series_year_mean(&series, year);
         benchmark = series_year_mean(&series, answers->benchmark_year);
-        number(out, 11, fabs(value) >= 1000.0 ? 1 : 2, 0, value);
+        number(out, 10, fabs(value) >= 1000.0 ? 1 : 2, 0, value);
         number(out, 7, 2, 1, 100.0 * (value - benchmark) / benchmark);
     }
-    fprintf(out, "%s\n", year == answers->benchmark_year ? "  benchmark" : "");
+    fputc('\n', out);
 }
 
 static void print_years(const Answers *answers, const FileSeries *file, FILE *out)
@@ -178,11 +180,11 @@ static void print_years(const Answers *answers, const FileSeries *file, FILE *ou
                                                     [SERIES_EESC55] = "EESC 5.5yr"};
     int first = (int)floor(file->middle[0]), last = (int)floor(file->middle[file->count - 1]);
     int every = last - first < SHORT_FILE ? 1 : DECADE; /* a short file may hold no decade at all */
-    fprintf(out, "means of calendar years; change is against %d\n", answers->benchmark_year);
-    fprintf(out, "  %4s %11s %9s %9s", "year", "column, DU", "change", "%");
+    fprintf(out, "means of calendar years; change is against %d (*)\n", answers->benchmark_year);
+    fprintf(out, "  %4s  %10s %9s %9s", "year", "column, DU", "change", "%");
     for (int kind = SERIES_UV; kind < SERIES_KINDS; kind++)
         if (file->value[kind])
-            fprintf(out, " %11s %7s", heads[kind], "%");
+            fprintf(out, " %10s %7s", heads[kind], "%");
     fputc('\n', out);
     for (int year = first; year <= last; year++)
         if (year % every == 0 || year == first || year == last || year == answers->benchmark_year)

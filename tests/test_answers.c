@@ -373,12 +373,12 @@ static void test_table(void **state)
     check_printed(&memory.file, 1980, NULL,
                   (const char *[]){"290.00  2000.5   -10.00 +-0.06", "2033.8 +-0.2",
                                    "  1960      300.00     +0.00",
-                                   "  1980      300.00     +0.00     +0.00  benchmark",
+                                   "  1980*     300.00     +0.00     +0.00\n",
                                    "  1990      295.00     -5.00     -1.67\n",
                                    "  2050      305.00     +5.00     +1.67\n", "  2100      320.00",
                                    "competent authority", "noon UV index", "(not in the file)", NULL});
     check_printed(&memory.file, 1985, NULL,
-                  (const char *[]){"  1985      297.50     +0.00     +0.00  benchmark", NULL});
+                  (const char *[]){"  1985*     297.50     +0.00     +0.00\n", NULL});
     check_printed(&memory.file, 1900, NULL,
                   (const char *[]){"the file does not cover the whole of 1900",
                                    "  1990      295.00         -         -\n", NULL});
