@@ -71,6 +71,46 @@ int formula_read(const Mechanism *mechanism, const char *formula, const Place *p
     return 0;
 }
 
+/* Take an element and its count off the front of a formula; 0 when none stands there. */
+static int take_element(const char **at, char *symbol, int *count)
+{
+    const char *p = *at;
+    if (!isupper((unsigned char)*p))
+        return 0;
+    memset(symbol, 0, 3);
+    symbol[0] = *p++;
+    if (islower((unsigned char)*p))
+        symbol[1] = *p++;
+    for (*count = isdigit((unsigned char)*p) ? 0 : 1; isdigit((unsigned char)*p); p++)
+        if ((*count = 10 * *count + (*p - '0')) > 999)
+            return 0;
+    *at = p;
+    return *count > 0;
+}
+
+int formula_atoms(const char *formula, const char *symbol)
+{
+    char element[3];
+    int atoms = 0, count;
+    while (take_element(&formula, element, &count))
+        atoms += strcmp(element, symbol) == 0 ? count : 0;
+    return *formula ? -1 : atoms;
+}
+
+double formula_mass(const char *formula)
+{
+    char element[3];
+    double mass = 0.0;
+    int count;
+    while (take_element(&formula, element, &count)) {
+        double weight = equation_atomic_weight(element);
+        if (weight == 0.0)
+            return 0.0;
+        mass += count * weight;
+    }
+    return *formula ? 0.0 : mass;
+}
+
 int equation_species(const Mechanism *mechanism, const char *name)
 {
     for (int i = 0; i < mechanism->species; i++)

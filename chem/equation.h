@@ -48,6 +48,11 @@ int formula_known_element(const char *symbol);
 /* That weight, g mol-1; 0 of an element the program does not know. */
 double equation_atomic_weight(const char *symbol);
 
+/* Without a mechanism: atoms of one element in a formula such as C2HCl2F3, -1 when it is none. */
+int formula_atoms(const char *formula, const char *symbol);
+/* Molar mass, g mol-1; 0 when it is no formula or has an element without a known weight. */
+double formula_mass(const char *formula);
+
 /* Parse text against the species of the mechanism. Faults: bad notation, unknown species (nearest suggested),
  * inert species on the left, other than fixed species in braces, (+M) or M on one side only, too long. */
 int equation_read(const Mechanism *mechanism, const char *text, const Place *place, Equation *equation,

@@ -6,6 +6,8 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "answers_emission.h"
+
 /* ---- the list ---- */
 
 FileAnswer *answers_add(Answers *answers, const char *unit, Fault *fault, const char *id, ...)
@@ -48,6 +50,7 @@ void answers_free(Answers *answers)
     if (!answers)
         return;
     free(answers->item);
+    odp_free(answers->odp);
     *answers = (Answers){0};
 }
 

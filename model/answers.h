@@ -7,6 +7,7 @@
 
 #include <stdio.h>
 
+#include "odp_weights.h"
 #include "series.h"
 
 /* ---- numerical errors ---- */
@@ -35,7 +36,11 @@ typedef struct {
     double error;   /* numerical, in the unit; NAN: not known */
     char note[200]; /* "": nothing to remark */
     char method[400];
+    int detail; /* 1: for CSV and JSON alone; the file holds what it is made of and needs no variable more */
 } FileAnswer;
+
+/* What is told of emissions besides the list: calendar years (answers_emission.h). */
+struct OdpTable;
 
 typedef struct {
     FileAnswer *item; /* [count] */
@@ -43,6 +48,7 @@ typedef struct {
     int benchmark_year;
     double smooth_years;
     char error_source[300]; /* where the errors come from */
+    struct OdpTable *odp;   /* NULL: nothing of emissions */
 } Answers;
 
 typedef struct {
@@ -63,6 +69,11 @@ int answers_compute(Answers *answers, const FileSeries *file, const AnswerWish *
  * intervals do not match. */
 int answers_against(Answers *answers, const FileSeries *file, const FileSeries *reference,
                     const NumericalErrors *errors, Fault *fault);
+/* Add emissions in ODP-tonnes, by both kinds of weights; with a reference (NULL: none) their difference over
+ * the time both cover. Nothing is added where the file gives no emissions. weights are borrowed as long as
+ * the answers live. See answers_emission.h for what counts. */
+int answers_emission(Answers *answers, const FileSeries *file, const FileSeries *reference,
+                     const OdpWeights *weights, Fault *fault);
 /* Errors as the differences from the same answers of finer runs. */
 void answers_compare(Answers *answers, const Answers *finer);
 /* FAULT_INPUT unless finer is the case of file (both resolved cases in their attributes) with nothing but
@@ -85,13 +96,16 @@ Series answers_series(const Answers *answers, const FileSeries *file, int kind, 
 
 /* ---- telling them ---- */
 
+/* Whether the tables by calendar year show this one: decades, ends, benchmark; all of a short file. */
+int answers_year_shown(const Answers *answers, const FileSeries *file, int year);
 /* The table, reference NULL when there is none. */
 void answers_print(const Answers *answers, const FileSeries *file, const FileSeries *reference, FILE *out);
 /* id,label,value,unit,numerical_error,note,method; a row per answer. */
 void answers_csv(const Answers *answers, const FileSeries *file, const FileSeries *reference, FILE *out);
 /* The same as JSON, with the means of calendar years of every series of the file. */
 void answers_json(const Answers *answers, const FileSeries *file, const FileSeries *reference, FILE *out);
-/* Into the NetCDF file at path, which must not be open: a variable without dimensions per answer.
+/* Into the NetCDF file at path, which must not be open: a variable without dimensions per answer that is no
+ * detail.
  * FAULT_OUTPUT when it cannot be written; space is reserved first, so that a full disk leaves the file as it
  * was. */
 int answers_store(const Answers *answers, const char *path, Fault *fault);

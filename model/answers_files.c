@@ -3,7 +3,7 @@
 #include <stdio.h>
 #include <string.h>
 
-#include "answers.h"
+#include "answers_emission.h"
 #include "json.h"
 
 static const char caution[] = "one near-global column without polar winter, ozone hole, change of "
@@ -153,5 +153,7 @@ void answers_json(const Answers *answers, const FileSeries *file, const FileSeri
     json_key(out, 1, 0, "calendar_year_means");
     fputc('{', out);
     json_years(out, file);
-    fputs("\n  }\n}\n", out);
+    fputs("\n  }", out);
+    odp_json(answers, file, out);
+    fputs("\n}\n", out);
 }

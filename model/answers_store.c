@@ -48,12 +48,15 @@ static int put_all(int file, const Answers *answers)
     if (status == NC_NOERR)
         status = put_text(file, NC_GLOBAL, "answers_numerical_error", answers->error_source);
     for (int i = 0; i < answers->count && status == NC_NOERR; i++)
-        status = define(file, answers, i, &variable);
+        if (!answers->item[i].detail)
+            status = define(file, answers, i, &variable);
     if (status == NC_NOERR)
         status = nc_enddef(file);
     for (int i = 0; i < answers->count && status == NC_NOERR; i++) {
         char name[sizeof answers->item->id + 8];
         const double *value = &answers->item[i].value;
+        if (answers->item[i].detail)
+            continue;
         snprintf(name, sizeof name, "answer_%s", answers->item[i].id);
         status = nc_inq_varid(file, name, &variable);
         if (status == NC_NOERR && isfinite(*value)) /* what is none keeps the fill value */

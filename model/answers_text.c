@@ -4,7 +4,7 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "answers.h"
+#include "answers_emission.h"
 
 enum { DECADE = 10, SHORT_FILE = 15 /* years */, NOTES = 60 };
 
@@ -145,6 +145,8 @@ static void print_missing(const FileSeries *file, FILE *out)
                 fprintf(out, "; %s", series_facts(next)->label);
         fprintf(out, " (%s)\n", file->missing[kind]);
     }
+    if (file->emissions.missing[0])
+        fprintf(out, "  left out: emissions in ODP-tonnes (%s)\n", file->emissions.missing);
 }
 
 /* ---- calendar years ---- */
@@ -172,6 +174,13 @@ static void print_year(const Answers *answers, const FileSeries *file, int year,
     fputc('\n', out);
 }
 
+int answers_year_shown(const Answers *answers, const FileSeries *file, int year)
+{
+    int first = (int)floor(file->middle[0]), last = (int)floor(file->middle[file->count - 1]);
+    int every = last - first < SHORT_FILE ? 1 : DECADE; /* a short file may hold no decade at all */
+    return year % every == 0 || year == first || year == last || year == answers->benchmark_year;
+}
+
 static void print_years(const Answers *answers, const FileSeries *file, FILE *out)
 {
     static const char *const heads[SERIES_KINDS] = {[SERIES_UV] = "UV index",
@@ -179,7 +188,6 @@ static void print_years(const Answers *answers, const FileSeries *file, FILE *ou
                                                     [SERIES_EESC3] = "EESC 3 yr",
                                                     [SERIES_EESC55] = "EESC 5.5yr"};
     int first = (int)floor(file->middle[0]), last = (int)floor(file->middle[file->count - 1]);
-    int every = last - first < SHORT_FILE ? 1 : DECADE; /* a short file may hold no decade at all */
     fprintf(out, "means of calendar years; change is against %d (*)\n", answers->benchmark_year);
     fprintf(out, "  %4s  %10s %9s %9s", "year", "column, DU", "change", "%");
     for (int kind = SERIES_UV; kind < SERIES_KINDS; kind++)
@@ -187,7 +195,7 @@ static void print_years(const Answers *answers, const FileSeries *file, FILE *ou
             fprintf(out, " %10s %7s", heads[kind], "%");
     fputc('\n', out);
     for (int year = first; year <= last; year++)
-        if (year % every == 0 || year == first || year == last || year == answers->benchmark_year)
+        if (answers_year_shown(answers, file, year))
             print_year(answers, file, year, out);
 }
 
@@ -274,6 +282,7 @@ void answers_print(const Answers *answers, const FileSeries *file, const FileSer
     if (reference)
         print_against(answers, file, reference, out);
     print_years(answers, file, out);
+    odp_print(answers, file, reference, out);
     fprintf(out,
             "\nCaution: one near-global column, without polar winter, ozone hole, change of circulation, or\n"
             "temperature that answers to ozone; a planning figure. Health and regulatory decisions defer to\n"

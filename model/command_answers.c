@@ -12,7 +12,7 @@
 enum { FILE_OWN, FILE_REFERENCE, FILE_FINER, FILE_FINER_REFERENCE, FILES };
 
 typedef struct {
-    const char *path[FILES], *csv, *json;
+    const char *path[FILES], *csv, *json, *potentials;
     AnswerWish wish;
     double limit_km[SERIES_LIMITS];
     int limits, overwrite, quiet, help;
@@ -20,28 +20,34 @@ typedef struct {
 
 static void print_help(void)
 {
-    printf("usage: skymend answers FILE.nc [--against REFERENCE.nc] [options]\n\n"
-           "Ozone column and its parts, ultraviolet and equivalent chlorine where the file has them: extreme "
-           "and its\n"
-           "year, change against a benchmark year, year of return, unsmoothed and smoothed, each with its "
-           "numerical\n"
-           "error; against a second file the integrated ozone depletion and the delay of the return.\n\n"
-           "      --against REF.nc   the case without the emission in question\n"
-           "      --benchmark YEAR   default %d\n"
-           "      --smooth YEARS     window of the running mean, default %g\n"
-           "      --limits KM,KM,KM  tops of troposphere, lower and middle stratosphere; default: tropopause "
-           "of the\n"
-           "                         file, %g and %g\n"
-           "      --finer FILE2.nc   the same case run with finer numerics: errors are the differences from "
-           "it;\n"
-           "                         without, they are those measured on the baseline\n"
-           "      --finer-against R  the same for the reference\n"
-           "      --csv FILE         a row per answer, with its method\n"
-           "      --json FILE        the same as JSON, with the means of calendar years\n"
-           "      --overwrite        replace files that are there\n"
-           "      --quiet            no table\n"
-           "  -h, --help             this text\n",
-           ANSWERS_BENCHMARK, ANSWERS_SMOOTH_YEARS, series_limits[0], series_limits[1]);
+    printf(
+        "usage: skymend answers FILE.nc [--against REFERENCE.nc] [options]\n\n"
+        "Ozone column and its parts, ultraviolet and equivalent chlorine where the file has them: extreme "
+        "and its\n"
+        "year, change against a benchmark year, year of return, unsmoothed and smoothed, each with its "
+        "numerical\n"
+        "error; emissions in ODP-tonnes; against a second file the integrated ozone depletion, the delay of "
+        "the\n"
+        "return and the difference of emissions.\n\n"
+        "      --against REF.nc   the case without the emission in question\n"
+        "      --benchmark YEAR   default %d\n"
+        "      --smooth YEARS     window of the running mean, default %g\n"
+        "      --limits KM,KM,KM  tops of troposphere, lower and middle stratosphere; default: tropopause "
+        "of the\n"
+        "                         file, %g and %g\n"
+        "      --finer FILE2.nc   the same case run with finer numerics: errors are the differences from "
+        "it;\n"
+        "                         without, they are those measured on the baseline\n"
+        "      --finer-against R  the same for the reference\n"
+        "      --potentials FILE  depletion potentials of your own case, as skymend potency --csv writes "
+        "them;\n"
+        "                         default: those of the baseline in the data\n"
+        "      --csv FILE         a row per answer, with its method\n"
+        "      --json FILE        the same as JSON, with the means of calendar years\n"
+        "      --overwrite        replace files that are there\n"
+        "      --quiet            no table\n"
+        "  -h, --help             this text\n",
+        ANSWERS_BENCHMARK, ANSWERS_SMOOTH_YEARS, series_limits[0], series_limits[1]);
 }
 
 static int read_limits(Request *request, const char *text, Fault *fault)
@@ -78,6 +84,7 @@ static int take_option(Request *request, int found, Fault *fault)
     case 'b': return option_whole("--benchmark", optarg, 1750, 2500, &request->wish.benchmark_year, fault);
     case 's': return option_number("--smooth", optarg, 0.1, 1000.0, &request->wish.smooth_years, fault);
     case 'l': return read_limits(request, optarg, fault);
+    case 'p': request->potentials = optarg; return 0;
     case 'c': request->csv = optarg; return 0;
     case 'j': request->json = optarg; return 0;
     case 'w': request->overwrite = 1; return 0;
@@ -88,16 +95,23 @@ static int take_option(Request *request, int found, Fault *fault)
 
 static int read_request(Request *request, int argc, char **argv, Fault *fault)
 {
-    static const struct option options[] = {
-        {"against", required_argument, NULL, 'a'}, {"benchmark", required_argument, NULL, 'b'},
-        {"smooth", required_argument, NULL, 's'},  {"limits", required_argument, NULL, 'l'},
-        {"finer", required_argument, NULL, 'f'},   {"finer-against", required_argument, NULL, 'F'},
-        {"csv", required_argument, NULL, 'c'},     {"json", required_argument, NULL, 'j'},
-        {"overwrite", no_argument, NULL, 'w'},     {"quiet", no_argument, NULL, 'q'},
-        {"help", no_argument, NULL, 'h'},          {NULL, 0, NULL, 0}};
-    static const char *const names[] = {"--against",   "--benchmark",     "--smooth", "--limits",
-                                        "--finer",     "--finer-against", "--csv",    "--json",
-                                        "--overwrite", "--quiet",         "--help",   NULL};
+    static const struct option options[] = {{"against", required_argument, NULL, 'a'},
+                                            {"benchmark", required_argument, NULL, 'b'},
+                                            {"smooth", required_argument, NULL, 's'},
+                                            {"limits", required_argument, NULL, 'l'},
+                                            {"finer", required_argument, NULL, 'f'},
+                                            {"finer-against", required_argument, NULL, 'F'},
+                                            {"potentials", required_argument, NULL, 'p'},
+                                            {"csv", required_argument, NULL, 'c'},
+                                            {"json", required_argument, NULL, 'j'},
+                                            {"overwrite", no_argument, NULL, 'w'},
+                                            {"quiet", no_argument, NULL, 'q'},
+                                            {"help", no_argument, NULL, 'h'},
+                                            {NULL, 0, NULL, 0}};
+    static const char *const names[] = {"--against", "--benchmark",     "--smooth",     "--limits",
+                                        "--finer",   "--finer-against", "--potentials", "--csv",
+                                        "--json",    "--overwrite",     "--quiet",      "--help",
+                                        NULL};
     int found, before = 1;
     opterr = 0;
     optind = 1;
@@ -133,15 +147,27 @@ int answers_baseline_errors(NumericalErrors *errors, char *source, size_t size, 
     return errors_read(errors, path, fault);
 }
 
-/* The answers of a file, and against another where there is one. */
-static int compute(Answers *answers, const Request *request, const FileSeries *file,
-                   const FileSeries *reference, const NumericalErrors *errors, Fault *fault)
+int answers_weights(OdpWeights *weights, const char *potentials, Fault *fault)
 {
-    int code = answers_compute(answers, file, &request->wish, errors, fault);
-    return code || !reference ? code : answers_against(answers, file, reference, errors, fault);
+    char folder[SETTINGS_PATH];
+    memset(weights, 0, sizeof *weights);
+    return find_data(folder, sizeof folder, fault) ? fault->code
+                                                   : weights_read(weights, folder, potentials, fault);
 }
 
-static int find_errors(Answers *answers, const Request *request, FileSeries *const *series, Fault *fault)
+/* The answers of a file, and against another where there is one. */
+static int compute(Answers *answers, const AnswerWish *wish, const FileSeries *file,
+                   const FileSeries *reference, const NumericalErrors *errors, const OdpWeights *weights,
+                   Fault *fault)
+{
+    int code = answers_compute(answers, file, wish, errors, fault);
+    if (!code && reference)
+        code = answers_against(answers, file, reference, errors, fault);
+    return code ? code : answers_emission(answers, file, reference, weights, fault);
+}
+
+static int find_errors(Answers *answers, const Request *request, FileSeries *const *series,
+                       const OdpWeights *weights, Fault *fault)
 {
     Answers finer = {0};
     NumericalErrors unknown;
@@ -150,7 +176,8 @@ static int find_errors(Answers *answers, const Request *request, FileSeries *con
         (series[FILE_REFERENCE] &&
          answers_check_finer(series[FILE_REFERENCE], series[FILE_FINER_REFERENCE], fault)))
         return fault->code;
-    int code = compute(&finer, request, series[FILE_FINER], series[FILE_FINER_REFERENCE], &unknown, fault);
+    int code = compute(&finer, &request->wish, series[FILE_FINER], series[FILE_FINER_REFERENCE], &unknown,
+                       weights, fault);
     if (!code)
         answers_compare(answers, &finer);
     snprintf(answers->error_source, sizeof answers->error_source, "difference from finer numerics, %s",
@@ -185,9 +212,10 @@ static int run(const Request *request, Fault *fault)
 {
     FileSeries store[FILES] = {{0}}, *series[FILES] = {NULL};
     NumericalErrors errors;
+    OdpWeights weights;
     Answers answers = {0};
     char source[sizeof answers.error_source] = "";
-    int code = 0;
+    int code = answers_weights(&weights, request->potentials, fault);
     for (int f = 0; f < FILES && !code; f++)
         if (request->path[f]) {
             series[f] = &store[f];
@@ -198,28 +226,30 @@ static int run(const Request *request, Fault *fault)
     if (!code && !series[FILE_FINER])
         code = answers_baseline_errors(&errors, source, sizeof source, fault);
     if (!code)
-        code = compute(&answers, request, series[FILE_OWN], series[FILE_REFERENCE], &errors, fault);
+        code = compute(&answers, &request->wish, series[FILE_OWN], series[FILE_REFERENCE], &errors, &weights,
+                       fault);
     if (!code) {
         memcpy(answers.error_source, source, sizeof source);
-        code = series[FILE_FINER] ? find_errors(&answers, request, series, fault) : 0;
+        code = series[FILE_FINER] ? find_errors(&answers, request, series, &weights, fault) : 0;
     }
     if (!code)
         code = tell(&answers, request, series[FILE_OWN], series[FILE_REFERENCE], fault);
     answers_free(&answers);
+    weights_free(&weights);
     for (int f = 0; f < FILES; f++)
         series_free(&store[f]);
     return code;
 }
 
-int answers_of_run(const char *path, const NumericalErrors *errors, const char *source, int print,
-                   Fault *fault)
+int answers_of_run(const char *path, const NumericalErrors *errors, const char *source,
+                   const OdpWeights *weights, int print, Fault *fault)
 {
     const AnswerWish wish = {ANSWERS_BENCHMARK, ANSWERS_SMOOTH_YEARS};
     FileSeries series = {0};
     Answers answers = {0};
     int code = series_read(&series, path, NULL, fault);
     if (!code)
-        code = answers_compute(&answers, &series, &wish, errors, fault);
+        code = compute(&answers, &wish, &series, NULL, errors, weights, fault);
     if (!code) {
         snprintf(answers.error_source, sizeof answers.error_source, "%s", source);
         code = answers_store(&answers, path, fault);

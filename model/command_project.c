@@ -115,12 +115,15 @@ static int run(const Request *request, Fault *fault)
     Outlets outlets = {0};
     ReleaseTable release = {0};
     NumericalErrors errors;
+    OdpWeights weights = {0};
     char source[200];
     if (!settings)
         return fault_memory(fault, "settings");
     int code = load_case(settings, request->case_path, fault);
     if (!code) /* now, not after the run */
         code = answers_baseline_errors(&errors, source, sizeof source, fault);
+    if (!code)
+        code = answers_weights(&weights, NULL, fault);
     if (!code)
         code = release_find_and_read(&release, settings->data_dir, fault);
     if (!code)
@@ -149,12 +152,13 @@ static int run(const Request *request, Fault *fault)
     if (!code)
         code = chlorine_store(request->output, &release, fault);
     if (!code)
-        code = answers_of_run(request->output, &errors, source, !request->quiet, fault);
+        code = answers_of_run(request->output, &errors, source, &weights, !request->quiet, fault);
     if (!code && !request->quiet) {
         printf("\n");
         print_summary(model, column);
         printf("written: %s\n", request->output);
     }
+    weights_free(&weights);
     release_free(&release);
     stepper_free(stepper);
     column_free(column);

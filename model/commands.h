@@ -68,8 +68,12 @@ int close_text(FILE *out, const char *path, Fault *fault);
 /* The numerical errors measured on the baseline, numerical-error.csv of the data; source: [size] what to say
  * of them. */
 int answers_baseline_errors(NumericalErrors *errors, char *source, size_t size, Fault *fault);
+/* What emissions are weighed by; potentials NULL: Skymend's own for the baseline. Owner: caller,
+ * weights_free.
+ */
+int answers_weights(OdpWeights *weights, const char *potentials, Fault *fault);
 /* The answers of the finished file at path, stored in it, and printed when print is set. */
-int answers_of_run(const char *path, const NumericalErrors *errors, const char *source, int print,
-                   Fault *fault);
+int answers_of_run(const char *path, const NumericalErrors *errors, const char *source,
+                   const OdpWeights *weights, int print, Fault *fault);
 
 #endif

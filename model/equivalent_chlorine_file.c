@@ -11,28 +11,11 @@
 
 #include <netcdf.h>
 
+#include "../chem/equation.h"
 #include "equivalent_chlorine.h"
 #include "series.h"
 
 /* ---- reading ---- */
-
-/* Atoms of one element in a formula such as C2HCl2F3; -1 when it is none. */
-static int count_atoms(const char *formula, const char *symbol)
-{
-    int atoms = 0;
-    const char *p = formula;
-    while (*p >= 'A' && *p <= 'Z') {
-        size_t length = p[1] >= 'a' && p[1] <= 'z' ? 2 : 1;
-        int ours = strlen(symbol) == length && !strncmp(p, symbol, length);
-        char *end;
-        p += length;
-        long count = *p >= '0' && *p <= '9' ? strtol(p, &end, 10) : 1;
-        if (*p >= '0' && *p <= '9')
-            p = end;
-        atoms += ours ? (int)count : 0;
-    }
-    return *p ? -1 : atoms;
-}
 
 /* 1 when the attribute is there and is text that fits. */
 static int read_text(int file, int variable, const char *name, char *text, size_t size)
@@ -106,12 +89,12 @@ static int look_at(const Open *in, int variable, int *is, SurfaceGas *gas, Fault
             "%s: %s has no attribute formula, so that its chlorine is not known; make the file anew "
             "with this version",
             in->path, name);
-    gas->chlorine = count_atoms(formula, "Cl");
-    gas->bromine = count_atoms(formula, "Br");
+    gas->chlorine = formula_atoms(formula, "Cl");
+    gas->bromine = formula_atoms(formula, "Br");
     if (gas->chlorine < 0 || gas->bromine < 0)
         return fault_set(fault, FAULT_INPUT, "%s: %s has the formula \"%s\", which is none", in->path, name,
                          formula);
-    *is = count_atoms(formula, "C") > 0 && (gas->chlorine || gas->bromine);
+    *is = formula_atoms(formula, "C") > 0 && (gas->chlorine || gas->bromine);
     return 0;
 }
 

@@ -39,6 +39,29 @@ typedef struct {
     const double *value;                /* [count] */
 } Series;
 
+/* What is given off of a gas, Gg of the gas a year. */
+typedef struct {
+    char gas[32], variable[32]; /* "CFC-11", "CFC_11" */
+    int halocarbon, nitrogen;   /* it holds C and Cl, Br or I; it holds N and no halogen */
+    double *all;                /* [count] */
+    double *lines; /* [count] of it, what lines of the schedule give; the rest is implied: what keeps a
+                      prescribed abundance */
+} GasEmission;
+
+typedef struct {
+    char label[160];
+    int gas;       /* index */
+    double *given; /* [count] Gg of the gas, not of an element in it, a year */
+} LineEmission;
+
+typedef struct {
+    int gases, lines;
+    GasEmission *gas;   /* [gases] in order of the file; none: it does not give them ... */
+    LineEmission *line; /* [lines] */
+    char missing[200];  /* ... for this reason */
+    double *store;      /* what all and lines and given point into */
+} FileEmissions;
+
 typedef struct {
     char *path, *title, *resolved_case; /* "" when the file does not say */
     int count;
@@ -48,6 +71,7 @@ typedef struct {
     char unit[SERIES_KINDS][24];     /* as in the file */
     double limit_km[SERIES_LIMITS];  /* tropopause, lower to middle, middle to upper stratosphere */
     double top_km;                   /* of the grid */
+    FileEmissions emissions;
 } FileSeries;
 
 /* Where the middle stratosphere begins and ends unless told otherwise, km: 24 and 32, near 32 and 10 hPa, the
@@ -66,6 +90,11 @@ int series_read(FileSeries *series, const char *path, const double *limit_km, Fa
 void series_free(FileSeries *series);
 /* In series_parts.c: the partial columns of an open NetCDF file, or the reason why not. */
 int series_read_parts(FileSeries *series, int file, const double *limit_km, Fault *fault);
+/* In series_emission.c: emissions by gas (emission_GAS, with species and formula of the variable GAS) and by
+ * line, or the reason why not. A gap in one leaves all out, since a total without it would pass for the
+ * whole. FAULT_INPUT when a unit is not Gg year-1 or the lines do not fit the gases. */
+int series_read_emissions(FileSeries *series, int file, Fault *fault);
+void series_free_emissions(FileEmissions *emissions);
 /* Values of a variable of the file, `count` in all (dimensions of length 1 do not matter); -1 when it is not
  * there or has another size, 0 when read. */
 int series_variable(int file, const char *name, int count, double *values);

@@ -284,7 +284,7 @@ static int read_open(FileSeries *series, int file, const double *limit_km, Fault
     for (int kind = SERIES_UV; kind < SERIES_KINDS; kind++)
         if (read_other(series, file, kind, fault))
             return fault->code;
-    return 0;
+    return series_read_emissions(series, file, fault);
 }
 
 int series_read(FileSeries *series, const char *path, const double *limit_km, Fault *fault)
@@ -321,6 +321,7 @@ void series_free(FileSeries *series)
         return;
     for (int kind = 0; kind < SERIES_KINDS; kind++)
         free(series->value[kind]);
+    series_free_emissions(&series->emissions);
     free(series->path);
     free(series->title);
     free(series->resolved_case);
