@@ -5,7 +5,8 @@
 #include <stdlib.h>
 #include <string.h>
 
-#define TONNES 1e3 /* in a Gg */
+#define TONNES 1e3     /* in a Gg */
+#define ROUND_OFF 1e-9 /* of an emission: what all a gas gives and the sum of its lines may differ by */
 
 static const char *const weight_words[WEIGHTS] = {"treaty", "own"};
 static const char *const weight_labels[WEIGHTS] = {"emission by the treaty's potentials",
@@ -26,7 +27,10 @@ double odp_mass(const OdpWeights *weights, int weight, int share, const GasEmiss
         return 0.0;
     if (!weights_natural(weights, gas->gas))
         return share == ODP_COUNTED ? gas->all[i] : 0.0;
-    return share == ODP_COUNTED ? gas->lines[i] : gas->all[i] - gas->lines[i];
+    double rest = gas->all[i] - gas->lines[i];
+    if (share == ODP_COUNTED)
+        return gas->lines[i];
+    return fabs(rest) > ROUND_OFF * fabs(gas->all[i]) ? rest : 0.0; /* lines give all of it */
 }
 
 /* ---- sums over gases and time ---- */
@@ -219,7 +223,7 @@ static int implied(const Ask *ask)
     const int last = ask->file->count - 1;
     for (int g = 0; g < ask->file->emissions.gases; g++) {
         const GasEmission *gas = &ask->file->emissions.gas[g];
-        if (fabs(mass(ask, g, last) - gas->lines[last]) > 1e-9 * fabs(gas->all[last]) &&
+        if (fabs(mass(ask, g, last) - gas->lines[last]) > ROUND_OFF * fabs(gas->all[last]) &&
             mass(ask, g, last) != 0.0)
             return 1;
     }
@@ -425,7 +429,7 @@ static int add_masses(Answers *answers, const FileSeries *file, Fault *fault)
         snprintf(answer->method, sizeof answer->method,
                  "sum over time of emission_%s, %.2f to %.2f; error: not known", gas->variable,
                  file->start[0], file->end[file->count - 1]);
-        if (fabs(sum - lines) > 1e-9 * fabs(sum))
+        if (fabs(sum - lines) > ROUND_OFF * fabs(sum))
             snprintf(answer->note, sizeof answer->note, "implied by its abundance%s",
                      lines != 0.0 ? ", but for what lines of the schedule give" : "");
     }

@@ -57,15 +57,17 @@ static void print_row(const Answers *answers, const char *label, const char *wha
 
 static void print_largest(const Answers *answers, const char *of, int sign, FILE *out)
 {
-    char label[60] = "largest calendar year", what[60];
+    char label[60], what[60];
     const FileAnswer *year[WEIGHTS];
     for (int w = 0; w < WEIGHTS; w++)
         year[w] = answers_find(answers, "odp_emission_%s%s_largest_year", odp_word(w), of);
+    const char *word = of[0] ? "  largest calendar year" : "largest calendar year";
+    snprintf(label, sizeof label, "%s", word);
     if (year[0] && year[1] && !isnan(year[0]->value) && !isnan(year[1]->value)) {
         if (floor(year[0]->value) == floor(year[1]->value))
-            snprintf(label, sizeof label, "largest calendar year, %.0f", floor(year[0]->value));
+            snprintf(label, sizeof label, "%s, %.0f", word, floor(year[0]->value));
         else
-            snprintf(label, sizeof label, "largest calendar year, %.0f and %.0f", floor(year[0]->value),
+            snprintf(label, sizeof label, "%s, %.0f and %.0f", word, floor(year[0]->value),
                      floor(year[1]->value));
     }
     snprintf(what, sizeof what, "%s_largest", of);
@@ -111,9 +113,10 @@ static void print_totals(const Answers *answers, const FileSeries *file, const F
         }
     }
     if (last && strchr(last->note, ';'))
-        wrapped(out, "emissions are those that keep prescribed abundances, unless lines of the schedule give "
-                     "them; where a schedule of abundances ends they stand still from the middle of its last "
-                     "year on, which is no plan: do not read its last year, nor its first");
+        wrapped(out,
+                "emissions are those that keep prescribed abundances, unless lines of the schedule give "
+                "them: the first year of a file still feels its settled start, and where a schedule of "
+                "abundances ends they stand still from the middle of its last year on, which is no plan");
     snprintf(text, sizeof text, "Skymend's own potentials: %s", answers->odp->weights->own_source);
     wrapped(out, text);
     wrapped(out, "+-: noise of the potentials; the numerical error of the emissions is not known");
