@@ -141,8 +141,8 @@ static FileAnswer *entry(const Ask *ask, const char *unit, const char *what, con
 static void say_method(const Ask *ask, FileAnswer *answer, const char *what)
 {
     static const char *const shares[] = {
-        "halocarbons that have a potential, but of gases that nature gives off too only what lines of the "
-        "schedule give",
+        ("halocarbons that have a potential, but of gases that nature gives off too only what lines of the "
+         "schedule give"),
         "what abundances imply of halocarbons that nature gives off too", "gases with nitrogen, no halogen"};
     snprintf(answer->method, sizeof answer->method,
              "%s of emission times potential, %.2f to %.2f; counted: %s%s; error: %s", what,

@@ -12,6 +12,7 @@
 static const char prefix[] = "emission_";
 static const char unit_wanted[] = "Gg year-1";
 
+/* why holds a "%s" for of. */
 static int leave_out(FileSeries *series, const char *why, const char *of)
 {
     series_free_emissions(&series->emissions);
@@ -65,9 +66,10 @@ static int identify(GasEmission *gas, int file, const char *name, char *formula,
     return 1;
 }
 
-enum { FORMULA = 40 };
+enum { FORMULA = 40, LEFT = 100 };
 
-/* Every gas into its place; formula [gases][FORMULA]. *left: the name of one that cannot be used, and why. */
+/* Every gas into its place; formula [gases][FORMULA]. left [LEFT]: the name of one that cannot be used, *why.
+ */
 static int read_gases(FileSeries *series, int file, int variables, char (*formula)[FORMULA], const char **why,
                       char *left, Fault *fault)
 {
@@ -79,7 +81,7 @@ static int read_gases(FileSeries *series, int file, int variables, char (*formul
         GasEmission *gas = &emissions->gas[g];
         if (check_unit(series, file, v, name, fault))
             return fault->code;
-        snprintf(left, NC_MAX_NAME + 1, "%s", name);
+        snprintf(left, LEFT, "%.*s", LEFT - 1, name);
         *why = NULL;
         if (!identify(gas, file, name + sizeof prefix - 1, formula[g], FORMULA))
             *why = "the file does not say of what gas %s is";
@@ -198,7 +200,7 @@ int series_read_emissions(FileSeries *series, int file, Fault *fault)
 {
     FileEmissions *emissions = &series->emissions;
     char(*formula)[FORMULA] = NULL;
-    char left[NC_MAX_NAME + 1] = "line_emission";
+    char left[LEFT] = "line_emission";
     const char *why = NULL;
     int variables = 0, dimension;
     size_t lines = 0;
