@@ -84,7 +84,8 @@ static int take_element(const char **at, char *symbol, int *count)
     for (*count = isdigit((unsigned char)*p) ? 0 : 1; isdigit((unsigned char)*p); p++)
         if ((*count = 10 * *count + (*p - '0')) > 999)
             return 0;
-    *at = p;
+    if (*count > 0)
+        *at = p;
     return *count > 0;
 }
 

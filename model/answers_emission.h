@@ -29,6 +29,12 @@ const char *odp_word(int weight);
 /* Gg a year of a gas in interval i that belong to a share; 0: none of it. */
 double odp_mass(const OdpWeights *weights, int weight, int share, const GasEmission *gas, int i);
 void odp_free(OdpTable *odp);
+/* In answers_emission_against.c: the file less the reference over the time both cover, as a file of its own
+ * whose emissions count whole (all of each gas stands as given by lines, so that nothing is apart). Intervals
+ * must match, as answers_against makes sure. Owner: caller, who frees difference->emissions.gas and *store,
+ * also on a fault; all else in it is the file's. */
+int odp_subtract(FileSeries *difference, const FileSeries *file, const FileSeries *reference, double **store,
+                 Fault *fault);
 
 /* In answers_emission_text.c: a table after the others, and an object "odp_emission" after the others. */
 void odp_print(const Answers *answers, const FileSeries *file, const FileSeries *reference, FILE *out);

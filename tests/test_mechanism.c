@@ -701,9 +701,28 @@ static void a_file_may_be_missing_or_empty(void **state)
     mechanism_free(mechanism);
 }
 
+/* Against sums of atomic weights by hand. */
+static void formulas_stand_alone(void **state)
+{
+    static const char *const none[] = {"freon", "C2h", "(CH3)2O", "C0", "C1000"};
+    (void)state;
+    assert_int_equal(formula_atoms("C2HCl2F3", "Cl"), 2);
+    assert_int_equal(formula_atoms("C2HCl2F3", "C"), 2);
+    assert_int_equal(formula_atoms("CH3CCl3", "C"), 2);
+    assert_int_equal(formula_atoms("CH3Br", "B"), 0);
+    assert_int_equal(formula_atoms("C12H26", "H"), 26);
+    assert_true(fabs(formula_mass("CCl3F") - (12.011 + 3 * 35.45 + 18.998)) < 1e-9);
+    assert_true(formula_mass("CXx4") == 0.0); /* no such element */
+    for (size_t n = 0; n < sizeof none / sizeof *none; n++) {
+        assert_int_equal(formula_atoms(none[n], "C"), -1);
+        assert_true(formula_mass(none[n]) == 0.0);
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
+        cmocka_unit_test(formulas_stand_alone),
         cmocka_unit_test(structure_is_as_written),
         cmocka_unit_test(reactants_and_changes_follow_the_notation),
         cmocka_unit_test(every_reaction_balances_by_another_count),
