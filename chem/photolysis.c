@@ -169,6 +169,16 @@ void photolysis_free(Photolysis *photolysis)
     free(photolysis);
 }
 
+/* The scratch of the threads, of which the two may have a different number, stands last in the block. */
+void photolysis_copy(Photolysis *to, const Photolysis *from)
+{
+    size_t used = (size_t)((const char *)from->work - (const char *)from->block);
+    memcpy(to->block, from->block, used);
+    memcpy(to->first, from->first, (size_t)from->reactions * sizeof *from->first);
+    memcpy(to->end, from->end, (size_t)from->reactions * sizeof *from->end);
+    to->above = from->above;
+}
+
 /* ---- what depends on air ---- */
 
 /* One spectrum at a temperature: linear in T of sigma or of log sigma, held beyond the table's ends. */

@@ -17,6 +17,9 @@ int photolysis_make(Photolysis **made, const Mechanism *mechanism, const Spectra
                     const double *depth, double air_above_top, const double *cosine, int suns, double albedo,
                     Fault *fault);
 void photolysis_free(Photolysis *photolysis);
+/* Everything of from, the air it was given and what it last computed included, into to: made of the same
+ * mechanism, spectra, layers and suns. */
+void photolysis_copy(Photolysis *to, const Photolysis *from);
 /* depth [padded]: air * depth is the layer's air, cm-2; the paths of light keep the edges of the making. */
 void photolysis_set_air(Photolysis *photolysis, const double *temperature, const double *air,
                         const double *depth, double air_above_top);

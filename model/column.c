@@ -522,6 +522,21 @@ void column_free(Column *column)
     free(column);
 }
 
+void column_copy(Column *to, const Column *from, const Model *model)
+{
+    size_t solved = (size_t)model->mechanism->solved * sizeof(double);
+    size_t field = solved * (size_t)model->grid.padded;
+    Column kept = *to;
+    *to = *from;
+    to->x = memcpy(kept.x, from->x, field);
+    to->balance = memcpy(kept.balance, from->balance, field);
+    to->received = memcpy(kept.received, from->received, solved);
+    to->emitted = memcpy(kept.emitted, from->emitted, solved);
+    to->exchanged = memcpy(kept.exchanged, from->exchanged, solved);
+    to->washed = memcpy(kept.washed, from->washed, solved);
+    to->escaped = memcpy(kept.escaped, from->escaped, MECHANISM_ELEMENTS * sizeof(double));
+}
+
 /* ---- sums ---- */
 
 void column_open_ledger(const Model *model, Column *column)

@@ -105,6 +105,8 @@ int model_check_start(const Model *model, Fault *fault);
 /* A column at the initial profiles with the surface values of the run's first year. */
 int column_make(Column **made, const Model *model, Fault *fault);
 void column_free(Column *column);
+/* State, time, ledger and counts of from into to, both of this model. */
+void column_copy(Column *to, const Column *from, const Model *model);
 
 /* Empty the ledger and the counters: what happens from now on is accounted for. */
 void column_open_ledger(const Model *model, Column *column);

@@ -65,6 +65,21 @@ void conditions_free(Conditions *conditions)
     free(conditions);
 }
 
+void conditions_copy(Conditions *to, const Conditions *from, const Model *model)
+{
+    size_t bytes = (size_t)model->grid.padded * sizeof(double);
+    memcpy(to->temperature, from->temperature, bytes);
+    memcpy(to->air, from->air, bytes);
+    memcpy(to->depth, from->depth, bytes);
+    memcpy(to->aerosol_area, from->aerosol_area, bytes);
+    memcpy(to->aerosol_radius, from->aerosol_radius, bytes);
+    memcpy(to->held_fraction, from->held_fraction, MODEL_HELD_MOST * bytes);
+    memcpy(to->solar, from->solar, (size_t)model->spectra->bins * sizeof(double));
+    memcpy(to->kept, from->kept, (size_t)model->mechanism->solved);
+    to->phase = from->phase;
+    to->day_of_year = from->day_of_year;
+}
+
 /* ---- temperature ---- */
 
 /* Temperature of now, [padded]; 0 when it does not vary. */

@@ -46,6 +46,8 @@ struct Conditions {
  */
 int conditions_make(Conditions **made, const Model *model, Fault *fault);
 void conditions_free(Conditions *conditions); /* accepts NULL */
+/* Of the same model. */
+void conditions_copy(Conditions *to, const Conditions *from, const Model *model);
 
 /* Move to decimal year time (schedule, trends) and season (a decimal year of which only the fraction counts:
  * the time of year, which goes on when the years stand still in a spin-up). Returns which parts changed,

@@ -64,6 +64,11 @@ void day_free(Day *day)
 
 int day_stale(const Day *day, const double *x)
 {
+    return day_stale_by(day, x, 1.0);
+}
+
+int day_stale_by(const Day *day, const double *x, double times)
+{
     if (!day->ready || day->outdated)
         return 1;
     const Model *model = day->model;
@@ -74,7 +79,7 @@ int day_stale(const Day *day, const double *x)
             if (fabs(day->ratio[at] - 1.0) < FLAT || !(x[at] > ENOUGH || day->reference[at] > ENOUGH))
                 continue;
             if (fabs(x[at] - day->reference[at]) >
-                model->settings.refresh_state * fmax(day->reference[at], ENOUGH))
+                times * model->settings.refresh_state * fmax(day->reference[at], ENOUGH))
                 return 1;
         }
     return 0;
@@ -83,6 +88,21 @@ int day_stale(const Day *day, const double *x)
 static size_t fields(const Day *day, int rows)
 {
     return (size_t)rows * (size_t)day->model->grid.padded;
+}
+
+void day_copy(Day *to, const Day *from)
+{
+    size_t field = fields(from, from->model->mechanism->solved) * sizeof(double);
+    size_t rates = fields(from, from->model->mechanism->reactions) * sizeof(double);
+    memcpy(to->factor, from->factor, rates);
+    memcpy(to->ratio, from->ratio, field);
+    memcpy(to->lit, from->lit, field);
+    memcpy(to->reference, from->reference, field);
+    memcpy(to->sum_y, from->sum_y, field);
+    memcpy(to->sum_lit, from->sum_lit, field);
+    memcpy(to->sum_w, from->sum_w, rates);
+    to->outdated = from->outdated;
+    to->ready = from->ready;
 }
 
 void day_midnight(const Day *day, const double *x, double *start)

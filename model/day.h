@@ -44,10 +44,14 @@ typedef struct {
 
 int day_make(Day **made, const Model *model, Fault *fault);
 void day_free(Day *day);
+/* Factors and the last day of from into to, of the same case; to keeps its own conditions. */
+void day_copy(Day *to, const Day *from);
 
 /* 1 when some species with a diurnal course has moved by more than refresh_state since the factors were made.
  */
 int day_stale(const Day *day, const double *x);
+/* The same with `times` refresh_state in place of refresh_state. */
+int day_stale_by(const Day *day, const double *x, double times);
 /* Mole fractions at midnight for the daily means x: start [solved][padded] out. */
 void day_midnight(const Day *day, const double *x, double *start);
 void day_clear(Day *day);

@@ -116,21 +116,31 @@ static int set_line(Emissions *emissions, const Model *model, int i, Fault *faul
                                                                                               : 0;
 }
 
+static Emissions *allocate(int lines, const Model *model, Fault *fault)
+{
+    size_t count = (size_t)lines;
+    Emissions *emissions = calloc(1, sizeof *emissions);
+    if (emissions) {
+        emissions->lines = lines;
+        emissions->species = calloc(count + 1, sizeof(int));
+        emissions->given_species = calloc(count + 1, sizeof(int));
+        emissions->molecules = calloc(count + 1, sizeof(double));
+        emissions->share = calloc(count * (size_t)model->grid.padded + 1, sizeof(double));
+        if (emissions->species && emissions->given_species && emissions->molecules && emissions->share)
+            return emissions;
+    }
+    emissions_free(emissions);
+    fault_memory(fault, "emissions");
+    return NULL;
+}
+
 int emissions_make(Emissions **made, const Model *model, Fault *fault)
 {
     *made = NULL;
-    size_t lines = (size_t)model->schedule.lines;
-    Emissions *emissions = calloc(1, sizeof *emissions);
+    Emissions *emissions = allocate(model->schedule.lines, model, fault);
     if (!emissions)
-        return fault_memory(fault, "emissions");
-    emissions->lines = model->schedule.lines;
-    emissions->species = calloc(lines + 1, sizeof(int));
-    emissions->given_species = calloc(lines + 1, sizeof(int));
-    emissions->molecules = calloc(lines + 1, sizeof(double));
-    emissions->share = calloc(lines * (size_t)model->grid.padded + 1, sizeof(double));
+        return fault->code;
     int code = 0;
-    if (!emissions->species || !emissions->given_species || !emissions->molecules || !emissions->share)
-        code = fault_memory(fault, "emissions");
     for (int i = 0; !code && i < emissions->lines; i++)
         code = set_line(emissions, model, i, fault);
     if (code) {
@@ -150,6 +160,22 @@ void emissions_free(Emissions *emissions)
     free(emissions->molecules);
     free(emissions->share);
     free(emissions);
+}
+
+int emissions_copy(Emissions **made, const Emissions *from, const Model *model, Fault *fault)
+{
+    *made = NULL;
+    size_t lines = (size_t)from->lines;
+    Emissions *copy = allocate(from->lines, model, fault);
+    if (!copy)
+        return fault->code;
+    copy->given = from->given;
+    memcpy(copy->species, from->species, lines * sizeof(int));
+    memcpy(copy->given_species, from->given_species, lines * sizeof(int));
+    memcpy(copy->molecules, from->molecules, lines * sizeof(double));
+    memcpy(copy->share, from->share, lines * (size_t)model->grid.padded * sizeof(double));
+    *made = copy;
+    return 0;
 }
 
 /* ---- use ---- */

@@ -29,6 +29,9 @@ typedef struct Emissions {
  * top, or an emission of a held species that lies in the held layers altogether. Owner: caller. */
 int emissions_make(Emissions **made, const Model *model, Fault *fault);
 void emissions_free(Emissions *emissions); /* accepts NULL */
+/* A copy to alter: with molecules of a line times 1 - share that share of the line is not given off. Owner:
+ * caller. */
+int emissions_copy(Emissions **made, const Emissions *from, const Model *model, Fault *fault);
 
 /* At decimal year time, molecules cm-2 s-1: flux [solved] all that lines give; ground [solved] of it, at the
  * ground; layer [solved][padded] by layer, both kinds. NULL: not wanted. */

@@ -69,6 +69,22 @@ void light_free(Light *light)
     free(light);
 }
 
+void light_copy(Light *to, const Light *from)
+{
+    size_t padded = (size_t)from->model->grid.padded, field = (size_t)from->reactions * padded;
+    to->sun = from->sun;
+    if (from->photolysis)
+        photolysis_copy(to->photolysis, from->photolysis);
+    memcpy(to->table, from->table, (size_t)from->sun.nodes * field * sizeof(double));
+    memcpy(to->knot, from->knot, SUN_KNOTS * field * sizeof(double));
+    memcpy(to->mean, from->mean, field * sizeof(double));
+    memcpy(to->kelvin, from->kelvin, padded * sizeof(double));
+    memcpy(to->air, from->air, padded * sizeof(double));
+    memcpy(to->overhead, from->overhead, padded * sizeof(double));
+    to->ready = from->ready;
+    to->turned = from->turned;
+}
+
 static double temperature_moved(const Light *light)
 {
     double most = 0.0;
@@ -136,22 +152,27 @@ static void overhead_column(const Model *model, const double *x, const double *l
     }
 }
 
-static int overhead_moved(const Light *light, const double *x, const double *lit)
+static int overhead_moved(const Light *light, const double *x, const double *lit, double times)
 {
     const Model *model = light->model;
     double now[PACK_ROUND(SETTINGS_MAX_EDGES)];
     overhead_column(model, x, lit, now);
     for (int l = 0; l < model->grid.layers; l++) {
         double scale = fmax(light->overhead[l], UNIT_DEPTH);
-        if (fabs(now[l] - light->overhead[l]) > model->settings.refresh_column * scale)
+        if (fabs(now[l] - light->overhead[l]) > times * model->settings.refresh_column * scale)
             return 1;
     }
     return 0;
 }
 
+int light_stale_by(const Light *light, const double *x, const double *lit, double times)
+{
+    return !light->ready || light->turned || overhead_moved(light, x, lit, times);
+}
+
 int light_stale(const Light *light, const double *x, const double *lit)
 {
-    return !light->ready || light->turned || overhead_moved(light, x, lit);
+    return light_stale_by(light, x, lit, 1.0);
 }
 
 /* A negative mole fraction within the tolerance absorbs nothing. */
@@ -246,7 +267,7 @@ static void spread(Light *light, int first, int end)
 void light_refresh(Light *light, const double *x, const double *lit)
 {
     const Sun *sun = &light->sun;
-    int only_turned = light->ready && light->turned && !overhead_moved(light, x, lit);
+    int only_turned = light->ready && light->turned && !overhead_moved(light, x, lit, 1.0);
     if (!only_turned && sun->nodes)
         fill_table(light, x, lit, table_sun(light));
     else if (!only_turned)

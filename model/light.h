@@ -28,6 +28,9 @@ typedef struct {
 /* Owner: caller. refine as in sun_make. */
 int light_make(Light **made, const Model *model, int refine, Fault *fault);
 void light_free(Light *light);
+/* The rates of from and all they stand for into to, of the same case and refinement; to keeps its own
+ * conditions, which must be equal. */
+void light_copy(Light *to, const Light *from);
 
 /* Take conditions (kept by reference) in place of what light went by; moved says which parts changed since
  * then, ConditionsPart added up. Rates count as stale afterwards where they depend on them; of temperature,
@@ -43,6 +46,8 @@ int light_follow(Light *light, const Conditions *conditions, int moved);
  * refresh, relative to itself or, where it is thinner, to a column of optical depth 1 at the ozone maximum of
  * absorption. light_refresh: compute the rates. */
 int light_stale(const Light *light, const double *x, const double *lit);
+/* The same with `times` refresh_column in place of refresh_column. */
+int light_stale_by(const Light *light, const double *x, const double *lit, double times);
 void light_refresh(Light *light, const double *x, const double *lit);
 /* After light_refresh at the same state: how mean answers to O3, NO2 and NO, to first order, at the
  * interpolation's present pieces (sun_gradient); by finite differences it would take as many lights as there

@@ -37,6 +37,11 @@ void moments_free(Moments *moments)
     free(moments);
 }
 
+void moments_copy(Moments *to, const Moments *from)
+{
+    memcpy(to->state, from->state, MOMENTS * field(from->model) * sizeof(double));
+}
+
 int moments_hours(const Settings *settings, double *hours, Fault *fault)
 {
     const double hour = DAY_SECONDS / 24.0, noon = 0.5 * DAY_SECONDS;

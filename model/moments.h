@@ -24,6 +24,7 @@ typedef struct {
 /* Owner: caller. */
 int moments_make(Moments **made, const Model *model, Fault *fault);
 void moments_free(Moments *moments);
+void moments_copy(Moments *to, const Moments *from); /* of the same model */
 
 /* Local solar time of each moment, h after midnight, ascending: hours [MOMENTS] out. FAULT_INPUT when it
  * is light or dark for 24 h (twilight is light). */

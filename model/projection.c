@@ -214,30 +214,72 @@ static int begin(const Model *model, Stepper *stepper, Column *column, double sp
     return code;
 }
 
-int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher, Fault *fault)
+/* Part of the progress that is the start. */
+static double start_share(const Settings *settings)
 {
-    const Settings *settings = &model->settings;
-    Means means = {0};
-    if (means_make(&means, model, fault))
-        return fault->code;
-    int years = settings->last_year - settings->first_year + 1, per_year = settings->outputs_per_year;
     double spinup = settings->start == START_SPINUP ? settings->spinup_years : 0.0;
-    double spin_share = spinup / (spinup + years);
+    return spinup / (spinup + settings->last_year - settings->first_year + 1);
+}
+
+int projection_begin(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher,
+                     Fault *fault)
+{
     int code = model_check_start(model, fault);
     if (!code) {
         column->time = nextafter(column->time, 0.0); /* emissions of the first year have not begun */
-        code = begin(model, stepper, column, spin_share, watcher, fault);
-        column->time = settings->first_year;
+        code = begin(model, stepper, column, start_share(&model->settings), watcher, fault);
+        column->time = model->settings.first_year;
     }
     column_open_ledger(model, column);
-    long intervals = (long)years * per_year;
-    for (long i = 0; !code && i < intervals; i++) {
-        double start = settings->first_year + (double)i / per_year,
-               end = settings->first_year + (double)(i + 1) / per_year;
-        double before = spin_share + (1.0 - spin_share) * (double)i / (double)intervals;
-        double after = spin_share + (1.0 - spin_share) * (double)(i + 1) / (double)intervals;
-        code = run_interval(model, stepper, column, start, end, before, after, &means, watcher, fault);
+    return code;
+}
+
+/* Decimal year at which output interval i begins. */
+static double border(const Settings *settings, long i)
+{
+    return settings->first_year + (double)i / settings->outputs_per_year;
+}
+
+/* share_from: of the progress that is done before. */
+static int run_intervals(const Model *model, Stepper *stepper, Column *column, long first, long end,
+                         double share_from, const Watcher *watcher, Fault *fault)
+{
+    Means means = {0};
+    if (means_make(&means, model, fault))
+        return fault->code;
+    int code = 0;
+    double each = (1.0 - share_from) / (double)(end - first);
+    for (long i = first; !code && i < end; i++) {
+        double before = share_from + each * (double)(i - first), after = before + each;
+        code = run_interval(model, stepper, column, border(&model->settings, i),
+                            border(&model->settings, i + 1), before, after, &means, watcher, fault);
     }
     free(means.block);
     return code;
+}
+
+int projection_continue(const Model *model, Stepper *stepper, Column *column, long first, long end,
+                        const Watcher *watcher, Fault *fault)
+{
+    return run_intervals(model, stepper, column, first, end, 0.0, watcher, fault);
+}
+
+long projection_steps(const Model *model, long first, long end)
+{
+    long steps = 0;
+    double length;
+    for (long i = first; i < end; i++) {
+        double start = border(&model->settings, i);
+        steps += plan_steps(model, start, border(&model->settings, i + 1) - start, &length);
+    }
+    return steps;
+}
+
+int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher, Fault *fault)
+{
+    const Settings *settings = &model->settings;
+    long intervals = (long)(settings->last_year - settings->first_year + 1) * settings->outputs_per_year;
+    int code = projection_begin(model, stepper, column, watcher, fault);
+    return code ? code
+                : run_intervals(model, stepper, column, 0, intervals, start_share(settings), watcher, fault);
 }

@@ -27,6 +27,15 @@ typedef struct {
  * of the case, both included. The ledger of column is opened after the start. */
 int projection_run(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher,
                    Fault *fault);
+/* The same in parts, so that a run can be left and taken up again (column_copy, stepper_copy): the start, the
+ * clock then at the first year and the ledger open; output intervals from first to end - 1 of the run, which
+ * has years times outputs_per_year, column standing at the start of the first; the outer steps these take.
+ * share of the progress: of these intervals. projection_run is the start and all intervals. */
+int projection_begin(const Model *model, Stepper *stepper, Column *column, const Watcher *watcher,
+                     Fault *fault);
+int projection_continue(const Model *model, Stepper *stepper, Column *column, long first, long end,
+                        const Watcher *watcher, Fault *fault);
+long projection_steps(const Model *model, long first, long end);
 /* Only the settled start: column at rest under the values of its time (steady.h), stepper with the light and
  * factors of that state. */
 int projection_settle(const Model *model, Stepper *stepper, Column *column, Fault *fault);

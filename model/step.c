@@ -233,6 +233,7 @@ int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, F
     column->time += years;
     column->outer_steps++;
     stepper->since_factors += step;
+    stepper->logged++;
     return 0;
 }
 
@@ -266,7 +267,7 @@ int stepper_refresh(Stepper *stepper, Column *column, int with_day, Fault *fault
     renew_light(stepper, column);
     if (!with_day || stepper->model->settings.day == DAY_MEAN)
         return 0;
-    int code = stepper_repeat_day(stepper, column, DAY_SETTLED, fault);
+    int code = stepper_repeat_day(stepper, column, DAY_SETTLED, 0, fault);
     if (!code)
         renew_light(stepper, column); /* by the new shares of daylight */
     return code;

@@ -30,6 +30,32 @@ typedef struct Stepper Stepper;
 int stepper_make(Stepper **made, const Model *model, int threads, Fault *fault);
 void stepper_free(Stepper *stepper);
 
+/* Make to, whose next steps are then those of from to the last bit, whatever the two did before. Both of one
+ * case; their models may differ in what the lines give off (Model.emissions), their threads in number. Which
+ * log to keep or follow is not copied, how far it has come is. */
+void stepper_copy(Stepper *to, const Stepper *from);
+
+/* When light and diurnal factors were made afresh in a run, step by step, so that another run can do so at
+ * the same moments. Whether a refresh is due depends on the state by thresholds, and each moves the column by
+ * some 0.01 DU: in two runs that refresh at their own moments a difference of 0.01 DU drowns. */
+typedef struct {
+    long room;            /* steps it can hold */
+    unsigned char *light; /* [room] 1: photolysis rates */
+    unsigned char *days;  /* [room] days carried for the factors; 0: none made */
+} RefreshLog;
+
+int refresh_log_make(RefreshLog *log, long room, Fault *fault);
+void refresh_log_free(RefreshLog *log);
+/* From the next step on, which is the log's first, note the moments in log; NULL: no more. The steps must fit
+ * in. */
+void stepper_keep_log(Stepper *stepper, RefreshLog *log);
+/* From the next step on, which is as many steps into the log as the stepper (or the one it was copied from)
+ * has kept or followed it, refresh when the log says so, and besides when the state has moved by
+ * REFRESH_OWN_ACCORD times the case's thresholds: so that a run far away from that of the log is right as
+ * well. NULL: by the thresholds alone. */
+#define REFRESH_OWN_ACCORD 1.5
+void stepper_follow_log(Stepper *stepper, const RefreshLog *log);
+
 /* Advance column by step s (DAY_EXPLICIT: step must be one day). frozen = 1 keeps the schedule at
  * column->time and the clock where it is (spin-up). On a fault the column holds a partly advanced state. */
 int stepper_advance(Stepper *stepper, Column *column, double step, int frozen, Fault *fault);

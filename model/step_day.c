@@ -92,7 +92,7 @@ int stepper_carry_day(Stepper *stepper, Column *column, double years, Fault *fau
 }
 
 /* Repeat the day of the column's state until it gives the same factors. */
-int stepper_repeat_day(Stepper *stepper, Column *column, double enough, Fault *fault)
+int stepper_repeat_day(Stepper *stepper, Column *column, double enough, int exactly, Fault *fault)
 {
     const Model *model = stepper->model;
     Day *day = stepper->day;
@@ -101,7 +101,7 @@ int stepper_repeat_day(Stepper *stepper, Column *column, double enough, Fault *f
     memcpy(sample->x, column->x,
            (size_t)model->mechanism->solved * (size_t)model->grid.padded * sizeof(double));
     sample->time = column->time;
-    while (cold ? days < DAY_COLD : !settled && days < DAY_MOST) {
+    while (exactly > 0 ? days < exactly : cold ? days < DAY_COLD : !settled && days < DAY_MOST) {
         if (!cold)
             day_midnight(day, column->x, sample->x);
         int code = stepper_carry_day(stepper, sample, 0.0, fault);
@@ -119,11 +119,24 @@ int stepper_repeat_day(Stepper *stepper, Column *column, double enough, Fault *f
     return 0;
 }
 
+/* Whether factors are to be made afresh by what the case says. */
+static int day_due(const Stepper *stepper, const Column *column)
+{
+    double times = stepper->followed_log ? REFRESH_OWN_ACCORD : 1.0;
+    return stepper->since_factors >= times * stepper->model->settings.refresh_years * YEAR_SECONDS ||
+           day_stale_by(stepper->day, column->x, times);
+}
+
 int stepper_follow_day(Stepper *stepper, Column *column, Fault *fault)
 {
-    const Settings *settings = &stepper->model->settings;
-    if (settings->day != DAY_FACTORS || (stepper->since_factors < settings->refresh_years * YEAR_SECONDS &&
-                                         !day_stale(stepper->day, column->x)))
+    if (stepper->model->settings.day != DAY_FACTORS)
         return 0;
-    return stepper_repeat_day(stepper, column, DAY_FOLLOWED, fault);
+    int days = stepper->followed_log ? stepper->followed_log->days[stepper->logged] : 0;
+    if (!days && !day_due(stepper, column))
+        return 0;
+    long before = column->days;
+    int code = stepper_repeat_day(stepper, column, DAY_FOLLOWED, days, fault);
+    if (stepper->kept_log)
+        stepper->kept_log->days[stepper->logged] = (unsigned char)(column->days - before);
+    return code;
 }

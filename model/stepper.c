@@ -165,6 +165,61 @@ void stepper_free(Stepper *stepper)
     free(stepper);
 }
 
+/* ---- copies ---- */
+
+/* Left out: what each step makes for itself (work of the packs, emissions of now, factors of the transport)
+ * and what does not change in a case. */
+void stepper_copy(Stepper *to, const Stepper *from)
+{
+    const Model *model = from->model;
+    size_t padded = (size_t)model->grid.padded, packs = (size_t)from->packs;
+    size_t field = (size_t)model->mechanism->solved * padded * sizeof(double);
+    conditions_copy(to->conditions, from->conditions, model);
+    mixing_follow(to->mixing, to->conditions);
+    light_copy(to->light, from->light);
+    day_copy(to->day, from->day);
+    moments_copy(to->moments, from->moments);
+    to->spun = from->spun;
+    to->since_factors = from->since_factors;
+    to->daylight_known = from->daylight_known;
+    to->logged = from->logged;
+    memcpy(to->order, from->order, (2 + PACK_DAY_PARTS) * packs * sizeof(int));
+    memcpy(to->half_step, from->half_step, 2 * packs * sizeof(double));
+    memcpy(to->part_step, from->part_step, PACK_DAY_PARTS * packs * sizeof(double));
+    memcpy(to->coefficient, from->coefficient, (size_t)model->mechanism->reactions * padded * sizeof(double));
+    memcpy(to->mean, from->mean, field);
+    memcpy(to->daylight, from->daylight, field);
+}
+
+int refresh_log_make(RefreshLog *log, long room, Fault *fault)
+{
+    *log = (RefreshLog){.room = room};
+    log->light = calloc((size_t)room + 1, 1);
+    log->days = calloc((size_t)room + 1, 1);
+    if (log->light && log->days)
+        return 0;
+    refresh_log_free(log);
+    return fault_memory(fault, "moments of refreshing");
+}
+
+void refresh_log_free(RefreshLog *log)
+{
+    free(log->light);
+    free(log->days);
+    *log = (RefreshLog){0};
+}
+
+void stepper_keep_log(Stepper *stepper, RefreshLog *log)
+{
+    stepper->kept_log = log;
+    stepper->logged = 0;
+}
+
+void stepper_follow_log(Stepper *stepper, const RefreshLog *log)
+{
+    stepper->followed_log = log;
+}
+
 /* ---- coefficients and light ---- */
 
 /* Mean photolysis rates go among the coefficients. */
@@ -287,8 +342,12 @@ void stepper_follow_light(Stepper *stepper, Column *column)
         x = stepper->daylight_known ? stepper->daylight : column->x;
         lit = NULL;
     }
-    if (!light_stale(stepper->light, x, lit))
+    const RefreshLog *followed = stepper->followed_log;
+    if (!light_stale_by(stepper->light, x, lit, followed ? REFRESH_OWN_ACCORD : 1.0) &&
+        !(followed && followed->light[stepper->logged]))
         return;
+    if (stepper->kept_log)
+        stepper->kept_log->light[stepper->logged] = 1;
     light_refresh(stepper->light, x, lit);
     column->photolysis_refreshes++;
     take_light(stepper);

@@ -46,6 +46,9 @@ struct Stepper {
     unsigned char *reacts;   /* [solved] 1: in a run of means emissions of it come with the chemistry */
     double *sink;            /* [solved][padded] work */
     double since_factors;    /* s of the run since the diurnal factors were made */
+    RefreshLog *kept_log;    /* NULL, or where to note what each step makes afresh */
+    const RefreshLog *followed_log; /* NULL, or whose moments to follow */
+    long logged;                    /* steps since the log began */
     StepClock clock;
 };
 
@@ -83,8 +86,9 @@ int stepper_settle_packs(Stepper *stepper, Column *column, Fault *fault);
 /* From midnight to midnight. Leaves the time integrals in stepper->day. years: what the schedule's clock
  * moves by. */
 int stepper_carry_day(Stepper *stepper, Column *column, double years, Fault *fault);
-/* Repeat the day of the column's state until no factor that matters changes by more than enough of itself. */
-int stepper_repeat_day(Stepper *stepper, Column *column, double enough, Fault *fault);
+/* Repeat the day of the column's state until no factor that matters changes by more than enough of itself, or
+ * where exactly is above 0, that many times. */
+int stepper_repeat_day(Stepper *stepper, Column *column, double enough, int exactly, Fault *fault);
 /* Factors made afresh where they are stale. */
 int stepper_follow_day(Stepper *stepper, Column *column, Fault *fault);
 
