@@ -18,6 +18,7 @@ int command_answers(int argc, char **argv);
 int command_budget(int argc, char **argv);
 int command_potency(int argc, char **argv);
 int command_schedule(int argc, char **argv);
+int command_apportion(int argc, char **argv);
 
 /* ---- command_ultraviolet.c: the part of sunlight that asks for the ultraviolet at the ground ---- */
 

@@ -22,6 +22,7 @@ static const struct {
     {"budget", command_budget, "what makes and destroys ozone, by catalytic family; how long gases live"},
     {"potency", command_potency, "ozone depletion potentials and lifetimes of the gases of a case"},
     {"schedule", command_schedule, "turn abundances into emissions, or emissions into abundances"},
+    {"apportion", command_apportion, "ozone lost and months of delay by line of the schedule"},
     {"answers", command_answers, "print the table of answers of a finished or interrupted file"},
 };
 enum { VERBS = sizeof verbs / sizeof verbs[0] };
