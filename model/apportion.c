@@ -142,9 +142,14 @@ static int show_effect(const Apportionment *to, Effect *effect, Fault *fault)
     return 0;
 }
 
+int apportion_return(Apportionment *to, Fault *fault)
+{
+    return find_return(to, to->column, &to->return_year, &to->benchmark, &to->returns, fault);
+}
+
 static int show_effects(Apportionment *to, Fault *fault)
 {
-    int code = find_return(to, to->column, &to->return_year, &to->benchmark, &to->returns, fault);
+    int code = apportion_return(to, fault);
     for (int i = 0; !code && i < to->items; i++) {
         code = show_effect(to, &to->item[i].effect, fault);
         to->sum += to->item[i].effect.lost;
@@ -190,8 +195,7 @@ static void take_errors(Apportionment *to, const Apportionment *coarse)
 
 /* ---- all together ---- */
 
-static int make_once(Apportionment **made, const Model *model, const ApportionAsk *ask, ApportionPace *pace,
-                     Fault *fault)
+int apportion_list(Apportionment **made, const Model *model, const ApportionAsk *ask, Fault *fault)
 {
     *made = NULL;
     Apportionment *to = calloc(1, sizeof *to);
@@ -202,17 +206,21 @@ static int make_once(Apportionment **made, const Model *model, const ApportionAs
     to->by = ask->by;
     to->share = ask->share;
     to->benchmark_year = ask->benchmark_year;
-    int code = list_items(to, model, fault);
-    if (!code)
-        code = apportion_runs(to, model, ask->threads, pace, fault);
-    if (!code)
-        code = show_effects(to, fault);
-    if (code) {
+    if (list_items(to, model, fault)) {
         apportion_free(to);
-        return code;
+        return fault->code;
     }
     *made = to;
     return 0;
+}
+
+static int make_once(Apportionment **made, const Model *model, const ApportionAsk *ask, ApportionPace *pace,
+                     Fault *fault)
+{
+    int code = apportion_list(made, model, ask, fault);
+    if (!code)
+        code = apportion_runs(*made, model, ask->threads, pace, fault);
+    return code ? code : show_effects(*made, fault);
 }
 
 int apportion_make(Apportionment **made, const Model *model, const ApportionAsk *ask, const Watcher *watcher,

@@ -17,6 +17,17 @@
  * afresh at the moments of the whole (RefreshLog), or the differences would drown in those of the moments.
  * Runs are spread over the threads, a run a thread; the result does not depend on their number.
  *
+ * The quick way, without those runs: the whole is carried once, columns are settled at the abundances it has
+ * in APPORTION_YEARS of its years, and potency.h gives what a molecule of each gas takes from the ozone
+ * there, summed over all time to come. A line then costs
+ *
+ *     all time = sum over years of emission times the mean over t of D(year + t) k(t)
+ *
+ * with D interpolated linearly between those years (constant outside) and k the share of the effect that
+ * falls into each later year: that of two compartments in a row, the gas (its lifetime in the column) and
+ * what it leaves (atoms of Cly or Bry above the tropopause over their release there; none for gases without
+ * chlorine and bromine). What of it falls within the years of the run stands beside the runs' `lost`.
+ *
  * The numerical error of each figure is how far it moves when everything is done twice as coarsely
  * (apportion_coarser). It does not count that of the layers.
  */
@@ -24,6 +35,8 @@
 #define SKYMEND_APPORTION_H
 
 #include "projection.h"
+
+#define APPORTION_YEARS 3
 
 enum ApportionBy { APPORTION_LINE, APPORTION_GAS, APPORTION_BOTH };
 
@@ -62,6 +75,9 @@ typedef struct {
     double *kg;        /* [lines] of the gas itself, in the years of the run */
     Effect effect;
     EffectError error;
+    /* the quick way: DU-years for all time and within the run; NAN where a gas is given off aloft or has no
+     * derivative. error: of all_time, noise of the derivatives plus what fewer years of them would change */
+    double all_time, within, all_time_error;
 } ApportionItem;
 
 typedef struct {
@@ -78,7 +94,9 @@ typedef struct {
     double sum, sum_error;             /* of lost over the items, DU-years; sum of their errors */
     double remainder, remainder_error; /* all.lost - sum; how far it moved */
     double return_error;
-    int has_errors;
+    int has_errors, quick;
+    int background[APPORTION_YEARS];                     /* years the derivatives are of */
+    double sum_all_time, sum_within, sum_all_time_error; /* over the items that have them */
     int not_apportioned, *abundance_gas;  /* gases of the schedule that lines of the run do not drive */
     long steps_shared, steps_alone, runs; /* outer steps carried once, and if every run had been carried
                                              whole; the runs (coarse ones not counted) */
@@ -96,6 +114,10 @@ typedef struct {
  * Owner: caller; model must outlive it. */
 int apportion_make(Apportionment **made, const Model *model, const ApportionAsk *ask, const Watcher *watcher,
                    Fault *fault);
+/* The quick way: items with all_time and within, column of the whole; no runs without items, no errors of
+ * runs (ask->errors, ask->share are not looked at). FAULT_INPUT for a sun with seasons besides. */
+int apportion_quick(Apportionment **made, const Model *model, const ApportionAsk *ask, const Watcher *watcher,
+                    Fault *fault);
 void apportion_free(Apportionment *apportionment);
 
 /* Settings of the coarse runs: outer steps and all that makes light and factors afresh twice as rarely, the

@@ -96,6 +96,54 @@ static void print_whole(const Apportionment *from, FILE *out)
         fprintf(out, "back in %.2f (between yearly means)\n", from->return_year);
 }
 
+static void print_abundances(const ApportionView *view, FILE *out)
+{
+    const Apportionment *from = view->apportionment;
+    if (!from->not_apportioned)
+        return;
+    fprintf(out, "  Driven by their abundance, so not taken apart:");
+    for (int g = 0; g < from->not_apportioned; g++)
+        fprintf(out, "%s %s", g ? "," : "", view->model->schedule.gas[from->abundance_gas[g]]);
+    fprintf(out, "\n");
+}
+
+static void print_quick_row(const char *name, double all_time, double error, double within, FILE *out)
+{
+    fprintf(out, "  %-*.*s", NAME_WIDTH, NAME_WIDTH, name);
+    put(out, 11, "%*.3f", all_time);
+    put(out, 9, "%*.2g", error);
+    put(out, 11, "%*.3f", within);
+    put(out, 8, "%*.1f", all_time != 0.0 ? 100.0 * (all_time - within) / all_time : NAN);
+    fprintf(out, "\n");
+}
+
+static void print_quick(const ApportionView *view, FILE *out)
+{
+    const Apportionment *from = view->apportionment;
+    int last = from->first_year + from->years - 1;
+    fprintf(out, "\n  %-*s%11s%9s%11s%8s\n", NAME_WIDTH, "", "all time", "+-", "within", "after");
+    fprintf(out, "  %-*s%11s%9s%11s%8s\n", NAME_WIDTH, apportion_by_name(from->by), "DU-years", "",
+            "DU-years", "%");
+    for (int i = 0; i < from->items; i++) {
+        char name[128];
+        const ApportionItem *item = &from->item[i];
+        apportion_item_name(view->model, item, name, sizeof name);
+        print_quick_row(name, item->all_time, item->all_time_error, item->within, out);
+    }
+    fprintf(out, "\n");
+    print_quick_row("sum", from->sum_all_time, from->sum_all_time_error, from->sum_within, out);
+    fprintf(
+        out,
+        "\n  By the derivative of the column settled at the abundances of %d, %d and %d. all time: of what "
+        "is "
+        "given\n  off from %d to %d, for good; within: what falls by the end of %d, gas by its lifetime in "
+        "the "
+        "column and\n  what it leaves by its stay aloft, an estimate; after: the rest. A derivative adds up "
+        "where runs without\n  lines do not. +-: noise of the derivatives and what the middle year changes\n",
+        from->background[0], from->background[1], from->background[2], from->first_year, last, last);
+    print_abundances(view, out);
+}
+
 static void print_notes(const ApportionView *view, FILE *out)
 {
     const Apportionment *from = view->apportionment;
@@ -121,16 +169,11 @@ static void print_notes(const ApportionView *view, FILE *out)
         fprintf(out,
                 "  +-: how far the figure moves with steps and refreshes twice as long and tolerances twice "
                 "as wide; layers not\n  counted\n");
-    if (from->not_apportioned) {
-        fprintf(out, "  Driven by their abundance, so not taken apart:");
-        for (int g = 0; g < from->not_apportioned; g++)
-            fprintf(out, "%s %s", g ? "," : "", view->model->schedule.gas[from->abundance_gas[g]]);
-        fprintf(out, "\n");
-    }
+    print_abundances(view, out);
     fprintf(
         out,
-        "  What was in the air before the lines begin is in every run. %ld runs, %ld outer steps in place "
-        "of %ld.\n",
+        "  What was in the air before the lines begin is in every run. %ld runs, %ld outer steps in place of "
+        "%ld.\n",
         from->runs, from->steps_shared, from->steps_alone);
 }
 
@@ -140,6 +183,10 @@ void apportion_print(const ApportionView *view, FILE *out)
     fprintf(out, "%s\n\nozone lost by %s of the schedule, %d to %d\n", view->model->settings.title,
             apportion_by_name(from->by), from->first_year, from->first_year + from->years - 1);
     print_whole(from, out);
+    if (from->quick) {
+        print_quick(view, out);
+        return;
+    }
     fprintf(out, "\n  %-*s %10s%9s%8s%9s%6s%9s%9s%8s\n", NAME_WIDTH, "", "lost", "+-", "of all", "largest",
             "in", "in", "delay", "+-");
     fprintf(out, "  %-*s %10s%9s%8s%9s%6s%9d%9s%8s\n", NAME_WIDTH, apportion_by_name(from->by), "DU-years",
@@ -203,8 +250,48 @@ static void csv_sum(const Apportionment *from, const char *what, double lost, do
     fprintf(out, ",,,,,,,,\n");
 }
 
+static void csv_quick_row(double all_time, double error, double within, FILE *out)
+{
+    cell(out, all_time);
+    cell(out, error);
+    cell(out, within);
+    fputc('\n', out);
+}
+
+static void csv_item(const ApportionView *view, const ApportionItem *item, FILE *out)
+{
+    fputs("item,", out);
+    apportion_csv_text(out, item->label ? item->label : "");
+    fprintf(out, ",%s", item->gas < 0 ? "" : view->model->schedule.gas[item->gas]);
+    cell(out, tonnes(item));
+    cell(out, item->first_year ? item->first_year : NAN);
+}
+
+static void csv_quick(const ApportionView *view, FILE *out)
+{
+    const Apportionment *from = view->apportionment;
+    fprintf(
+        out,
+        "# quantity: ozone lost by %s of the schedule, %d to %d, by the derivative of the column settled at "
+        "the abundances of %d, %d and %d\nrow,line,gas,emitted_t,first_year,all_time_DU_years,all_time_"
+        "error,within_DU_years\n",
+        apportion_by_name(from->by), from->first_year, from->first_year + from->years - 1,
+        from->background[0], from->background[1], from->background[2]);
+    for (int i = 0; i < from->items; i++) {
+        const ApportionItem *item = &from->item[i];
+        csv_item(view, item, out);
+        csv_quick_row(item->all_time, item->all_time_error, item->within, out);
+    }
+    fprintf(out, "sum,,,,");
+    csv_quick_row(from->sum_all_time, from->sum_all_time_error, from->sum_within, out);
+}
+
 void apportion_csv(const ApportionView *view, FILE *out)
 {
+    if (view->apportionment->quick) {
+        csv_quick(view, out);
+        return;
+    }
     const Apportionment *from = view->apportionment;
     fprintf(out,
             "# quantity: ozone lost by %s of the schedule, %d to %d: column without it less column of the "
@@ -220,11 +307,7 @@ void apportion_csv(const ApportionView *view, FILE *out)
             "year,last_year_DU,last_year_error,delay_kind,delay_months,delay_error,return_year\n");
     for (int i = 0; i < from->items; i++) {
         const ApportionItem *item = &from->item[i];
-        fputs("item,", out);
-        apportion_csv_text(out, item->label ? item->label : "");
-        fprintf(out, ",%s", item->gas < 0 ? "" : view->model->schedule.gas[item->gas]);
-        cell(out, tonnes(item));
-        cell(out, item->first_year ? item->first_year : NAN);
+        csv_item(view, item, out);
         csv_effect(from, &item->effect, &item->error, out);
     }
     fprintf(out, "all,,,,");
@@ -289,8 +372,14 @@ static void json_item(const ApportionView *view, int i, FILE *out)
         fputs("null", out);
     pair(out, ", ", "emitted_t", tonnes(item));
     pair(out, ", ", "first_year", item->first_year ? item->first_year : NAN);
-    fputs(",\n      ", out);
-    json_effect(view->apportionment, &item->effect, &item->error, out);
+    if (view->apportionment->quick) {
+        pair(out, ",\n      ", "all_time_DU_years", item->all_time);
+        pair(out, ", ", "all_time_error", item->all_time_error);
+        pair(out, ", ", "within_DU_years", item->within);
+    } else {
+        fputs(",\n      ", out);
+        json_effect(view->apportionment, &item->effect, &item->error, out);
+    }
     fputc('}', out);
 }
 
@@ -298,6 +387,29 @@ static void json_pair(FILE *out, const char *key, double value)
 {
     json_key(out, 1, 0, key);
     json_number(out, value);
+}
+
+static void json_runs(const Apportionment *from, FILE *out)
+{
+    double none = from->has_errors ? 0.0 : NAN;
+    json_key(out, 1, 0, "all");
+    fputc('{', out);
+    json_effect(from, &from->all, &from->all_error, out);
+    fputc('}', out);
+    json_pair(out, "sum_DU_years", from->sum);
+    json_pair(out, "sum_error", from->sum_error + none);
+    json_pair(out, "remainder_DU_years", from->remainder);
+    json_pair(out, "remainder_error", from->remainder_error + none);
+    json_pair(out, "remainder_percent_of_all", percent(from, from->remainder));
+}
+
+static void json_quick(const Apportionment *from, FILE *out)
+{
+    json_key(out, 1, 0, "derivatives_of_years");
+    fprintf(out, "[%d, %d, %d]", from->background[0], from->background[1], from->background[2]);
+    json_pair(out, "sum_all_time_DU_years", from->sum_all_time);
+    json_pair(out, "sum_all_time_error", from->sum_all_time_error);
+    json_pair(out, "sum_within_DU_years", from->sum_within);
 }
 
 void apportion_json(const ApportionView *view, FILE *out)
@@ -337,14 +449,9 @@ void apportion_json(const ApportionView *view, FILE *out)
     for (int i = 0; i < from->items; i++)
         json_item(view, i, out);
     fputc(']', out);
-    json_key(out, 1, 0, "all");
-    fputc('{', out);
-    json_effect(from, &from->all, &from->all_error, out);
-    fputc('}', out);
-    json_pair(out, "sum_DU_years", from->sum);
-    json_pair(out, "sum_error", from->sum_error + none);
-    json_pair(out, "remainder_DU_years", from->remainder);
-    json_pair(out, "remainder_error", from->remainder_error + none);
-    json_pair(out, "remainder_percent_of_all", percent(from, from->remainder));
+    if (from->quick)
+        json_quick(from, out);
+    else
+        json_runs(from, out);
     fprintf(out, "\n}\n");
 }

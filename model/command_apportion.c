@@ -11,7 +11,7 @@
 
 typedef struct {
     const char *case_path, *csv, *json;
-    int by, benchmark, no_errors, overwrite, quiet, threads, help;
+    int by, benchmark, quick, no_errors, overwrite, quiet, threads, help;
     double percent;
 } Request;
 
@@ -30,6 +30,8 @@ static void print_help(void)
         "      --part PERCENT      take away only this much of each item and divide by it (default 100); "
         "near 1 the\n"
         "                          effects are derivatives and add up\n"
+        "      --quick             no runs without lines: by the derivative of the settled column, for all "
+        "time\n"
         "      --no-error          leave out the coarse runs that give the numerical errors; a third less "
         "time\n"
         "      --csv FILE          the table as CSV\n"
@@ -59,6 +61,7 @@ static int take_option(Request *request, int found, Fault *fault)
     case 'b': return take_by(request, fault);
     case 'y': return option_whole("--benchmark", optarg, 1750, 2500, &request->benchmark, fault);
     case 'p': return option_number("--part", optarg, 1e-4, 100.0, &request->percent, fault);
+    case 'k': request->quick = 1; break;
     case 'n': request->no_errors = 1; break;
     case 'c': request->csv = optarg; break;
     case 'j': request->json = optarg; break;
@@ -72,20 +75,15 @@ static int take_option(Request *request, int found, Fault *fault)
 
 static int read_request(Request *request, int argc, char **argv, Fault *fault)
 {
-    static const struct option options[] = {{"by", required_argument, NULL, 'b'},
-                                            {"benchmark", required_argument, NULL, 'y'},
-                                            {"part", required_argument, NULL, 'p'},
-                                            {"no-error", no_argument, NULL, 'n'},
-                                            {"csv", required_argument, NULL, 'c'},
-                                            {"json", required_argument, NULL, 'j'},
-                                            {"overwrite", no_argument, NULL, 'w'},
-                                            {"quiet", no_argument, NULL, 'q'},
-                                            {"threads", required_argument, NULL, 't'},
-                                            {"help", no_argument, NULL, 'h'},
-                                            {NULL, 0, NULL, 0}};
-    static const char *const names[] = {"--by",      "--benchmark", "--part",      "--no-error",
-                                        "--csv",     "--json",      "--overwrite", "--quiet",
-                                        "--threads", "--help",      NULL};
+    static const struct option options[] = {
+        {"by", required_argument, NULL, 'b'},   {"benchmark", required_argument, NULL, 'y'},
+        {"part", required_argument, NULL, 'p'}, {"no-error", no_argument, NULL, 'n'},
+        {"quick", no_argument, NULL, 'k'},      {"csv", required_argument, NULL, 'c'},
+        {"json", required_argument, NULL, 'j'}, {"overwrite", no_argument, NULL, 'w'},
+        {"quiet", no_argument, NULL, 'q'},      {"threads", required_argument, NULL, 't'},
+        {"help", no_argument, NULL, 'h'},       {NULL, 0, NULL, 0}};
+    static const char *const names[] = {"--by",   "--benchmark", "--part",  "--no-error", "--quick", "--csv",
+                                        "--json", "--overwrite", "--quiet", "--threads",  "--help",  NULL};
     int found, before = 1;
     opterr = 0;
     optind = 1;
@@ -97,6 +95,9 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
             return fault->code;
         before = optind;
     }
+    if (!request->help && request->quick && (request->no_errors || request->percent < 100.0))
+        return fault_set(fault, FAULT_INPUT, "--quick makes no runs without lines; leave out --%s",
+                         request->no_errors ? "no-error" : "part");
     return request->help ? 0 : one_operand("apportion", argc, argv, optind, &request->case_path, fault);
 }
 
@@ -137,7 +138,8 @@ static int work(const Request *request, const Model *model, Fault *fault)
                               .share = 0.01 * request->percent,
                               .errors = !request->no_errors};
     progress_open(&bar, request->quiet);
-    int code = apportion_make(&apportionment, model, &ask, &watcher, fault);
+    int code = request->quick ? apportion_quick(&apportionment, model, &ask, &watcher, fault)
+                              : apportion_make(&apportionment, model, &ask, &watcher, fault);
     progress_close(&bar);
     if (!code) {
         const ApportionView view = {model, apportionment};
