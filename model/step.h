@@ -47,7 +47,8 @@ typedef struct {
 int refresh_log_make(RefreshLog *log, long room, Fault *fault);
 void refresh_log_free(RefreshLog *log);
 /* From the next step on, which is the log's first, note the moments in log; NULL: no more. The steps must fit
- * in. */
+ * in. Meanwhile the light is made afresh whenever the factors are: by its threshold alone, in years when the
+ * column of the log stands still, it would not be, and runs that follow would go by their own moments. */
 void stepper_keep_log(Stepper *stepper, RefreshLog *log);
 /* From the next step on, which is as many steps into the log as the stepper (or the one it was copied from)
  * has kept or followed it, refresh when the log says so, and besides when the state has moved by

@@ -119,9 +119,10 @@ int stepper_repeat_day(Stepper *stepper, Column *column, double enough, int exac
     return 0;
 }
 
-/* Whether factors are to be made afresh by what the case says. */
-static int day_due(const Stepper *stepper, const Column *column)
+int stepper_day_due(const Stepper *stepper, const Column *column)
 {
+    if (stepper->model->settings.day != DAY_FACTORS)
+        return 0;
     double times = stepper->followed_log ? REFRESH_OWN_ACCORD : 1.0;
     return stepper->since_factors >= times * stepper->model->settings.refresh_years * YEAR_SECONDS ||
            day_stale_by(stepper->day, column->x, times);
@@ -132,7 +133,7 @@ int stepper_follow_day(Stepper *stepper, Column *column, Fault *fault)
     if (stepper->model->settings.day != DAY_FACTORS)
         return 0;
     int days = stepper->followed_log ? stepper->followed_log->days[stepper->logged] : 0;
-    if (!days && !day_due(stepper, column))
+    if (!days && !stepper_day_due(stepper, column))
         return 0;
     long before = column->days;
     int code = stepper_repeat_day(stepper, column, DAY_FOLLOWED, days, fault);

@@ -343,8 +343,12 @@ void stepper_follow_light(Stepper *stepper, Column *column)
         lit = NULL;
     }
     const RefreshLog *followed = stepper->followed_log;
-    if (!light_stale_by(stepper->light, x, lit, followed ? REFRESH_OWN_ACCORD : 1.0) &&
-        !(followed && followed->light[stepper->logged]))
+    int due = light_stale_by(stepper->light, x, lit, followed ? REFRESH_OWN_ACCORD : 1.0);
+    if (followed)
+        due |= followed->light[stepper->logged];
+    else if (stepper->kept_log)
+        due |= stepper_day_due(stepper, column);
+    if (!due)
         return;
     if (stepper->kept_log)
         stepper->kept_log->light[stepper->logged] = 1;

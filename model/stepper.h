@@ -89,6 +89,8 @@ int stepper_carry_day(Stepper *stepper, Column *column, double years, Fault *fau
 /* Repeat the day of the column's state until no factor that matters changes by more than enough of itself, or
  * where exactly is above 0, that many times. */
 int stepper_repeat_day(Stepper *stepper, Column *column, double enough, int exactly, Fault *fault);
+/* Whether factors are to be made afresh by the thresholds of the case, or of one who follows a log. */
+int stepper_day_due(const Stepper *stepper, const Column *column);
 /* Factors made afresh where they are stale. */
 int stepper_follow_day(Stepper *stepper, Column *column, Fault *fault);
 
