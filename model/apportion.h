@@ -24,9 +24,8 @@
  *     all time = sum over years of emission times the mean over t of D(year + t) k(t)
  *
  * with D interpolated linearly between those years (constant outside) and k the share of the effect that
- * falls into each later year: that of two compartments in a row, the gas (its lifetime in the column) and
- * what it leaves (atoms of Cly or Bry above the tropopause over their release there; none for gases without
- * chlorine and bromine). What of it falls within the years of the run stands beside the runs' `lost`.
+ * falls into each later year (pulse.h, at the middle one of those years). What of it falls within the years
+ * of the run stands beside the runs' `lost`.
  *
  * The numerical error of each figure is how far it moves when everything is done twice as coarsely
  * (apportion_coarser). It does not count that of the layers.
@@ -75,8 +74,9 @@ typedef struct {
     double *kg;        /* [lines] of the gas itself, in the years of the run */
     Effect effect;
     EffectError error;
-    /* the quick way: DU-years for all time and within the run; NAN where a gas is given off aloft or has no
-     * derivative. error: of all_time, noise of the derivatives plus what fewer years of them would change */
+    /* the quick way: DU-years for all time and within the run; NAN where a gas is given off aloft, taken
+     * up by the ground, or without a derivative. error: of all_time, noise of the derivatives plus what fewer
+     * years of them would change */
     double all_time, within, all_time_error;
 } ApportionItem;
 

@@ -8,12 +8,12 @@
 #include "apportion_runs.h"
 #include "emission.h"
 #include "potency.h"
+#include "pulse.h"
 
 /* Of one gas of the schedule in one of the years. */
 typedef struct {
     double per_molecule; /* DU-years for all time per molecule cm-2; NAN: none */
     double noise;        /* relative */
-    double life, lag;    /* years: of the gas, of what it leaves */
 } Derivative;
 
 typedef struct {
@@ -23,6 +23,7 @@ typedef struct {
     int threads;
     double *ground;         /* [years][solved] mole fraction of the lowest layer, mean of the year */
     Derivative *derivative; /* [APPORTION_YEARS][gases of the schedule] */
+    double *fallen;         /* [gases of the schedule][2 * years + 1] of a pulse, every half year */
     double done;            /* share of the work before the part at hand */
     double part;            /* and that part's */
 } Quick;
@@ -89,58 +90,44 @@ static int carry_whole(Quick *quick, Fault *fault)
 
 /* ---- derivatives ---- */
 
-/* Years that what a gas leaves stays above the tropopause: atoms of Cly or Bry there over their release. The
- * rarer bromine first, as by the families of budget.h. */
-static double lag_of(const Model *model, const double *x, const Potencies *potencies, int s)
+/* The derivative is by what comes through the ground, so of a gas that the ground takes up as well there is
+ * none. */
+static void take_derivatives(const Quick *quick, const Potencies *potencies, Derivative *derivative)
 {
-    static const struct {
-        int total;
-        const char *element;
-    } families[] = {{TOTAL_BRY, "Br"}, {TOTAL_CLY, "Cl"}};
-    const Mechanism *mechanism = model->mechanism;
-    double tropopause = 1e5 * model->settings.tropopause_km;
-    for (int f = 0; f < 2; f++) {
-        int element = mechanism_element(mechanism, families[f].element);
-        if (element < 0 || !mechanism_atoms(mechanism, s, element))
-            continue;
-        double left = 0.0, released = 0.0;
-        for (int m = 0; m < mechanism->solved; m++)
-            for (int l = 0; l < model->grid.layers; l++)
-                if (model->grid.middle[l] >= tropopause)
-                    left += budget_member(mechanism, families[f].total, m) *
-                            x[FIELD(model->grid.padded, m, l)] * model->air.number_density[l] *
-                            model->grid.depth[l];
+    const Model *model = quick->model;
+    const Schedule *schedule = &model->schedule;
+    for (int g = 0; g < schedule->gases; g++) {
+        int s = mechanism_solved(model->mechanism, schedule->gas[g]);
+        derivative[g].per_molecule = NAN;
         for (int i = 0; i < potencies->count; i++)
-            for (int p = 0; p < GAS_LOSSES; p++)
-                released += mechanism_atoms(mechanism, potencies->gas[i].species, element) *
-                            potencies->gas[i].budget.aloft[p];
-        return released > 0.0 ? left / released / YEAR_SECONDS : 0.0;
+            if (potencies->gas[i].species == s && !(model_deposition(model, s) > 0.0))
+                derivative[g] = (Derivative){-potencies->gas[i].anew / YEAR_SECONDS, /* lost: above 0 */
+                                             potencies->gas[i].noise};
     }
-    return 0.0;
 }
 
-static void take_derivatives(const Quick *quick, const Model *settled, const double *x,
-                             const Potencies *potencies, Derivative *derivative)
+static int take_pulses(Quick *quick, Unsplit *unsplit, const double *x, const Derivative *derivative,
+                       Fault *fault)
 {
+    const Apportionment *to = quick->to;
     const Schedule *schedule = &quick->model->schedule;
-    for (int g = 0; g < schedule->gases; g++) {
+    int steps = 2 * to->years;
+    for (int l = 0; l < schedule->lines; l++) {
+        int g = schedule->line[l].gas;
+        double *fallen = quick->fallen + (size_t)g * (size_t)(steps + 1);
+        if (fallen[1] != 0.0 || !isfinite(derivative[g].per_molecule))
+            continue; /* done for a line before; nothing to do */
         int s = mechanism_solved(quick->model->mechanism, schedule->gas[g]);
-        derivative[g].per_molecule = NAN;
-        for (int i = 0; i < potencies->count; i++) {
-            const Potency *gas = &potencies->gas[i];
-            if (gas->species != s)
-                continue;
-            /* what is lost counts above zero */
-            derivative[g] = (Derivative){.per_molecule = -gas->anew / YEAR_SECONDS,
-                                         .noise = gas->noise,
-                                         .life = gas->lifetime,
-                                         .lag = lag_of(settled, x, potencies, s)};
-        }
+        if (pulse_response(unsplit, x, s, steps, 0.5, fallen, fault))
+            return fault->code;
+        if (quick->watcher->stop && *quick->watcher->stop)
+            return fault_set(fault, FAULT_INTERRUPTED, "interrupted; nothing was written");
     }
+    return 0;
 }
 
 /* Settle the column of the model, whose grounds keep everything, and look beside it. */
-static int differentiate(Quick *quick, const Model *settled, int year, Derivative *derivative, Fault *fault)
+static int differentiate(Quick *quick, const Model *settled, int k, Derivative *derivative, Fault *fault)
 {
     Column *column = NULL;
     Stepper *stepper = NULL;
@@ -155,11 +142,13 @@ static int differentiate(Quick *quick, const Model *settled, int year, Derivativ
     if (!code)
         code = unsplit_make(&unsplit, settled, fault);
     if (!code)
-        code = steady_find(unsplit, stepper, column, year + 0.5, &steady, fault);
+        code = steady_find(unsplit, stepper, column, quick->to->background[k] + 0.5, &steady, fault);
     if (!code)
         code = potency_make(&potencies, unsplit, stepper, column, &ask, &watcher, fault);
     if (!code)
-        take_derivatives(quick, settled, column->x, potencies, derivative);
+        take_derivatives(quick, potencies, derivative);
+    if (!code && k == APPORTION_YEARS / 2)
+        code = take_pulses(quick, unsplit, column->x, derivative, fault);
     potency_free(potencies);
     unsplit_free(unsplit);
     stepper_free(stepper);
@@ -167,10 +156,13 @@ static int differentiate(Quick *quick, const Model *settled, int year, Derivativ
     return code;
 }
 
-/* The model with the gases that emissions drive kept at what the whole has in that year. */
-static int differentiate_at(Quick *quick, int year, Derivative *derivative, Fault *fault)
+/* In year k of the background, from the model with the gases that emissions drive kept at what the whole has
+ * then. */
+static int differentiate_at(Quick *quick, int k, Fault *fault)
 {
     const Model *model = quick->model;
+    Derivative *derivative = quick->derivative + (size_t)k * (size_t)model->schedule.gases;
+    int year = quick->to->background[k];
     size_t solved = (size_t)model->mechanism->solved;
     const double *ground = quick->ground + (size_t)(year - quick->to->first_year) * solved;
     Model settled = *model;
@@ -191,7 +183,7 @@ static int differentiate_at(Quick *quick, int year, Derivative *derivative, Faul
                 settled.surface_kind[s] = SURFACE_FIXED;
                 settled.surface_value[s] = ground[s];
             }
-        code = differentiate(quick, &settled, year, derivative, fault);
+        code = differentiate(quick, &settled, k, derivative, fault);
     }
     emissions_free(settled.emissions);
     free(settled.surface_kind);
@@ -200,14 +192,6 @@ static int differentiate_at(Quick *quick, int year, Derivative *derivative, Faul
 }
 
 /* ---- lines ---- */
-
-/* Share of the effect of a pulse that has fallen after t years. */
-static double fallen(double life, double lag, double t)
-{
-    if (fabs(life - lag) < 1e-6 * life)
-        lag = life * (1.0 - 1e-6);
-    return 1.0 - (life * exp(-t / life) - (lag > 0.0 ? lag * exp(-t / lag) : 0.0)) / (life - lag);
-}
 
 /* Derivative of gas g at decimal year time. Only the first and the last year when ends is 1. */
 static double at_time(const Quick *quick, int g, double time, int ends)
@@ -226,15 +210,12 @@ static double at_time(const Quick *quick, int g, double time, int ends)
 /* DU-years per molecule cm-2 given off in the middle of a year: within the run, and after it. */
 static void of_pulse(const Quick *quick, int g, int year, int ends, double *within, double *after)
 {
-    const Derivative *middle = &quick->derivative[APPORTION_YEARS / 2 * quick->model->schedule.gases + g];
-    double start = year + 0.5, end = quick->to->first_year + quick->to->years, before = 0.0;
+    int steps = 2 * (quick->to->first_year + quick->to->years - year) - 1; /* half years to the end */
+    const double *fallen = quick->fallen + (size_t)g * (size_t)(2 * quick->to->years + 1);
     *within = 0.0;
-    for (double t = start; t < end; t += 1.0) { /* the last of them is half a year */
-        double to = fmin(t + 1.0, end), sum = fallen(middle->life, middle->lag, to - start);
-        *within += (sum - before) * at_time(quick, g, 0.5 * (t + to), ends);
-        before = sum;
-    }
-    *after = (1.0 - before) * at_time(quick, g, end, ends);
+    for (int i = 0; i < steps; i++)
+        *within += (fallen[i + 1] - fallen[i]) * at_time(quick, g, year + 0.5 + 0.5 * (i + 0.5), ends);
+    *after = (1.0 - fallen[steps]) * at_time(quick, g, year + 0.5 + 0.5 * steps, ends);
 }
 
 static void add_line(const Quick *quick, ApportionItem *item, int l)
@@ -298,7 +279,8 @@ static int work(Quick *quick, Fault *fault)
     Apportionment *to = quick->to;
     quick->ground = calloc((size_t)to->years * (size_t)model->mechanism->solved, sizeof(double));
     quick->derivative = calloc((size_t)APPORTION_YEARS * (size_t)model->schedule.gases, sizeof(Derivative));
-    if (!quick->ground || !quick->derivative)
+    quick->fallen = calloc((size_t)(2 * to->years + 1) * (size_t)model->schedule.gases, sizeof(double));
+    if (!quick->ground || !quick->derivative || !quick->fallen)
         return fault_memory(fault, "derivatives");
     quick->part = RUN_SHARE;
     int code = carry_whole(quick, fault);
@@ -308,8 +290,7 @@ static int work(Quick *quick, Fault *fault)
     for (int k = 0; !code && k < APPORTION_YEARS; k++) {
         quick->part = (1.0 - RUN_SHARE) / APPORTION_YEARS;
         quick->done = RUN_SHARE + k * quick->part;
-        code = differentiate_at(quick, to->background[k],
-                                quick->derivative + (size_t)k * (size_t)model->schedule.gases, fault);
+        code = differentiate_at(quick, k, fault);
     }
     if (!code)
         sum_items(quick);
@@ -328,6 +309,7 @@ int apportion_quick(Apportionment **made, const Model *model, const ApportionAsk
     code = work(&quick, fault);
     free(quick.ground);
     free(quick.derivative);
+    free(quick.fallen);
     if (code) {
         apportion_free(*made);
         *made = NULL;

@@ -135,11 +135,9 @@ static void print_quick(const ApportionView *view, FILE *out)
     fprintf(
         out,
         "\n  By the derivative of the column settled at the abundances of %d, %d and %d. all time: of what "
-        "is "
-        "given\n  off from %d to %d, for good; within: what falls by the end of %d, gas by its lifetime in "
-        "the "
-        "column and\n  what it leaves by its stay aloft, an estimate; after: the rest. A derivative adds up "
-        "where runs without\n  lines do not. +-: noise of the derivatives and what the middle year changes\n",
+        "is\n  given off from %d to %d, for good; within: what of it falls by the end of %d; after: the "
+        "rest.\n  Derivatives add up where runs without lines do not. +-: noise of the derivatives and what "
+        "the\n  middle year changes. -: given off aloft, or taken up by the ground\n",
         from->background[0], from->background[1], from->background[2], from->first_year, last, last);
     print_abundances(view, out);
 }
