@@ -77,7 +77,7 @@ static int list_items(Apportionment *to, const Model *model, Fault *fault)
         any |= to->item[i].first_year > 0;
     for (int g = 0; g < schedule->gases; g++) {
         int from = schedule->emission_from[g];
-        if (!from || from >= to->first_year + to->years)
+        if (schedule->years[g] && (!from || from >= to->first_year + to->years))
             to->abundance_gas[to->not_apportioned++] = g;
     }
     if (any)
