@@ -66,7 +66,7 @@ static void print_effect(const Apportionment *from, const char *name, const Effe
     put(out, 8, "%*.2f", percent(from, effect->lost));
     fprintf(out, "%9.4f%6d%9.4f", effect->largest, effect->largest_year, effect->last);
     print_delay(out, effect);
-    put(out, 8, "%*.1g", from->has_errors && effect->delay_kind == DELAY_FOUND ? error->delay : NAN);
+    put(out, 8, "%*.2g", from->has_errors && effect->delay_kind == DELAY_FOUND ? error->delay : NAN);
     fprintf(out, "\n");
 }
 

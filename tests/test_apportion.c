@@ -1,45 +1,10 @@
-/* Tests of apportioning (model/apportion) and of what it rests on: a copied column and stepper go on as the
- * original to the last bit; runs that follow the refreshes of another differ smoothly from it; leaving a line
- * out is the same as a case without it. Coarse layers, INVENTED emissions; nothing here is compared with the
- * world. */
+/* Tests of apportioning (model/apportion): leaving a line out is the same as a case without it; small parts
+ * of a line do as much for their size as large ones; delays, errors, the quick way against runs. Coarse
+ * layers, INVENTED emissions; nothing here is compared with the world. */
 #define _XOPEN_SOURCE 700
-#include "run.h"
+#include "lines.h"
 
 #include "../model/apportion.h"
-#include "../model/pulse.h"
-#include "../model/steady.h"
-
-/* Five lines from 1990 on, one of which gives nothing off, one label for two gases, one gas in two lines. */
-static void write_lines(void **state, char *path)
-{
-    char text[20000] = "# source: INVENTED\nyear,gas,kind,amount,unit,line\n";
-    size_t used = strlen(text);
-    for (int year = 1990; year <= 2010; year++)
-        used += (size_t)snprintf(text + used, sizeof text - used,
-                                 "%d,CFC-11,emission,%g,kt,foam\n%d,CFC-11,emission,%g,kt,solvent\n"
-                                 "%d,CFC-12,emission,%g,kt,foam\n%d,CCl4,emission,0,kt,idle\n",
-                                 year, 200 * exp(-(year - 1990) / 3.0), year, year < 1996 ? 0.0 : 20.0, year,
-                                 300 * exp(-(year - 1990) / 3.0), year);
-    for (int year = 1992; year <= 2010; year++)
-        used += (size_t)snprintf(text + used, sizeof text - used, "%d,CH3Br,emission,%g,kt,fumigation\n",
-                                 year, year < 1996 ? 160.0 : 120.0);
-    write_file(state, "lines.csv", text, path);
-}
-
-static Settings coarse(void **state, int first_year, int last_year)
-{
-    Settings settings;
-    char path[300];
-    settings_default(&settings, data_dir());
-    settings.top_km = 60.0;
-    settings.spacing_km = 4.0;
-    settings.first_year = first_year;
-    settings.last_year = last_year;
-    write_lines(state, path);
-    settings.schedule_layers = 1;
-    snprintf(settings.schedule_layer[0], sizeof settings.schedule_layer[0], "%s", path);
-    return settings;
-}
 
 static Model *model_of(const Settings *settings)
 {
@@ -65,120 +30,6 @@ static const ApportionItem *item_of(const Apportionment *from, const char *label
             return &from->item[i];
     fail_msg("no item %s", label);
     return NULL;
-}
-
-/* ---- copies ---- */
-
-static void same(const char *what, const double *a, const double *b, size_t count)
-{
-    for (size_t i = 0; i < count; i++)
-        if (memcmp(&a[i], &b[i], sizeof(double)))
-            fail_msg("%s: number %zu is %.17g and %.17g", what, i, a[i], b[i]);
-}
-
-static void check_same(const char *what, const Run *a, const Run *b)
-{
-    size_t solved = (size_t)a->model->mechanism->solved;
-    assert_true(a->column->time == b->column->time);
-    same(what, a->column->x, b->column->x, field_size(a->model));
-    same(what, a->column->balance, b->column->balance, field_size(a->model));
-    same(what, a->column->received, b->column->received, solved);
-    same(what, a->column->emitted, b->column->emitted, solved);
-    same(what, a->column->exchanged, b->column->exchanged, solved);
-    same(what, a->column->washed, b->column->washed, solved);
-    assert_int_equal(a->column->counts.factorisations, b->column->counts.factorisations);
-    assert_int_equal(a->column->outer_steps, b->column->outer_steps);
-    assert_int_equal(a->column->photolysis_refreshes, b->column->photolysis_refreshes);
-    assert_int_equal(a->column->factor_refreshes, b->column->factor_refreshes);
-    assert_int_equal(a->column->days, b->column->days);
-    same(what, stepper_mean(a->stepper), stepper_mean(b->stepper), field_size(a->model));
-}
-
-/* The original goes on; the copy is put into a stepper and a column of another thread number that have been
- * used for something else; both must end the same. In between light, factors, temperature, the sun of the
- * season and the ground (emissions take over in 1990) move, all of which a copy could forget. */
-static void test_copy(void **state)
-{
-    static const struct {
-        const char *name;
-        int day, sun;
-        double step;
-        long before, after;
-    } modes[] = {{"factors", DAY_FACTORS, SUN_GLOBAL, 365.25 / 24, 12, 48},
-                 {"means", DAY_MEAN, SUN_GLOBAL, 365.25 / 24, 12, 48},
-                 {"explicit days", DAY_EXPLICIT, SUN_GLOBAL, 1.0, 10, 25},
-                 {"season", DAY_FACTORS, SUN_SEASON, 365.25 / 24, 12, 30}};
-    for (size_t m = 0; m < sizeof modes / sizeof modes[0]; m++) {
-        Settings settings = coarse(state, 1989, 1991);
-        settings.day = modes[m].day;
-        settings.sun = modes[m].sun;
-        settings.latitude_deg = 45.0;
-        settings.start = START_SPINUP;
-        settings.spinup_years = 0.0;
-        Run run = start(&settings, 2), copy = start(&settings, 1);
-        advance(&copy, modes[m].step, 7, 1);
-        advance(&run, modes[m].step, modes[m].before, 0);
-        column_copy(copy.column, run.column, run.model);
-        stepper_copy(copy.stepper, run.stepper);
-        advance(&run, modes[m].step, modes[m].after, 0);
-        advance(&copy, modes[m].step, modes[m].after, 0);
-        check_same(modes[m].name, &run, &copy);
-        end(&run);
-        end(&copy);
-    }
-}
-
-/* In parts or in one: the same run. */
-static void test_projection_in_parts(void **state)
-{
-    Settings settings = coarse(state, 1989, 1991);
-    settings.outputs_per_year = 4;
-    const Watcher nothing = {0};
-    Fault fault = {0};
-    Run run = start(&settings, 1), parts = start(&settings, 1);
-    ok(projection_run(run.model, run.stepper, run.column, &nothing, &fault), &fault);
-    ok(projection_begin(parts.model, parts.stepper, parts.column, &nothing, &fault), &fault);
-    ok(projection_continue(parts.model, parts.stepper, parts.column, 0, 5, &nothing, &fault), &fault);
-    ok(projection_continue(parts.model, parts.stepper, parts.column, 5, 12, &nothing, &fault), &fault);
-    check_same("in parts", &run, &parts);
-    assert_int_equal(projection_steps(run.model, 0, 12), run.column->outer_steps);
-    end(&run);
-    end(&parts);
-}
-
-/* A run that follows the log of its like is its like; and the log is followed, not just agreed with: another
- * log makes another run. */
-static void test_log(void **state)
-{
-    Settings settings = coarse(state, 1989, 1991);
-    settings.start = START_SPINUP;
-    settings.spinup_years = 0.0;
-    RefreshLog log, empty;
-    Fault fault = {0};
-    const double days = 365.25 / 24;
-    Run first = start(&settings, 1), second = start(&settings, 1), third = start(&settings, 1);
-    ok(refresh_log_make(&log, 60, &fault), &fault);
-    ok(refresh_log_make(&empty, 60, &fault), &fault);
-    stepper_keep_log(first.stepper, &log);
-    stepper_follow_log(second.stepper, &log);
-    stepper_follow_log(third.stepper, &empty);
-    advance(&first, days, 60, 0);
-    advance(&second, days, 60, 0);
-    advance(&third, days, 60, 0);
-    check_same("following", &first, &second);
-    int lights = 0, factors = 0;
-    for (int i = 0; i < 60; i++) {
-        lights += log.light[i];
-        factors += log.days[i] > 0;
-    }
-    assert_int_equal(lights, first.column->photolysis_refreshes);
-    assert_int_equal(factors, first.column->factor_refreshes);
-    assert_true(third.column->factor_refreshes < factors);
-    refresh_log_free(&log);
-    refresh_log_free(&empty);
-    end(&first);
-    end(&second);
-    end(&third);
 }
 
 /* ---- apportioning ---- */
@@ -407,44 +258,6 @@ static void test_quick(void **state)
     model_free(model);
 }
 
-/* When a pulse's effect falls: two step lengths agree, and a gas that lives a year is over within decades,
- * one that lives a century is not. */
-static void test_pulse(void **state)
-{
-    enum { YEARS = 60 };
-    Settings settings = coarse(state, 1985, 1985);
-    settings.day = DAY_MEAN;
-    Run run = start(&settings, 1);
-    Unsplit *unsplit;
-    SteadyReport steady;
-    Fault fault = {0};
-    double whole[YEARS + 1], half[2 * YEARS + 1];
-    ok(unsplit_make(&unsplit, run.model, &fault), &fault);
-    ok(steady_find(unsplit, run.stepper, run.column, 1985.5, &steady, &fault), &fault);
-    static const char *const gases[] = {"CH3Br", "CFC-12"};
-    for (int g = 0; g < 2; g++) {
-        int s = mechanism_solved(run.model->mechanism, gases[g]);
-        ok(pulse_response(unsplit, run.column->x, s, YEARS, 1.0, whole, &fault), &fault);
-        ok(pulse_response(unsplit, run.column->x, s, 2 * YEARS, 0.5, half, &fault), &fault);
-        assert_true(unsplit->kept[s] == 1 && unsplit->emission[s] == 0.0);
-        assert_true(half[0] == 0.0);
-        for (int y = 1; y <= YEARS; y++) {
-            /* second order: the half step's own error is a third of what is seen here */
-            if (!(fabs(whole[y] - half[2 * y]) < 0.005))
-                fail_msg("%s after %d years: %g and %g", gases[g], y, whole[y], half[2 * y]);
-            assert_true(half[2 * y] >= half[2 * y - 2]);
-        }
-        print_message("   %-7s %.4f after 5, %.4f after 20, %.4f after %d years\n", gases[g], half[10],
-                      half[40], half[2 * YEARS], YEARS);
-        if (g == 0)
-            assert_true(fabs(half[2 * YEARS] - 1.0) < 1e-3);
-        else
-            assert_true(half[2 * YEARS] > 0.2 && half[2 * YEARS] < 0.7);
-    }
-    unsplit_free(unsplit);
-    end(&run);
-}
-
 /* ---- mishaps ---- */
 
 typedef struct {
@@ -507,15 +320,11 @@ static void test_nothing_to_apportion(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        WITH_FOLDER(test_copy),
-        WITH_FOLDER(test_projection_in_parts),
-        WITH_FOLDER(test_log),
         WITH_FOLDER(test_items),
         WITH_FOLDER(test_leaving_out_is_a_case_without),
         WITH_FOLDER(test_runs),
         WITH_FOLDER(test_error),
         WITH_FOLDER(test_quick),
-        WITH_FOLDER(test_pulse),
         WITH_FOLDER(test_interrupt),
         WITH_FOLDER(test_nothing_to_apportion),
     };
