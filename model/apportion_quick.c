@@ -24,9 +24,15 @@ typedef struct {
     double *ground;         /* [years][solved] mole fraction of the lowest layer, mean of the year */
     Derivative *derivative; /* [APPORTION_YEARS][gases of the schedule] */
     double *fallen;         /* [gases of the schedule][2 * years + 1] of a pulse, every half year */
+    unsigned char *wanted;  /* [solved] 1: given off, and has a derivative */
+    const char *reference;  /* one of them, or NULL: there is none */
     double done;            /* share of the work before the part at hand */
     double part;            /* and that part's */
 } Quick;
+
+/* DU by which a column beside is shifted: less than POTENCY_CHANGE, which is too much of a gas there is
+ * hardly any of any more (HCFC-22 at the end of a phase-out: the chords do not converge). */
+static const double SHIFT = 0.05;
 
 /* Share of the work that the run of the whole is taken to be, for the progress. */
 static const double RUN_SHARE = 0.4;
@@ -134,7 +140,7 @@ static int differentiate(Quick *quick, const Model *settled, int k, Derivative *
     Unsplit *unsplit = NULL;
     Potencies *potencies = NULL;
     SteadyReport steady;
-    const PotencyAsk ask = {.reference = NULL};
+    const PotencyAsk ask = {.reference = quick->reference, .wanted = quick->wanted, .change = SHIFT};
     const Watcher watcher = {.progress = pass_potency, .context = quick, .stop = quick->watcher->stop};
     int code = column_make(&column, settled, fault);
     if (!code)
@@ -189,6 +195,31 @@ static int differentiate_at(Quick *quick, int k, Fault *fault)
     free(settled.surface_kind);
     free(settled.surface_value);
     return code;
+}
+
+/* Gases that have derivatives and of which something is given off in the run. */
+static int list_wanted(Quick *quick, Fault *fault)
+{
+    const Model *model = quick->model;
+    int *gas = calloc((size_t)model->mechanism->solved, sizeof(int));
+    quick->wanted = calloc((size_t)model->mechanism->solved, 1);
+    if (!gas || !quick->wanted) {
+        free(gas);
+        return fault_memory(fault, "derivatives");
+    }
+    int count = potency_gases(model, gas);
+    for (int i = 0; i < quick->to->items; i++)
+        for (int l = 0; l < quick->to->item[i].lines; l++) {
+            int s = model->emissions->species[quick->to->item[i].line[l]], k = 0;
+            while (k < count && gas[k] != s)
+                k++;
+            if (k == count || !(quick->to->item[i].kg[l] > 0.0))
+                continue;
+            quick->wanted[s] = 1;
+            quick->reference = mechanism_name(model->mechanism, s);
+        }
+    free(gas);
+    return 0;
 }
 
 /* ---- lines ---- */
@@ -287,7 +318,11 @@ static int work(Quick *quick, Fault *fault)
     if (!code)
         code = apportion_return(to, fault);
     choose_years(to);
-    for (int k = 0; !code && k < APPORTION_YEARS; k++) {
+    for (size_t g = 0; g < (size_t)APPORTION_YEARS * (size_t)model->schedule.gases; g++)
+        quick->derivative[g].per_molecule = NAN;
+    if (!code)
+        code = list_wanted(quick, fault);
+    for (int k = 0; !code && quick->reference && k < APPORTION_YEARS; k++) {
         quick->part = (1.0 - RUN_SHARE) / APPORTION_YEARS;
         quick->done = RUN_SHARE + k * quick->part;
         code = differentiate_at(quick, k, fault);
@@ -310,6 +345,7 @@ int apportion_quick(Apportionment **made, const Model *model, const ApportionAsk
     free(quick.ground);
     free(quick.derivative);
     free(quick.fallen);
+    free(quick.wanted);
     if (code) {
         apportion_free(*made);
         *made = NULL;

@@ -348,7 +348,8 @@ static int find_reference(Potencies *potencies, const Model *model, const char *
                      near ? near : "", near ? "?" : "");
 }
 
-static int make_list(Potencies *potencies, const Model *model, const char *reference, Fault *fault)
+static int make_list(Potencies *potencies, const Model *model, const char *reference,
+                     const unsigned char *wanted, Fault *fault)
 {
     size_t solved = (size_t)model->mechanism->solved;
     int *species = malloc(solved * sizeof(int));
@@ -357,9 +358,10 @@ static int make_list(Potencies *potencies, const Model *model, const char *refer
         free(species);
         return fault_memory(fault, "depletion potentials");
     }
-    potencies->count = potency_gases(model, species);
-    for (int i = 0; i < potencies->count; i++)
-        potencies->gas[i].species = species[i];
+    int count = potency_gases(model, species);
+    for (int i = 0; i < count; i++)
+        if (!wanted || wanted[species[i]])
+            potencies->gas[potencies->count++].species = species[i];
     free(species);
     return find_reference(potencies, model, reference, fault);
 }
@@ -384,7 +386,7 @@ int potency_make(Potencies **made, Unsplit *unsplit, Stepper *stepper, Column *c
         work.along = work.base + (size_t)unsplit->solved * padded;
         work.step = work.along + n;
         potencies->anew = !ask->frozen;
-        code = make_list(potencies, model, ask->reference ? ask->reference : "CFC-11", fault);
+        code = make_list(potencies, model, ask->reference ? ask->reference : "CFC-11", ask->wanted, fault);
     }
     if (!code)
         code = prepare(&work, fault);

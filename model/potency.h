@@ -73,6 +73,8 @@ typedef struct {
     const char *reference; /* NULL: "CFC-11" */
     int frozen;            /* 1: only the adjoint */
     double change;         /* DU; 0: POTENCY_CHANGE */
+    const unsigned char
+        *wanted; /* [solved] 1: this gas, the reference must be one; NULL: every gas there is */
 } PotencyAsk;
 
 /* Solved numbers of the gases, gas [solved] out; returns their count. */
