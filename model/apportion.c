@@ -7,9 +7,9 @@
 #include <string.h>
 
 #include "../input/constants.h"
-#include "answers.h"
 #include "apportion_runs.h"
 #include "emission.h"
+#include "series.h"
 
 /* ---- items ---- */
 
@@ -60,7 +60,38 @@ static int add_line(Apportionment *to, const Model *model, int l, Fault *fault)
     return 0;
 }
 
-static int list_items(Apportionment *to, const Model *model, Fault *fault)
+static int is_kept(const ApportionAsk *ask, const char *label)
+{
+    for (int k = 0; k < ask->keeps; k++)
+        if (!strcmp(ask->keep[k], label))
+            return 1;
+    return 0;
+}
+
+static int check_keeps(const Schedule *schedule, const ApportionAsk *ask, Fault *fault)
+{
+    for (int k = 0; k < ask->keeps; k++) {
+        int l = 0;
+        while (l < schedule->lines && strcmp(schedule->line[l].label, ask->keep[k]))
+            l++;
+        if (l < schedule->lines)
+            continue;
+        const char **labels = malloc(((size_t)schedule->lines + 1) * sizeof *labels);
+        if (!labels)
+            return fault_memory(fault, "labels of the schedule");
+        for (l = 0; l < schedule->lines; l++)
+            labels[l] = schedule->line[l].label;
+        const char *near = fault_nearest(ask->keep[k], labels, (size_t)schedule->lines);
+        fault_set(fault, FAULT_INPUT, "--keep: no line of emission is labelled \"%.60s\"%s%s%s", ask->keep[k],
+                  near ? "; did you mean \"" : "; skymend check lists them", near ? near : "",
+                  near ? "\"?" : "");
+        free(labels);
+        return fault->code;
+    }
+    return 0;
+}
+
+static int list_items(Apportionment *to, const Model *model, const ApportionAsk *ask, Fault *fault)
 {
     const Schedule *schedule = &model->schedule;
     int any = 0;
@@ -70,9 +101,14 @@ static int list_items(Apportionment *to, const Model *model, Fault *fault)
     to->all.column = calloc((size_t)to->years, sizeof(double));
     if (!to->item || !to->abundance_gas || !to->column || !to->all.column)
         return fault_memory(fault, "items of the schedule");
-    for (int l = 0; l < schedule->lines; l++)
-        if (add_line(to, model, l, fault))
+    if (check_keeps(schedule, ask, fault))
+        return fault->code;
+    for (int l = 0; l < schedule->lines; l++) {
+        if (is_kept(ask, schedule->line[l].label))
+            to->kept_lines++;
+        else if (add_line(to, model, l, fault))
             return fault->code;
+    }
     for (int i = 0; i < to->items; i++)
         any |= to->item[i].first_year > 0;
     for (int g = 0; g < schedule->gases; g++) {
@@ -91,27 +127,29 @@ static int list_items(Apportionment *to, const Model *model, Fault *fault)
 
 /* ---- what the runs show ---- */
 
-/* The return of yearly means to the benchmark year's value of the whole: state as of Answers.returns. */
+/* The return of yearly means to the benchmark year's value of the whole. *returns: 1 found, 0 not by the end,
+ * -1 never below or no such year. */
 static int find_return(const Apportionment *to, const double *column, double *year, double *benchmark,
                        int *returns, Fault *fault)
 {
-    double *room = malloc(2 * (size_t)to->years * sizeof(double));
-    Answers answers;
-    if (!room)
+    size_t years = (size_t)to->years;
+    double *start = malloc(4 * years * sizeof(double));
+    if (!start)
         return fault_memory(fault, "return of the column");
-    ColumnSeries series = {to->years, room, room + to->years};
+    double *middle = start + years, *end = middle + years, *value = end + years;
     for (int y = 0; y < to->years; y++) {
-        series.time[y] = to->first_year + y + 0.5;
-        series.column[y] = to->first_year + y == to->benchmark_year ? to->column[y] : column[y];
+        start[y] = to->first_year + y;
+        middle[y] = start[y] + 0.5;
+        end[y] = start[y] + 1.0;
+        value[y] = to->first_year + y == to->benchmark_year ? to->column[y] : column[y];
     }
-    int code = answers_compute(&answers, &series, to->benchmark_year, fault);
-    free(room);
-    if (code)
-        return code;
-    *returns = answers.returns;
-    *year = answers.returns == 1 ? answers.return_year : NAN;
+    const Series series = {to->years, start, middle, end, value};
+    SeriesReturn found = series_return(&series, 1, to->benchmark_year);
+    free(start);
+    *returns = found.state == RETURN_FOUND ? 1 : found.state == RETURN_LATER ? 0 : -1;
+    *year = found.year;
     if (benchmark)
-        *benchmark = answers.benchmark;
+        *benchmark = found.state == RETURN_UNKNOWN ? NAN : found.value;
     return 0;
 }
 
@@ -206,7 +244,7 @@ int apportion_list(Apportionment **made, const Model *model, const ApportionAsk 
     to->by = ask->by;
     to->share = ask->share;
     to->benchmark_year = ask->benchmark_year;
-    if (list_items(to, model, fault)) {
+    if (list_items(to, model, ask, fault)) {
         apportion_free(to);
         return fault->code;
     }

@@ -97,6 +97,7 @@ typedef struct {
     int has_errors, quick;
     int background[APPORTION_YEARS];                     /* years the derivatives are of */
     double sum_all_time, sum_within, sum_all_time_error; /* over the items that have them */
+    int kept_lines;                       /* lines of the labels to keep */
     int not_apportioned, *abundance_gas;  /* gases of the schedule that lines of the run do not drive */
     long steps_shared, steps_alone, runs; /* outer steps carried once, and if every run had been carried
                                              whole; the runs (coarse ones not counted) */
@@ -107,9 +108,11 @@ typedef struct {
     int by, benchmark_year, threads; /* threads < 1: as many as OpenMP gives */
     double share;                    /* taken away of each item, above 0 to 1 */
     int errors;                      /* 1: once more coarsely */
+    const char *const *keep;         /* [keeps] labels whose lines stay in every run and are no item */
+    int keeps;
 } ApportionAsk;
 
-/* FAULT_INPUT when no line gives anything off in the years of the case; FAULT_INTERRUPTED when watcher says
+/* FAULT_INPUT when no line gives anything off in the years of the case, or a label to keep is none; FAULT_INTERRUPTED when watcher says
  * so. progress and stop of watcher are used; progress is called by one thread at a time, share over all runs.
  * Owner: caller; model must outlive it. */
 int apportion_make(Apportionment **made, const Model *model, const ApportionAsk *ask, const Watcher *watcher,

@@ -224,18 +224,19 @@ static void free_worker(Worker *worker)
     emissions_free(worker->model.emissions);
 }
 
-/* Emissions of the whole, less the share of those of the item. */
+/* Emissions of the whole, less the share of those of the item; of every item when item < 0. */
 static void leave_out(const Runs *runs, Worker *worker, int item)
 {
     const Apportionment *to = runs->to;
     const Emissions *whole = runs->model->emissions;
     double *molecules = worker->model.emissions->molecules;
     for (int l = 0; l < whole->lines; l++)
-        molecules[l] = item < 0 ? (1.0 - to->share) * whole->molecules[l] : whole->molecules[l];
-    for (int l = 0; item >= 0 && l < to->item[item].lines; l++) {
-        int line = to->item[item].line[l];
-        molecules[line] = (1.0 - to->share) * whole->molecules[line];
-    }
+        molecules[l] = whole->molecules[l];
+    for (int i = 0; i < to->items; i++)
+        for (int l = 0; (item < 0 || i == item) && l < to->item[i].lines; l++) {
+            int line = to->item[i].line[l];
+            molecules[line] = (1.0 - to->share) * whole->molecules[line];
+        }
 }
 
 static int carry_branch(Runs *runs, Worker *worker, const Branch *branch, Fault *fault)

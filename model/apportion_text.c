@@ -99,6 +99,8 @@ static void print_whole(const Apportionment *from, FILE *out)
 static void print_abundances(const ApportionView *view, FILE *out)
 {
     const Apportionment *from = view->apportionment;
+    if (from->kept_lines)
+        fprintf(out, "  Left in every run as asked (--keep): %d lines\n", from->kept_lines);
     if (!from->not_apportioned)
         return;
     fprintf(out, "  Driven by their abundance, so not taken apart:");
@@ -435,6 +437,7 @@ void apportion_json(const ApportionView *view, FILE *out)
         json_number(out, from->column[y]);
     }
     fputc(']', out);
+    json_pair(out, "lines_kept", from->kept_lines);
     json_key(out, 1, 0, "not_apportioned");
     fputc('[', out);
     for (int g = 0; g < from->not_apportioned; g++) {

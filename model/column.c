@@ -186,8 +186,6 @@ int model_check_start(const Model *model, Fault *fault)
 {
     const Schedule *schedule = &model->schedule;
     int start = model->settings.first_year;
-    if (schedule_meets(schedule, start, model->settings.last_year, fault))
-        return fault->code;
     for (int i = 0; i < schedule->lines; i++) {
         const ScheduleLine *line = &schedule->line[i];
         int from = schedule->emission_from[line->gas];
@@ -200,6 +198,14 @@ int model_check_start(const Model *model, Fault *fault)
             schedule->gas[line->gas], from, start, from, start - 1);
     }
     return 0;
+}
+
+int model_check_years(const Model *model, Fault *fault)
+{
+    const Settings *settings = &model->settings;
+    if (schedule_meets(&model->schedule, settings->first_year, settings->last_year, fault))
+        return fault->code;
+    return model_check_start(model, fault);
 }
 
 static int set_ground(Model *model, Fault *fault)

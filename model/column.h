@@ -97,10 +97,11 @@ int model_keeps(const Model *model, int solved, double time);
 /* Velocity, cm s-1, at which the ground takes solved species s up where it does not keep it; 0: it does not.
  */
 double model_deposition(const Model *model, int solved);
-/* Whether a run can start with the first year of the case and every layer of the schedule reaches into it
- * (schedule_meets): FAULT_INPUT, naming the row, when emissions have driven a gas since before, whose
- * abundance at the start nobody has said. */
+/* Whether a run can start with the first year of the case: FAULT_INPUT, naming the row, when emissions have
+ * driven a gas since before, whose abundance at the start nobody has said. */
 int model_check_start(const Model *model, Fault *fault);
+/* The same, and whether every layer of the schedule reaches into the years of the case (schedule_meets). */
+int model_check_years(const Model *model, Fault *fault);
 
 /* A column at the initial profiles with the surface values of the run's first year. */
 int column_make(Column **made, const Model *model, Fault *fault);

@@ -9,10 +9,14 @@
 #include "commands.h"
 #include "progress.h"
 
+enum { KEEP_MOST = 32 };
+
 typedef struct {
     const char *case_path, *csv, *json;
     int by, benchmark, quick, no_errors, overwrite, quiet, threads, help;
     double percent;
+    const char *keep[KEEP_MOST];
+    int keeps;
 } Request;
 
 static void print_help(void)
@@ -26,6 +30,9 @@ static void print_help(void)
         "of them. Gases driven by their abundance are not taken apart.\n\n"
         "      --by line|gas|both  lines of one label together (default), of one gas, or of one label and "
         "gas\n"
+        "      --keep LABEL        leave the lines of this label in every run; may be given several times, "
+        "as for the\n"
+        "                          emissions that skymend schedule found implied by abundances\n"
         "      --benchmark YEAR    year whose column is to return (default 1980)\n"
         "      --part PERCENT      take away only this much of each item and divide by it (default 100); "
         "near 1 the\n"
@@ -63,6 +70,11 @@ static int take_option(Request *request, int found, Fault *fault)
     case 'p': return option_number("--part", optarg, 1e-4, 100.0, &request->percent, fault);
     case 'k': request->quick = 1; break;
     case 'n': request->no_errors = 1; break;
+    case 'l':
+        if (request->keeps == KEEP_MOST)
+            return fault_set(fault, FAULT_INPUT, "--keep: given more than %d times", KEEP_MOST);
+        request->keep[request->keeps++] = optarg;
+        break;
     case 'c': request->csv = optarg; break;
     case 'j': request->json = optarg; break;
     case 'w': request->overwrite = 1; break;
@@ -75,15 +87,22 @@ static int take_option(Request *request, int found, Fault *fault)
 
 static int read_request(Request *request, int argc, char **argv, Fault *fault)
 {
-    static const struct option options[] = {
-        {"by", required_argument, NULL, 'b'},   {"benchmark", required_argument, NULL, 'y'},
-        {"part", required_argument, NULL, 'p'}, {"no-error", no_argument, NULL, 'n'},
-        {"quick", no_argument, NULL, 'k'},      {"csv", required_argument, NULL, 'c'},
-        {"json", required_argument, NULL, 'j'}, {"overwrite", no_argument, NULL, 'w'},
-        {"quiet", no_argument, NULL, 'q'},      {"threads", required_argument, NULL, 't'},
-        {"help", no_argument, NULL, 'h'},       {NULL, 0, NULL, 0}};
-    static const char *const names[] = {"--by",   "--benchmark", "--part",  "--no-error", "--quick", "--csv",
-                                        "--json", "--overwrite", "--quiet", "--threads",  "--help",  NULL};
+    static const struct option options[] = {{"by", required_argument, NULL, 'b'},
+                                            {"benchmark", required_argument, NULL, 'y'},
+                                            {"part", required_argument, NULL, 'p'},
+                                            {"no-error", no_argument, NULL, 'n'},
+                                            {"quick", no_argument, NULL, 'k'},
+                                            {"csv", required_argument, NULL, 'c'},
+                                            {"json", required_argument, NULL, 'j'},
+                                            {"overwrite", no_argument, NULL, 'w'},
+                                            {"quiet", no_argument, NULL, 'q'},
+                                            {"threads", required_argument, NULL, 't'},
+                                            {"keep", required_argument, NULL, 'l'},
+                                            {"help", no_argument, NULL, 'h'},
+                                            {NULL, 0, NULL, 0}};
+    static const char *const names[] = {"--by",   "--benchmark", "--part",      "--no-error", "--quick",
+                                        "--csv",  "--json",      "--overwrite", "--quiet",    "--threads",
+                                        "--keep", "--help",      NULL};
     int found, before = 1;
     opterr = 0;
     optind = 1;
@@ -136,7 +155,9 @@ static int work(const Request *request, const Model *model, Fault *fault)
                               .benchmark_year = request->benchmark,
                               .threads = request->threads,
                               .share = 0.01 * request->percent,
-                              .errors = !request->no_errors};
+                              .errors = !request->no_errors,
+                              .keep = request->keep,
+                              .keeps = request->keeps};
     progress_open(&bar, request->quiet);
     int code = request->quick ? apportion_quick(&apportionment, model, &ask, &watcher, fault)
                               : apportion_make(&apportionment, model, &ask, &watcher, fault);
@@ -166,6 +187,8 @@ static int run(const Request *request, Fault *fault)
     omp_set_max_active_levels(1); /* a run is one thread's, whatever it uses */
     if (!code)
         code = model_make(&model, settings, fault);
+    if (!code)
+        code = model_check_years(model, fault);
     if (!code)
         code = work(request, model, fault);
     model_free(model);

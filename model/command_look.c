@@ -44,7 +44,7 @@ static int run_check(const Look *look, Fault *fault)
     if (!code)
         code = model_make(&model, settings, fault);
     if (!code)
-        code = model_check_start(model, fault);
+        code = model_check_years(model, fault);
     if (!code)
         code = column_make(&column, model, fault);
     if (!code)

@@ -371,7 +371,7 @@ static int run(const Request *request, Fault *fault)
         code = model_make(&model, settings, fault);
     }
     if (!code) {
-        code = model_check_start(model, fault);
+        code = model_check_years(model, fault);
     }
     if (!code)
         code = column_make(&column, model, fault);

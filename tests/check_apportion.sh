@@ -62,6 +62,7 @@ refused "no such way" "none of line, gas and both" coarse.cfg --by sector
 refused "part of nothing" "outside 0.0001 to 100" coarse.cfg --part 0
 refused "quick and a part" "leave out --part" coarse.cfg --quick --part 10
 refused "quick and no error" "leave out --no-error" coarse.cfg --quick --no-error
+refused "a label to keep that is none" 'did you mean "refrigeration"?' coarse.cfg --keep refrigeratoin
 refused "two cases" "name one" coarse.cfg other.cfg
 refused "two outputs of one name" "give each a file of its own" coarse.cfg --csv a --json a
 printf 'x\n' >there.csv
@@ -129,6 +130,18 @@ truth "without errors there are none" "$python" -c '
 import json
 d = json.load(open("threads1.json"))
 assert all(i["lost_error"] is None for i in d["items"]) and d["sum_error"] is None'
+
+# with all but one label kept, all items off is that item off: the same run
+"$SKYMEND" apportion short.cfg --no-error --quiet --json one.json --keep idle --keep refrigeration \
+    --keep "refrigeration late" --keep 'banks, foam and "other"' >output 2>errors
+truth "lines to keep are in every run" "$python" -c '
+import json
+d = json.load(open("one.json"))
+whole = json.load(open("threads1.json"))
+assert [i["line"] for i in d["items"]] == ["rockets"] and d["lines_kept"] == 4
+assert d["all"]["column_without_DU"] == d["items"][0]["column_without_DU"] and d["remainder_DU_years"] == 0
+assert d["column_DU"] == whole["column_DU"]
+assert d["items"][0]["column_without_DU"] == [i for i in whole["items"] if i["line"] == "rockets"][0]["column_without_DU"]'
 
 "$SKYMEND" apportion coarse.cfg --quick --csv q.csv --json q.json >output 2>errors
 truth "the quick way" eval '[ $? -eq 0 ] && grep -q "all time" output && "$python" -m json.tool q.json'
