@@ -235,7 +235,7 @@ static void baseline(SurfaceSeries *series, int first, int last)
     Schedule schedule;
     Mechanism *mechanism;
     snprintf(path, sizeof path, "%s/baseline-schedule.csv", data_dir());
-    if (schedule_read(&schedule, path, &fault))
+    if (schedule_read(&schedule, (const char *const[]){path}, 1, &fault))
         fail_msg("%s", fault.text);
     mechanism_of_data(&mechanism);
     assert_int_equal(surface_make(series, last - first + 1, schedule.gases, &fault), 0);
