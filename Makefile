@@ -83,7 +83,7 @@ demo:
 	@scripts/install-packages.sh build plot
 	@$(MAKE) --no-print-directory program
 	$(BUILD)/skymend project -o $(BUILD)/baseline.nc --overwrite
-	$(PYTHON) scripts/plot_column.py $(BUILD)/baseline.nc -o $(BUILD)/baseline.png
+	$(PYTHON) scripts/plot_cases.py $(BUILD)/baseline.nc -o $(BUILD)/baseline.png
 	@echo "field: $(BUILD)/baseline.nc"
 	@echo "plot:  $(BUILD)/baseline.png"
 
@@ -112,7 +112,7 @@ bench:
 install: program
 	install -d $(DESTDIR)$(PREFIX)/bin $(DESTDIR)$(PREFIX)/share/skymend
 	install -m 755 $(BUILD)/skymend $(DESTDIR)$(PREFIX)/bin/skymend
-	install -m 755 scripts/plot_column.py $(DESTDIR)$(PREFIX)/bin/skymend-plot
+	install -m 755 scripts/plot_cases.py $(DESTDIR)$(PREFIX)/bin/skymend-plot
 	cp -R input/data/. $(DESTDIR)$(PREFIX)/share/skymend/
 
 clean:

@@ -392,7 +392,7 @@ static void test_plot(void **state)
         print_message("           %s has no netCDF4 or matplotlib\n", python());
         skip();
     }
-    snprintf(arguments, sizeof arguments, "scripts/plot_column.py '%s' -o '%s'", path, image);
+    snprintf(arguments, sizeof arguments, "scripts/plot_cases.py '%s' -o '%s'", path, image);
     assert_int_equal(run(python(), arguments), 0);
     unsigned char *bytes = (unsigned char *)bytes_of(image, &size);
     /* PNG: 8 bytes of signature, then IHDR with width and height, big-endian (ISO/IEC 15948, 11.2.2) */
@@ -402,7 +402,7 @@ static void test_plot(void **state)
     assert_in_range(width, 800, 4000);
     assert_in_range(height, 800, 4000);
     free(bytes);
-    snprintf(arguments, sizeof arguments, "scripts/plot_column.py '%s' -o '%s' 2>/dev/null", image, image);
+    snprintf(arguments, sizeof arguments, "scripts/plot_cases.py '%s' -o '%s' 2>/dev/null", image, image);
     assert_int_equal(run(python(), arguments), 2);
 }
 
