@@ -112,6 +112,7 @@ class Sheet:
                 va="center", annotation_clip=False,
                 arrowprops={"arrowstyle": "-", "linewidth": 0.5, "color": colour, "shrinkA": 0, "shrinkB": 0,
                             "relpos": (0, 0.5)}), y))
+        figure.get_layout_engine().set(rect=(0, 0, 0.985, 1))
         figure.draw_without_rendering()
         for axes, named in texts.items():
             gap = 1.18 * SMALL * figure.dpi / 72
@@ -179,15 +180,18 @@ def draw_series(sheet, axes, name, year, falls, form, unit, key=True, names=True
         handles.append(Line2D([], [], color=colour, linestyle=style, label=said))
         if benchmark is not None and not any(abs(benchmark - other) < 1.5e-4 * abs(other) for other in drawn):
             axes.axhline(benchmark, color=GREY if not drawn else colour, linestyle=(0, (2, 2)), linewidth=1.0)
-            axes.annotate(f"{year}: {benchmark:{form}}{unit}", (1, benchmark), xycoords=("axes fraction", "data"),
-                          xytext=(-2, 2), textcoords="offset points", fontsize=SMALL, color=GREY, ha="right",
-                          va="bottom", path_effects=HALO)
+            # at the extreme the curve is on the other side of its benchmark
+            axes.annotate(f"{year}: {benchmark:{form}}{unit}", (case.time[extreme], benchmark),
+                          xytext=(75 * len(drawn), 2 if falls else -2), textcoords="offset points", fontsize=SMALL,
+                          color=colour if drawn else GREY, ha="center", va="bottom" if falls else "top",
+                          path_effects=HALO)
             drawn.append(benchmark)
         if back is not None:
             axes.axvline(back, color=colour, linestyle=style, linewidth=0.7, zorder=1)
             axes.plot(back, benchmark, "o", color=colour, markersize=5, markeredgecolor="white")
-            axes.annotate(f"{back:.1f}", (back, 0), xycoords=("data", "axes fraction"), xytext=(2, 3 + 9 * i),
-                          textcoords="offset points", fontsize=SMALL, color=colour, path_effects=HALO)
+            axes.annotate(f"{back:.1f}", (back, 0 if falls else 1), xycoords=("data", "axes fraction"),
+                          xytext=(2, 3 + 9 * i if falls else -9 - 9 * i), textcoords="offset points", fontsize=SMALL,
+                          color=colour, path_effects=HALO)
         if names and len(sheet.cases) > 1:
             sheet.name_end(axes, case.time[-1], values[-1], short(case.label, 24), colour)
     axes.margins(y=0.12)
@@ -197,8 +201,8 @@ def draw_series(sheet, axes, name, year, falls, form, unit, key=True, names=True
         key_above(axes, handles, handlelength=3.5)
 
 
-def panel_column(sheet, axes, year, key=True):
-    draw_series(sheet, axes, "ozone_column", year, True, ".2f", " DU", key)
+def panel_column(sheet, axes, year, names=True):
+    draw_series(sheet, axes, "ozone_column", year, True, ".2f", " DU", names=names)
     axes.set_ylabel("ozone column / DU")
 
 
@@ -405,7 +409,7 @@ def figure_gases(cases, year):
             place.autoscale(axis="y")
         place.set_title(subscripts(group))
         place.set_ylabel(f"mole fraction / {unit}")
-        years_axis(place, cases, place in axes[max(count - 2, 0):count])
+        years_axis(place, cases, place in axes[-2:])
     key_of_sheet(sheet)
     return sheet.finish()
 
@@ -527,9 +531,13 @@ def draw_lines(sheet, axes, gas, mass_of, labels):
                 if (line.gas, line.mass_of, line.label) != (gas, mass_of, label):
                     continue
                 colour = COLOURS[i % len(COLOURS)]
-                draw_steps(axes, case, line.emission, color=colour, linestyle=style, linewidth=1.4)
                 given = np.flatnonzero(line.emission > 0.0)
-                if not named and given.size:
+                if not given.size:
+                    continue
+                shown = line.emission.copy()
+                shown[:given[0]] = shown[given[-1] + 2:] = np.nan  # the zeros outside hide other lines
+                draw_steps(axes, case, shown, color=colour, linestyle=style, linewidth=1.4, zorder=3)
+                if not named:
                     sheet.name_end(axes, case.bounds[given[-1], 1], line.emission[given[-1]], short(label, 36), colour)
                     named = True
     if gas == mass_of:
@@ -593,7 +601,7 @@ def figure_page(cases, year, loss_year):
     figure = sheet.figure
     grid = figure.add_gridspec(4, 2, height_ratios=(3, 2.6, 2.5, 3.2))
     column = figure.add_subplot(grid[0, :])
-    panel_column(sheet, column, year)
+    panel_column(sheet, column, year, names=False)
     place = figure.add_subplot(grid[1, :])
     differ = difference(cases[0], cases[1]) if len(cases) == 2 else None
     if differ is not None:
@@ -604,12 +612,13 @@ def figure_page(cases, year, loss_year):
         title, label = f"O₃: {short(cases[0].label, 70)}", f"change against {year} / %"
     most = np.abs(values).max() or 1.0
     figure.colorbar(draw_field(place, part, values, CHANGE_COLOURS, -most, most), ax=place, label=label, pad=0.01)
-    place.set_title(title)
+    place.set_title(title).set_in_layout(False)
     years_axis(place, cases, False)
     panel_chlorine(sheet, figure.add_subplot(grid[2, 0]), year)
     light = figure.add_subplot(grid[2, 1])
     draw_series(sheet, light, "uv_index_noon", year, False, ".2f", "", key=False, names=False)
     light.set_ylabel("UV index at noon")
+    light.margins(y=0.2)
     light.set_title(light_title(cases[0]).replace(" of the year", ""), fontsize=SMALL).set_in_layout(False)
     panels_loss(sheet, figure.add_subplot(grid[3, 0]), figure.add_subplot(grid[3, 1]), loss_year)
     return sheet.finish()
