@@ -84,8 +84,10 @@ demo:
 	@$(MAKE) --no-print-directory program
 	$(BUILD)/skymend project -o $(BUILD)/baseline.nc --overwrite
 	$(PYTHON) scripts/plot_cases.py $(BUILD)/baseline.nc -o $(BUILD)/baseline.png
+	SKYMEND=$(BUILD)/skymend $(PYTHON) scripts/make_report.py $(BUILD)/baseline.nc -o $(BUILD)/baseline.html
 	@echo "field: $(BUILD)/baseline.nc"
 	@echo "plot:  $(BUILD)/baseline.png"
+	@echo "report: $(BUILD)/baseline.html"
 
 test:
 	@scripts/install-packages.sh test
@@ -99,7 +101,10 @@ check: program $(TESTS)
 validate:
 	@scripts/install-packages.sh test
 	@$(MAKE) --no-print-directory program $(BUILD)/tests/validate
-	$(BUILD)/tests/validate --csv $(BUILD)/validation.csv
+	rm -f $(BUILD)/validation.csv
+	@code=0; $(BUILD)/tests/validate --csv $(BUILD)/validation.csv || code=$$?; \
+	if [ -f $(BUILD)/validation.csv ]; then $(PYTHON) scripts/make_validation_status.py $(BUILD)/validation.csv \
+		-o input/data/validation-status.csv --program "Skymend $(VERSION)" || exit; fi; exit $$code
 
 # speed, side by side with CVODE on the same layers at equal accuracy
 bench:
@@ -112,7 +117,11 @@ bench:
 install: program
 	install -d $(DESTDIR)$(PREFIX)/bin $(DESTDIR)$(PREFIX)/share/skymend
 	install -m 755 $(BUILD)/skymend $(DESTDIR)$(PREFIX)/bin/skymend
-	install -m 755 scripts/plot_cases.py $(DESTDIR)$(PREFIX)/bin/skymend-plot
+	install -d $(DESTDIR)$(PREFIX)/lib/skymend
+	install -m 644 scripts/skymend_*.py $(DESTDIR)$(PREFIX)/lib/skymend/
+	install -m 755 scripts/plot_cases.py scripts/make_report.py $(DESTDIR)$(PREFIX)/lib/skymend/
+	ln -sf ../lib/skymend/plot_cases.py $(DESTDIR)$(PREFIX)/bin/skymend-plot
+	ln -sf ../lib/skymend/make_report.py $(DESTDIR)$(PREFIX)/bin/skymend-report
 	cp -R input/data/. $(DESTDIR)$(PREFIX)/share/skymend/
 
 clean:

@@ -13,6 +13,9 @@ plot_packages="python3 python3-numpy python3-matplotlib python3-xarray python3-n
 # independent solar spectrum; libsundials-dev is the reference solver.
 test_packages="libcmocka-dev libsundials-dev python3-scipy python3-pyspectral cdo nco netcdf-bin clang libomp-dev"
 
+# To look at a report; with it there tests/check_plots.sh opens one. Large, so that no test needs it.
+look_packages="chromium"
+
 # For work on the program itself.
 develop_packages="git clang clang-format shellcheck"
 
@@ -27,6 +30,7 @@ Installs with apt what is missing of the packages of each group:
   build    to compile the program
   plot     for the plots
   test     for the tests (takes in build and plot)
+  look     Chromium (300 MB), to look at a report; a test opens one where it is there
   develop  second compiler, formatter, script checker
   chroot   for scripts/chroot-check.sh
 
@@ -44,6 +48,7 @@ packages_of() {
     build) echo "$build_packages" ;;
     plot) echo "$plot_packages" ;;
     test) echo "$build_packages $plot_packages $test_packages" ;;
+    look) echo "$look_packages" ;;
     develop) echo "$develop_packages" ;;
     chroot) echo "$chroot_packages" ;;
     *) return 1 ;;

@@ -45,8 +45,8 @@ def find_program():
         return named
     called, real = os.path.abspath(sys.argv[0]), os.path.realpath(__file__)
     for place in (os.path.join(os.path.dirname(called), "skymend"),
-                  os.path.join(os.path.dirname(real), "..", "..", "bin", "skymend"),
-                  os.path.join(os.path.dirname(real), "..", "build", "skymend")):
+                  os.path.join(os.path.dirname(real), "..", "build", "skymend"),
+                  os.path.join(os.path.dirname(real), "..", "..", "bin", "skymend")):
         if os.path.isfile(place) and os.access(place, os.X_OK):
             return place
     found = shutil.which("skymend")
@@ -116,10 +116,10 @@ def bars(*facts):
         return skymend_figures.picture(skymend_figures.figure_bars(*facts), "svg", "bars")
 
 
-def section_figures(cases, pictures, absent):
+def section_figures(cases, pictures, absent, first):
     parts = ["<h2 id=\"figures\">Figures</h2>\n"]
     names = " and ".join(case.label for case in cases)
-    for count, kind in enumerate(pictures, 1):
+    for count, kind in enumerate(pictures, first):
         what = dict(FIGURES)[kind]
         parts.append(figure(pictures[kind], kind + "-", f"{what}: {names}", f"Figure {count}. {text(what)}: "
                                                                             f"{text(names)}."))
@@ -135,8 +135,7 @@ def report(options):
     program = find_program()
     status_path = options.validation or find_status(program)
     status = section.read_status(status_path) if status_path else None
-    answers_told = ask_answers(program, options)
-    answers = section.Answers(answers_told)
+    answers = section.Answers(ask_answers(program, options))
     pictures, absent = drawn(cases, options)
     question = one_line(options.question or f"What does this schedule do to the ozone layer, and when is the ozone "
                                             f"column back at its value of {options.benchmark}?")
@@ -156,9 +155,9 @@ def report(options):
             section.section_answers(answers, cases),
             section.section_schedule(cases, options.benchmark, options.schedule)]
     if told:
-        body.append(section.section_apportion(told, options.apportion, cases[0], bars, len(pictures) + 1))
-    body += [section_figures(cases, pictures, absent), section.section_sure(answers, cases, status),
-             section.section_caution(cases[0], str(answers_told.get("caution", ""))), section.section_sources(cases[0]),
+        body.append(section.section_apportion(told, options.apportion, cases[0], bars, 1))
+    body += [section_figures(cases, pictures, absent, 2 if told else 1), section.section_sure(answers, cases, status),
+             section.section_caution(cases[0]), section.section_sources(cases[0]),
              section.section_again(cases), section.appendix_answers(answers)]
     return page(cases[0].title, "<main>\n" + "".join(body) + "</main>\n")
 

@@ -458,7 +458,7 @@ def draw_loss(sheet, axes, year, share):
             axes.plot(total, case.middles, color="0.6", linestyle=style, linewidth=1.0)
     if share:
         axes.set_xlim(0, 100)
-        axes.set_xlabel("share of the loss / %")
+        axes.set_xlabel("share of the catalytic loss / %")
     else:
         axes.set_xscale("log")
         largest = max(sum(case.loss.values()).max() for case in sheet.cases)
@@ -638,8 +638,8 @@ def figure_bars(names, values, errors, label, source):
     axes.errorbar(np.array(values)[known], place[known], xerr=np.array(errors)[known], fmt="none", ecolor="black",
                   capsize=2.5, elinewidth=1.0)
     reach = max(max(abs(v) for v in values), 1e-30)
-    for y, value in zip(place, values):
-        axes.annotate(f"{value:.3g}", (max(value, 0.0) + 0.015 * reach, y), fontsize=8, va="center",
+    for y, value, error in zip(place, values, np.where(known, errors, 0.0)):
+        axes.annotate(f"{value:.3g}", (max(value + error, 0.0) + 0.015 * reach, y), fontsize=8, va="center",
                       path_effects=HALO)
     axes.set_yticks(place, [short(name, 48) for name in names])
     axes.set_xlabel(label)

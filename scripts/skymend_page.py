@@ -35,13 +35,16 @@ td.n, th.n { text-align: right; }
 tfoot td, tfoot th { border-top: 2px solid #444; }
 .error { white-space: nowrap; color: #444; }
 .small { font-size: .76rem; }
+.small th, .small td { padding: .08rem .4rem; }
+.series tbody th { min-width: 10em; }
+.keep { white-space: nowrap; }
 .wide { overflow-x: auto; }
 figure { margin: 1.4rem 0; }
 figure svg { width: 100%; height: auto; display: block; max-height: 90vh; }
 svg * { stroke-linejoin: round; stroke-linecap: butt; }
 pre { font-size: .75rem; line-height: 1.3; white-space: pre-wrap; overflow-wrap: anywhere; background: #f6f6f6;
   padding: .6rem; }
-ul.sources { font-size: .82rem; padding-left: 1.2rem; }
+.sources { font-size: .82rem; padding-left: 1.2rem; }
 td, th, li { overflow-wrap: anywhere; }
 thead th, td.n { overflow-wrap: normal; }
 @page { size: A4; margin: 16mm 15mm; }
@@ -49,12 +52,15 @@ thead th, td.n { overflow-wrap: normal; }
   body { font-size: 10pt; max-width: none; margin: 0; padding: 0; }
   nav { display: none; }
   h2, h3 { break-after: avoid; }
-  figure, .box, tr { break-inside: avoid; }
+  figure, .box, tr, table.whole { break-inside: avoid; }
   figure svg { max-height: 235mm; }
+  .sources, pre { columns: 2; column-gap: 8mm; }
+  .sources { font-size: 7pt; line-height: 1.3; }
   thead { display: table-header-group; }
   .box, thead { print-color-adjust: exact; -webkit-print-color-adjust: exact; }
   .wide { overflow: visible; }
-  table { font-size: 8pt; } .small { font-size: 7pt; } pre { font-size: 7pt; }
+  table { font-size: 7.5pt; } th, td { padding: .1rem .25rem; } .small th, .small td { padding: .02rem .25rem; }
+   .small { font-size: 7pt; } pre { font-size: 7pt; }
 }
 """
 
@@ -65,7 +71,7 @@ def text(value):
 
 
 def number(value, error=None, most=4):
-    """A number with its numerical error, digits by the error (two significant ones), else five significant digits. The
+    """A number with its numerical error, digits by the error (two significant ones), else as plain() has it. The
     element data carries all digits. A missing value is a dash."""
     if value is None or not math.isfinite(value):
         return "–"
@@ -78,10 +84,11 @@ def number(value, error=None, most=4):
 
 
 def plain(value):
-    """Five significant digits, no exponent for what a table is likely to hold."""
+    """Four significant digits and, up to 1e4, one behind the point; no exponent for what a table is likely to hold."""
     if value != 0.0 and not 1e-3 <= abs(value) < 1e7:
-        return f"{value:.4e}"
-    digits = 4 if value == 0.0 else max(4 - math.floor(math.log10(abs(value))), 0)
+        return f"{value:.3e}"
+    size = 0 if value == 0.0 else math.floor(math.log10(abs(value)))
+    digits = max(3 - size, 1 if size < 4 else 0)
     shown = f"{value:.{digits}f}"
     return shown.rstrip("0").rstrip(".") if "." in shown else shown
 
@@ -104,7 +111,8 @@ def table(caption, head, rows, numbers=(), foot=(), kind=""):
     top = "".join(f'<th scope="col"{" class=" + chr(34) + "n" + chr(34) if i in numbers else ""}>{text(cell)}</th>'
                   for i, cell in enumerate(head))
     end = f"<tfoot>{''.join(cells(row) for row in foot)}</tfoot>" if foot else ""
-    return (f'<div class="wide"><table class="{kind}"><caption>{text(caption)}</caption><thead><tr>{top}</tr></thead>'
+    kind += " whole" if len(rows) <= 30 else ""
+    return (f'<div class="wide"><table class="{kind.strip()}"><caption>{text(caption)}</caption><thead><tr>{top}</tr></thead>'
             f"<tbody>{''.join(cells(row) for row in rows)}</tbody>{end}</table></div>\n")
 
 

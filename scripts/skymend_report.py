@@ -1,12 +1,13 @@
 """The sections of a report, as HTML. What is asked of other programs and files comes in as read data."""
 
 import csv
+import difflib
 import hashlib
 import os
 import re
 
 import numpy as np
-from skymend_files import DAYS_OF_YEAR, Wrong, clean, one_line, year_mean
+from skymend_files import DAYS_OF_YEAR, Wrong, one_line, year_mean
 from skymend_page import figure, minus, number, plain, table, text
 
 UNITS = {"percent": "%", "1e-12": "ppt", "1": "", "year": "year"}
@@ -87,7 +88,8 @@ def notes_of(answers, keys, begun):
         note = answers.get(key)["note"]
         if note:
             begun.setdefault(note, len(begun) + 1)
-    return "".join(f'<sup>{begun[answers.get(key)["note"]]}</sup>' for key in keys if answers.get(key)["note"])
+    marks = sorted({begun[answers.get(key)["note"]] for key in keys if answers.get(key)["note"]})
+    return f"<sup>{', '.join(map(str, marks))}</sup>" if marks else ""
 
 
 def told_notes(begun):
@@ -107,7 +109,7 @@ def table_of_series(answers, ending, caption):
         rows.append([text(answers.name(series)) + notes_of(answers, keys, begun)] + [answers.cell(k) for k in keys])
     head = ["series, unit", f"mean of {answers.benchmark}", "extreme", "in", "extreme less benchmark", "the same, %",
             "last year less benchmark", "back at the benchmark in"]
-    return table(caption, head, rows, range(1, 8)) + told_notes(begun)
+    return table(caption, head, rows, range(1, 8), kind="series") + told_notes(begun)
 
 
 def table_against(answers, case, reference):
@@ -125,7 +127,8 @@ def table_against(answers, case, reference):
     head = ["series, unit", "integral over time, unit × year", "mean difference", "largest difference", "in",
             "delay of the return, years", "the same, running mean"]
     return table(f"{case.label} against {reference.label}. Difference: the first less the second; depletion and excess "
-                 "count what the first makes worse as positive.", head, rows, range(1, 7)) + told_notes(begun)
+                 "count what the first makes worse as positive.", head, rows, range(1, 7),
+                 kind="series") + told_notes(begun)
 
 
 def section_answers(answers, cases):
@@ -140,14 +143,18 @@ def section_answers(answers, cases):
 
 
 def appendix_answers(answers):
-    rows = [[f"<code>{text(key)}</code>", text(a["label"]), number(a["value"]) if a["value"] is None else
-             f'<data value="{a["value"]!r}">{minus(format(a["value"], ".9g"))}</data>', text(unit_text(a["unit"])),
-             "–" if a["numerical_error"] is None else f'{a["numerical_error"]:.2g}',
-             text(a["method"]) + (f" <em>{text(a['note'])}</em>" if a["note"] else "")]
-            for key, a in answers.all.items()]
+    """All answers in full; methods, which many share, stand in a list of their own."""
+    methods, rows = {}, []
+    for key, a in answers.all.items():
+        value = "–" if a["value"] is None else f'<data value="{a["value"]!r}">{minus(format(a["value"], ".9g"))}</data>'
+        rows.append([f'<code class="keep">{text(key)}</code>', value, text(unit_text(a["unit"])),
+                     "–" if a["numerical_error"] is None else f'{a["numerical_error"]:.2g}',
+                     str(methods.setdefault(a["method"], len(methods) + 1))])
+    listed = "".join(f"<li>{text(method)}</li>" for method in methods)
     return "<h2 id=\"all\">Appendix: every answer and how it is found</h2>\n" + table(
-        "In full, as skymend answers gives them.", ["id", "what", "value", "unit", "numerical error", "method"], rows,
-        (2, 4), kind="small")
+        "In full, as skymend answers gives them; the methods are listed below.",
+        ["id", "value", "unit", "numerical error", "method"], rows, (1, 3, 4), kind="small") + \
+        f"<h3>Methods</h3>\n<ol class=\"sources\">{listed}</ol>\n"
 
 
 # ---- the schedule ----
@@ -176,15 +183,14 @@ def driven(case, gas):
     if not lines:
         return "its abundance"
     if any(line.mass_of != gas.name for line in lines):
-        return f"see the lines ({len(lines)})"
+        return "see its lines"
+    count = f"{len(lines)} line" + ("s" if len(lines) > 1 else "")
     total = sum(line.emission for line in lines)
     same = np.isclose(gas.emission, total, rtol=1e-6, atol=1e-9)
     first = int(np.flatnonzero(~same)[-1]) + 1 if not same.all() else 0
     if first >= case.time.size:
-        return f"its abundance; {len(lines)} lines beside it"
-    if first == 0:
-        return f"emissions, {len(lines)} lines"
-    return f"its abundance, from {int(case.time[first])} on emissions, {len(lines)} lines"
+        return f"its abundance; {count} beside it"
+    return f"emissions, {count}" if first == 0 else f"its abundance, from {int(case.time[first])} on emissions, {count}"
 
 
 def table_lines(case):
@@ -209,13 +215,13 @@ def table_gases(case, benchmark):
             ("ppt", 1e12)
         then = year_mean(case.time, gas.surface, benchmark)
         life = gas.lifetime[np.isfinite(gas.lifetime)]
-        rows.append([text(gas.name), text(driven(case, gas)), number(factor * float(gas.surface[0])),
+        rows.append([f'<span class="keep">{text(gas.name)}</span>', text(driven(case, gas)), number(factor * float(gas.surface[0])),
                      number(None if then is None else factor * float(then)), number(factor * float(gas.surface[-1])),
                      unit, number(float(np.nansum(gas.emission * years)) / 1e3),
                      number(float(life[-1])) if life.size else "–"])
     return table("Source gases: mole fraction in the lowest layer; emission, where an abundance is given, is what keeps "
                  "it there; lifetime against loss in the column in the last interval that has one.",
-                 ["gas", "driven by", f"in {case.time[0]:.0f}" if case.time[0] % 1 == 0 else f"{case.time[0]:.1f}",
+                 ["gas", "driven by", f"{case.time[0]:.1f}",
                   f"mean of {benchmark}", f"{case.time[-1]:.1f}", "unit", "emission over the run / Tg",
                   "lifetime / years"], rows, (2, 3, 4, 6, 7))
 
@@ -250,11 +256,11 @@ def section_schedule(cases, benchmark, files):
     for case in cases:
         layers = setting(case, "schedule_layers").strip("[] ")
         parts.append(f"<p><strong>{text(case.label)}</strong> ({text(os.path.basename(case.path))}): "
-                     f"{case.bounds[0, 0]:.0f} to {case.bounds[-1, 1] - 1e-6:.0f}, schedule "
+                     f"{int(case.bounds[0, 0])} to {int(case.bounds[-1, 1] - 1e-6)}, schedule "
                      f"{text(setting(case, 'schedule') or 'not named in the file')}"
                      + (f", over it {text(layers)}" if layers else "") + f"; layers of "
                      f"{plain(float(np.diff(case.edges).min()))} to {plain(float(np.diff(case.edges).max()))} km, "
-                     f"temperature {text(setting(case, 'mode') or '?')}.</p>\n")
+                     f"temperature.mode {text(setting(case, 'mode') or 'not known')}.</p>\n")
     for case in cases:
         if case.lines or case is cases[0]:
             parts.append(table_lines(case))
@@ -441,10 +447,9 @@ def local_name(line):
     return re.sub(r"^(?:/[^:/]+)+/([^:/]+: )", r"\1", line)
 
 
-def section_caution(case, answers_caution):
+def section_caution(case):
     parts = ["<h2 id=\"caution\">Caution</h2>\n<div class=\"box caution\">"]
     parts.append(f"<p>{text(case.attributes.get('caution', ''))}</p>")
-    parts.append(f"<p>{text(answers_caution[:1].upper() + answers_caution[1:])}.</p>")
     parts.append("<p>Ultraviolet is that of a clear sky over level ground at sea level: a planning figure, no guide to "
                  "personal exposure. Decisions about health, regulation or policy defer to the competent authority "
                  "and its own methods.</p></div>\n")
@@ -454,7 +459,13 @@ def section_caution(case, answers_caution):
 def section_again(cases):
     parts = ["<h2 id=\"again\">To compute it again</h2>\n"]
     for case in cases:
+        resolved, caption = case.attributes.get("resolved_case", ""), ""
+        if case is not cases[0]:
+            resolved = "\n".join(line for line in difflib.unified_diff(
+                cases[0].attributes.get("resolved_case", "").splitlines(), resolved.splitlines(), lineterm="", n=0)
+                if not line.startswith(("---", "+++", "@@"))) or "(no difference)"
+            caption = "<br>Its case against that above, line by line (−: there, +: here):"
         parts.append(f"<h3>{text(case.label)}</h3>\n<p class=\"small\">{text(case.attributes.get('source', ''))}<br>"
-                     f"{text(one_line(case.attributes.get('history', '')))}</p>\n"
-                     f"<pre>{text(clean(case.attributes.get('resolved_case', '')))}</pre>\n")
+                     f"{text(one_line(case.attributes.get('history', '')))}{caption}</p>\n"
+                     f"<pre>{text(resolved)}</pre>\n")
     return "".join(parts)
