@@ -40,6 +40,8 @@ STYLE = {
     "svg.fonttype": "none", "svg.hashsalt": "skymend", "pdf.fonttype": 42, "figure.constrained_layout.use": True,
 }
 HALO = [patheffects.withStroke(linewidth=2.0, foreground="white")]
+# behind text: a halo would make outlines of it, which nobody can search, hear or copy
+BEHIND = {"facecolor": "white", "alpha": 0.75, "edgecolor": "none", "pad": 0.5}
 
 CAUTION = ("One near-global column without polar winter, ozone hole or change of circulation; a planning figure. "
            "Defer to the competent authority.")
@@ -184,14 +186,14 @@ def draw_series(sheet, axes, name, year, falls, form, unit, key=True, names=True
             axes.annotate(f"{year}: {benchmark:{form}}{unit}", (case.time[extreme], benchmark),
                           xytext=(75 * len(drawn), 2 if falls else -2), textcoords="offset points", fontsize=SMALL,
                           color=colour if drawn else GREY, ha="center", va="bottom" if falls else "top",
-                          path_effects=HALO)
+                          bbox=BEHIND)
             drawn.append(benchmark)
         if back is not None:
             axes.axvline(back, color=colour, linestyle=style, linewidth=0.7, zorder=1)
             axes.plot(back, benchmark, "o", color=colour, markersize=5, markeredgecolor="white")
             axes.annotate(f"{back:.1f}", (back, 0 if falls else 1), xycoords=("data", "axes fraction"),
                           xytext=(2, 3 + 9 * i if falls else -9 - 9 * i), textcoords="offset points", fontsize=SMALL,
-                          color=colour, path_effects=HALO)
+                          color=colour, bbox=BEHIND)
         if names and len(sheet.cases) > 1:
             sheet.name_end(axes, case.time[-1], values[-1], short(case.label, 24), colour)
     axes.margins(y=0.12)
@@ -225,7 +227,7 @@ def contours(axes, case, values, low, high):
     for collection in getattr(lines, "collections", [lines]):  # one artist from matplotlib 3.8 on
         collection.set_path_effects(HALO)
     for text in axes.clabel(lines, fmt="%g", fontsize=SMALL):
-        text.set_path_effects(HALO)
+        text.set_bbox(BEHIND)
 
 
 def draw_field(axes, case, values, colours, low, high):
@@ -377,7 +379,7 @@ def panel_chlorine(sheet, axes, year, label=True):
             if back is not None:
                 axes.plot(back, benchmark, "o", color=colour, markersize=5, markeredgecolor="white")
                 axes.annotate(f"{back:.1f}", (back, benchmark), xytext=(0, 4 + 9 * sheet.cases.index(case)),
-                              textcoords="offset points", fontsize=SMALL, color=colour, path_effects=HALO,
+                              textcoords="offset points", fontsize=SMALL, color=colour, bbox=BEHIND,
                               ha="center" if i == 0 else "left")
             if case is sheet.cases[0]:
                 sheet.name_end(axes, case.time[-1], values[-1], f"{age} years", BLACK)
@@ -482,7 +484,7 @@ def name_families(axes, case, year):
         right = share[at] < 85.0  # there is room to the right of the curve
         axes.annotate(family, (share[at], case.middles[at]), xytext=(3 if right else -4, 0),
                       textcoords="offset points", ha="left" if right else "right", va="center", fontsize=8,
-                      fontweight="bold", color=FAMILY_COLOURS[family], path_effects=HALO)
+                      fontweight="bold", color=FAMILY_COLOURS[family], bbox=BEHIND)
 
 
 def panels_loss(sheet, left, right, year):
@@ -640,7 +642,7 @@ def figure_bars(names, values, errors, label, source):
     reach = max(max(abs(v) for v in values), 1e-30)
     for y, value, error in zip(place, values, np.where(known, errors, 0.0)):
         axes.annotate(f"{value:.3g}", (max(value + error, 0.0) + 0.015 * reach, y), fontsize=8, va="center",
-                      path_effects=HALO)
+                      bbox=BEHIND)
     axes.set_yticks(place, [short(name, 48) for name in names])
     axes.set_xlabel(label)
     axes.axvline(0.0, color="black", linewidth=0.8)
