@@ -597,32 +597,52 @@ def telling_year(cases, benchmark_year):
     return int(case.time[after[np.argmin(case.column[after])]])
 
 
-def figure_page(cases, year, loss_year):
-    """One page: column, change by altitude and time, equivalent chlorine, ultraviolet, loss by family."""
-    sheet = Sheet(cases, 10.2, light=True)
-    figure = sheet.figure
-    grid = figure.add_gridspec(4, 2, height_ratios=(3, 2.6, 2.5, 3.2))
-    column = figure.add_subplot(grid[0, :])
-    panel_column(sheet, column, year, names=False)
-    place = figure.add_subplot(grid[1, :])
-    differ = difference(cases[0], cases[1]) if len(cases) == 2 else None
+def draw_change(sheet, axes, year):
+    """Of two cases the difference of their ozone, else the change of the first against the benchmark year; where the file
+    does not cover that, ozone itself."""
+    case = sheet.cases[0]
+    differ = difference(*sheet.cases) if len(sheet.cases) == 2 else None
+    colours, low = CHANGE_COLOURS, None
     if differ is not None:
-        records, values, part = differ[0], differ[1], cut(cases[0], differ[0])
-        title, label = f"O₃: {short(cases[0].label, 40)} less {short(cases[1].label, 40)}", "difference / %"
+        values, part = differ[1], cut(case, differ[0])
+        title, label = f"O₃: {short(case.label, 40)} less {short(sheet.cases[1].label, 40)}", "difference / %"
+    elif year_mean(case.time, case.fraction, year) is not None:
+        values, part = change(case, year), case
+        title, label = f"O₃: {short(case.label, 70)}", f"change against {year} / %"
     else:
-        values, part = change(cases[0], year), cases[0]
-        title, label = f"O₃: {short(cases[0].label, 70)}", f"change against {year} / %"
+        values, part = case.fraction * case.air / 1e12, case
+        title, label = f"O₃: {short(case.label, 70)}", "number density / 10¹² cm⁻³"
+        colours, low = FIELD_COLOURS, 0.0
     most = np.abs(values).max() or 1.0
-    figure.colorbar(draw_field(place, part, values, CHANGE_COLOURS, -most, most), ax=place, label=label, pad=0.01)
-    place.set_title(title).set_in_layout(False)
-    years_axis(place, cases, False)
-    panel_chlorine(sheet, figure.add_subplot(grid[2, 0]), year)
-    light = figure.add_subplot(grid[2, 1])
-    draw_series(sheet, light, "uv_index_noon", year, False, ".2f", "", key=False, names=False)
-    light.set_ylabel("UV index at noon")
-    light.margins(y=0.2)
-    light.set_title(light_title(cases[0]).replace(" of the year", ""), fontsize=SMALL).set_in_layout(False)
-    panels_loss(sheet, figure.add_subplot(grid[3, 0]), figure.add_subplot(grid[3, 1]), loss_year)
+    mesh = draw_field(axes, part, values, colours, -most if low is None else low, most)
+    sheet.figure.colorbar(mesh, ax=axes, label=label, pad=0.01)
+    axes.set_title(title).set_in_layout(False)
+    years_axis(axes, sheet.cases, False)
+
+
+def panel_light(sheet, axes, year):
+    draw_series(sheet, axes, "uv_index_noon", year, False, ".2f", "", key=False, names=False)
+    axes.set_ylabel("UV index at noon")
+    axes.margins(y=0.2)
+    axes.set_title(light_title(sheet.cases[0]).replace(" of the year", ""), fontsize=SMALL).set_in_layout(False)
+
+
+def figure_page(cases, year, loss_year):
+    """One page: column, change by altitude and time, and what the files have of equivalent chlorine (finished runs only),
+    ultraviolet and loss by family."""
+    light = all("uv_index_noon" in case.series for case in cases)
+    small = [panel_chlorine] * all("equivalent_chlorine_3yr" in case.series for case in cases) + [panel_light] * light
+    loss = all(case.loss and all(year_mean(case.time, values, loss_year) is not None for values in case.loss.values())
+               for case in cases)
+    heights = [3.0, 2.6] + [2.5] * bool(small) + [3.2] * loss
+    sheet = Sheet(cases, 0.9 * sum(heights), light=light)
+    grid = sheet.figure.add_gridspec(len(heights), 2, height_ratios=heights)
+    panel_column(sheet, sheet.figure.add_subplot(grid[0, :]), year, names=False)
+    draw_change(sheet, sheet.figure.add_subplot(grid[1, :]), year)
+    for i, panel in enumerate(small):
+        panel(sheet, sheet.figure.add_subplot(grid[2, i] if len(small) == 2 else grid[2, :]), year)
+    if loss:
+        panels_loss(sheet, sheet.figure.add_subplot(grid[-1, 0]), sheet.figure.add_subplot(grid[-1, 1]), loss_year)
     return sheet.finish()
 
 

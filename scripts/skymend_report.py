@@ -313,7 +313,7 @@ def same_run(told, case):
     except (KeyError, TypeError, ValueError):
         return None
     pairs = [(mine, float(value)) for mine, value in pairs if mine is not None and value is not None]
-    return max(abs(mine - value) for mine, value in pairs) < 0.01 if pairs else None
+    return bool(max(abs(mine - value) for mine, value in pairs) < 0.01) if pairs else None
 
 
 def section_apportion(told, path, case, bars, number_of_figure):
