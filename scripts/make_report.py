@@ -97,12 +97,13 @@ def drawn(cases, options):
     """Kind -> picture of every figure that the files have, and kind -> why not of the others."""
     import matplotlib.pyplot as plt
     import skymend_figures
+    import skymend_sheet
     pictures, absent = {}, {}
-    with plt.rc_context(skymend_figures.STYLE):
+    with plt.rc_context(skymend_sheet.STYLE):
         for kind, _ in FIGURES:
             try:
                 made = skymend_figures.draw(kind, cases, options.benchmark, options.year)
-                pictures[kind] = skymend_figures.picture(made, "svg", kind)
+                pictures[kind] = skymend_sheet.picture(made, "svg", kind)
             except Wrong as error:
                 absent[kind] = str(error)
                 plt.close("all")
@@ -112,8 +113,9 @@ def drawn(cases, options):
 def bars(*facts):
     import matplotlib.pyplot as plt
     import skymend_figures
-    with plt.rc_context(skymend_figures.STYLE):
-        return skymend_figures.picture(skymend_figures.figure_bars(*facts), "svg", "bars")
+    import skymend_sheet
+    with plt.rc_context(skymend_sheet.STYLE):
+        return skymend_sheet.picture(skymend_figures.figure_bars(*facts), "svg", "bars")
 
 
 def section_figures(cases, pictures, absent, first):

@@ -43,12 +43,13 @@ def main():
     try:
         import matplotlib.pyplot as plt
         import skymend_figures
+        import skymend_sheet
         cases = [read_case(path, label) for path, label
                  in zip(options.files, options.label or [None] * len(options.files))]
-        with plt.rc_context(skymend_figures.STYLE):
+        with plt.rc_context(skymend_sheet.STYLE):
             figure = skymend_figures.draw(options.figure, cases, options.benchmark, options.year, options.quantity)
             form = options.output.lower().rsplit(".", 1)[1]
-            content = skymend_figures.picture(figure, form, f"{options.figure}: {cases[0].title}")
+            content = skymend_sheet.picture(figure, form, f"{options.figure}: {cases[0].title}")
         write_whole(options.output, content)
     except Wrong as error:
         print(f"{name}: {error}", file=sys.stderr)

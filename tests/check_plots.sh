@@ -248,10 +248,11 @@ for name in ("Ox", "HOx", "NOx", "ClOx", "BrOx", "loss of odd oxygen / cm⁻³ s
 # ---- the functions ----
 import matplotlib.pyplot as plt
 import skymend_figures as figures
+import skymend_sheet as sheets
 from skymend_files import read_case, return_year
 
 case = read_case("late.nc")
-with plt.rc_context(figures.STYLE):
+with plt.rc_context(sheets.STYLE):
     sheet = figures.draw("loss", [case], 1980, 1985)
     left, right = sheet.axes[:2]
     # five families and their sum on the left
@@ -277,13 +278,13 @@ seed = np.random.default_rng(20261201)
 good = True
 for _ in range(300):
     wanted = np.sort(seed.uniform(0, 100, seed.integers(1, 9)))
-    place = np.array(figures.spread(wanted, 5.0, 0.0, 100.0))
+    place = np.array(sheets.spread(wanted, 5.0, 0.0, 100.0))
     good &= bool((np.diff(place) > 5.0 - 1e-9).all() and place[0] > -1e-9 and place[-1] < 100 + 1e-9)
     far = wanted.size == 1 or np.diff(wanted).min() >= 5.0
     good &= not far or np.allclose(place, wanted)
 check("names spread: gaps kept, within the axes, unmoved where there is room", good)
 # two names wanted at one place lie half a gap to each side: the least sum of squares
-check("names spread evenly about one place", np.allclose(figures.spread([50, 50], 6, 0, 100), [47, 53]))
+check("names spread evenly about one place", np.allclose(sheets.spread([50, 50], 6, 0, 100), [47, 53]))
 check("a rise back from above", abs(return_year(np.arange(5.0), np.array([1.0, 3.0, 4.0, 2.0, 0.0]), 0, 1.0, False) -
                                     3.5) < 1e-12)
 check("elements are not mistaken", figures.atoms("CCl3F", "Cl") and not figures.atoms("CCl4", "C" + "r") and
