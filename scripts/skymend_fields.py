@@ -99,8 +99,8 @@ def figure_ozone(cases, _year, quantity="density"):
 
 
 def draw_change(sheet, axes, year):
-    """Of two cases the difference of their ozone, else the change of the first against the benchmark year; where the file
-    does not cover that, ozone itself."""
+    """Of two cases the difference of their ozone, else the change of the first against the benchmark year; where the
+    file does not cover that, ozone itself."""
     case = sheet.cases[0]
     differ = difference(*sheet.cases) if len(sheet.cases) == 2 else None
     colours, low = CHANGE_COLOURS, None

@@ -8,8 +8,8 @@ from matplotlib.lines import Line2D
 from matplotlib.ticker import FuncFormatter, LogLocator, NullFormatter
 from skymend_fields import draw_change, figure_anomaly, figure_ozone
 from skymend_files import Wrong, interval_edges, return_year, year_mean
-from skymend_sheet import (BEHIND, BLACK, BLUE, CASE_STYLES, CAUTION, COLOURS, FAMILY_COLOURS, GREY, SMALL, WIDTH, Sheet,
-                           key_above, key_of_sheet, power_of_ten, short, subscripts, years_axis)
+from skymend_sheet import (BEHIND, BLACK, BLUE, CASE_STYLES, CAUTION, COLOURS, FAMILY_COLOURS, GREY, SMALL, WIDTH,
+                           Sheet, key_above, key_of_sheet, power_of_ten, short, subscripts, years_axis)
 
 # ---- series against a benchmark ----
 
@@ -370,8 +370,8 @@ def panel_light(sheet, axes, year):
 
 
 def figure_page(cases, year, loss_year):
-    """One page: column, change by altitude and time, and what the files have of equivalent chlorine (finished runs only),
-    ultraviolet and loss by family."""
+    """One page: column, change by altitude and time, and what the files have of equivalent chlorine (finished runs
+    only), ultraviolet and loss by family."""
     light = all("uv_index_noon" in case.series for case in cases)
     small = [panel_chlorine] * all("equivalent_chlorine_3yr" in case.series for case in cases) + [panel_light] * light
     loss = all(case.loss and all(year_mean(case.time, values, loss_year) is not None for values in case.loss.values())

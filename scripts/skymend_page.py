@@ -108,12 +108,12 @@ def table(caption, head, rows, numbers=(), foot=(), kind=""):
             made.append(f'<th scope="row"{side}>{cell}</th>' if i == 0 else f"<td{side}>{cell}</td>")
         return "<tr>" + "".join(made) + "</tr>"
 
-    top = "".join(f'<th scope="col"{" class=" + chr(34) + "n" + chr(34) if i in numbers else ""}>{text(cell)}</th>'
-                  for i, cell in enumerate(head))
+    side = [' class="n"' if i in numbers else "" for i in range(len(head))]
+    top = "".join(f'<th scope="col"{side[i]}>{text(cell)}</th>' for i, cell in enumerate(head))
     end = f"<tfoot>{''.join(cells(row) for row in foot)}</tfoot>" if foot else ""
     kind += " whole" if len(rows) <= 30 else ""
-    return (f'<div class="wide"><table class="{kind.strip()}"><caption>{text(caption)}</caption><thead><tr>{top}</tr></thead>'
-            f"<tbody>{''.join(cells(row) for row in rows)}</tbody>{end}</table></div>\n")
+    return (f'<div class="wide"><table class="{kind.strip()}"><caption>{text(caption)}</caption>'
+            f"<thead><tr>{top}</tr></thead><tbody>{''.join(cells(row) for row in rows)}</tbody>{end}</table></div>\n")
 
 
 def inline_svg(content, prefix, label):

@@ -146,7 +146,8 @@ def appendix_answers(answers):
     """All answers in full; methods, which many share, stand in a list of their own."""
     methods, rows = {}, []
     for key, a in answers.all.items():
-        value = "–" if a["value"] is None else f'<data value="{a["value"]!r}">{minus(format(a["value"], ".9g"))}</data>'
+        full = "" if a["value"] is None else minus(format(a["value"], ".9g"))
+        value = f'<data value="{a["value"]!r}">{full}</data>' if full else "–"
         rows.append([f'<code class="keep">{text(key)}</code>', value, text(unit_text(a["unit"])),
                      "–" if a["numerical_error"] is None else f'{a["numerical_error"]:.2g}',
                      str(methods.setdefault(a["method"], len(methods) + 1))])
@@ -190,7 +191,8 @@ def driven(case, gas):
     first = int(np.flatnonzero(~same)[-1]) + 1 if not same.all() else 0
     if first >= case.time.size:
         return f"its abundance; {count} beside it"
-    return f"emissions, {count}" if first == 0 else f"its abundance, from {int(case.time[first])} on emissions, {count}"
+    from_when = f"its abundance, from {int(case.time[first])} on " if first else ""
+    return f"{from_when}emissions, {count}"
 
 
 def table_lines(case):
@@ -215,12 +217,13 @@ def table_gases(case, benchmark):
             ("ppt", 1e12)
         then = year_mean(case.time, gas.surface, benchmark)
         life = gas.lifetime[np.isfinite(gas.lifetime)]
-        rows.append([f'<span class="keep">{text(gas.name)}</span>', text(driven(case, gas)), number(factor * float(gas.surface[0])),
+        rows.append([f'<span class="keep">{text(gas.name)}</span>', text(driven(case, gas)),
+                     number(factor * float(gas.surface[0])),
                      number(None if then is None else factor * float(then)), number(factor * float(gas.surface[-1])),
                      unit, number(float(np.nansum(gas.emission * years)) / 1e3),
                      number(float(life[-1])) if life.size else "–"])
-    return table("Source gases: mole fraction in the lowest layer; emission, where an abundance is given, is what keeps "
-                 "it there; lifetime against loss in the column in the last interval that has one.",
+    return table("Source gases: mole fraction in the lowest layer; emission, where an abundance is given, is what "
+                 "keeps it there; lifetime against loss in the column in the last interval that has one.",
                  ["gas", "driven by", f"{case.time[0]:.1f}",
                   f"mean of {benchmark}", f"{case.time[-1]:.1f}", "unit", "emission over the run / Tg",
                   "lifetime / years"], rows, (2, 3, 4, 6, 7))
