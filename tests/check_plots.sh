@@ -269,7 +269,9 @@ with plt.rc_context(sheets.STYLE):
     sheet = figures.draw("gases", [case, read_case("base.nc")], 1980)
     sheet.canvas.draw()
     for axes in sheet.axes:
-        boxes = sorted((text.get_window_extent() for text in axes.texts if text.xyann[0] > 1.0), key=lambda b: b.y0)
+        # of the text alone, not of the line that leads to it
+        boxes = sorted((matplotlib.text.Text.get_window_extent(text) for text in axes.texts if text.xyann[0] > 1.0),
+                       key=lambda box: box.y0)
         check(f"names at the ends lie apart: {axes.get_title('left') or axes.get_ylabel()}",
               all(a.y1 <= b.y0 + 1.0 for a, b in zip(boxes, boxes[1:])))
 plt.close("all")
