@@ -61,7 +61,12 @@ def short_answers(answers, cases):
     """The few sentences that most readers come for."""
     said = []
     column, year = "ozone_column", answers.benchmark
-    if column in answers.series:
+    known = answers.get("ozone_column_benchmark")["value"] is not None
+    if column in answers.series and not known:
+        said.append(f"The ozone column is lowest in {answers.cell('ozone_column_lowest_year')} at "
+                    f"{answers.cell('ozone_column_lowest')} DU. <strong>No change against {year} and no year of "
+                    f"return</strong>: {text(answers.get('ozone_column_return_year')['note'])}.")
+    elif column in answers.series:
         said.append(f"The ozone column, {answers.cell('ozone_column_benchmark')} DU in {year}, is lowest in "
                     f"{answers.cell('ozone_column_lowest_year')} at {answers.cell('ozone_column_lowest')} DU, "
                     f"{answers.cell('ozone_column_change_percent')} % against {year}.")
@@ -71,8 +76,8 @@ def short_answers(answers, cases):
                        f"{answers.cell('ozone_column_return_year_smoothed')})." if back["value"] is not None else
                        f": {text(back['note'])}."))
     if "uv_index_noon" in answers.series:
-        said.append(f"The UV index at noon under a clear sky is at most {answers.cell('uv_index_noon_highest')}, "
-                    f"{answers.cell('uv_index_noon_change_percent')} % against {year}.")
+        said.append(f"The UV index at noon under a clear sky is at most {answers.cell('uv_index_noon_highest')}"
+                    + (f", {answers.cell('uv_index_noon_change_percent')} % against {year}" if known else "") + ".")
     if len(cases) > 1:
         delay = answers.get("ozone_column_return_delay")
         said.append(f"Against <em>{text(cases[1].label)}</em> it costs "

@@ -118,6 +118,11 @@ SKYMEND_DATA=$TEST_DIR/bare "$python" "$scripts/make_report.py" base.nc -o bare.
 truth "data without validation status: it says so" eval 'grep -q "No validation status lies with" bare.html'
 rm -rf bare
 
+report base.nc --benchmark 2050 -o unknown.html
+truth "a benchmark outside the file: it says so, and the anomaly is not drawn" eval '
+    grep -q "No change against 2050 and no year of return</strong>: the file does not cover" unknown.html &&
+    grep -q "Not drawn: ozone by altitude and time.*: .*no change against 2050" unknown.html'
+
 cp plain.html kept.html
 refused "a file that is not there" 2 "none.nc" none.nc -o x.html
 refused "a file that is no NetCDF" 2 "late.csv" late.csv -o x.html
