@@ -155,11 +155,11 @@ def appendix_answers(answers):
         value = f'<data value="{a["value"]!r}">{full}</data>' if full else "–"
         rows.append([f'<code class="keep">{text(key)}</code>', value, text(unit_text(a["unit"])),
                      "–" if a["numerical_error"] is None else f'{a["numerical_error"]:.2g}',
-                     str(methods.setdefault(a["method"], len(methods) + 1))])
+                     str(methods.setdefault(a["method"], len(methods) + 1)), text(a["note"])])
     listed = "".join(f"<li>{text(method)}</li>" for method in methods)
     return "<h2 id=\"all\">Appendix: every answer and how it is found</h2>\n" + table(
         "In full, as skymend answers gives them; the methods are listed below.",
-        ["id", "value", "unit", "numerical error", "method"], rows, (1, 3, 4), kind="small") + \
+        ["id", "value", "unit", "numerical error", "method", "remark"], rows, (1, 3, 4), kind="small") + \
         f"<h3>Methods</h3>\n<ol class=\"sources\">{listed}</ol>\n"
 
 
