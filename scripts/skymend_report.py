@@ -148,19 +148,22 @@ def section_answers(answers, cases):
 
 
 def appendix_answers(answers):
-    """All answers in full; methods, which many share, stand in a list of their own."""
-    methods, rows = {}, []
+    """All answers in full; methods and remarks, which many share, stand in lists of their own."""
+    methods, remarks, rows = {}, {}, []
     for key, a in answers.all.items():
         full = "" if a["value"] is None else minus(format(a["value"], ".9g"))
         value = f'<data value="{a["value"]!r}">{full}</data>' if full else "–"
         rows.append([f'<code class="keep">{text(key)}</code>', value, text(unit_text(a["unit"])),
                      "–" if a["numerical_error"] is None else f'{a["numerical_error"]:.2g}',
-                     str(methods.setdefault(a["method"], len(methods) + 1)), text(a["note"])])
-    listed = "".join(f"<li>{text(method)}</li>" for method in methods)
+                     str(methods.setdefault(a["method"], len(methods) + 1)),
+                     str(remarks.setdefault(a["note"], len(remarks) + 1)) if a["note"] else ""])
+    lists = "".join(f"<h3>{name}</h3>\n<ol class=\"sources\">{''.join(f'<li>{text(line)}</li>' for line in lines)}</ol>\n"
+                    for name, lines in (("Methods", methods), ("Remarks", remarks)) if lines)
     return "<h2 id=\"all\">Appendix: every answer and how it is found</h2>\n" + table(
-        "In full, as skymend answers gives them; the methods are listed below.",
-        ["id", "value", "unit", "numerical error", "method", "remark"], rows, (1, 3, 4), kind="small") + \
-        f"<h3>Methods</h3>\n<ol class=\"sources\">{listed}</ol>\n"
+        "In full, as skymend answers gives them; methods and remarks are listed below.",
+        ["id", "value", "unit", "numerical error", "method", "remark"], rows,
+        (1, 3, 4, 5), kind="small") + \
+        lists
 
 
 # ---- the schedule ----

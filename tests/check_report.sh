@@ -148,6 +148,7 @@ cat >look.py <<'PY'
 """What the pages hold."""
 import csv
 import hashlib
+import html
 import html.parser
 import json
 import os
@@ -243,8 +244,11 @@ lost = [key for key, answer in answers.items() if answer["value"] is not None an
         full.row_of(key + format(answer["value"], ".9g").replace("-", "\u2212"))["data"] != [answer["value"]]]
 check("every answer, to the last digit", len(answers) > 50 and not lost, lost[:5])
 check("their methods", all(answer["method"] in full.text for answer in answers.values()))
-lost = [key for key, answer in answers.items() if not any(
-    row["text"].startswith(key) and row["text"].endswith(answer["note"]) for row in full.rows)]
+remarks = re.findall("<li>(.*?)</li>", full.source[full.source.index("<h3>Remarks</h3>"):])
+lost = [key for key, answer in answers.items() if answer["note"] and not any(
+    row["text"].startswith(key + ("–" if answer["value"] is None else format(answer["value"], ".9g").replace(
+        "-", "\u2212"))) and row["text"].endswith(str(remarks.index(html.escape(answer["note"])) + 1))
+    for row in full.rows)]
 check("their remarks", not lost and any(answer["note"] for answer in answers.values()), lost[:5])
 row = full.row_of("ozone column, DU")
 check("the comparison", row["data"][0] == answers["ozone_column_integrated_depletion"]["value"], row)
