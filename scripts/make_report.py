@@ -155,7 +155,7 @@ def report(options):
             section.short_answers(answers, cases),
             f"<p class=\"small\">{text(cases[0].attributes.get('caution', ''))}</p>\n",
             section.section_answers(answers, cases),
-            section.section_schedule(cases, options.benchmark, options.schedule)]
+            section.section_schedule(cases, answers, options.schedule)]
     if told:
         body.append(section.section_apportion(told, options.apportion, cases[0], bars, 1))
     body += [section_figures(cases, pictures, absent, 2 if told else 1), section.section_sure(answers, cases, status),

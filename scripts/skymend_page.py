@@ -85,7 +85,7 @@ def number(value, error=None, most=4):
 
 def plain(value):
     """Four significant digits and, up to 1e4, one behind the point; no exponent for what a table is likely to hold."""
-    if value != 0.0 and not 1e-3 <= abs(value) < 1e7:
+    if value != 0.0 and not 1e-3 <= abs(value) < 1e9:
         return f"{value:.3e}"
     size = 0 if value == 0.0 else math.floor(math.log10(abs(value)))
     digits = max(3 - size, 1 if size < 4 else 0)

@@ -16,7 +16,7 @@ MOST_ROWS = 60  # of a schedule file shown whole
 
 def unit_text(unit):
     """A unit as people write it: the file's 1e-12 is ppt."""
-    return UNITS.get(unit, unit.replace("1e-12", "ppt").replace("m-2", "m⁻²").replace("day-1", "d⁻¹"))
+    return UNITS.get(unit, unit.replace("1e-12", "ppt").replace("m-2", "m⁻²").replace("day-1", "d⁻¹").replace("year-1", "year⁻¹"))
 
 
 # ---- answers ----
@@ -153,7 +153,8 @@ def appendix_answers(answers):
     for key, a in answers.all.items():
         full = "" if a["value"] is None else minus(format(a["value"], ".9g"))
         value = f'<data value="{a["value"]!r}">{full}</data>' if full else "–"
-        rows.append([f'<code class="keep">{text(key)}</code>', value, text(unit_text(a["unit"])),
+        rows.append([f'<code class="keep">{text(key)}</code>', value,
+                     f'<span class="keep">{text(unit_text(a["unit"]))}</span>',
                      "–" if a["numerical_error"] is None else f'{a["numerical_error"]:.2g}',
                      str(methods.setdefault(a["method"], len(methods) + 1)),
                      str(remarks.setdefault(a["note"], len(remarks) + 1)) if a["note"] else ""])
@@ -203,19 +204,38 @@ def driven(case, gas):
     return f"{from_when}emissions, {count}"
 
 
-def table_lines(case):
+def table_lines(case, answers=None):
+    """answers: those of the case, for the ODP-tonnes of its lines; they number the lines in the order of the file."""
     rows, years = [], lengths(case)
-    for line in sorted(case.lines, key=lambda l: (l.gas, l.label)):
+    for count, line in enumerate(case.lines, 1):
         of = line.gas + ("" if line.mass_of == line.gas else f", mass of {line.mass_of}")
         when = span(case, line.emission)
         most = int(np.argmax(line.emission))
         rows.append([text(line.label), text(of), f"{when[0]}–{when[1]}" if when else "–",
                      number(float((line.emission * years).sum())), number(float(line.emission[most])),
-                     str(int(case.time[most])) if when else "–"])
+                     str(int(case.time[most])) if when else "–"] +
+                    ([answers.cell(f"odp_emission_{kind}_line_{count}_total") for kind in ("treaty", "own")]
+                     if answers else []))
     if not rows:
         return "<p>The schedule has no line of emission: every gas follows the abundance given for it.</p>\n"
     return table(f"Lines of emission of {case.label}, within the years of the run.",
-                 ["line", "gas", "years", "total / Gg", "largest / Gg per year", "in"], rows, (3, 4, 5))
+                 ["line", "gas", "years", "total / Gg", "largest / Gg per year", "in"] +
+                 (["ODP-tonnes, treaty's potentials", "ODP-tonnes, Skymend's"] if answers else []), rows,
+                 range(3, 8))
+
+
+def table_tonnes(answers, cases):
+    """Totals in ODP-tonnes, implied emissions of gases that follow an abundance among them."""
+    if "odp_emission_treaty_total" not in answers.all:
+        return ""
+    rows, begun = [], {}
+    for name, part in ((cases[0].label, ""), ("the same less the reference", "_difference")):
+        keys = [f"odp_emission_{kind}{part}_total" for kind in ("treaty", "own")]
+        if keys[0] in answers.all:
+            rows.append([text(name) + notes_of(answers, keys, begun)] + [answers.cell(key) for key in keys])
+    return table("Emissions of all gases over the years of the run in ODP-tonnes, those that keep an abundance given "
+                 "included.", ["emissions", "by the treaty's potentials", "by Skymend's own"], rows, (1, 2)) + \
+        told_notes(begun)
 
 
 def table_gases(case, benchmark):
@@ -262,7 +282,7 @@ def schedule_file(path):
     return made
 
 
-def section_schedule(cases, benchmark, files):
+def section_schedule(cases, answers, files):
     parts = ["<h2 id=\"schedule\">Schedule</h2>\n"]
     for case in cases:
         layers = setting(case, "schedule_layers").strip("[] ")
@@ -274,8 +294,9 @@ def section_schedule(cases, benchmark, files):
                      f"temperature.mode {text(setting(case, 'mode') or 'not known')}.</p>\n")
     for case in cases:
         if case.lines or case is cases[0]:
-            parts.append(table_lines(case))
-    parts.append(table_gases(cases[0], benchmark))
+            parts.append(table_lines(case, answers if case is cases[0] else None))
+    parts.append(table_tonnes(answers, cases))
+    parts.append(table_gases(cases[0], answers.benchmark))
     parts.extend(schedule_file(path) for path in files)
     return "".join(parts)
 
