@@ -371,6 +371,8 @@ def section_apportion(told, path, case, bars, number_of_figure):
     parts.append(table(ways + " ±: numerical error.", head, rows, range(1, len(head)), foot))
     parts.append(figure(picture, "bars-", "Bar chart: " + label + ": " + "; ".join(
         f"{name} {value:.3g}" for name, value in zip(names, lost)), f"Figure {number_of_figure}. Ozone lost by line."))
+    if told.get("lines_kept"):
+        parts.append(f"<p class=\"small\">Lines kept in every run: {text(told['lines_kept'])}.</p>\n")
     if told.get("not_apportioned"):
         parts.append("<p class=\"small\">Not taken apart, since driven by their abundance: "
                      f"{text(', '.join(map(str, told['not_apportioned'])))}.</p>\n")
