@@ -453,7 +453,8 @@ static int read_all(Spectra *spectra, const Mechanism *mechanism, const char *da
     if (fault->code || oxygen_read(spectra, data_dir, fault) || table_read(&sun, solar_path, fault))
         return fault->code;
     Curve solar;
-    if (!note_source(spectra, &sun, solar_path, fault) && !take_sunlight(spectra, &sun, &solar, fault))
+    const char *slash = strrchr(solar_path, '/');
+    if (!note_source(spectra, &sun, slash ? slash + 1 : solar_path, fault) && !take_sunlight(spectra, &sun, &solar, fault))
         read_spectra(spectra, mechanism, data_dir, &solar, fault);
     table_free(&sun);
     return fault->code;
