@@ -54,6 +54,11 @@ typedef struct {
     char **header; /* [files] commented headers, for the archive */
 } Schedule;
 
+/* FAULT_INPUT at the first row of path[files] whose gas is none of known[count], with the nearest of them;
+ * where names what knows them. Before schedule_read. */
+int schedule_check_gases(const char *const *path, int files, const char *const *known, int count,
+                         const char *where, Fault *fault);
+
 /* path [count]: base first. Rows outside the run are read and checked as well. Owner: caller. */
 int schedule_read(Schedule *schedule, const char *const *path, int count, Fault *fault);
 void schedule_free(Schedule *schedule);
@@ -88,5 +93,9 @@ int schedule_meets(const Schedule *schedule, int first_year, int last_year, Faul
 
 /* What drives each gas when, and the lines with years and totals, every line of text led by prefix. */
 void schedule_print(const Schedule *schedule, const char *prefix, FILE *out);
+
+/* 1 when emissions have taken gas over from an abundance that is given for later years as well: its lines are
+ * then all that is given off. */
+int schedule_supersedes(const Schedule *schedule, int gas);
 
 #endif

@@ -85,7 +85,8 @@ void schedule_print(const Schedule *schedule, const char *prefix, FILE *out)
             fprintf(out, "emissions from %d: ", from);
         else
             fputs("emissions at altitude: ", out);
-        fprintf(out, "%d line%s\n", lines, lines > 1 ? "s" : "");
+        fprintf(out, "%d line%s%s\n", lines, lines > 1 ? "s" : "",
+                schedule_supersedes(schedule, g) ? ", in place of the abundances given from then on" : "");
         for (int l = 0; l < schedule->lines; l++)
             if (schedule->line[l].gas == g)
                 print_line(&schedule->line[l], prefix, out);

@@ -127,3 +127,9 @@ int schedule_meets(const Schedule *schedule, int first_year, int last_year, Faul
     }
     return 0;
 }
+
+int schedule_supersedes(const Schedule *schedule, int gas)
+{
+    int from = schedule->emission_from[gas];
+    return from > 0 && schedule->years[gas] > 0 && schedule->first_year[gas] + schedule->years[gas] > from;
+}

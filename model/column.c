@@ -358,6 +358,22 @@ static int make_fields(Model *model, Fault *fault)
     return 0;
 }
 
+static int check_gases(const Model *model, const char *const *path, int files, Fault *fault)
+{
+    const Mechanism *mechanism = model->mechanism;
+    const char **names = malloc(((size_t)mechanism->solved + 1) * sizeof *names), *slash;
+    char where[100];
+    if (!names)
+        return fault_memory(fault, "names of gases");
+    for (int s = 0; s < mechanism->solved; s++)
+        names[s] = mechanism_name(mechanism, s);
+    slash = strrchr(mechanism->path, '/');
+    snprintf(where, sizeof where, "mechanism %.80s", slash ? slash + 1 : mechanism->path);
+    int code = schedule_check_gases(path, files, names, mechanism->solved, where, fault);
+    free(names);
+    return code;
+}
+
 static int make_schedule(Model *model, Fault *fault)
 {
     const Settings *settings = &model->settings;
@@ -371,6 +387,8 @@ static int make_schedule(Model *model, Fault *fault)
         code = locate(settings, "schedule layer", settings->schedule_layer[f - 1], path[f], fault);
     for (int f = 0; f < files; f++)
         paths[f] = path[f];
+    if (!code)
+        code = check_gases(model, paths, files, fault);
     if (!code)
         code = schedule_read(&model->schedule, paths, files, fault);
     for (int f = 0; !code && f < files; f++)

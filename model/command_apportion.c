@@ -189,6 +189,8 @@ static int run(const Request *request, Fault *fault)
         code = model_make(&model, settings, fault);
     if (!code)
         code = model_check_years(model, fault);
+    if (!code && !request->quiet)
+        remark_takeovers(model);
     if (!code)
         code = work(request, model, fault);
     model_free(model);

@@ -130,6 +130,8 @@ static int run(const Request *request, Fault *fault)
         code = model_make(&model, settings, fault);
     if (!code)
         code = model_check_years(model, fault);
+    if (!code && !request->quiet)
+        remark_takeovers(model);
     if (!code)
         code = column_make(&column, model, fault);
     if (!code && request->threads)

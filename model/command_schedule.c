@@ -278,14 +278,16 @@ static void settle_uptake(const Request *request, const Model *model, Conversion
         if (uptake.below <= UPTAKE_SHARE * uptake.above) {
             conversion_lift(conversion, s, from);
             fprintf(stderr,
-                    "skymend: %s: emissions below zero are put at 0, %.3g kt in all against %.3g kt above "
+                    "skymend: remark: %s: emissions below zero are put at 0, %.3g kt in all against %.3g kt "
+                    "above "
                     "(first in %d)\n",
                     model->schedule.gas[g], 1e-6 * uptake.below, 1e-6 * uptake.above, uptake.year);
             continue;
         }
         chosen[g] = 0;
         fprintf(stderr,
-                "skymend: %s is left as abundance: it falls faster than this column takes it away, from %d "
+                "skymend: remark: %s stays an abundance in all years: it falls faster than this column takes "
+                "it away, from %d "
                 "on by %.3g kt in "
                 "all (emissions above zero: %.3g kt)\n",
                 model->schedule.gas[g], uptake.year, 1e-6 * uptake.below, 1e-6 * uptake.above);

@@ -176,6 +176,20 @@ void join_command_line(int argc, char *const *argv, char *text, size_t size)
         used += (size_t)snprintf(text + used, size - used, " %s", argv[i]);
 }
 
+void remark_takeovers(const Model *model)
+{
+    const Schedule *schedule = &model->schedule;
+    for (int g = 0; g < schedule->gases; g++)
+        if (schedule_supersedes(schedule, g))
+            fprintf(stderr,
+                    "skymend: remark: from %d on the lines of emission are all of %s that is given off; its "
+                    "abundances from "
+                    "then on are put aside. If the lines come on top of what is planned, turn those "
+                    "abundances into "
+                    "emissions first (skymend schedule --as emission)\n",
+                    schedule->emission_from[g], schedule->gas[g]);
+}
+
 static volatile sig_atomic_t stop_asked;
 
 static void ask_stop(int signal_number)

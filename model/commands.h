@@ -9,6 +9,7 @@
 #include "../input/fault.h"
 #include "../input/settings.h"
 #include "answers.h"
+#include "column.h"
 
 int command_project(int argc, char **argv);
 int command_settle(int argc, char **argv);
@@ -50,6 +51,8 @@ int option_fault(const char *verb, char *const *argv, int optind_before, int fou
 int one_operand(const char *verb, int argc, char *const *argv, int first, const char **operand, Fault *fault);
 /* "skymend VERB ..." as it was given, cut at size: for the history of a file. */
 void join_command_line(int argc, char *const *argv, char *text, size_t size);
+/* Say on standard error which gases emissions take over from an abundance that goes on. */
+void remark_takeovers(const Model *model);
 /* From now on an interrupt or a request to end sets what is returned, and a file at its size limit is a write
  * error, not a death. */
 volatile sig_atomic_t *catch_stop(void);

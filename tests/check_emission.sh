@@ -105,7 +105,7 @@ sed 's/^year,gas,kind,amount,unit,line$/&,change/; /^19/s/$/,replace/' falling.c
 "$SKYMEND" schedule falling.cfg --as emission --gas CFC-11 -o falling-out.csv --threads 1 --quiet >output 2>errors
 status=$?
 truth "an emission below zero is not written" eval '[ $status -eq 0 ] && [ "$(rows falling-out.csv 198. CFC-11 emission)" -eq 0 ] && [ "$(rows falling-out.csv 198. CFC-11 abundance)" -eq 4 ]'
-truth "and said" grep -q "CFC-11 is left as abundance: it falls faster than this column takes it away, from 198" errors
+truth "and said" grep -q "CFC-11 stays an abundance in all years: it falls faster than this column takes it away, from 198" errors
 
 # ---- faults of a schedule with emissions ----
 

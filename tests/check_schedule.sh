@@ -66,7 +66,7 @@ layer ',2026,CFC-11,bank,1000,kt,foam,,' ',2026-2060,CFC-11,release,10,%/yr,foam
     'scale,2030-2060,CFC-12,abundance,90,%,*,,'
 "$SKYMEND" check case.cfg >output 2>errors
 truth "a schedule with a layer is read" [ $? -eq 0 ]
-truth "what drives a gas" says '// CFC-11: abundance 1955-2025, emissions from 2026: 2 lines'
+truth "what drives a gas" says '// CFC-11: abundance 1955-2025, emissions from 2026: 2 lines, in place of the abundances given from then on'
 # released in 35 years: 1000 (1 - 0.9^35) = 974.97; left 25.03. Leak: 10 + 8 + 6 + 4 + 2 + 0 = 30
 truth "a bank" says '//     foam                         2026-2060         975 kt; bank from 1000 to 25.03 kt'
 truth "a line that ends" says '//     leak                         2026-2031          30 kt'
@@ -77,9 +77,12 @@ mv output resolved.cfg
 truth "the resolved case reads back the same" cmp -s resolved.cfg output
 
 layer 'scale,2030,CFC-13,abundance,2,1,x,,'
-refused "change of a gas that is not there" later.csv:2: 'no file below has gas CFC-13' 'did you mean CFC-1'
+refused "change of a gas that is not there" later.csv:2: 'gas CFC-13 is not an active species' 'did you mean CFC-1'
 layer ',2026-2060,CFC-13,emission,2,kt,x,,'
 refused "emission of an unknown gas" later.csv:2: CFC-13 mechanism
+layer ',2026,CFC-11,emission,10,kt/yr,leak,,' ',2027-2031,CFC11,emission,linear to 1,kt/yr,leak,,' \
+    ',2032-2060,CFC-11,emission,hold,,leak,,'
+refused "a slip in one row of a line, not what it does to the next" later.csv:3: 'gas CFC11 ' 'did you mean CFC-11?'
 layer ',2026-2050,CFC-11,emission,2,kt,x,,'
 refused "gas left without emissions" later.csv:2: CFC-11 'no line has any in 2051'
 layer 'scale,2070-2080,CFC-11,abundance,2,1,x,,'
