@@ -6,7 +6,7 @@
 
 #include "json.h"
 
-enum { NAME_WIDTH = 30 };
+enum { NAME_WIDTH = 40 };
 
 static const char *const delay_names[] = {"found", "at least", "no return", "never below"};
 
@@ -119,6 +119,27 @@ static void print_quick_row(const char *name, double all_time, double error, dou
     fprintf(out, "\n");
 }
 
+/* What items are ranked by: their loss, for all time in the quick way; last where there is none. */
+static double rank(const Apportionment *from, int i)
+{
+    double loss = from->quick ? from->item[i].all_time : from->item[i].effect.lost;
+    return isfinite(loss) ? loss : -INFINITY;
+}
+
+/* The item that comes after item `before` (-1: the first) in order of falling loss, equals in order of the
+ * schedule; -1 after the last. */
+static int next_ranked(const Apportionment *from, int before)
+{
+    int next = -1;
+    for (int i = 0; i < from->items; i++) {
+        int after = before < 0 || rank(from, i) < rank(from, before) ||
+                    (rank(from, i) == rank(from, before) && i > before);
+        if (after && (next < 0 || rank(from, i) > rank(from, next)))
+            next = i;
+    }
+    return next;
+}
+
 static void print_quick(const ApportionView *view, FILE *out)
 {
     const Apportionment *from = view->apportionment;
@@ -126,7 +147,7 @@ static void print_quick(const ApportionView *view, FILE *out)
     fprintf(out, "\n  %-*s%11s%9s%11s%8s\n", NAME_WIDTH, "", "all time", "+-", "within", "after");
     fprintf(out, "  %-*s%11s%9s%11s%8s\n", NAME_WIDTH, apportion_by_name(from->by), "DU-years", "",
             "DU-years", "%");
-    for (int i = 0; i < from->items; i++) {
+    for (int i = next_ranked(from, -1); i >= 0; i = next_ranked(from, i)) {
         char name[128];
         const ApportionItem *item = &from->item[i];
         apportion_item_name(view->model, item, name, sizeof name);
@@ -191,7 +212,7 @@ void apportion_print(const ApportionView *view, FILE *out)
             "in", "in", "delay", "+-");
     fprintf(out, "  %-*s %10s%9s%8s%9s%6s%9d%9s%8s\n", NAME_WIDTH, apportion_by_name(from->by), "DU-years",
             "", "%", "DU", "", from->first_year + from->years - 1, "months", "");
-    for (int i = 0; i < from->items; i++) {
+    for (int i = next_ranked(from, -1); i >= 0; i = next_ranked(from, i)) {
         char name[128];
         apportion_item_name(view->model, &from->item[i], name, sizeof name);
         print_effect(from, name, &from->item[i].effect, &from->item[i].error, out);
