@@ -5,7 +5,8 @@
  *
  * A gas is driven by its abundance up to its first year of emission at the ground and by its emissions from
  * the start of that year on. An abundance stands for mid-year; an emission is the mass of a calendar year,
- * given off evenly through it. A gas that has emissions only is not in the air before them.
+ * given off evenly through it. A gas that has emissions only is not in the air before them, unless reactions
+ * make it.
  */
 #ifndef SKYMEND_SCHEDULE_H
 #define SKYMEND_SCHEDULE_H

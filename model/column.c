@@ -167,13 +167,32 @@ int model_holds(const Model *model, int solved)
     return 0;
 }
 
+int model_makes(const Model *model, int solved)
+{
+    const Mechanism *mechanism = model->mechanism;
+    for (int r = 0; r < mechanism->reactions; r++)
+        for (int c = 0; c < mechanism->reaction[r].changes; c++)
+            if (mechanism->reaction[r].changed[c] == solved && mechanism->reaction[r].change[c] > 0.0)
+                return 1;
+    return 0;
+}
+
+/* Kept at 0 until it is given off, a gas that reactions make (NO, HCl) would be taken out of the air, and its
+ * family with it. CO2 they make as well, but next to nothing takes it out: left alone it comes to no rest. */
+static int is_there_before(const Model *model, int solved, int gas)
+{
+    return model->schedule.years[gas] == 0 && strcmp(model->schedule.gas[gas], "CO2") &&
+           model_makes(model, solved);
+}
+
 int model_keeps(const Model *model, int solved, double time)
 {
-    int kind = model->surface_kind[solved];
+    int kind = model->surface_kind[solved], gas = model->surface_gas[solved];
     if (model_holds(model, solved))
         return 0;
     return kind == SURFACE_FIXED ||
-           (kind == SURFACE_SCHEDULE && !schedule_emits(&model->schedule, model->surface_gas[solved], time));
+           (kind == SURFACE_SCHEDULE && !schedule_emits(&model->schedule, gas, time) &&
+            !is_there_before(model, solved, gas));
 }
 
 double model_deposition(const Model *model, int solved)

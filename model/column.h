@@ -23,8 +23,8 @@
 /* The one place that knows the layout of fields over species (or reactions) and layers. */
 #define FIELD(padded, row, layer) ((size_t)(row) * (size_t)(padded) + (size_t)(layer))
 
-/* What the ground does with a gas: nothing; keeps the schedule's abundance, until emissions take over, from
- * when on they flow in (emission.h); keeps a value of the case; takes up. */
+/* What the ground does with a gas: nothing; keeps the schedule's abundance (model_keeps), until emissions
+ * take over, from when on they flow in (emission.h); keeps a value of the case; takes up. */
 enum SurfaceKind { SURFACE_CLOSED, SURFACE_SCHEDULE, SURFACE_FIXED, SURFACE_DEPOSITION };
 
 typedef struct Emissions Emissions;   /* what lines of the schedule give off: emission.h */
@@ -92,7 +92,11 @@ int model_make(Model **made, const Settings *settings, Fault *fault);
 void model_free(Model *model);
 /* 1 when a table of the case prescribes solved species s below the tropopause. */
 int model_holds(const Model *model, int solved);
-/* 1 when at decimal year time the ground keeps solved species s, which no table holds, at a value. */
+/* 1 when some reaction makes more of solved species s than it takes. */
+int model_makes(const Model *model, int solved);
+/* 1 when at decimal year time the ground keeps solved species s, which no table holds, at a value: its
+ * abundance, that of the case, or 0 of a gas yet to be given off that no reaction makes (CO2 counts as none).
+ */
 int model_keeps(const Model *model, int solved, double time);
 /* Velocity, cm s-1, at which the ground takes solved species s up where it does not keep it; 0: it does not.
  */

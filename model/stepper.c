@@ -75,14 +75,9 @@ static void list_balanced(Stepper *stepper)
 /* See stepper_source. */
 static void list_reacting(Stepper *stepper)
 {
-    const Mechanism *mechanism = stepper->model->mechanism;
-    for (int r = 0; r < mechanism->reactions; r++)
-        for (int c = 0; c < mechanism->reaction[r].changes; c++)
-            if (mechanism->reaction[r].change[c] > 0 && mechanism->reaction[r].changed[c] < mechanism->solved)
-                stepper->reacts[mechanism->reaction[r].changed[c]] = 1;
-    for (int s = 0; s < mechanism->solved; s++)
-        if (model_deposition(stepper->model, s) > 0.0)
-            stepper->reacts[s] = 0;
+    const Model *model = stepper->model;
+    for (int s = 0; s < model->mechanism->solved; s++)
+        stepper->reacts[s] = !(model_deposition(model, s) > 0.0) && model_makes(model, s);
 }
 
 /* All that hang on temperature and air; water enters HO2 + HO2 only and is renewed at every step. */

@@ -285,6 +285,32 @@ static void test_from_nothing(void **state)
     end(&run);
 }
 
+/* A gas that reactions make is in the air without the schedule: lines that give off nothing of it, from the
+ * second year on, change nothing, neither the column at rest nor the years before and after, to the last bit.
+ * NO has a closed ground, HCl and O3 are taken up. */
+static void test_nothing_of_what_is_made(void **state)
+{
+    Settings without = coarse_case(DAY_MEAN, 1980);
+    without.last_year = 1981;
+    Settings with = without;
+    Rows rows = rows_begin();
+    static const char *const gases[] = {"NO", "HCl", "O3"};
+    for (int i = 0; i < 3; i++)
+        ground(&rows, "1981", gases[i], 0.0);
+    lay(&with, state, "nothing.csv", &rows);
+    Run runs[2] = {start(&without, 1), start(&with, 1)};
+    const Watcher watcher = {0};
+    for (int r = 0; r < 2; r++) {
+        Fault fault = {0};
+        ok(projection_run(runs[r].model, runs[r].stepper, runs[r].column, &watcher, &fault), &fault);
+    }
+    assert_memory_equal(runs[0].column->x, runs[1].column->x, field_size(runs[0].model) * sizeof(double));
+    assert_memory_equal(runs[0].column->received, runs[1].column->received,
+                        (size_t)runs[0].model->mechanism->solved * sizeof(double));
+    for (int r = 0; r < 2; r++)
+        end(&runs[r]);
+}
+
 /* ---- what is refused ---- */
 
 static void refuse(void **state, const char *rows_text, const char *place, const char *words)
@@ -317,11 +343,15 @@ static void test_refused(void **state)
 
 int main(void)
 {
-    const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_by_hand),    WITH_FOLDER(test_where_it_goes),
-        WITH_FOLDER(test_column_holds_it), WITH_FOLDER(test_mass_of_an_element),
-        WITH_FOLDER(test_years_and_atoms), WITH_FOLDER(test_explicit_days),
-        WITH_FOLDER(test_threads),         WITH_FOLDER(test_from_nothing),
-        WITH_FOLDER(test_refused)};
+    const struct CMUnitTest tests[] = {cmocka_unit_test(test_by_hand),
+                                       WITH_FOLDER(test_where_it_goes),
+                                       WITH_FOLDER(test_column_holds_it),
+                                       WITH_FOLDER(test_mass_of_an_element),
+                                       WITH_FOLDER(test_years_and_atoms),
+                                       WITH_FOLDER(test_explicit_days),
+                                       WITH_FOLDER(test_threads),
+                                       WITH_FOLDER(test_from_nothing),
+                                       WITH_FOLDER(test_nothing_of_what_is_made),
+                                       WITH_FOLDER(test_refused)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
