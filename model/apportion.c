@@ -118,6 +118,11 @@ static int list_items(Apportionment *to, const Model *model, const ApportionAsk 
     }
     if (any)
         return 0;
+    if (to->kept_lines)
+        return fault_set(fault, FAULT_INPUT,
+                         "--keep: no other line gives anything off from %d to %d, so there is nothing to "
+                         "apportion; keep fewer, or add lines (files.schedule_layers)",
+                         to->first_year, to->first_year + to->years - 1);
     return fault_set(
         fault, FAULT_INPUT,
         "%s: no line of emission gives anything off from %d to %d, so there is nothing to apportion; turn "

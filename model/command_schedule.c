@@ -80,12 +80,15 @@ static int take_option(Request *request, int found, Fault *fault)
 
 static int read_request(Request *request, int argc, char **argv, Fault *fault)
 {
-    static const struct option options[] = {
-        {"as", required_argument, NULL, 'a'},      {"from", required_argument, NULL, 'f'},
-        {"gas", required_argument, NULL, 'g'},     {"output", required_argument, NULL, 'o'},
-        {"overwrite", no_argument, NULL, 'w'},     {"quiet", no_argument, NULL, 'q'},
-        {"threads", required_argument, NULL, 't'}, {"quiet", no_argument, NULL, 'q'},
-        {"help", no_argument, NULL, 'h'},          {NULL, 0, NULL, 0}};
+    static const struct option options[] = {{"as", required_argument, NULL, 'a'},
+                                            {"from", required_argument, NULL, 'f'},
+                                            {"gas", required_argument, NULL, 'g'},
+                                            {"output", required_argument, NULL, 'o'},
+                                            {"overwrite", no_argument, NULL, 'w'},
+                                            {"quiet", no_argument, NULL, 'q'},
+                                            {"threads", required_argument, NULL, 't'},
+                                            {"help", no_argument, NULL, 'h'},
+                                            {NULL, 0, NULL, 0}};
     static const char *const names[] = {"--as",      "--from",  "--gas",  "--output", "--overwrite",
                                         "--threads", "--quiet", "--help", NULL};
     join_command_line(argc, argv, request->command_line, sizeof request->command_line);
@@ -132,6 +135,8 @@ static int listed(const char *list, const char *name)
 static int check_gases(const Request *request, const Model *model, Fault *fault)
 {
     char name[64];
+    if (request->gases && !*request->gases)
+        return fault_set(fault, FAULT_INPUT, "--gas: no gas is named; name some, such as CFC-11,CFC-12");
     for (const char *at = request->gases; at && *at;) {
         size_t length = strcspn(at, ",");
         snprintf(name, sizeof name, "%.*s", (int)length, at);
@@ -143,7 +148,8 @@ static int check_gases(const Request *request, const Model *model, Fault *fault)
                 names[g] = model->schedule.gas[g];
             const char *near = fault_nearest(name, names, (size_t)model->schedule.gases);
             fault_set(fault, FAULT_INPUT, "--gas: \"%s\" is no gas of the schedule%s%s%s", name,
-                      near ? "; did you mean " : "", near ? near : "", near ? "?" : "");
+                      near ? "; did you mean " : "; skymend check lists them", near ? near : "",
+                      near ? "?" : "");
             free(names);
             return fault->code;
         }
@@ -152,10 +158,16 @@ static int check_gases(const Request *request, const Model *model, Fault *fault)
     return 0;
 }
 
-/* 1: of schedule gas g the emission (abundance) is to be written in place of what drives it. */
-static void choose_gases(const Request *request, const Model *model, int *chosen, int *work)
+static int first_emission(const Request *request, const Model *model)
 {
-    int count = potency_gases(model, work);
+    return request->from ? request->from : model->settings.first_year + 1;
+}
+
+/* 1: of schedule gas g the emission (abundance) is to be written in place of what drives it. FAULT_INPUT when
+ * there is none. */
+static int choose_gases(const Request *request, const Model *model, int *chosen, int *work, Fault *fault)
+{
+    int any = 0, count = potency_gases(model, work);
     for (int g = 0; g < model->schedule.gases; g++) {
         int s = mechanism_solved(model->mechanism, model->schedule.gas[g]);
         chosen[g] = 0;
@@ -163,11 +175,22 @@ static void choose_gases(const Request *request, const Model *model, int *chosen
             chosen[g] |= work[i] == s;
         if (request->gases)
             chosen[g] = listed(request->gases, model->schedule.gas[g]);
+        int emits = model->schedule.emission_from[g];
         if (request->as == AS_EMISSION) /* what emissions drive already stays */
-            chosen[g] &= model->schedule.years[g] > 0;
+            chosen[g] &= model->schedule.years[g] > 0 && (!emits || emits > first_emission(request, model));
         else
-            chosen[g] &= model->schedule.emission_from[g] > 0;
+            chosen[g] &= emits > 0;
+        any |= chosen[g];
     }
+    if (any)
+        return 0;
+    return fault_set(fault, FAULT_INPUT,
+                     "--as %s: no gas%s%s is driven by %s, so there is nothing to turn; "
+                     "%s, or turn the other way",
+                     request->as == AS_EMISSION ? "emission" : "abundance",
+                     request->gases ? " of --gas " : "", request->gases ? request->gases : "",
+                     request->as == AS_EMISSION ? "its abundance" : "emissions at the ground",
+                     request->gases ? "name other gases" : "give another case");
 }
 
 /* ---- writing ---- */
@@ -229,7 +252,7 @@ static void put_gas(FILE *out, const Request *request, const Model *model, const
     int end = first + conversion->years, from = end;
     const char *none = with_height ? ",," : "";
     if (request->as == AS_EMISSION && chosen)
-        from = request->from ? request->from : first + 1;
+        from = first_emission(request, model);
     int drives_from = schedule->emission_from[g] ? schedule->emission_from[g] : end;
     for (int year = first; year < end; year++) {
         if (year < from && year < drives_from && schedule->years[g])
@@ -269,7 +292,7 @@ static int write_schedule(const Request *request, const Model *model, const Conv
  * on standard error. */
 static void settle_uptake(const Request *request, const Model *model, Conversion *conversion, int *chosen)
 {
-    int from = request->from ? request->from : conversion->first_year + 1;
+    int from = first_emission(request, model);
     for (int g = 0; request->as == AS_EMISSION && g < model->schedule.gases; g++) {
         int s = mechanism_solved(model->mechanism, model->schedule.gas[g]);
         Uptake uptake = chosen[g] ? conversion_uptake(conversion, s, from) : (Uptake){0};
@@ -339,8 +362,9 @@ static int put_out(const Request *request, const Model *model, Stepper *stepper,
         code = fault_set(fault, FAULT_INPUT,
                          "--from: %d is not after the first and within the last year of the case, %d to %d",
                          request->from, model->settings.first_year, model->settings.last_year);
+    if (!code)
+        code = choose_gases(request, model, chosen, work, fault);
     if (!code) {
-        choose_gases(request, model, chosen, work);
         progress_open(&bar, request->quiet);
         code = conversion_run(&conversion, model, stepper, column, &watcher, fault);
         progress_close(&bar);

@@ -66,6 +66,8 @@ refused "a label to keep that is none" 'did you mean "refrigeration"?' coarse.cf
 refused "two cases" "name one" coarse.cfg other.cfg
 refused "two outputs of one name" "give each a file of its own" coarse.cfg --csv a --json a
 printf 'x\n' >there.csv
+refused "every line kept" "--keep: no other line gives anything off from 1989 to 1997" coarse.cfg --keep refrigeration \
+    --keep "refrigeration late" --keep rockets --keep 'banks, foam and "other"'
 refused "keeps a file that is there" "exists already" coarse.cfg --csv there.csv
 printf 'years = { first = 1980; last = 1981; };\n' >none.cfg
 refused "a case without emissions" "nothing to apportion" none.cfg

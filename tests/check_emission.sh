@@ -49,6 +49,10 @@ refused "from the first year" "--from: 1980 is not after the first" coarse.cfg -
 refused "from after the last year" "--from: 1990 is not after the first" coarse.cfg --as emission --from 1990 -o a.csv
 refused "from makes no sense for abundances" "leave it out with --as abundance" coarse.cfg --as abundance --from 1981 -o a.csv
 refused "unknown gas" "did you mean CFC-11?" coarse.cfg --as emission --gas CFC-12,CFC-1l -o a.csv
+refused "no gas named" "name some, such as" coarse.cfg --as emission --gas "" -o a.csv
+refused "an empty name of a gas" '"" is no gas of the schedule' coarse.cfg --as emission --gas CFC-11,,CFC-12 -o a.csv
+refused "nothing given off to turn" "no gas is driven by emissions" coarse.cfg --as abundance -o a.csv
+refused "none of the gases named is given off" "no gas of --gas CFC-11 is driven" coarse.cfg --as abundance --gas CFC-11 -o a.csv
 refused "two cases" "name one" coarse.cfg other.cfg --as emission -o a.csv
 printf 'x\n' >there.csv
 refused "keeps a file that is there" "exists already" coarse.cfg --as emission -o there.csv
@@ -78,6 +82,7 @@ cat >emission.cfg <<'END'
 files = { schedule = "emission.csv"; };
 END
 truth "check takes it" "$SKYMEND" check emission.cfg
+refused "what emissions drive already" "no gas of --gas CFC-11 is driven by its abundance" emission.cfg --as emission --gas CFC-11 --from 1982 -o a.csv
 "$SKYMEND" schedule emission.cfg --as abundance -o back.csv --threads 1 --quiet >output 2>errors
 status=$?
 truth "emissions become abundances" eval '[ "$status" -eq 0 ] && [ ! -s output ]'
