@@ -226,11 +226,10 @@ static int note_spans(Reading *reading, const Row *row, size_t count, Fault *fau
     qsort(sorted, count, sizeof *sorted, order_spans);
     for (size_t r = 0; r < count; r++) {
         const Row *of = sorted[r];
+        if (r == 0 || !same_span(sorted[r - 1], of))
+            schedule->span[schedule->spans++] =
+                (ScheduleSpan){of->place.file, of->place.line, of->first_year, of->last_year};
         ScheduleSpan *span = &schedule->span[schedule->spans - 1];
-        if (r == 0 || !same_span(sorted[r - 1], of)) {
-            span = &schedule->span[schedule->spans++];
-            *span = (ScheduleSpan){of->place.file, of->place.line, of->first_year, of->last_year};
-        }
         if (of->first_year < span->first_year)
             span->first_year = of->first_year;
         if (of->last_year > span->last_year)

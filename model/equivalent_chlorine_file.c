@@ -17,29 +17,6 @@
 
 /* ---- reading ---- */
 
-/* 1 when the attribute is there and is text that fits. */
-static int read_text(int file, int variable, const char *name, char *text, size_t size)
-{
-    nc_type type;
-    size_t length;
-    char *given = NULL;
-    if (nc_inq_att(file, variable, name, &type, &length) != NC_NOERR)
-        return 0;
-    if (type == NC_STRING && length == 1) { /* as xarray and others write it */
-        if (nc_get_att_string(file, variable, name, &given) != NC_NOERR)
-            return 0;
-        int fits = given && strlen(given) < size;
-        if (fits)
-            strcpy(text, given);
-        nc_free_string(1, &given);
-        return fits;
-    }
-    if (type != NC_CHAR || length >= size || nc_get_att_text(file, variable, name, text) != NC_NOERR)
-        return 0;
-    text[length] = '\0';
-    return 1;
-}
-
 typedef struct {
     int file;
     const char *path;
@@ -81,9 +58,9 @@ static int look_at(const Open *in, int variable, int *is, SurfaceGas *gas, Fault
     *is = 0;
     if (nc_inq_var(in->file, variable, name, NULL, &dimensions, dimension, NULL) != NC_NOERR ||
         dimensions != 2 || dimension[0] != in->time || dimension[1] != in->altitude ||
-        !read_text(in->file, variable, "species", gas->name, sizeof gas->name))
+        !series_text(in->file, variable, "species", gas->name, sizeof gas->name))
         return 0;
-    if (!read_text(in->file, variable, "formula", formula, sizeof formula))
+    if (!series_text(in->file, variable, "formula", formula, sizeof formula))
         return fault_set(
             fault, FAULT_INPUT,
             "%s: %s has no attribute formula, so that its chlorine is not known; make the file anew "
@@ -339,11 +316,12 @@ static int bring_to_disk(const char *path)
 static int exchange(const char *path, const SurfaceSeries *series, const ReleaseTable *table, Fault *fault)
 {
     char *real = realpath(path, NULL); /* a link stays a link */
-    size_t size = real ? strlen(real) + 40 : 0;
-    char *copy = malloc(size + 1);
-    if (!real || !copy) {
+    if (!real)
+        return store_fault(path, strerror(errno), fault);
+    size_t size = strlen(real) + 40;
+    char *copy = malloc(size);
+    if (!copy) {
         free(real);
-        free(copy);
         return fault_memory(fault, "a path");
     }
     snprintf(copy, size, "%s.part-%ld", real, (long)getpid());
