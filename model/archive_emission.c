@@ -8,7 +8,7 @@
 #include "emission.h"
 
 /* A year of 365.25 days has 365.25 / 365.2425 of the library's "year", within 2e-5; said in the long_name. */
-static const double GRAMS_PER_KG = 1e-6; /* Gg */
+static const double GG_PER_KG = 1e-6;
 
 static int is_given(const Model *model, int s)
 {
@@ -107,12 +107,12 @@ int layout_emission_put(const Layout *out, size_t index, const Record *record)
     for (int s = 0; s < model->mechanism->solved && status == NC_NOERR; s++) {
         if (out->emission[s] < 0 || !record->emission)
             continue;
-        double value = GRAMS_PER_KG * emission_kg_year(model, s, record->emission[s]);
+        double value = GG_PER_KG * emission_kg_year(model, s, record->emission[s]);
         status = nc_put_var1_double(out->file, out->emission[s], &index, &value);
     }
     for (int i = 0; out->line >= 0 && i < model->schedule.lines && status == NC_NOERR; i++) {
         const size_t at[2] = {index, (size_t)i};
-        double value = GRAMS_PER_KG * schedule_emission(&model->schedule, i, record->time);
+        double value = GG_PER_KG * schedule_emission(&model->schedule, i, record->time);
         status = nc_put_var1_double(out->file, out->line, at, &value);
     }
     return status;

@@ -76,8 +76,14 @@ def main():
     parser.add_argument("--threads", type=int, default=1)
     parser.add_argument("--keep")
     arguments = parser.parse_args()
-    folder = arguments.keep or tempfile.mkdtemp()
-    os.makedirs(folder, exist_ok=True)
+    with tempfile.TemporaryDirectory() as made:
+        folder = arguments.keep or made
+        os.makedirs(folder, exist_ok=True)
+        measure(arguments, folder)
+
+
+def measure(arguments, folder):
+    """Every run and the table."""
 
     def run(name, *pieces):
         return means(arguments.program, folder, name, " ".join(pieces), arguments.threads)
