@@ -1,4 +1,4 @@
-/* csv: the raw reading of comma-separated text; contract in table.h. */
+/* csv: the raw reading of comma-separated text, and its writing; contract in table.h. */
 #define _POSIX_C_SOURCE 200809L
 #include <ctype.h>
 #include <errno.h>
@@ -295,4 +295,29 @@ int csv_number(const char *path, int line, const char *column, const char *cell,
                         column, end && end != cell && *end == '\0' ? "finite " : "");
     }
     return 0;
+}
+
+/* ---- writing ---- */
+
+void csv_put_text(FILE *out, const char *text)
+{
+    if (!strpbrk(text, ",\"\r\n")) {
+        fputs(text, out);
+        return;
+    }
+    fputc('"', out);
+    for (; *text; text++) {
+        if (*text == '"')
+            fputc('"', out);
+        fputc(*text, out);
+    }
+    fputc('"', out);
+}
+
+void csv_put_header(FILE *out, const char *key, const char *text)
+{
+    fprintf(out, "# %s: ", key);
+    for (; *text; text++)
+        fputc(*text == '\n' || *text == '\r' ? ' ' : *text, out);
+    fputc('\n', out);
 }

@@ -7,6 +7,8 @@
 #ifndef SKYMEND_TABLE_H
 #define SKYMEND_TABLE_H
 
+#include <stdio.h>
+
 #include "fault.h"
 
 /* Read a whole text file into *text (NUL-terminated; owner: caller, free) and its length in bytes,
@@ -68,5 +70,13 @@ int csv_read(Csv *csv, const char *path, Fault *fault);
 void csv_free(Csv *csv);
 /* strtod that must use the whole cell and give a finite number. */
 int csv_number(const char *path, int line, const char *column, const char *cell, double *value, Fault *fault);
+
+/* ---- writing CSV ---- */
+
+/* A cell of text, quoted where it must be (RFC 4180). */
+void csv_put_text(FILE *out, const char *text);
+/* A line "# key: text" of the header; line ends in the text become blanks, since they would end the header.
+ */
+void csv_put_header(FILE *out, const char *key, const char *text);
 
 #endif

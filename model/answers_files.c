@@ -3,6 +3,7 @@
 #include <stdio.h>
 #include <string.h>
 
+#include "../input/table.h"
 #include "answers_emission.h"
 #include "json.h"
 
@@ -14,22 +15,6 @@ static const char caution[] = "one near-global column without polar winter, ozon
 
 /* ---- CSV ---- */
 
-/* A cell of text as RFC 4180 has it. */
-static void cell(FILE *out, const char *text)
-{
-    if (!strpbrk(text, ",\"\r\n")) {
-        fputs(text, out);
-        return;
-    }
-    fputc('"', out);
-    for (; *text; text++) {
-        if (*text == '"')
-            fputc('"', out);
-        fputc(*text, out);
-    }
-    fputc('"', out);
-}
-
 /* Empty for what is not there. */
 static void number(FILE *out, double value)
 {
@@ -38,37 +23,28 @@ static void number(FILE *out, double value)
         fprintf(out, "%.9g", value);
 }
 
-/* A line "# key: text"; a line end within the text would end the comment. */
-static void comment(FILE *out, const char *key, const char *text)
-{
-    fprintf(out, "# %s: ", key);
-    for (; *text; text++)
-        fputc(*text == '\n' || *text == '\r' ? ' ' : *text, out);
-    fputc('\n', out);
-}
-
 void answers_csv(const Answers *answers, const FileSeries *file, const FileSeries *reference, FILE *out)
 {
-    comment(out, "quantity", "answers of a projection of the ozone layer");
-    comment(out, "file", file->path);
-    comment(out, "title", file->title);
+    csv_put_header(out, "quantity", "answers of a projection of the ozone layer");
+    csv_put_header(out, "file", file->path);
+    csv_put_header(out, "title", file->title);
     if (reference)
-        comment(out, "against", reference->path);
-    comment(out, "errors", answers->error_source);
-    comment(out, "caution", caution);
+        csv_put_header(out, "against", reference->path);
+    csv_put_header(out, "errors", answers->error_source);
+    csv_put_header(out, "caution", caution);
     fputs("id,label,value,unit,numerical_error,note,method\n", out);
     for (int i = 0; i < answers->count; i++) {
         const FileAnswer *answer = &answers->item[i];
         fprintf(out, "%s,", answer->id);
-        cell(out, answer->label);
+        csv_put_text(out, answer->label);
         number(out, answer->value);
         fputc(',', out);
-        cell(out, answer->unit);
+        csv_put_text(out, answer->unit);
         number(out, answer->error);
         fputc(',', out);
-        cell(out, answer->note);
+        csv_put_text(out, answer->note);
         fputc(',', out);
-        cell(out, answer->method);
+        csv_put_text(out, answer->method);
         fputc('\n', out);
     }
 }

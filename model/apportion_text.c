@@ -4,6 +4,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "../input/table.h"
 #include "json.h"
 
 enum { NAME_WIDTH = 40 };
@@ -226,18 +227,6 @@ void apportion_print(const ApportionView *view, FILE *out)
 
 /* ---- CSV ---- */
 
-void apportion_csv_text(FILE *out, const char *text)
-{
-    if (!strpbrk(text, ",\"\n\r")) {
-        fputs(text, out);
-        return;
-    }
-    fputc('"', out);
-    for (const char *c = text; *c; c++)
-        fprintf(out, *c == '"' ? "\"\"" : "%c", *c);
-    fputc('"', out);
-}
-
 static void cell(FILE *out, double value)
 {
     fputc(',', out);
@@ -282,7 +271,7 @@ static void csv_quick_row(double all_time, double error, double within, FILE *ou
 static void csv_item(const ApportionView *view, const ApportionItem *item, FILE *out)
 {
     fputs("item,", out);
-    apportion_csv_text(out, item->label ? item->label : "");
+    csv_put_text(out, item->label ? item->label : "");
     fprintf(out, ",%s", item->gas < 0 ? "" : view->model->schedule.gas[item->gas]);
     cell(out, tonnes(item));
     cell(out, item->first_year ? item->first_year : NAN);

@@ -20,7 +20,5 @@ void apportion_json(const ApportionView *view, FILE *out);
 const char *apportion_by_name(int by);
 /* Of an item: its label, its gas, or both with a comma between, cut at size. */
 void apportion_item_name(const Model *model, const ApportionItem *item, char *text, size_t size);
-/* A text cell of CSV, quoted where it must be. */
-void apportion_csv_text(FILE *out, const char *text);
 
 #endif

@@ -5,6 +5,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "../input/table.h"
 #include "commands.h"
 #include "conversion.h"
 #include "emission.h"
@@ -195,18 +196,6 @@ static int choose_gases(const Request *request, const Model *model, int *chosen,
 
 /* ---- writing ---- */
 
-static void put_label(FILE *out, const char *label)
-{
-    if (!strpbrk(label, ",\"")) {
-        fprintf(out, "%s\n", label);
-        return;
-    }
-    putc('"', out);
-    for (const char *c = label; *c; c++)
-        fprintf(out, *c == '"' ? "\"\"" : "%c", *c);
-    fprintf(out, "\"\n");
-}
-
 static int aloft(const Model *model)
 {
     int any = 0;
@@ -219,7 +208,8 @@ static void put_row(FILE *out, int year, const char *gas, const char *kind, doub
                     const char *height, const char *label)
 {
     fprintf(out, "%d,%s,%s,%.10g,%s%s,", year, gas, kind, amount, unit, height);
-    put_label(out, label);
+    csv_put_text(out, label);
+    fputc('\n', out);
 }
 
 /* Lines of emission as the schedule has them; only: those aloft. */
@@ -274,15 +264,15 @@ static int write_schedule(const Request *request, const Model *model, const Conv
     FILE *out = open_text(request->output, request->overwrite, fault);
     if (!out)
         return fault->code;
+    csv_put_header(out, "title", model->settings.title);
     fprintf(out,
-            "# title: %s\n# quantity: abundance at mid-year in the lowest layer, emission in the year by the "
-            "whole Earth\n"
+            "# quantity: abundance at mid-year in the lowest layer, emission in the year by the whole Earth\n"
             "# unit: in each row\n# source: computed by skymend %s from the schedule of the case\n"
             "# method: emission = what crosses the ground of the column, %.6g cm2 of Earth; loss by the "
-            "column's own "
-            "chemistry\n# made by: %s\nyear,gas,kind,amount,unit%s,line\n",
-            model->settings.title, SKYMEND_VERSION, emission_area(), request->command_line,
-            aloft(model) ? ",from_km,to_km" : "");
+            "column's own chemistry\n",
+            SKYMEND_VERSION, emission_area());
+    csv_put_header(out, "made by", request->command_line);
+    fprintf(out, "year,gas,kind,amount,unit%s,line\n", aloft(model) ? ",from_km,to_km" : "");
     for (int g = 0; g < model->schedule.gases; g++)
         put_gas(out, request, model, conversion, g, chosen[g]);
     return close_text(out, request->output, fault);

@@ -112,6 +112,12 @@ status=$?
 truth "an emission below zero is not written" eval '[ $status -eq 0 ] && [ "$(rows falling-out.csv 198. CFC-11 emission)" -eq 0 ] && [ "$(rows falling-out.csv 198. CFC-11 abundance)" -eq 4 ]'
 truth "and said" grep -q "CFC-11 stays an abundance in all years: it falls faster than this column takes it away, from 198" errors
 
+# a title may have more than one line; the file can be read all the same
+sed 's/^title = .*/title = "two\\nlines";/' coarse.cfg >lines.cfg
+"$SKYMEND" schedule lines.cfg --as emission --gas CFC-11 -o lines.csv --threads 1 --quiet >output 2>errors
+printf '@include "coarse.cfg"\nfiles = { schedule = "lines.csv"; };\n' >lines-back.cfg
+truth "a title of two lines" eval 'grep -qx "# title: two lines" lines.csv && "$SKYMEND" check lines-back.cfg'
+
 # ---- faults of a schedule with emissions ----
 
 # bad NAME PIECE ROW...: check refuses a layer of these rows at its line
