@@ -161,7 +161,7 @@ static void print_quick(const ApportionView *view, FILE *out)
         "\n  By the derivative of the column settled at the abundances of %d, %d and %d. all time: of what "
         "is\n  given off from %d to %d, for good; within: what of it falls by the end of %d; after: the "
         "rest.\n  Derivatives add up where runs without lines do not. +-: noise of the derivatives and what "
-        "the\n  middle year changes. -: given off aloft, or taken up by the ground\n",
+        "the\n  middle year changes. -: given off aloft, taken up by the ground, or made in the air too\n",
         from->background[0], from->background[1], from->background[2], from->first_year, last, last);
     print_abundances(view, out);
 }

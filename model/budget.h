@@ -133,7 +133,7 @@ void budget_gas(const Model *model, const double *x, const double *rate, int sol
 /* Global burden over the sum of loss (gas->loss, gas->aloft, or one part of them, which the caller puts into
  * an array of count), in years of 365.25 days; infinite when nothing is lost. */
 double budget_lifetime(const GasBudget *gas, const double *loss, int count);
-/* 1 for a gas whose value the ground keeps, by schedule or fixed. */
+/* 1 for a gas whose value the ground keeps, or keeps until emissions take over. */
 int budget_is_source(const Model *model, int solved);
 
 /* Linear in altitude between layer middles; beyond them the line of the last two goes on. */

@@ -119,7 +119,8 @@ double budget_lifetime(const GasBudget *gas, const double *loss, int count)
 
 int budget_is_source(const Model *model, int solved)
 {
-    return model->surface_kind[solved] == SURFACE_SCHEDULE || model->surface_kind[solved] == SURFACE_FIXED;
+    int kind = model->surface_kind[solved];
+    return (kind == SURFACE_SCHEDULE && !model_made_anyway(model, solved)) || kind == SURFACE_FIXED;
 }
 
 /* ---- profiles ---- */

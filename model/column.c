@@ -177,22 +177,21 @@ int model_makes(const Model *model, int solved)
     return 0;
 }
 
-/* Kept at 0 until it is given off, a gas that reactions make (NO, HCl) would be taken out of the air, and its
- * family with it. CO2 they make as well, but next to nothing takes it out: left alone it comes to no rest. */
-static int is_there_before(const Model *model, int solved, int gas)
+int model_made_anyway(const Model *model, int solved)
 {
-    return model->schedule.years[gas] == 0 && strcmp(model->schedule.gas[gas], "CO2") &&
+    int gas = model->surface_kind[solved] == SURFACE_SCHEDULE ? model->surface_gas[solved] : -1;
+    return gas >= 0 && model->schedule.years[gas] == 0 && strcmp(model->schedule.gas[gas], "CO2") &&
            model_makes(model, solved);
 }
 
 int model_keeps(const Model *model, int solved, double time)
 {
-    int kind = model->surface_kind[solved], gas = model->surface_gas[solved];
+    int kind = model->surface_kind[solved];
     if (model_holds(model, solved))
         return 0;
-    return kind == SURFACE_FIXED ||
-           (kind == SURFACE_SCHEDULE && !schedule_emits(&model->schedule, gas, time) &&
-            !is_there_before(model, solved, gas));
+    /* kept at 0 until it is given off, a gas made anyway would be taken out of the air, its family with it */
+    return kind == SURFACE_FIXED || (kind == SURFACE_SCHEDULE && !model_made_anyway(model, solved) &&
+                                     !schedule_emits(&model->schedule, model->surface_gas[solved], time));
 }
 
 double model_deposition(const Model *model, int solved)

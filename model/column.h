@@ -94,9 +94,12 @@ void model_free(Model *model);
 int model_holds(const Model *model, int solved);
 /* 1 when some reaction makes more of solved species s than it takes. */
 int model_makes(const Model *model, int solved);
+/* 1 when the schedule gives emissions alone of solved species s and reactions make it too, so that it is in
+ * the air without them (NO, HCl). CO2 counts as not made: next to nothing takes it out, and left alone it
+ * would come to no rest. */
+int model_made_anyway(const Model *model, int solved);
 /* 1 when at decimal year time the ground keeps solved species s, which no table holds, at a value: its
- * abundance, that of the case, or 0 of a gas yet to be given off that no reaction makes (CO2 counts as none).
- */
+ * abundance, that of the case, or 0 of a gas yet to be given off that is not made anyway. */
 int model_keeps(const Model *model, int solved, double time);
 /* Velocity, cm s-1, at which the ground takes solved species s up where it does not keep it; 0: it does not.
  */

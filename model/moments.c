@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "../input/constants.h"
+#include "budget.h"
 #include "pack.h"
 
 static size_t field(const Model *model)
@@ -71,8 +72,7 @@ const char *moment_name(const Settings *settings, int moment)
 
 int moments_has(const Model *model, int s)
 {
-    int kind = model->surface_kind[s];
-    return kind != SURFACE_SCHEDULE && kind != SURFACE_FIXED;
+    return !budget_is_source(model, s);
 }
 
 void moments_see(Moments *moments, int part, const double *x)

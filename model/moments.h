@@ -32,7 +32,7 @@ int moments_hours(const Settings *settings, double *hours, Fault *fault);
 /* "midnight", "sunrise" or "dawn", "noon", "sunset" or "dusk". */
 const char *moment_name(const Settings *settings, int moment);
 /* Whether solved species s has a course through the day worth writing: every gas but those that the ground
- * keeps at a value, which live for weeks and more. */
+ * keeps at a value, or keeps until emissions take over, which live for weeks and more. */
 int moments_has(const Model *model, int s);
 
 /* Keep x [solved][padded], the state where a part of the day (0 to PACK_DAY_PARTS, pack.h) begins. */

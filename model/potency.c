@@ -28,15 +28,6 @@ typedef struct {
 
 /* ---- which gases ---- */
 
-static int is_made(const Mechanism *mechanism, int s)
-{
-    for (int r = 0; r < mechanism->reactions; r++)
-        for (int c = 0; c < mechanism->reaction[r].changes; c++)
-            if (mechanism->reaction[r].changed[c] == s && mechanism->reaction[r].change[c] > 0.0)
-                return 1;
-    return 0;
-}
-
 static int feeds_a_family(const Mechanism *mechanism, int s)
 {
     for (int e = 0; e < mechanism->elements; e++) {
@@ -55,7 +46,7 @@ int potency_gases(const Model *model, int *gas)
     for (int s = 0; s < mechanism->solved; s++) {
         int carried = mechanism->item[mechanism->solved_item[s]].transport != 0;
         if (carried && !model_holds(model, s) && feeds_a_family(mechanism, s) &&
-            (budget_is_source(model, s) || !is_made(mechanism, s)))
+            (budget_is_source(model, s) || !model_makes(model, s)))
             gas[count++] = s;
     }
     return count;

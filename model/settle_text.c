@@ -5,6 +5,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "budget.h"
 #include "json.h"
 
 /* ---- the settled column ---- */
@@ -23,8 +24,7 @@ static int shown(const Model *model, double km)
 /* Gases that the ground keeps and of which there are any. */
 static int has_lifetime(const Model *model, const double *x, int s)
 {
-    int kind = model->surface_kind[s];
-    return (kind == SURFACE_SCHEDULE || kind == SURFACE_FIXED) && column_burden(model, x, s) > 0.0;
+    return budget_is_source(model, s) && column_burden(model, x, s) > 0.0;
 }
 
 static const double levels[] = {20, 30, 40, 50};

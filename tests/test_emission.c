@@ -4,7 +4,9 @@
 #define _XOPEN_SOURCE 700
 #include "emitting.h"
 
+#include "../model/budget.h"
 #include "../model/emission.h"
+#include "../model/moments.h"
 #include "../model/projection.h"
 #include "../model/stepper.h"
 
@@ -305,6 +307,11 @@ static void test_nothing_of_what_is_made(void **state)
         ok(projection_run(runs[r].model, runs[r].stepper, runs[r].column, &watcher, &fault), &fault);
     }
     assert_memory_equal(runs[0].column->x, runs[1].column->x, field_size(runs[0].model) * sizeof(double));
+    for (int i = 0; i < 3; i++) { /* nor does it make source gases of them */
+        int s = solved_of(runs[1].model, gases[i]);
+        assert_true(model_made_anyway(runs[1].model, s) && !model_made_anyway(runs[0].model, s));
+        assert_true(!budget_is_source(runs[1].model, s) && moments_has(runs[1].model, s));
+    }
     assert_memory_equal(runs[0].column->received, runs[1].column->received,
                         (size_t)runs[0].model->mechanism->solved * sizeof(double));
     for (int r = 0; r < 2; r++)
