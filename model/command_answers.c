@@ -134,7 +134,12 @@ static int read_request(Request *request, int argc, char **argv, Fault *fault)
                          "with --against the errors need finer runs of both files: give --finer and "
                          "--finer-against, or neither");
     const Output outputs[] = {{"--csv", request->csv}, {"--json", request->json}};
-    return check_outputs(outputs, 2, request->overwrite, fault);
+    const char *inputs[FILES + 1] = {request->potentials};
+    memcpy(inputs + 1, request->path, sizeof request->path);
+    return check_outputs(outputs, 2, request->overwrite, fault) ||
+                   check_inputs(outputs, 2, inputs, FILES + 1, fault)
+               ? fault->code
+               : 0;
 }
 
 int answers_baseline_errors(NumericalErrors *errors, char *source, size_t size, Fault *fault)

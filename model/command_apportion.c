@@ -172,14 +172,16 @@ static int work(const Request *request, const Model *model, Fault *fault)
 
 static int run(const Request *request, Fault *fault)
 {
+    const Output outputs[] = {{"--csv", request->csv}, {"--json", request->json}};
     Settings *settings = malloc(sizeof *settings);
     Model *model = NULL;
     if (!settings)
         return fault_memory(fault, "settings");
     int code = load_case(settings, request->case_path, fault);
     if (!code)
-        code = check_outputs((const Output[]){{"--csv", request->csv}, {"--json", request->json}}, 2,
-                             request->overwrite, fault);
+        code = check_outputs(outputs, 2, request->overwrite, fault);
+    if (!code)
+        code = check_inputs(outputs, 2, &request->case_path, 1, fault);
     if (!code)
         settings->moments = MOMENTS_NONE;
     if (!code && request->threads)
@@ -187,6 +189,9 @@ static int run(const Request *request, Fault *fault)
     omp_set_max_active_levels(1); /* a run is one thread's, whatever it uses */
     if (!code)
         code = model_make(&model, settings, fault);
+    if (!code)
+        code =
+            check_inputs(outputs, 2, (const char *const *)model->schedule.path, model->schedule.files, fault);
     if (!code)
         code = model_check_years(model, fault);
     if (!code && !request->quiet)

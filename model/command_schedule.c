@@ -373,6 +373,7 @@ static int put_out(const Request *request, const Model *model, Stepper *stepper,
 
 static int run(const Request *request, Fault *fault)
 {
+    const Output output = {"--output", request->output};
     Settings *settings = malloc(sizeof *settings);
     Model *model = NULL;
     Column *column = NULL;
@@ -381,14 +382,18 @@ static int run(const Request *request, Fault *fault)
         return fault_memory(fault, "settings");
     int code = load_case(settings, request->case_path, fault);
     if (!code)
-        code = check_outputs((const Output[]){{"--output", request->output}}, 1, request->overwrite, fault);
+        code = check_outputs(&output, 1, request->overwrite, fault);
+    if (!code)
+        code = check_inputs(&output, 1, &request->case_path, 1, fault);
     if (!code) {
         conversion_settings(settings);
         code = model_make(&model, settings, fault);
     }
-    if (!code) {
+    if (!code)
+        code =
+            check_inputs(&output, 1, (const char *const *)model->schedule.path, model->schedule.files, fault);
+    if (!code)
         code = model_check_years(model, fault);
-    }
     if (!code)
         code = column_make(&column, model, fault);
     if (!code && request->threads)

@@ -1,5 +1,5 @@
 /* commands: what the verbs share. */
-#define _DEFAULT_SOURCE /* readlink */
+#define _DEFAULT_SOURCE /* readlink, realpath */
 #include "commands.h"
 
 #include <errno.h>
@@ -7,7 +7,10 @@
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
+#include <sys/stat.h>
 #include <unistd.h>
+
+enum { PART_PATH = SETTINGS_PATH + 32 };
 
 static int holds_data(const char *folder)
 {
@@ -135,15 +138,55 @@ int check_outputs(const Output *output, int count, int overwrite, Fault *fault)
         if (there && !overwrite)
             return fault_set(fault, FAULT_INPUT, "%s exists already: choose another name, or add --overwrite",
                              path);
-        if (!there && check_folder(path, fault))
+        struct stat now; /* what is there is replaced by a file beside it, but a device is written to */
+        if ((!there || (!stat(path, &now) && S_ISREG(now.st_mode))) && check_folder(path, fault))
             return fault->code;
     }
     return 0;
 }
 
+int check_inputs(const Output *output, int count, const char *const *input, int inputs, Fault *fault)
+{
+    struct stat out, in;
+    for (int i = 0; i < count; i++) {
+        if (!output[i].path || stat(output[i].path, &out) || !S_ISREG(out.st_mode))
+            continue;
+        for (int j = 0; j < inputs; j++)
+            if (input[j] && !stat(input[j], &in) && in.st_dev == out.st_dev && in.st_ino == out.st_ino)
+                return fault_set(fault, FAULT_INPUT, "%s names %s, which is read: give another name",
+                                 output[i].option, output[i].path);
+    }
+    return 0;
+}
+
+/* Where a text file is written before it takes its place: beside the file that is there, a link followed. ""
+ * of what is no file (a device, a pipe), which is written to as it is. */
+static int find_part(const char *path, char *part, char *place, Fault *fault)
+{
+    struct stat there;
+    int is_there = !stat(path, &there);
+    *part = '\0';
+    if (is_there && !S_ISREG(there.st_mode))
+        return 0;
+    char *real = is_there ? realpath(path, NULL) : NULL;
+    int fits = snprintf(place, SETTINGS_PATH, "%s", real ? real : path) < SETTINGS_PATH;
+    free(real);
+    if (!fits)
+        return fault_set(fault, FAULT_OUTPUT, "%.60s...: the path is too long; choose a shorter one", path);
+    snprintf(part, PART_PATH, "%s.part-%ld", place, (long)getpid());
+    return 0;
+}
+
 FILE *open_text(const char *path, int overwrite, Fault *fault)
 {
-    FILE *out = fopen(path, overwrite ? "w" : "wx");
+    char part[PART_PATH], place[SETTINGS_PATH];
+    if (find_part(path, part, place, fault))
+        return NULL;
+    FILE *out = NULL;
+    if (!overwrite && access(path, F_OK) == 0)
+        errno = EEXIST;
+    else
+        out = fopen(*part ? part : path, "w");
     if (!out)
         fault_set(fault, FAULT_OUTPUT, "%s: cannot create the file: %s; choose a place that can be written",
                   path, strerror(errno));
@@ -152,10 +195,18 @@ FILE *open_text(const char *path, int overwrite, Fault *fault)
 
 int close_text(FILE *out, const char *path, Fault *fault)
 {
+    char part[PART_PATH], place[SETTINGS_PATH];
     int bad = ferror(out);
-    if (fclose(out) || bad)
-        return fault_set(fault, FAULT_OUTPUT, "%s: could not be written to its end; free some space", path);
-    return 0;
+    if (fclose(out))
+        bad = 1;
+    if (find_part(path, part, place, fault))
+        return fault->code;
+    if (*part && (bad || rename(part, place))) {
+        bad = 1;
+        unlink(part);
+    }
+    return bad ? fault_set(fault, FAULT_OUTPUT, "%s: could not be written to its end; free some space", path)
+               : 0;
 }
 
 int option_whole(const char *option, const char *text, double low, double high, int *value, Fault *fault)

@@ -63,7 +63,10 @@ typedef struct {
 /* To be asked before long work begins: FAULT_INPUT when two outputs have one name, or one exists and is not
  * to be replaced; FAULT_OUTPUT when its folder cannot be written. */
 int check_outputs(const Output *output, int count, int overwrite, Fault *fault);
-/* A text file to write; NULL on a fault. close_text tells whether all of it got there. */
+/* FAULT_INPUT when an output is one of the files that are read; inputs may be NULL or not there. */
+int check_inputs(const Output *output, int count, const char *const *input, int inputs, Fault *fault);
+/* A text file to write; NULL on a fault. It takes its place in close_text, and only when all of it got there:
+ * else what was there stays. */
 FILE *open_text(const char *path, int overwrite, Fault *fault);
 int close_text(FILE *out, const char *path, Fault *fault);
 

@@ -84,6 +84,21 @@ refused "a finer run that is none" "same numerics" own.nc --finer own.nc
 printf 'x\n' >there.csv
 refused "keeps a file that is there" "exists already" own.nc --csv there.csv
 refused "one file for two forms" "both name" own.nc --csv a --json a
+cp own.nc same.nc
+refused "over the file itself" "same.nc, which is read" same.nc --csv same.nc --overwrite
+refused "over the reference by another name" "./same.nc, which is read" own.nc --against same.nc --json ./same.nc --overwrite
+truth "and leaves it as it is" cmp own.nc same.nc
+rm same.nc
+echo old >half.csv
+(
+    trap '' XFSZ
+    ulimit -f 2 # blocks: far less than the answers take
+    "$SKYMEND" answers own.nc --quiet --csv half.csv --overwrite 2>errors
+    echo $? >code
+    "$SKYMEND" answers own.nc --quiet --csv half-new.csv 2>errors
+    echo $? >>code
+)
+truth "a file that cannot be written whole" eval '[ "$(echo $(cat code))" = "4 4" ] && [ "$(cat half.csv)" = old ] && [ ! -e half-new.csv ] && ! ls half*.part*'
 "$SKYMEND" answers own.nc --csv nowhere/a.csv >output 2>errors </dev/null
 truth "a folder that is not there: exit 4" eval "[ $? -eq 4 ] && grep -q nowhere errors"
 "$SKYMEND" answers --help >output 2>errors

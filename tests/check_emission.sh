@@ -82,6 +82,11 @@ cat >emission.cfg <<'END'
 files = { schedule = "emission.csv"; };
 END
 truth "check takes it" "$SKYMEND" check emission.cfg
+cp emission.csv kept.csv
+cp emission.cfg kept.cfg
+refused "over its own schedule" "emission.csv, which is read" emission.cfg --as abundance -o emission.csv --overwrite
+refused "over its own case" "./emission.cfg, which is read" emission.cfg --as abundance -o ./emission.cfg --overwrite
+truth "both stay" eval 'cmp emission.csv kept.csv && cmp emission.cfg kept.cfg'
 refused "what emissions drive already" "no gas of --gas CFC-11 is driven by its abundance" emission.cfg --as emission --gas CFC-11 --from 1982 -o a.csv
 "$SKYMEND" schedule emission.cfg --as abundance -o back.csv --threads 1 --quiet >output 2>errors
 status=$?
