@@ -328,10 +328,11 @@ static int run(const Request *request, Fault *fault)
         code = check_altitudes(request, model, fault);
     if (!code)
         code = ox_book_make(&book, model->mechanism, fault);
+    const Output outputs[] = {{"--csv", request->csv}, {"--json", request->json}, {"-o", request->archive}};
     if (!code)
-        code = check_outputs(
-            (const Output[]){{"--csv", request->csv}, {"--json", request->json}, {"-o", request->archive}}, 3,
-            request->overwrite, fault);
+        code = check_outputs(outputs, 3, request->overwrite, fault);
+    if (!code)
+        code = check_inputs(outputs, 3, &request->case_path, 1, fault);
     if (!code && request->threads)
         omp_set_num_threads(request->threads);
     if (!code)

@@ -140,9 +140,11 @@ static int run(const Request *request, Fault *fault)
     int code = load_case(settings, request->case_path, fault);
     int year = !code && !request->year_given ? settings->first_year : request->year;
     settings->first_year = settings->last_year = year; /* the schedule must cover it */
+    const Output outputs[] = {{"--csv", request->csv}, {"--json", request->json}};
     if (!code)
-        code = check_outputs((const Output[]){{"--csv", request->csv}, {"--json", request->json}}, 2,
-                             request->overwrite, fault);
+        code = check_outputs(outputs, 2, request->overwrite, fault);
+    if (!code)
+        code = check_inputs(outputs, 2, &request->case_path, 1, fault);
     if (!code)
         code = model_make(&model, settings, fault);
     if (!code)

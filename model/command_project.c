@@ -139,6 +139,8 @@ static int run(const Request *request, Fault *fault)
     if (!code)
         code = stepper_make(&stepper, model, request->threads, fault);
     if (!code)
+        code = check_inputs(&(const Output){"--output", request->output}, 1, &request->case_path, 1, fault);
+    if (!code)
         code = archive_create(&outlets.archive, model, request->output, request->overwrite,
                               request->command_line, fault);
     if (!code) {

@@ -206,9 +206,11 @@ static int run(const Request *request, Fault *fault)
         code = stepper_make(&stepper, model, request->threads, fault);
     if (!code)
         code = unsplit_make(&unsplit, model, fault);
+    const Output outputs[] = {{"--json", request->json}, {"-o", request->output}};
     if (!code)
-        code = check_outputs((const Output[]){{"--json", request->json}, {"-o", request->output}}, 2,
-                             request->overwrite, fault);
+        code = check_outputs(outputs, 2, request->overwrite, fault);
+    if (!code)
+        code = check_inputs(outputs, 2, &request->case_path, 1, fault);
     if (!code)
         code = steady_find(unsplit, stepper, column, year + 0.5, &steady, fault);
     if (!code && request->output)
