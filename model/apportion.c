@@ -257,6 +257,14 @@ int apportion_list(Apportionment **made, const Model *model, const ApportionAsk 
     return 0;
 }
 
+int apportion_check(const Model *model, const ApportionAsk *ask, Fault *fault)
+{
+    Apportionment *listed;
+    if (!apportion_list(&listed, model, ask, fault))
+        apportion_free(listed);
+    return fault->code;
+}
+
 static int make_once(Apportionment **made, const Model *model, const ApportionAsk *ask, ApportionPace *pace,
                      Fault *fault)
 {

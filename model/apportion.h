@@ -97,7 +97,7 @@ typedef struct {
     int has_errors, quick;
     int background[APPORTION_YEARS];                     /* years the derivatives are of */
     double sum_all_time, sum_within, sum_all_time_error; /* over the items that have them */
-    int kept_lines;                       /* lines of the labels to keep */
+    int kept_lines;                                      /* lines of the labels to keep */
     int not_apportioned, *abundance_gas;  /* gases of the schedule that lines of the run do not drive */
     long steps_shared, steps_alone, runs; /* outer steps carried once, and if every run had been carried
                                              whole; the runs (coarse ones not counted) */
@@ -112,15 +112,17 @@ typedef struct {
     int keeps;
 } ApportionAsk;
 
-/* FAULT_INPUT when no line gives anything off in the years of the case, or a label to keep is none; FAULT_INTERRUPTED when watcher says
- * so. progress and stop of watcher are used; progress is called by one thread at a time, share over all runs.
- * Owner: caller; model must outlive it. */
+/* FAULT_INPUT when no line gives anything off in the years of the case, or a label to keep is none;
+ * FAULT_INTERRUPTED when watcher says so. progress and stop of watcher are used; progress is called by one
+ * thread at a time, share over all runs. Owner: caller; model must outlive it. */
 int apportion_make(Apportionment **made, const Model *model, const ApportionAsk *ask, const Watcher *watcher,
                    Fault *fault);
 /* The quick way: items with all_time and within, column of the whole; no runs without items, no errors of
  * runs (ask->errors, ask->share are not looked at). FAULT_INPUT for a sun with seasons besides. */
 int apportion_quick(Apportionment **made, const Model *model, const ApportionAsk *ask, const Watcher *watcher,
                     Fault *fault);
+/* What of this can be known before a run: the faults of labels to keep and of nothing to apportion. */
+int apportion_check(const Model *model, const ApportionAsk *ask, Fault *fault);
 void apportion_free(Apportionment *apportionment);
 
 /* Settings of the coarse runs: outer steps and all that makes light and factors afresh twice as rarely, the

@@ -158,6 +158,10 @@ static int work(const Request *request, const Model *model, Fault *fault)
                               .errors = !request->no_errors,
                               .keep = request->keep,
                               .keeps = request->keeps};
+    if (apportion_check(model, &ask, fault))
+        return fault->code;
+    if (!request->quiet)
+        remark_takeovers(model);
     progress_open(&bar, request->quiet);
     int code = request->quick ? apportion_quick(&apportionment, model, &ask, &watcher, fault)
                               : apportion_make(&apportionment, model, &ask, &watcher, fault);
@@ -194,8 +198,6 @@ static int run(const Request *request, Fault *fault)
             check_inputs(outputs, 2, (const char *const *)model->schedule.path, model->schedule.files, fault);
     if (!code)
         code = model_check_years(model, fault);
-    if (!code && !request->quiet)
-        remark_takeovers(model);
     if (!code)
         code = work(request, model, fault);
     model_free(model);
