@@ -18,7 +18,7 @@ static const struct {
     {"project", command_project, "run a case through its years; write the file, print the answers"},
     {"settle", command_settle, "find the column at rest under one year's surface values; sensitivities"},
     {"check", command_check, "read everything a case names, print the resolved case, run nothing"},
-    {"sunlight", command_sunlight, "print photolysis rates by altitude, as CSV"},
+    {"sunlight", command_sunlight, "print photolysis rates by altitude, or the ultraviolet at the ground, as CSV"},
     {"budget", command_budget, "what makes and destroys ozone, by catalytic family; how long gases live"},
     {"potency", command_potency, "ozone depletion potentials and lifetimes of the gases of a case"},
     {"schedule", command_schedule, "turn abundances into emissions, or emissions into abundances"},
