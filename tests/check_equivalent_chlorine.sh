@@ -1,22 +1,7 @@
 #!/bin/sh
 # skymend project stores equivalent chlorine, and refuses a bad table of fractional release before the run.
 # Finds SKYMEND, SKYMEND_DATA and TEST_DIR in its environment. PYTHON names the interpreter.
-set -u
-cd "$TEST_DIR" || exit 2
-python=${PYTHON:-/usr/bin/python3}
-failures=0
-
-truth() {
-    name=$1
-    shift
-    if "$@" >said 2>&1; then
-        echo "ok $name"
-    else
-        failures=$((failures + 1))
-        echo "not ok $name"
-        sed 's/^/# /' said
-    fi
-}
+. "$(dirname "$0")/checks.sh"
 
 printf '%s\n' 'years: { first = 1990; last = 1995; };' 'grid: { spacing_km = 4.0; };' \
     'day: { mode = "mean"; };' 'numerics: { start = "spinup"; spinup_years = 0.25; };' >short.cfg

@@ -2,32 +2,14 @@
 # scripts/plot_cases.py: every kind of figure in every form, what the figures hold, what is refused, and that a picture
 # is written whole or not at all.
 #
-# Environment: SKYMEND the program, SKYMEND_DATA the folder of the data, TEST_DIR a scratch folder.
+# Environment: see checks.sh.
 # Prints "ok NAME" or "not ok NAME" per check. The runs are short and coarse and their schedule is invented; expected
 # values are those of the files drawn, or of `skymend answers`.
 
-: "${SKYMEND:?path of the program}" "${SKYMEND_DATA:?folder of the data}" "${TEST_DIR:?scratch folder}"
-SKYMEND=$(cd "$(dirname "$SKYMEND")" && pwd)/$(basename "$SKYMEND")
-SKYMEND_DATA=$(cd "$SKYMEND_DATA" && pwd)
-export SKYMEND SKYMEND_DATA
-scripts=$(cd "$(dirname "$0")/../scripts" && pwd)
-python=${PYTHON:-/usr/bin/python3}
-cd "$TEST_DIR" || exit 1
-failures=0
+. "$(dirname "$0")/checks.sh"
+scripts=$(cd "$tests/../scripts" && pwd)
 MPLCONFIGDIR=$TEST_DIR/matplotlib
 export MPLCONFIGDIR PYTHONDONTWRITEBYTECODE=1
-
-truth() {
-    name=$1
-    shift
-    if "$@" >said 2>&1; then
-        printf 'ok %s\n' "$name"
-    else
-        printf 'not ok %s\n# untrue: %s\n' "$name" "$*"
-        cat said errors 2>/dev/null | sed 's/^/#   /' | head -n 8
-        failures=$((failures + 1))
-    fi
-}
 
 plot() {
     "$python" "$scripts/plot_cases.py" "$@" >output 2>errors </dev/null

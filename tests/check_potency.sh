@@ -2,38 +2,11 @@
 # skymend potency from the command line: what it prints and writes, that its forms say the same, what it
 # refuses, an interrupt; a gas that a user adds.
 #
-# Environment: SKYMEND the program, SKYMEND_DATA the folder of the data, TEST_DIR a scratch folder.
+# Environment: see checks.sh.
 # Prints "ok NAME" or "not ok NAME" per check. Every expected text is this program's own contract (README.md).
 
-: "${SKYMEND:?path of the program}" "${SKYMEND_DATA:?folder of the data}" "${TEST_DIR:?scratch folder}"
-SKYMEND=$(cd "$(dirname "$SKYMEND")" && pwd)/$(basename "$SKYMEND")
-SKYMEND_DATA=$(cd "$SKYMEND_DATA" && pwd)
-export SKYMEND_DATA
-python=${PYTHON:-/usr/bin/python3}
-cd "$TEST_DIR" || exit 1
-failures=0
-
-truth() {
-    name=$1
-    shift
-    if "$@" >said 2>&1; then
-        printf 'ok %s\n' "$name"
-    else
-        printf 'not ok %s\n# untrue: %s\n' "$name" "$*"
-        sed 's/^/#   /' said | head -n 5
-        failures=$((failures + 1))
-    fi
-}
-
-# refused NAME PIECE OPTION...: exit 2, one line on standard error that holds the piece, nothing else
-refused() {
-    name=$1
-    piece=$2
-    shift 2
-    "$SKYMEND" potency "$@" >output 2>errors </dev/null
-    status=$?
-    truth "$name" eval '[ $status -eq 2 ] && [ "$(wc -l <errors)" -eq 1 ] && grep -qF -e "$piece" errors && [ ! -s output ]'
-}
+. "$(dirname "$0")/checks.sh"
+verb=potency
 
 cat >coarse.cfg <<'END'
 title = "a \"coarse\" case \\ with signs that JSON must escape";

@@ -2,33 +2,15 @@
 # scripts/make_report.py: one page that loads nothing, with the answers of `skymend answers`, figures, lines, validation
 # status and sources; that text of files stays text; what is refused.
 #
-# Environment: SKYMEND the program, SKYMEND_DATA the folder of the data, TEST_DIR a scratch folder.
+# Environment: see checks.sh.
 # Prints "ok NAME" or "not ok NAME" per check. The runs are short and coarse, schedule and apportionment are invented;
 # expected values are those of the files and of `skymend answers`.
 
-: "${SKYMEND:?path of the program}" "${SKYMEND_DATA:?folder of the data}" "${TEST_DIR:?scratch folder}"
-SKYMEND=$(cd "$(dirname "$SKYMEND")" && pwd)/$(basename "$SKYMEND")
-SKYMEND_DATA=$(cd "$SKYMEND_DATA" && pwd)
-export SKYMEND SKYMEND_DATA
-scripts=$(cd "$(dirname "$0")/../scripts" && pwd)
-python=${PYTHON:-/usr/bin/python3}
-cd "$TEST_DIR" || exit 1
-failures=0
+. "$(dirname "$0")/checks.sh"
+scripts=$(cd "$tests/../scripts" && pwd)
 MPLCONFIGDIR=$TEST_DIR/matplotlib
 export MPLCONFIGDIR PYTHONDONTWRITEBYTECODE=1
 touch before after output errors said
-
-truth() {
-    name=$1
-    shift
-    if "$@" >said 2>&1; then
-        printf 'ok %s\n' "$name"
-    else
-        printf 'not ok %s\n# untrue: %s\n' "$name" "$*"
-        cat said errors | sed 's/^/#   /' | head -n 8
-        failures=$((failures + 1))
-    fi
-}
 
 report() {
     "$python" "$scripts/make_report.py" "$@" >output 2>errors </dev/null

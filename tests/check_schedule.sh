@@ -1,29 +1,12 @@
 #!/bin/sh
 # What skymend check says of a schedule with layers, emissions and banks, and what it refuses.
 #
-# Environment: SKYMEND the program, SKYMEND_DATA the folder of the data, TEST_DIR a scratch folder.
+# Environment: see checks.sh.
 # Prints "ok NAME" or "not ok NAME" per check. Every expected text is this program's own contract (README.md). The
 # schedule here is invented.
 
-: "${SKYMEND:?path of the program}" "${SKYMEND_DATA:?folder of the data}" "${TEST_DIR:?scratch folder}"
-SKYMEND=$(cd "$(dirname "$SKYMEND")" && pwd)/$(basename "$SKYMEND")
-SKYMEND_DATA=$(cd "$SKYMEND_DATA" && pwd)
-export SKYMEND_DATA
-readme=$(cd "$(dirname "$0")/.." && pwd)/README.md
-cd "$TEST_DIR" || exit 1
-failures=0
-
-truth() {
-    name=$1
-    shift
-    if "$@"; then
-        printf 'ok %s\n' "$name"
-    else
-        printf 'not ok %s\n# untrue: %s\n' "$name" "$*"
-        sed 's/^/#   stderr: /' errors | head -n 5
-        failures=$((failures + 1))
-    fi
-}
+. "$(dirname "$0")/checks.sh"
+readme=$tests/../README.md
 
 # says TEXT: a line of the output is exactly that
 says() {
